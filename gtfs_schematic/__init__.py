@@ -1,0 +1,1 @@
+"""Transit network diagrams from GTFS feeds."""

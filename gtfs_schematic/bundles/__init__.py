@@ -1,0 +1,1 @@
+"""A layout gets its parallel lines ordered and offset."""

@@ -1,0 +1,1 @@
+"""Words from the command line become calls."""

@@ -1,0 +1,1 @@
+"""The demo: an invented region, before and after a service change."""

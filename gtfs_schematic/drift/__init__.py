@@ -1,0 +1,1 @@
+"""How far a diagram departs from the ground."""

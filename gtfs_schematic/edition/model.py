@@ -1,0 +1,75 @@
+"""What the edition room keeps: one issued version of a diagram, as `edition.json` holds it."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from gtfs_schematic.geometry import Point
+from gtfs_schematic.network.model import StationKind
+
+
+@dataclass(frozen=True, slots=True)
+class EditionFeed:
+    """Which feed the edition shows."""
+
+    sha256: str
+    publisher: str
+    version: str
+    start_date: str
+    end_date: str
+    service_date: str
+
+
+@dataclass(frozen=True, slots=True)
+class EditionStation:
+    """A drawn station; lon and lat in degrees, sheet place in millimetres, y down."""
+
+    id: str
+    name: str
+    stop_ids: tuple[str, ...]
+    lon: float
+    lat: float
+    x_mm: float
+    y_mm: float
+    kind: StationKind
+    lines: tuple[str, ...]
+    group: str
+
+
+@dataclass(frozen=True, slots=True)
+class EditionLink:
+    """A drawn link with its lines from left to right as seen going from start to end."""
+
+    id: str
+    start: str
+    end: str
+    lines: tuple[str, ...]
+    path_mm: tuple[Point, ...]
+
+
+@dataclass(frozen=True, slots=True)
+class EditionLine:
+    """A drawn line."""
+
+    id: str
+    name: str
+    color: str
+    text_color: str
+    route_ids: tuple[str, ...]
+    itineraries: tuple[tuple[str, ...], ...]
+
+
+@dataclass(frozen=True, slots=True)
+class Edition:
+    """Everything that `edition.json` says."""
+
+    title: str
+    feed: EditionFeed
+    width_mm: float
+    height_mm: float
+    stations: tuple[EditionStation, ...]
+    links: tuple[EditionLink, ...]
+    lines: tuple[EditionLine, ...]
+    left_out: tuple[tuple[str, str, str], ...] = ()
+    """(kind, id, reason) of everything in the feed that the diagram does not show."""
+    findings: tuple[str, ...] = ()

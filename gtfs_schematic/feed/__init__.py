@@ -1,0 +1,1 @@
+"""Reading GTFS Schedule: a path becomes the timetable of one service date."""

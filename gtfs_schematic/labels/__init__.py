@@ -1,0 +1,1 @@
+"""A bundled layout gets its station names."""

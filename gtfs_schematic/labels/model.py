@@ -1,0 +1,69 @@
+"""What the labels room gives: a place for every station's name."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+from typing import Literal
+
+from pydantic import BaseModel, ConfigDict, Field
+
+from gtfs_schematic.bundles.model import BundledLayout
+from gtfs_schematic.geometry import Point
+
+
+class LabelSettings(BaseModel):
+    """How station names are set."""
+
+    model_config = ConfigDict(frozen=True, extra="forbid")
+
+    size_pt: float = Field(default=8.0, gt=0.0)
+    """Type size of stop names, points (1 pt = 25.4/72 mm)."""
+    interchange_size_pt: float = Field(default=9.5, gt=0.0)
+    """Type size of interchange and terminus names, points."""
+    leading: float = Field(default=1.15, ge=1.0)
+    """Distance of baselines in multiples of the type size."""
+    clearance_mm: float = Field(default=0.5, ge=0.0)
+    """Least distance between a label and lines, markers or other labels, millimetres."""
+    marker_radius_mm: float = Field(default=1.3, gt=0.0)
+    """Outer radius of a marker round the points it covers, millimetres."""
+    interchange_radius_mm: float = Field(default=1.9, gt=0.0)
+    """The same for interchanges and termini."""
+
+
+@dataclass(frozen=True, slots=True)
+class TextLine:
+    """One line of text: baseline start before rotation about the label's pivot, millimetres."""
+
+    text: str
+    x_mm: float
+    y_mm: float
+    width_mm: float
+    size_mm: float
+    second: bool = False
+    """Whether this line is the name in the second language."""
+
+
+@dataclass(frozen=True, slots=True)
+class Label:
+    """A placed station name; its lines are rotated by `angle_deg` (clockwise) about the pivot."""
+
+    station_id: str
+    bold: bool
+    pivot_mm: Point
+    angle_deg: float
+    side: Literal["E", "NE", "N", "NW", "W", "SW", "S", "SE"]
+    lines: tuple[TextLine, ...]
+    outline_mm: tuple[Point, ...]
+    """The four corners of the box that the text fills, after rotation."""
+
+
+@dataclass(frozen=True, slots=True)
+class LabelledLayout:
+    """A bundled layout with its labels."""
+
+    bundled: BundledLayout
+    settings: LabelSettings
+    labels: Mapping[str, Label]
+    unplaced: tuple[str, ...]
+    """Ids of stations whose label found no free place; empty in a good drawing."""

@@ -1,0 +1,1 @@
+"""A network becomes an octilinear layout on a sheet."""

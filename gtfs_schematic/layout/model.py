@@ -1,0 +1,83 @@
+"""What the layout room gives: every station and link in sheet millimetres, y down."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+from typing import Literal
+
+from pydantic import BaseModel, ConfigDict, Field
+
+from gtfs_schematic.geometry import Point
+from gtfs_schematic.network.model import Network
+
+
+class LayoutSettings(BaseModel):
+    """How the network is placed on the sheet."""
+
+    model_config = ConfigDict(frozen=True, extra="forbid")
+
+    fidelity: float = Field(default=0.35, ge=0.0, le=1.0)
+    """1 keeps geography to scale, 0 spaces stations evenly."""
+    effort: Literal["quick", "standard", "thorough"] = "standard"
+    """How much work the improvement may do: a fixed amount, never a time."""
+
+
+@dataclass(frozen=True, slots=True)
+class Clearances:
+    """The plain numbers, in millimetres, by which the layout knows what will be drawn."""
+
+    line_width_mm: float
+    line_gap_mm: float
+    marker_mm: float
+    """Outer diameter of a stop's marker."""
+    label_height_mm: float
+    """Height of one text line of a station label."""
+    spacing_mm: float
+    """Least distance between neighbouring stations along a link."""
+    label_width_mm: Mapping[str, float]
+    """Per station the width of its label on one text line."""
+
+
+@dataclass(frozen=True, slots=True)
+class SheetFrame:
+    """The page and the part of it that the network may fill, millimetres, y down."""
+
+    width_mm: float
+    height_mm: float
+    left_mm: float
+    top_mm: float
+    right_mm: float
+    bottom_mm: float
+
+
+@dataclass(frozen=True, slots=True)
+class RoomRequest:
+    """A later stage's wish for more room: at least `length_mm` along each link of a station."""
+
+    station_id: str
+    length_mm: float
+
+
+@dataclass(frozen=True, slots=True)
+class Crossing:
+    """Two links (or walks) that cross on the ground without a station, and on the sheet."""
+
+    first: str
+    second: str
+    at_mm: Point
+
+
+@dataclass(frozen=True, slots=True)
+class Layout:
+    """An octilinear drawing of a network; see `layout.check` for what it guarantees."""
+
+    network: Network
+    sheet: SheetFrame
+    positions: Mapping[str, Point]
+    """Per station id its place."""
+    paths: Mapping[str, tuple[Point, ...]]
+    """Per link id the centre line from `start` to `end`, every bend as a sharp corner."""
+    walk_paths: Mapping[str, tuple[Point, ...]]
+    """Per walk id the same."""
+    crossings: tuple[Crossing, ...]

@@ -1,0 +1,1 @@
+"""A timetable becomes stations, links, lines and corridors."""

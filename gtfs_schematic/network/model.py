@@ -1,0 +1,155 @@
+"""What the network room gives: stations, links, lines and the corridors they form."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from functools import cached_property
+from typing import Literal
+
+from pydantic import BaseModel, ConfigDict, Field
+
+from gtfs_schematic.feed.model import Boarding, FeedInfo, Finding, LeftOut
+
+StationKind = Literal["stop", "interchange", "terminus"]
+ServicePattern = Literal["all-day", "peak", "night", "some-days"]
+
+
+class NetworkSettings(BaseModel):
+    """How stops become stations and trips become links."""
+
+    model_config = ConfigDict(frozen=True, extra="forbid")
+
+    merge_name_m: float = Field(default=150.0, ge=0.0)
+    """Stops without a parent and of the same name merge if no further apart than this, metres."""
+    merge_group_m: float = Field(default=90.0, ge=0.0)
+    """Stations joined by transfers merge into one if all lie within this distance, metres."""
+    min_pattern_share: float = Field(default=0.04, ge=0.0, le=1.0)
+    """Patterns with a smaller share of their line's trips are left out, and listed."""
+    express_detour: float = Field(default=1.25, ge=1.0)
+    """A local track at most this many times longer than the express link carries the express."""
+    alongside_m: float = Field(default=60.0, ge=0.0)
+    """A stop this near the course of another line, which runs along it, lies on its course."""
+    outlier_km: float = Field(default=300.0, gt=0.0)
+    """A stop further than this from the network's median stop is an outlier and not drawn."""
+
+
+@dataclass(frozen=True, slots=True)
+class Station:
+    """Merged stops that a rider takes for one place; lon and lat in degrees (WGS 84)."""
+
+    id: str
+    name: str
+    second_name: str
+    stop_ids: tuple[str, ...]
+    lon: float
+    lat: float
+    kind: StationKind
+    group: str
+    """Id of the interchange group: the least station id among those joined by walks."""
+    lines: tuple[str, ...]
+    """Ids of the lines that call here; a line that only passes is not among them."""
+    boarding: Boarding
+    merge_reason: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class Line:
+    """What a rider sees as one coloured line: one or more routes, both directions."""
+
+    id: str
+    name: str
+    long_name: str
+    color: str
+    """"#RRGGBB", never empty: a missing or unusable colour is replaced by a distinct one."""
+    text_color: str
+    color_from_feed: bool
+    mode: str
+    route_ids: tuple[str, ...]
+    itineraries: tuple[tuple[str, ...], ...]
+    """Ids of the stations called at, in order; one direction only where the other is its mirror."""
+    courses: tuple[tuple[str, ...], ...]
+    """As `itineraries`, index by index, with the stations that are passed without a call."""
+    trips: int
+    """Trips on the service date, both directions."""
+    service: ServicePattern
+    first_departure_s: int
+    last_departure_s: int
+    headway_s: int | None
+    """Median time between departures of the busier direction at its first stop, seconds."""
+    one_way_links: tuple[tuple[str, str], ...] = ()
+    """(from, to) of links that the line runs in this direction only."""
+
+
+@dataclass(frozen=True, slots=True)
+class Link:
+    """Two neighbouring stations joined by at least one line; `start` sorts before `end`."""
+
+    id: str
+    start: str
+    end: str
+    lines: tuple[str, ...]
+    """Ids of the lines on the link, calling or passing, sorted."""
+
+
+@dataclass(frozen=True, slots=True)
+class Walk:
+    """Two stations of an interchange group joined on foot; `start` sorts before `end`."""
+
+    id: str
+    start: str
+    end: str
+    time_s: int | None
+
+
+@dataclass(frozen=True, slots=True)
+class Corridor:
+    """A chain of links through stations of degree two that all carry the same lines.
+
+    `station_ids` holds both ends and everything between; ``link_ids[i]`` joins
+    ``station_ids[i]`` and ``station_ids[i + 1]``, so unfolding is exact.
+    """
+
+    id: str
+    station_ids: tuple[str, ...]
+    link_ids: tuple[str, ...]
+    lines: tuple[str, ...]
+
+
+@dataclass(frozen=True)
+class Network:
+    """The route-station graph of one service date; tuples sorted by id."""
+
+    info: FeedInfo
+    agencies: tuple[str, ...]
+    stations: tuple[Station, ...]
+    links: tuple[Link, ...]
+    walks: tuple[Walk, ...]
+    lines: tuple[Line, ...]
+    corridors: tuple[Corridor, ...]
+    findings: tuple[Finding, ...]
+    left_out: tuple[LeftOut, ...]
+
+    @cached_property
+    def station(self) -> dict[str, Station]:
+        """Stations by id."""
+        return {station.id: station for station in self.stations}
+
+    @cached_property
+    def link(self) -> dict[str, Link]:
+        """Links by id."""
+        return {link.id: link for link in self.links}
+
+    @cached_property
+    def line(self) -> dict[str, Line]:
+        """Lines by id."""
+        return {line.id: line for line in self.lines}
+
+    @cached_property
+    def link_between(self) -> dict[frozenset[str], Link]:
+        """Links by the set of their two station ids."""
+        return {frozenset((link.start, link.end)): link for link in self.links}
+
+    @property
+    def groups(self) -> int:
+        """Count of interchange groups, single stations included."""
+        return len({station.group for station in self.stations})

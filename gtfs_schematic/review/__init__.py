@@ -1,0 +1,1 @@
+"""Looking at an edition on a local web page."""
