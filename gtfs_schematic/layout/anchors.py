@@ -1,0 +1,102 @@
+"""Where geography wants every point: even-spacing targets, reached without losing topology."""
+
+from __future__ import annotations
+
+import numpy as np
+import scipy.sparse as sp
+from numpy.typing import NDArray
+from scipy.sparse.linalg import spsolve
+
+from gtfs_schematic.layout.guard import free_radii, repulsion
+from gtfs_schematic.layout.plane import PlaneGraph
+
+_PULL_TO_GROUND = 0.004
+"""Weight of staying at the true place against one link's wanted vector; small, so that dense
+centres open, but enough to hold far parts of the network where they belong."""
+
+_STEPS = 160
+_WANTED_CLEARANCE = 0.9
+"""Distance, in station spacings, that a point wants from links that are not its own."""
+
+
+def anchor_points(graph: PlaneGraph, fidelity: float) -> NDArray[np.float64]:
+    """Move the points of a plane graph towards even spacing, keeping its topology.
+
+    Parameters
+    ----------
+    graph
+        Plane graph in local metres.
+    fidelity
+        1 keeps the ground to scale, 0 gives every link the same length at its true bearing.
+
+    Returns
+    -------
+    NDArray
+        Points in station spacings (one is the median length of a link), y north, shape (n, 2).
+
+    Notes
+    -----
+    Least squares for the targets; then the move rule of PrEd (Bertault 2000) as refined in
+    ImPrEd (Simonetto, Archambault, Auber and Bourqui 2011): no point moves further than 0.45 of
+    its distance to the nearest foreign segment, nor does that segment's end.
+    """
+    ground, lengths, spacing = _in_spacings(graph)
+    targets = _targets(graph, ground, lengths, fidelity)
+    return _guarded_move(graph, ground, targets)
+
+
+def _in_spacings(
+    graph: PlaneGraph,
+) -> tuple[NDArray[np.float64], NDArray[np.float64], float]:
+    """Centre and scale the ground so that a typical link has length 1."""
+    a, b = graph.segments.T
+    lengths = np.hypot(*(graph.points[a] - graph.points[b]).T)
+    spacing = float(np.median(lengths / graph.segment_shares)) if len(lengths) else 1.0
+    ground = (graph.points - graph.points.mean(axis=0)) / max(spacing, 1e-9)
+    return ground, lengths / max(spacing, 1e-9), spacing
+
+
+def _targets(
+    graph: PlaneGraph,
+    ground: NDArray[np.float64],
+    lengths: NDArray[np.float64],
+    fidelity: float,
+) -> NDArray[np.float64]:
+    """Solve for points whose links have true bearing and a blend of true and even length."""
+    a, b = graph.segments.T
+    m, n = len(a), len(ground)
+    true = np.maximum(lengths, 1e-6)
+    wanted = true**fidelity * graph.segment_shares ** (1.0 - fidelity)
+    vectors = (ground[b] - ground[a]) / true[:, None] * wanted[:, None]
+    weights = 1.0 / wanted
+    rows = np.repeat(np.arange(m), 2)
+    columns = np.column_stack([a, b]).ravel()
+    values = np.column_stack([-weights, weights]).ravel()
+    difference = sp.csr_matrix((values, (rows, columns)), shape=(m, n))
+    pull = _PULL_TO_GROUND + 10.0 * fidelity**4
+    scale = float(np.sum(wanted * true) / np.sum(true * true)) if m else 1.0
+    normal = (difference.T @ difference + pull * sp.identity(n)).tocsc()
+    right = difference.T @ (vectors * weights[:, None]) + pull * scale * ground
+    return np.asarray(spsolve(normal, right)).reshape(n, 2)
+
+
+def _guarded_move(
+    graph: PlaneGraph, start: NDArray[np.float64], targets: NDArray[np.float64]
+) -> NDArray[np.float64]:
+    """Walk from `start` to `targets`; give way, but never cross, where links come near."""
+    points = np.ascontiguousarray(start)
+    segments = np.ascontiguousarray(graph.segments)
+    if not len(segments):
+        return points
+    # Start at the targets' scale, so that the first steps are not all spent on shrinking.
+    points = points * (np.ptp(targets, axis=0).max() / max(np.ptp(points, axis=0).max(), 1e-9))
+    points += targets.mean(axis=0) - points.mean(axis=0)
+    for _ in range(_STEPS):
+        pull = targets - points
+        push = repulsion(points, segments, _WANTED_CLEARANCE)
+        move = 0.2 * pull + 0.6 * push
+        radii = 0.45 * free_radii(points, segments)
+        length = np.hypot(move[:, 0], move[:, 1])
+        factor = np.minimum(1.0, radii / np.maximum(length, 1e-12))
+        points = points + move * factor[:, None]
+    return points

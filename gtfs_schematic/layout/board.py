@@ -1,0 +1,280 @@
+"""The lattice with its vertices and paths: laying, lifting, rules at vertices, and cost."""
+
+from __future__ import annotations
+
+import math
+
+import numpy as np
+import shapely
+from numpy.typing import NDArray
+
+from gtfs_schematic.layout import router
+from gtfs_schematic.layout.objective import Weights, port_bearing_costs, turn_cost
+from gtfs_schematic.layout.plane import PlaneGraph
+from gtfs_schematic.layout.router import BLOCKED, DX, DY, FREE
+
+_MARGIN_SPACINGS = 5.0
+_NO_GOALS = np.empty(0, dtype=np.int64)
+_FREE_PORTS = np.zeros(8, dtype=np.int64)
+
+
+class Board:
+    """Mutable state of the lattice stages; vertices are 0 … n − 1, piece p has code n + p.
+
+    Coordinates are lattice steps, `unit` of them to a station spacing, y north. A vertex keeps
+    its eight neighbours free for the ports of its own pieces, so vertices stand at least three
+    steps apart and every port can be reached.
+    """
+
+    def __init__(
+        self, graph: PlaneGraph, anchors: NDArray[np.float64], weights: Weights, unit: int
+    ) -> None:
+        self.graph, self.weights = graph, weights
+        self.n = graph.n_vertices
+        self.anchors = anchors - anchors.min(axis=0) + _MARGIN_SPACINGS
+        self.place = np.full(self.n, -1, dtype=np.int64)
+        self.paths: list[NDArray[np.int64] | None] = [None] * len(graph.pieces)
+        self.bearings = self._bearings()
+        self.turns: list[list[tuple[int, int, int]]] = [[] for _ in range(2 * len(graph.pieces))]
+        for v, a, b, count in graph.through:
+            lines = count
+            if graph.station_of[v] is None:
+                lines = max(lines, weights.crossing_bend)
+            lines = min(lines, 5)
+            self.turns[a].append((b, lines, v))
+            self.turns[b].append((a, lines, v))
+        self.position = {
+            end: (v, k) for v, around in enumerate(graph.rotation) for k, end in enumerate(around)
+        }
+        self._set_unit(unit)
+
+    # ---- lattice -------------------------------------------------------------------------
+
+    def _set_unit(self, unit: int) -> None:
+        self.unit = unit
+        extent = self.anchors.max(axis=0) + _MARGIN_SPACINGS
+        self.width, self.height = (int(math.ceil(side * unit)) + 1 for side in extent)
+        size = self.width * self.height
+        self.occupied = np.full(size, FREE, dtype=np.int32)
+        self.diagonals = np.full(size, FREE, dtype=np.int32)
+        self.guard = np.full(size, FREE, dtype=np.int32)
+        self.courses = [self._course(p) for p in range(len(self.graph.pieces))]
+        self.costs = [self._costs(p) for p in range(len(self.graph.pieces))]
+
+    def refine(self) -> None:
+        """Halve the lattice step: between any two paths a free row of nodes opens."""
+        places = [(int(n) % self.width, int(n) // self.width) for n in self.place]
+        paths = [
+            None if path is None else np.column_stack([path % self.width, path // self.width])
+            for path in self.paths
+        ]
+        old_place, self.place = self.place, np.full(self.n, -1, dtype=np.int64)
+        self._set_unit(2 * self.unit)
+        self.paths = [None] * len(paths)
+        for v, (x, y) in enumerate(places):
+            if old_place[v] >= 0:
+                self.put(v, 2 * y * self.width + 2 * x)
+        for p, xy in enumerate(paths):
+            if xy is None:
+                continue
+            fine = np.empty((2 * len(xy) - 1, 2), dtype=np.int64)
+            fine[::2] = 2 * xy
+            fine[1::2] = xy[:-1] + xy[1:]
+            self.lay(p, fine[:, 1] * self.width + fine[:, 0])
+
+    def _course(self, p: int) -> NDArray[np.float64]:
+        points = self.anchors[list(self.graph.pieces[p].nodes)] * self.unit
+        line = shapely.LineString(points).simplify(0.3 * self.unit, preserve_topology=False)
+        return np.array(line.coords)
+
+    def _bearings(self) -> NDArray[np.float64]:
+        """True bearing of every piece end, radians, a spacing or so along its course."""
+        bearings = np.zeros(2 * len(self.graph.pieces))
+        for p, piece in enumerate(self.graph.pieces):
+            points = self.anchors[list(piece.nodes)]
+            for i, run in enumerate((points, points[::-1])):
+                line = shapely.LineString(run)
+                ahead = line.interpolate(min(1.5, line.length))
+                bearings[2 * p + i] = math.atan2(ahead.y - run[0][1], ahead.x - run[0][0])
+        return bearings
+
+    def _costs(self, p: int) -> NDArray[np.int64]:
+        weights = self.weights
+        lines = min(max(1, len(self.graph.pieces[p].lines)), 4)
+        low, high = weights.piece_bends
+        share = 1.0 if self.graph.pieces[p].lines else 0.4
+        return np.array(
+            [
+                round(weights.length * share),
+                round(low * lines * share),
+                round(high * lines * share),
+                weights.near,
+                round(weights.course * share),
+                self.unit,
+            ],
+            dtype=np.int64,
+        )
+
+    # ---- vertices and paths ----------------------------------------------------------------
+
+    def put(self, v: int, node: int) -> None:
+        """Stand vertex `v` on a node."""
+        self.place[v] = node
+        self.occupied[node] = v
+        self._set_guard(node, v)
+
+    def take(self, v: int) -> None:
+        """Take vertex `v` off the lattice."""
+        node = int(self.place[v])
+        self.place[v] = -1
+        self.occupied[node] = FREE
+        self._set_guard(node, FREE)
+
+    def _set_guard(self, node: int, value: int) -> None:
+        for d in range(8):
+            self.guard[node + int(DY[d]) * self.width + int(DX[d])] = value
+
+    def lay(self, p: int, path: NDArray[np.int64]) -> None:
+        """Lay the path of piece `p`, from its first end to its second."""
+        self.paths[p] = path
+        router.mark(path, self.n + p, self.occupied, self.diagonals, self.width)
+
+    def lift(self, p: int) -> NDArray[np.int64]:
+        """Lift the path of piece `p` and give it back."""
+        path = self.paths[p]
+        assert path is not None  # noqa: S101 - callers lift only what is laid
+        router.mark(path, FREE, self.occupied, self.diagonals, self.width)
+        self.paths[p] = None
+        return path
+
+    def port(self, end: int) -> int:
+        """Port through which a laid piece end leaves its vertex; -1 while it is not laid."""
+        path = self.paths[end // 2]
+        if path is None:
+            return -1
+        a, b = (path[0], path[1]) if end % 2 == 0 else (path[-1], path[-2])
+        dx, dy = int(b % self.width - a % self.width), int(b // self.width - a // self.width)
+        return (0, 1, 2, 3, 4, 5, 6, 7)[
+            {(1, 0): 0, (1, 1): 1, (0, 1): 2, (-1, 1): 3, (-1, 0): 4, (-1, -1): 5, (0, -1): 6,
+             (1, -1): 7}[dx, dy]
+        ]  # fmt: skip
+
+    def acceptable(self, node: int) -> bool:
+        """Whether a new vertex may stand on a node: it and all around are free of others."""
+        x, y = node % self.width, node // self.width
+        if not (2 <= x < self.width - 2 and 2 <= y < self.height - 2):
+            return False
+        block = (slice(y - 1, y + 2), slice(x - 1, x + 2))
+        occupied = self.occupied.reshape(self.height, self.width)[block]
+        guard = self.guard.reshape(self.height, self.width)[block]
+        return bool((occupied == FREE).all() and (guard == FREE).all())
+
+    def port_costs(self, end: int) -> NDArray[np.int64]:
+        """Cost of every port for a piece end that is not laid: order, room for others, turns."""
+        v, k = self.position[end]
+        around = self.graph.rotation[v]
+        degree = len(around)
+        costs = port_bearing_costs(float(self.bearings[end]), self.weights)
+        ports = [self.port(other) for other in around]
+        before = after = None
+        for step in range(1, degree):
+            if before is None and ports[(k - step) % degree] >= 0:
+                before = (ports[(k - step) % degree], step)
+            if after is None and ports[(k + step) % degree] >= 0:
+                after = (ports[(k + step) % degree], step)
+        if before is not None and after is not None:
+            gap = (after[0] - before[0] - 1) % 8 + 1
+            for port in range(8):
+                offset = (port - before[0]) % 8
+                if not before[1] <= offset <= gap - after[1]:
+                    costs[port] = BLOCKED
+        for other, lines, _ in self.turns[end]:
+            port = self.port(other)
+            if port >= 0:
+                for mine in range(8):
+                    costs[mine] += turn_cost(mine, port, lines, self.weights)
+        return np.minimum(costs, BLOCKED)
+
+    # ---- routing and cost ---------------------------------------------------------------------
+
+    def window(self, p: int, nodes: list[int], margin: float) -> tuple[int, int, int, int]:
+        """Part of the lattice round a piece's course and `nodes`, `margin` spacings wider."""
+        xs = [*self.courses[p][:, 0], *(n % self.width for n in nodes)]
+        ys = [*self.courses[p][:, 1], *(n // self.width for n in nodes)]
+        wide = margin * self.unit
+        return (
+            max(0, int(min(xs) - wide)),
+            max(0, int(min(ys) - wide)),
+            min(self.width - 1, int(max(xs) + wide)),
+            min(self.height - 1, int(max(ys) + wide)),
+        )
+
+    def route(
+        self, p: int, margin: float, limit: int = int(BLOCKED)
+    ) -> tuple[int, NDArray[np.int64]]:
+        """Find the cheapest path of piece `p` between its placed ends; nothing is laid."""
+        a, b = self.graph.pieces[p].ends
+        source, target = (a, int(self.place[a])), (b, int(self.place[b]))
+        cost, path = router.route(
+            self.occupied, self.diagonals, self.guard, (self.width, self.height),
+            self.window(p, [source[1], target[1]], margin), source, target,
+            self.port_costs(2 * p), self.port_costs(2 * p + 1), _NO_GOALS,
+            self.courses[p], self.costs[p],
+        )  # fmt: skip
+        return (cost, path) if cost < limit else (int(BLOCKED), path[:0])
+
+    def route_to_new(
+        self, p: int, reach: float, margin: float
+    ) -> tuple[int, NDArray[np.int64], int]:
+        """Find the best place near its anchor for the end of piece `p` that has none yet.
+
+        Gives the cost, the path (from the piece's first end) and the vertex.
+        """
+        a, b = self.graph.pieces[p].ends
+        known, new = (a, b) if self.place[a] >= 0 else (b, a)
+        end = 2 * p + (0 if known == a else 1)
+        node = int(self.place[known])
+        x0, y0, x1, y1 = self.window(p, [node], margin)
+        goals = np.full((y1 - y0 + 1, x1 - x0 + 1), BLOCKED, dtype=np.int64)
+        ax, ay = self.anchors[new] * self.unit
+        span = int(math.ceil(reach * self.unit))
+        for y in range(max(y0, int(ay) - span), min(y1, int(ay) + span) + 1):
+            for x in range(max(x0, int(ax) - span), min(x1, int(ax) + span) + 1):
+                if self.acceptable(y * self.width + x):
+                    goals[y - y0, x - x0] = self.anchor_cost(new, y * self.width + x) * 8
+        costs, path = router.route(
+            self.occupied, self.diagonals, self.guard, (self.width, self.height),
+            (x0, y0, x1, y1), (known, node), (-1, -1), self.port_costs(end),
+            port_bearing_costs(float(self.bearings[end ^ 1]), self.weights), goals.ravel(),
+            self.courses[p], self.costs[p],
+        )  # fmt: skip
+        return costs, path if known == a else path[::-1], new
+
+    def anchor_cost(self, v: int, node: int) -> int:
+        """Cost of vertex `v` standing on a node away from its anchor."""
+        dx = node % self.width / self.unit - self.anchors[v, 0]
+        dy = node // self.width / self.unit - self.anchors[v, 1]
+        return round(self.weights.anchor * (dx * dx + dy * dy))
+
+    def cost(self, pieces: list[int], vertices: list[int]) -> int:
+        """Cost of everything that the given pieces and vertices take part in."""
+        total = sum(self.anchor_cost(v, int(self.place[v])) for v in vertices)
+        own = set(pieces)
+        for p in pieces:
+            path = self.paths[p]
+            assert path is not None  # noqa: S101 - asked only of laid pieces
+            total += router.path_cost(
+                path, self.n + p, self.graph.pieces[p].ends, self.occupied,
+                (self.width, self.height), self.courses[p], self.costs[p],
+            )  # fmt: skip
+            for end in (2 * p, 2 * p + 1):
+                port = self.port(end)
+                total += int(port_bearing_costs(float(self.bearings[end]), self.weights)[port])
+                for other, lines, _ in self.turns[end]:
+                    # A turn between two of the pieces is met from both: count it once.
+                    if other // 2 in own and other < end:
+                        continue
+                    there = self.port(other)
+                    if there >= 0:
+                        total += turn_cost(port, there, lines, self.weights)
+        return total

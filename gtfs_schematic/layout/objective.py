@@ -1,0 +1,55 @@
+"""What a good placement costs: the one place for the terms that the lattice stages minimise."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from gtfs_schematic.layout.router import BLOCKED
+
+
+@dataclass(frozen=True, slots=True)
+class Weights:
+    """Prices in thousandths of one station spacing of needless length.
+
+    The terms are those of Nöllenburg and Wolff (2011): bends on lines, relative position (here
+    distance from the true course and anchor), total length. 135 degrees is cheaper than 90 as in
+    Bast, Brosi and Storandt (2020).
+    """
+
+    length: int = 500
+    """Per spacing of drawn length."""
+    bends: tuple[int, int, int, int] = (0, 900, 2200, 6000)
+    """Per line that turns at a vertex by 0, 45, 90, 135 degrees (angle 180, 135, 90, 45)."""
+    piece_bends: tuple[int, int] = (900, 2600)
+    """Per line that turns on a piece between vertices by 45 or 90 degrees."""
+    crossing_bend: int = 2
+    """How many lines a crossing counts for at least: crossings are passed straight."""
+    near: int = 260
+    """Per lattice node next to something else, for a lattice of one step per spacing."""
+    course: int = 260
+    """Per spacing of drawn length at one spacing from the true course."""
+    anchor: int = 120
+    """Per square spacing between a vertex and its anchor."""
+    port: tuple[int, int, int, int, int] = (0, 150, 900, 2500, 4000)
+    """Per piece end leaving at 0, 45, 90, 135, 180 degrees from its true bearing."""
+
+
+def port_bearing_costs(bearing: float, weights: Weights) -> NDArray[np.int64]:
+    """Cost of each of the eight ports for a piece whose true bearing (radians, ccw) is given."""
+    costs = np.empty(8, dtype=np.int64)
+    for port in range(8):
+        turn = abs((port * np.pi / 4 - bearing + np.pi) % (2 * np.pi) - np.pi) / (np.pi / 4)
+        low = min(int(turn), 3)
+        share = turn - low
+        costs[port] = round(weights.port[low] * (1 - share) + weights.port[low + 1] * share)
+    return costs
+
+
+def turn_cost(first: int, second: int, lines: int, weights: Weights) -> int:
+    """Cost of `lines` lines that pass a vertex from one port to another."""
+    between = abs(first - second)
+    between = min(between, 8 - between)
+    return int(BLOCKED) if between == 0 else weights.bends[4 - between] * lines
