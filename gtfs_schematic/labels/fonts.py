@@ -16,7 +16,7 @@ from functools import lru_cache
 from pathlib import Path
 from typing import Any
 
-import fontpkg
+import fontpkg_noto_sans
 import uharfbuzz as hb
 
 FAMILY = "Noto Sans"
@@ -24,6 +24,7 @@ FAMILY = "Noto Sans"
 REGULAR_WEIGHT = 400.0
 BOLD_WEIGHT = 700.0
 
+_VARIABLE_FILE = fontpkg_noto_sans.ROOT / "files" / "NotoSans[wdth,wght].ttf"
 _NEUTRAL_SCRIPTS = frozenset({None, "Zyyy", "Zinh", "Zzzz"})
 
 
@@ -51,8 +52,7 @@ class Metrics:
 @lru_cache(maxsize=2)
 def font_data(*, bold: bool = False) -> bytes:
     """Give the TrueType file of one weight, cut from the variable font in memory."""
-    source = fontpkg.family(FAMILY)
-    face = hb.Face(hb.Blob.from_file_path(str(_upright_file(source))))
+    face = hb.Face(hb.Blob.from_file_path(str(_VARIABLE_FILE)))
     wanted = hb.SubsetInput()
     wanted.keep_everything()
     weight = BOLD_WEIGHT if bold else REGULAR_WEIGHT
@@ -139,12 +139,6 @@ def missing_characters(text: str, *, bold: bool = False) -> tuple[str, ...]:
             if not character.isspace() and not font.get_nominal_glyph(ord(character))
         )
     )
-
-
-def _upright_file(family: Any) -> Path:  # noqa: ANN401 - the library ships no types
-    """Give the file of the upright style of a family."""
-    upright = sorted(file.path for file in family.files if file.style == "normal")
-    return Path(upright[0])
 
 
 @lru_cache(maxsize=1)
