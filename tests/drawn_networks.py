@@ -185,13 +185,13 @@ def _corridors(links: tuple[Link, ...]) -> tuple[Corridor, ...]:
     for start, first in sorted(ends, key=lambda end: onward(end[0], end[1]) is not None):
         if first.id in done:
             continue
-        stations, chain = [start], []
-        link: Link | None = first
-        while link is not None and link.id not in done:
-            done.add(link.id)
-            chain.append(link.id)
-            stations.append(link.end if stations[-1] == link.start else link.start)
-            link = onward(stations[-1], link)
+        stations, chain = [start], list[str]()
+        step: Link | None = first
+        while step is not None and step.id not in done:
+            done.add(step.id)
+            chain.append(step.id)
+            stations.append(step.end if stations[-1] == step.start else step.start)
+            step = onward(stations[-1], step)
         corridors.append(
             Corridor(f"corridor-{chain[0]}", tuple(stations), tuple(chain), first.lines)
         )
@@ -199,7 +199,7 @@ def _corridors(links: tuple[Link, ...]) -> tuple[Corridor, ...]:
 
 
 def star() -> Layout:
-    """Draw three lines on one trunk that part into branches; a fourth crosses; one line branches."""
+    """Draw three lines on one trunk that part; a fourth line crosses; one branches."""
     return drawn(
         Sketch(
             places={
