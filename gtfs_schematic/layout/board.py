@@ -29,7 +29,7 @@ class Board:
     def __init__(
         self, graph: PlaneGraph, anchors: NDArray[np.float64], weights: Weights, unit: int
     ) -> None:
-        self.graph, self.weights = graph, weights
+        self.graph, self.weights, self.unit = graph, weights, unit
         self.n = graph.n_vertices
         self.anchors = anchors - anchors.min(axis=0) + _MARGIN_SPACINGS
         self.place = np.full(self.n, -1, dtype=np.int64)
@@ -46,41 +46,15 @@ class Board:
         self.position = {
             end: (v, k) for v, around in enumerate(graph.rotation) for k, end in enumerate(around)
         }
-        self._set_unit(unit)
-
-    # ---- lattice -------------------------------------------------------------------------
-
-    def _set_unit(self, unit: int) -> None:
-        self.unit = unit
         extent = self.anchors.max(axis=0) + _MARGIN_SPACINGS
         self.width, self.height = (int(math.ceil(side * unit)) + 1 for side in extent)
         size = self.width * self.height
         self.occupied = np.full(size, FREE, dtype=np.int32)
         self.diagonals = np.full(size, FREE, dtype=np.int32)
         self.guard = np.full(size, FREE, dtype=np.int32)
+        self.claims = np.zeros(size, dtype=np.int32)
         self.courses = [self._course(p) for p in range(len(self.graph.pieces))]
         self.costs = [self._costs(p) for p in range(len(self.graph.pieces))]
-
-    def refine(self) -> None:
-        """Halve the lattice step: between any two paths a free row of nodes opens."""
-        places = [(int(n) % self.width, int(n) // self.width) for n in self.place]
-        paths = [
-            None if path is None else np.column_stack([path % self.width, path // self.width])
-            for path in self.paths
-        ]
-        old_place, self.place = self.place, np.full(self.n, -1, dtype=np.int64)
-        self._set_unit(2 * self.unit)
-        self.paths = [None] * len(paths)
-        for v, (x, y) in enumerate(places):
-            if old_place[v] >= 0:
-                self.put(v, 2 * y * self.width + 2 * x)
-        for p, xy in enumerate(paths):
-            if xy is None:
-                continue
-            fine = np.empty((2 * len(xy) - 1, 2), dtype=np.int64)
-            fine[::2] = 2 * xy
-            fine[1::2] = xy[:-1] + xy[1:]
-            self.lay(p, fine[:, 1] * self.width + fine[:, 0])
 
     def _course(self, p: int) -> NDArray[np.float64]:
         points = self.anchors[list(self.graph.pieces[p].nodes)] * self.unit
@@ -111,6 +85,7 @@ class Board:
                 weights.near,
                 round(weights.course * share),
                 self.unit,
+                weights.claim,
             ],
             dtype=np.int64,
         )
@@ -197,6 +172,10 @@ class Board:
 
     # ---- routing and cost ---------------------------------------------------------------------
 
+    def xy(self, nodes: NDArray[np.int64]) -> NDArray[np.float64]:
+        """Lattice coordinates of nodes, shape (n, 2)."""
+        return np.column_stack([nodes % self.width, nodes // self.width]).astype(np.float64)
+
     def window(self, p: int, nodes: list[int], margin: float) -> tuple[int, int, int, int]:
         """Part of the lattice round a piece's course and `nodes`, `margin` spacings wider."""
         xs = [*self.courses[p][:, 0], *(n % self.width for n in nodes)]
@@ -216,39 +195,12 @@ class Board:
         a, b = self.graph.pieces[p].ends
         source, target = (a, int(self.place[a])), (b, int(self.place[b]))
         cost, path = router.route(
-            self.occupied, self.diagonals, self.guard, (self.width, self.height),
+            self.occupied, self.diagonals, self.guard, self.claims, (self.width, self.height),
             self.window(p, [source[1], target[1]], margin), source, target,
             self.port_costs(2 * p), self.port_costs(2 * p + 1), _NO_GOALS,
             self.courses[p], self.costs[p],
         )  # fmt: skip
         return (cost, path) if cost < limit else (int(BLOCKED), path[:0])
-
-    def route_to_new(
-        self, p: int, reach: float, margin: float
-    ) -> tuple[int, NDArray[np.int64], int]:
-        """Find the best place near its anchor for the end of piece `p` that has none yet.
-
-        Gives the cost, the path (from the piece's first end) and the vertex.
-        """
-        a, b = self.graph.pieces[p].ends
-        known, new = (a, b) if self.place[a] >= 0 else (b, a)
-        end = 2 * p + (0 if known == a else 1)
-        node = int(self.place[known])
-        x0, y0, x1, y1 = self.window(p, [node], margin)
-        goals = np.full((y1 - y0 + 1, x1 - x0 + 1), BLOCKED, dtype=np.int64)
-        ax, ay = self.anchors[new] * self.unit
-        span = int(math.ceil(reach * self.unit))
-        for y in range(max(y0, int(ay) - span), min(y1, int(ay) + span) + 1):
-            for x in range(max(x0, int(ax) - span), min(x1, int(ax) + span) + 1):
-                if self.acceptable(y * self.width + x):
-                    goals[y - y0, x - x0] = self.anchor_cost(new, y * self.width + x) * 8
-        costs, path = router.route(
-            self.occupied, self.diagonals, self.guard, (self.width, self.height),
-            (x0, y0, x1, y1), (known, node), (-1, -1), self.port_costs(end),
-            port_bearing_costs(float(self.bearings[end ^ 1]), self.weights), goals.ravel(),
-            self.courses[p], self.costs[p],
-        )  # fmt: skip
-        return costs, path if known == a else path[::-1], new
 
     def anchor_cost(self, v: int, node: int) -> int:
         """Cost of vertex `v` standing on a node away from its anchor."""
@@ -264,7 +216,7 @@ class Board:
             path = self.paths[p]
             assert path is not None  # noqa: S101 - asked only of laid pieces
             total += router.path_cost(
-                path, self.n + p, self.graph.pieces[p].ends, self.occupied,
+                path, self.n + p, self.graph.pieces[p].ends, self.occupied, self.claims,
                 (self.width, self.height), self.courses[p], self.costs[p],
             )  # fmt: skip
             for end in (2 * p, 2 * p + 1):

@@ -1,102 +1,111 @@
-"""First octilinear drawing: the plane graph grows onto the lattice, piece by piece.
-
-Growing keeps what is drawn connected and in the ground's cyclic order, so the drawing always has
-the ground's topology; where a piece finds no way, the lattice is halved and it does.
-"""
+"""First octilinear drawing: every vertex on the lattice, every piece along its true course."""
 
 from __future__ import annotations
 
 import numpy as np
+import shapely
+from numpy.typing import NDArray
 
 from gtfs_schematic.errors import LayoutError
+from gtfs_schematic.layout import router
 from gtfs_schematic.layout.board import Board
+from gtfs_schematic.layout.plane import PlaneGraph
 from gtfs_schematic.layout.router import BLOCKED
-from gtfs_schematic.progress import Progress
 
-_MARGINS = (2.0, 6.0, 1e6)
-_REACH = 1.6
-_MOST_NODES = 6_000_000
+_MARGINS = (1.0, 3.0, 8.0)
+_CLAIM_STEPS = 0.75
 
 
-def embed(board: Board, progress: Progress) -> None:
-    """Put every vertex and piece of the board's graph onto its lattice.
+def check_degrees(graph: PlaneGraph) -> None:
+    """Refuse a vertex with more pieces than there are directions.
 
     Raises
     ------
     LayoutError
-        If a vertex has more pieces than there are directions, or the lattice grew too fine.
+        Naming the station.
     """
-    pieces = board.graph.pieces
-    for v, around in enumerate(board.graph.rotation):
+    for v, around in enumerate(graph.rotation):
         if len(around) > 8:
             raise LayoutError(
-                f"{board.graph.station_of[v]}: {len(around)} corridors meet at one station, more "
-                "than the eight directions of the diagram. Leave out a line or split the station."
+                f"{graph.station_of[v]}: {len(around)} corridors meet at one station, more than "
+                "the eight directions of the diagram. Leave out a line or split the station."
             )
-    progress.phase("placing", len(pieces))
-    waiting = set(range(len(pieces)))
-    while True:
-        ready = [p for p in waiting if any(board.place[v] >= 0 for v in pieces[p].ends)]
-        if ready:
-            p = min(ready, key=lambda p: _urgency(board, p))
-            _insert(board, p)
-            waiting.discard(p)
-            progress.step()
-            continue
-        seeds = [v for v in range(board.n) if board.place[v] < 0]
-        if not seeds:
-            return
-        _seed(board, max(seeds, key=lambda v: (_weight(board, v), -v)))
 
 
-def _weight(board: Board, v: int) -> int:
-    return sum(len(board.graph.pieces[end // 2].lines) for end in board.graph.rotation[v])
+def embed(board: Board) -> int | None:
+    """Stand every vertex near its anchor and lay every piece in the homotopy of its course.
+
+    Gives None when done, else the piece that found no way: a finer lattice will have one, since
+    in the limit a staircase follows any course.
+    """
+    if not _stand(board):
+        return 0
+    courses = [_true_course(board, p) for p in range(len(board.paths))]
+    claims = [_claimed(board, course) for course in courses]
+    for nodes in claims:
+        board.claims[nodes] += 1
+    for p in sorted(range(len(board.paths)), key=lambda p: _freedom(board, p)):
+        board.claims[claims[p]] -= 1
+        if not _insert(board, p, courses[p]):
+            return p
+    return None
 
 
-def _urgency(board: Board, p: int) -> tuple[int, int, float, int]:
-    """Pieces that close a ring first, then busy ones, then short ones, then by number."""
+def _freedom(board: Board, p: int) -> tuple[float, int, int]:
     piece = board.graph.pieces[p]
-    open_ends = sum(board.place[v] < 0 for v in piece.ends)
-    return (open_ends, -min(len(piece.lines), 3), piece.spans, p)
+    return (round(min(piece.spans, 6.0)), -len(piece.lines), p)
 
 
-def _seed(board: Board, v: int) -> None:
-    """Stand the first vertex of a component on the acceptable node nearest to its anchor."""
-    x, y = board.anchors[v] * board.unit
-    nodes = np.arange(board.width * board.height)
-    away = (nodes % board.width - x) ** 2 + (nodes // board.width - y) ** 2
-    for node in np.argsort(away, kind="stable"):
-        if board.acceptable(int(node)):
-            board.put(v, int(node))
-            return
-    raise LayoutError("There is no room for all parts of the network: the lattice is full.")
-
-
-def _insert(board: Board, p: int) -> None:
-    """Lay piece `p`, refining the lattice until there is a way."""
-    while True:
-        if all(board.place[v] >= 0 for v in board.graph.pieces[p].ends):
-            for margin in _MARGINS:
-                cost, path = board.route(p, margin)
-                if cost < BLOCKED and _simple(path):
-                    board.lay(p, path)
-                    return
+def _stand(board: Board) -> bool:
+    """Stand each vertex on the nearest acceptable node, busiest first."""
+    around = board.graph.rotation
+    for v in sorted(range(board.n), key=lambda v: (-len(around[v]), v)):
+        x, y = board.anchors[v] * board.unit
+        near = [
+            (i, j)
+            for i in range(round(x) - 3, round(x) + 4)
+            for j in range(round(y) - 3, round(y) + 4)
+        ]
+        near.sort(key=lambda ij: ((ij[0] - x) ** 2 + (ij[1] - y) ** 2, ij))
+        for i, j in near:
+            if board.acceptable(j * board.width + i):
+                board.put(v, j * board.width + i)
+                break
         else:
-            for factor, margin in zip((1.0, 2.0, 6.0), _MARGINS, strict=True):
-                cost, path, new = board.route_to_new(p, _REACH * factor, margin)
-                if cost < BLOCKED and _simple(path):
-                    a, _ = board.graph.pieces[p].ends
-                    board.put(new, int(path[0] if new == a else path[-1]))
-                    board.lay(p, path)
-                    return
-        if 4 * board.width * board.height > _MOST_NODES:
-            names = [board.graph.station_of[v] or "a crossing" for v in board.graph.pieces[p].ends]
-            raise LayoutError(
-                f"Between {names[0]} and {names[1]} the network is too dense to be drawn without "
-                "new crossings. Draw fewer lines or modes at once."
-            )
-        board.refine()
+            return False
+    return True
 
 
-def _simple(path: np.ndarray) -> bool:
-    return len(np.unique(path)) == len(path) and len(path) >= 2
+def _true_course(board: Board, p: int) -> NDArray[np.float64]:
+    """Course of a piece in lattice coordinates, its ends where the vertices stand."""
+    piece = board.graph.pieces[p]
+    course = board.anchors[list(piece.nodes)] * board.unit
+    ends = board.xy(board.place[list(piece.ends)])
+    course[0], course[-1] = ends
+    return course
+
+
+def _claimed(board: Board, course: NDArray[np.float64]) -> NDArray[np.int64]:
+    """Nodes that a course passes within a step, but for those near its ends."""
+    line = shapely.LineString(course)
+    x0, y0, x1, y1 = (int(side) for side in line.bounds)
+    x, y = np.meshgrid(np.arange(x0 - 1, x1 + 3), np.arange(y0 - 1, y1 + 3))
+    x, y = x.ravel(), y.ravel()
+    near = shapely.dwithin(line, shapely.points(x, y), _CLAIM_STEPS)
+    for end in (course[0], course[-1]):
+        near &= np.maximum(abs(x - end[0]), abs(y - end[1])) > 1.5
+    return np.asarray(y[near] * board.width + x[near])
+
+
+def _insert(board: Board, p: int, course: NDArray[np.float64]) -> bool:
+    """Lay piece `p` so that no vertex lies between its path and its course."""
+    vertices = board.xy(board.place)
+    for margin in _MARGINS:
+        cost, path = board.route(p, margin)
+        if cost >= BLOCKED or len(np.unique(path)) != len(path):
+            continue
+        ring = np.concatenate([board.xy(path), course[::-1]])
+        if not router.encloses(ring, vertices):
+            board.lay(p, path)
+            return True
+    return False

@@ -116,10 +116,10 @@ def _sweeps_over(
     board: Board, changes: list[tuple[int, np.ndarray, np.ndarray]], block: list[int]
 ) -> bool:
     """Say whether a change would carry a path over a vertex that stays: topology lost."""
-    stay = np.array([n for v, n in enumerate(board.place) if n >= 0 and v not in block])
+    stay = board.xy(np.array([n for v, n in enumerate(board.place) if n >= 0 and v not in block]))
     for _, old, new in changes:
-        ring = np.concatenate([old, new[::-1]])
-        if router.encloses(ring, stay, board.width):
+        ring = board.xy(np.concatenate([old, new[::-1]]))
+        if router.encloses(ring, stay):
             return True
     return False
 

@@ -31,6 +31,8 @@ class Weights:
     """Per lattice node next to something else, for a lattice of one step per spacing."""
     course: int = 260
     """Per spacing of drawn length at one spacing from the true course."""
+    claim: int = 4000
+    """Per lattice step onto the course of a piece that is not laid yet."""
     anchor: int = 120
     """Per square spacing between a vertex and its anchor."""
     port: tuple[int, int, int, int, int] = (0, 150, 900, 2500, 4000)

@@ -34,8 +34,13 @@ def planarise(network: Network) -> PlaneGraph:
     edges = [(index[a], index[b], owner) for a, b, owner, _ in _owners(network)]
     cuts, extra = _crossings(points, edges)
     points = np.vstack([points, extra]) if len(extra) else points
-    kept = _kept_stations(network, chains)
-    pieces_raw = _split_chains(network, chains, kept, cuts, index)
+    kept = {end for chain in chains for end in (chain.station_ids[0], chain.station_ids[-1])}
+    while True:
+        pieces_raw = _split_chains(network, chains, kept, cuts, index)
+        breakers = _loop_breakers(pieces_raw) - kept
+        if not breakers:
+            break
+        kept |= breakers
     return _assemble(network, points, ids, kept, len(extra), pieces_raw)
 
 
@@ -50,9 +55,7 @@ def _chains(network: Network) -> list[Corridor]:
     return [*network.corridors, *walks]
 
 
-def _general_position(
-    points: NDArray[np.float64], links: NDArray[np.int64]
-) -> NDArray[np.float64]:
+def _general_position(points: NDArray[np.float64], links: NDArray[np.int64]) -> NDArray[np.float64]:
     """Move stations by a few metres so that none lies on another or on a foreign link.
 
     Without this a touch would be neither a crossing nor its absence. The golden angle gives each
@@ -106,22 +109,21 @@ def _crossings(
     return cuts, np.array(extra).reshape(-1, 2)
 
 
-def _kept_stations(network: Network, chains: list[Corridor]) -> set[str]:
-    """Stations that stay vertices: ends of chains, and breakers of loops and double corridors."""
-    kept = {end for chain in chains for end in (chain.station_ids[0], chain.station_ids[-1])}
-    seen: set[frozenset[str]] = set()
-    for chain in sorted(chains, key=lambda c: (len(c.station_ids), c.id)):
-        inner = chain.station_ids[1:-1]
-        ends = frozenset((chain.station_ids[0], chain.station_ids[-1]))
-        if len(ends) == 1 and inner:
-            kept.update((inner[len(inner) // 3], inner[2 * len(inner) // 3]))
-        elif ends in seen and inner:
-            kept.add(inner[len(inner) // 2])
-        seen.add(ends)
-    return kept
-
-
 _RawPiece = tuple[tuple[int, ...], tuple[Part, ...], tuple[str, ...], tuple[str, ...]]
+
+
+def _loop_breakers(pieces: list[_RawPiece]) -> set[str]:
+    """Stations to keep as vertices: two on a piece that is a loop, one on a doubled piece."""
+    breakers: set[str] = set()
+    seen: set[frozenset[int]] = set()
+    for nodes, _, stations, _ in sorted(pieces, key=lambda piece: (len(piece[2]), piece[0])):
+        ends = frozenset((nodes[0], nodes[-1]))
+        if len(ends) == 1 and stations:
+            breakers.update((stations[len(stations) // 3], stations[2 * len(stations) // 3]))
+        elif ends in seen and stations:
+            breakers.add(stations[len(stations) // 2])
+        seen.add(ends)
+    return breakers
 
 
 def _split_chains(

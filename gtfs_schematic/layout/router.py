@@ -21,10 +21,10 @@ DX = np.array([1, 1, 0, -1, -1, -1, 0, 1], dtype=np.int64)
 DY = np.array([0, 1, 1, 1, 0, -1, -1, -1], dtype=np.int64)
 """Steps of the eight ports, 0 east, counter-clockwise with y north."""
 
-HOP, BEND_135, BEND_90, NEAR, COURSE, UNIT = range(6)
+HOP, BEND_135, BEND_90, NEAR, COURSE, UNIT, CLAIM = range(7)
 """Places of the parameters in the `costs` array: per spacing of length; per bend; per node next
 to something else; per spacing of length and spacing of distance from the true course; lattice
-steps in a spacing."""
+steps in a spacing; per step onto the course of a piece that is not laid yet."""
 
 
 @njit(cache=True)
@@ -50,6 +50,7 @@ def _step_cost(
     width: int,
     height: int,
     codes: tuple[int, int, int],
+    claims: NDArray[np.int32],
     course: NDArray[np.float64],
     costs: NDArray[np.int64],
 ) -> int:
@@ -65,7 +66,8 @@ def _step_cost(
                 crowd += 1
     away = _course_distance(float(x), float(y), course) / unit
     cost = (costs[0] + costs[4] * min(away, 4.0) * (1.0 + 0.5 * min(away, 4.0))) * length / unit
-    return int(round(cost + costs[3] * min(crowd, 3) / unit))
+    cost += costs[3] * min(crowd, 3) / unit + costs[6] * claims[y * width + x]
+    return int(round(cost))
 
 
 @njit(cache=True)
@@ -73,6 +75,7 @@ def route(
     occupied: NDArray[np.int32],
     diagonals: NDArray[np.int32],
     guard: NDArray[np.int32],
+    claims: NDArray[np.int32],
     shape: tuple[int, int],
     window: tuple[int, int, int, int],
     source: tuple[int, int],
@@ -90,6 +93,8 @@ def route(
     occupied, diagonals, guard
         Per node: the code of what stands there; the path whose diagonal crosses the cell above
         right of it; the vertex whose eight neighbours it is among. -1 where nothing.
+    claims
+        Per node the count of courses of other pieces, not laid yet, that pass it.
     shape, window
         (width, height) of the lattice; (x0, y0, x1, y1) that the path may use, inclusive.
     source, target
@@ -135,7 +140,7 @@ def route(
         if d % 2 == 1 and diagonals[min(y, sy) * width + min(x, sx)] != -1:
             continue
         cost = source_ports[d] + _step_cost(
-            x, y, d % 2, occupied, width, height, codes, course, costs
+            x, y, d % 2, occupied, width, height, codes, claims, course, costs
         )
         state = ((y - y0) * w + (x - x0)) * 8 + d
         best[state] = cost
@@ -199,7 +204,7 @@ def route(
                 # The cost of a node is asked for up to eight times: keep both kinds of step.
                 if steps[spot] < 0:
                     steps[spot] = _step_cost(
-                        i, j, 0, occupied, width, height, codes, course, costs
+                        i, j, 0, occupied, width, height, codes, claims, course, costs
                     )
                 fresh += steps[spot] if e % 2 == 0 else (steps[spot] * 181) // 128
             onward = spot * 8 + e
@@ -234,6 +239,7 @@ def path_cost(
     code: int,
     ends: tuple[int, int],
     occupied: NDArray[np.int32],
+    claims: NDArray[np.int32],
     shape: tuple[int, int],
     course: NDArray[np.float64],
     costs: NDArray[np.int64],
@@ -251,7 +257,16 @@ def path_cost(
                 d = e
         if k < path.shape[0] - 1:
             total += _step_cost(
-                x, y, d % 2, occupied, width, height, (code, ends[0], ends[1]), course, costs
+                x,
+                y,
+                d % 2,
+                occupied,
+                width,
+                height,
+                (code, ends[0], ends[1]),
+                claims,
+                course,
+                costs,
             )
         else:
             total += int(round(costs[0] / costs[5] * (1.4142135623730951 if d % 2 else 1.0)))
@@ -284,22 +299,22 @@ def mark(
 
 
 @njit(cache=True)
-def encloses(ring: NDArray[np.int64], nodes: NDArray[np.int64], width: int) -> bool:
-    """Say whether any of `nodes` lies strictly inside the closed lattice polygon `ring`.
+def encloses(ring: NDArray[np.float64], points: NDArray[np.float64]) -> bool:
+    """Say whether any of `points`, shape (n, 2), lies strictly inside the closed polygon `ring`.
 
-    Even-odd rule; nodes on the ring itself count as outside.
+    Even-odd rule; a point that is a corner of the ring counts as outside.
     """
     n = ring.shape[0]
-    for k in range(nodes.shape[0]):
-        px, py = nodes[k] % width, nodes[k] // width
+    for k in range(points.shape[0]):
+        px, py = points[k, 0], points[k, 1]
         inside = False
         on_ring = False
         for i in range(n):
-            a, b = ring[i], ring[(i + 1) % n]
-            if a == nodes[k]:
+            j = i + 1 if i + 1 < n else 0
+            ax, ay, bx, by = ring[i, 0], ring[i, 1], ring[j, 0], ring[j, 1]
+            if ax == px and ay == py:
                 on_ring = True
                 break
-            ax, ay, bx, by = a % width, a // width, b % width, b // width
             if (ay > py) != (by > py) and px < (bx - ax) * (py - ay) / (by - ay) + ax:
                 inside = not inside
         if inside and not on_ring:

@@ -11,6 +11,7 @@ from scipy.optimize import linprog
 from gtfs_schematic.errors import InternalFaultError
 
 _ROUNDS = 3
+_MOST_REPAIRS = 30
 _POSITION_WEIGHT = 0.02
 
 
@@ -42,11 +43,47 @@ def spread(
     -----
     A direction that separates a point from a segment now stays a linear constraint, so planarity
     needs no whole-number variables; a larger copy of the drawing meets all of them, so there
-    always is a solution. Each round takes fresh directions from the new drawing.
+    always is a solution. Only near pairs are constrained at first; pairs that a solution brings
+    too near are added until none is left. Each round takes fresh directions from the new drawing.
     """
     for _ in range(_ROUNDS):
-        points = _solve(points, segments, wanted, clearance)
+        pairs = _near_pairs(points, segments, 2.5 * clearance)
+        for _ in range(_MOST_REPAIRS):
+            moved = _solve(points, segments, wanted, clearance, pairs)
+            fresh = _violated(moved, segments, 0.98 * clearance) - pairs
+            if not fresh:
+                break
+            pairs |= fresh
+        else:
+            raise InternalFaultError("Opening the dense places found no end.")
+        points = moved
     return points
+
+
+_Pairs = set[tuple[int, int]]
+"""(point, segment) pairs of which the point is no end of the segment."""
+
+
+def _near_pairs(
+    points: NDArray[np.float64], segments: NDArray[np.int64], distance: float
+) -> _Pairs:
+    lines = shapely.linestrings(points[segments])
+    i, k = shapely.STRtree(lines).query(
+        shapely.points(points), predicate="dwithin", distance=distance
+    )
+    foreign = (segments[k, 0] != i) & (segments[k, 1] != i)
+    return set(zip(i[foreign].tolist(), k[foreign].tolist(), strict=True))
+
+
+def _violated(points: NDArray[np.float64], segments: NDArray[np.int64], clearance: float) -> _Pairs:
+    """Pairs that are too near, and all pairs of two segments that cross."""
+    pairs = _near_pairs(points, segments, clearance)
+    lines = shapely.linestrings(points[segments])
+    for j, k in zip(*shapely.STRtree(lines).query(lines, predicate="crosses"), strict=True):
+        for i in segments[j]:
+            if i not in segments[k]:
+                pairs.add((int(i), int(k)))
+    return pairs
 
 
 def _solve(
@@ -54,9 +91,10 @@ def _solve(
     segments: NDArray[np.int64],
     wanted: NDArray[np.float64],
     clearance: float,
+    pairs: _Pairs,
 ) -> NDArray[np.float64]:
     n, m = len(points), len(segments)
-    rows, columns, values, right = _separators(points, segments, clearance, 2.5 * clearance)
+    rows, columns, values, right = _separators(points, segments, clearance, pairs)
     separation = sp.csr_matrix((values, (rows, columns)), shape=(len(right), 2 * n))
     k = np.arange(m)
     difference = sp.csr_matrix(
@@ -91,16 +129,10 @@ def _solve(
 
 
 def _separators(
-    points: NDArray[np.float64], segments: NDArray[np.int64], clearance: float, near: float
+    points: NDArray[np.float64], segments: NDArray[np.int64], clearance: float, pairs: _Pairs
 ) -> tuple[NDArray[np.int64], NDArray[np.int64], NDArray[np.float64], NDArray[np.float64]]:
-    """Rows n · (p − end) ≥ clearance for both ends of every segment near a foreign point."""
-    lines = shapely.linestrings(points[segments])
-    dots = shapely.points(points)
-    i, k = shapely.STRtree(lines).query(dots, predicate="dwithin", distance=near)
-    foreign = (segments[k, 0] != i) & (segments[k, 1] != i)
-    i, k = i[foreign], k[foreign]
-    order = np.lexsort((k, i))
-    i, k = i[order], k[order]
+    """Rows n · (p − end) ≥ clearance for both ends of the segment of every pair."""
+    i, k = np.array(sorted(pairs), dtype=np.int64).reshape(-1, 2).T
     a, b = points[segments[k, 0]], points[segments[k, 1]]
     along = b - a
     square = np.maximum((along**2).sum(axis=1), 1e-18)
