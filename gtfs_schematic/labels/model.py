@@ -12,6 +12,10 @@ from gtfs_schematic.bundles.model import BundledLayout
 from gtfs_schematic.geometry import Point
 
 
+Side = Literal["E", "NE", "N", "NW", "W", "SW", "S", "SE"]
+"""Where a label lies, as seen from its marker."""
+
+
 class LabelSettings(BaseModel):
     """How station names are set."""
 
@@ -29,6 +33,10 @@ class LabelSettings(BaseModel):
     """Outer radius of a marker round the points it covers, millimetres."""
     interchange_radius_mm: float = Field(default=1.9, gt=0.0)
     """The same for interchanges and termini."""
+    line_badges: bool = True
+    """Whether a line's name stands in a small badge at its termini's names."""
+    sides: dict[str, Side] = Field(default_factory=dict)
+    """Per station id the side that a person asks for; kept wherever it is free."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -45,6 +53,25 @@ class TextLine:
 
 
 @dataclass(frozen=True, slots=True)
+class Badge:
+    """A line's name on its colour, beside a terminus's name: a box with rounded corners.
+
+    All in millimetres before rotation about the label's pivot: `x_mm` and `y_mm` are the box's
+    upper left corner, `text_x_mm` and `text_y_mm` the start of the baseline; the text is bold.
+    """
+
+    line_id: str
+    text: str
+    x_mm: float
+    y_mm: float
+    width_mm: float
+    height_mm: float
+    text_x_mm: float
+    text_y_mm: float
+    size_mm: float
+
+
+@dataclass(frozen=True, slots=True)
 class Label:
     """A placed station name; its lines are rotated by `angle_deg` (clockwise) about the pivot."""
 
@@ -52,10 +79,12 @@ class Label:
     bold: bool
     pivot_mm: Point
     angle_deg: float
-    side: Literal["E", "NE", "N", "NW", "W", "SW", "S", "SE"]
+    side: Side
     lines: tuple[TextLine, ...]
     outline_mm: tuple[Point, ...]
-    """The four corners of the box that the text fills, after rotation."""
+    """The four corners of the box that text and badges fill, after rotation."""
+    badges: tuple[Badge, ...] = ()
+    """Badges of the lines that end here, sorted by line id; rotated with the text."""
 
 
 @dataclass(frozen=True, slots=True)
