@@ -34,6 +34,8 @@ class EditionStation:
     kind: StationKind
     lines: tuple[str, ...]
     group: str
+    label_side: str = ""
+    """Compass side of the marker on which the name stands; empty if it found no place."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -44,6 +46,17 @@ class EditionLink:
     start: str
     end: str
     lines: tuple[str, ...]
+    path_mm: tuple[Point, ...]
+
+
+@dataclass(frozen=True, slots=True)
+class EditionWalk:
+    """A drawn walk between two stations of one group."""
+
+    id: str
+    start: str
+    end: str
+    time_s: int | None
     path_mm: tuple[Point, ...]
 
 
@@ -73,3 +86,4 @@ class Edition:
     left_out: tuple[tuple[str, str, str], ...] = ()
     """(kind, id, reason) of everything in the feed that the diagram does not show."""
     findings: tuple[str, ...] = ()
+    walks: tuple[EditionWalk, ...] = ()

@@ -170,7 +170,7 @@ def test_a_map_to_scale_has_no_drift():
     assert max(s.displacement_m for s in report.stations) < 1.0
     assert max(abs(k.bearing_change_deg) for k in report.links) < 0.05
     assert all(k.length_ratio == pytest.approx(1.0, abs=1e-3) for k in report.links)
-    assert report.diagonal_m == pytest.approx(math.hypot(2100, 1400), rel=1e-4)
+    assert report.diagonal_m == pytest.approx(math.hypot(2100, 1400), rel=1e-3)
     assert report.summary.distance_correlation == pytest.approx(1.0, abs=1e-9)
     assert faults(report) == ()
 

@@ -1,0 +1,60 @@
+"""Fault an edition: ids that repeat or lead nowhere, places off the sheet, broken paths."""
+
+from __future__ import annotations
+
+import math
+from collections import Counter
+from collections.abc import Iterable
+
+from gtfs_schematic.edition.model import Edition, EditionLink, EditionWalk
+
+_NEAR_MM = 0.01
+
+
+def faults(edition: Edition) -> tuple[str, ...]:
+    """List what contradicts itself in an edition; empty if nothing does."""
+    stations = {station.id: station for station in edition.stations}
+    lines = {line.id for line in edition.lines}
+    paths: tuple[EditionLink | EditionWalk, ...] = (*edition.links, *edition.walks)
+    found = [
+        *_repeated("station", (station.id for station in edition.stations)),
+        *_repeated("link", (joined.id for joined in paths)),
+        *_repeated("line", (line.id for line in edition.lines)),
+    ]
+    for station in edition.stations:
+        if not (0 <= station.x_mm <= edition.width_mm and 0 <= station.y_mm <= edition.height_mm):
+            found.append(f"station {station.id} lies off the sheet")
+        if station.group not in stations:
+            found.append(f"station {station.id}: group {station.group} is no station")
+        found += _unknown(f"station {station.id}", "line", station.lines, lines)
+    for link in edition.links:
+        found += _unknown(f"link {link.id}", "line", link.lines, lines)
+        found += _repeated(f"link {link.id}: line", link.lines)
+    for line in edition.lines:
+        for itinerary in line.itineraries:
+            found += _unknown(f"line {line.id}", "station", itinerary, stations)
+    for joined in paths:
+        missing = _unknown(f"link {joined.id}", "station", (joined.start, joined.end), stations)
+        found += missing
+        if not missing:
+            ends = [(stations[end].x_mm, stations[end].y_mm) for end in (joined.start, joined.end)]
+            found += _loose(joined, ends)
+    return tuple(found)
+
+
+def _loose(joined: EditionLink | EditionWalk, ends: list[tuple[float, float]]) -> list[str]:
+    """Fault a path that does not begin and end at its stations."""
+    if len(joined.path_mm) < 2:
+        return [f"link {joined.id} has no path"]
+    pairs = zip((joined.path_mm[0], joined.path_mm[-1]), ends, strict=True)
+    if any(math.dist(point, end) > _NEAR_MM for point, end in pairs):
+        return [f"link {joined.id}: its path does not join its stations"]
+    return []
+
+
+def _repeated(kind: str, ids: Iterable[str]) -> list[str]:
+    return [f"{kind} {key} stands {n} times" for key, n in sorted(Counter(ids).items()) if n > 1]
+
+
+def _unknown(where: str, kind: str, ids: Iterable[str], known: Iterable[str]) -> list[str]:
+    return [f"{where}: {kind} {key} is unknown" for key in sorted(set(ids).difference(known))]

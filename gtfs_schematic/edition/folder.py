@@ -1,0 +1,155 @@
+"""Write an edition's files into one folder, all or nothing, and load an edition from disk."""
+
+from __future__ import annotations
+
+import contextlib
+import os
+import shutil
+import tempfile
+from collections.abc import Mapping
+from pathlib import Path
+
+from gtfs_schematic.edition.model import Edition
+from gtfs_schematic.edition.save import from_json
+from gtfs_schematic.errors import EditionError, SchematicError, UsageError
+
+EDITION_FILE = "edition.json"
+
+FILES = (
+    "diagram.svg",
+    "diagram.pdf",
+    EDITION_FILE,
+    "drift.json",
+    "drift.csv",
+    "drift.html",
+)
+"""What an edition's folder holds, and nothing else."""
+
+
+def write_folder(folder: Path, files: Mapping[str, bytes], *, overwrite: bool = False) -> None:
+    """Write files into a folder that then holds just them.
+
+    1. Everything is first written into a hidden folder beside the wanted one.
+    2. A finished folder takes the place of the old one by renaming; a failure leaves the old.
+
+    Parameters
+    ----------
+    folder
+        Where to; folders above it are made.
+    files
+        Contents by file name.
+    overwrite
+        Whether an edition that stands there may be replaced. Anything else never is.
+
+    Raises
+    ------
+    UsageError
+        If the folder must not be replaced.
+    EditionError
+        If the disk refuses.
+    """
+    check_target(folder, overwrite=overwrite)
+    target = Path(os.path.realpath(folder))
+    try:
+        target.parent.mkdir(parents=True, exist_ok=True)
+        fresh = Path(tempfile.mkdtemp(prefix=f".{target.name}-", dir=target.parent))
+        try:
+            for name in sorted(files):
+                (fresh / name).write_bytes(files[name])
+            # A folder from mkdtemp is for its owner alone; give it the usual rights.
+            fresh.chmod(0o777 & ~_umask())
+            _replace(fresh, target)
+        finally:
+            shutil.rmtree(fresh, ignore_errors=True)
+    except OSError as error:
+        raise EditionError(
+            f"{folder}: cannot write the edition ({error.strerror or error}). "
+            "Choose another folder with --out, or make room."
+        ) from error
+
+
+def check_target(folder: Path, *, overwrite: bool) -> None:
+    """Refuse a folder that must not be replaced, before any work is done.
+
+    Raises
+    ------
+    UsageError
+        If it is a file, or a folder that is not empty and not an edition, or an edition that
+        may not be overwritten.
+    """
+    if not folder.exists():
+        return
+    if not folder.is_dir():
+        raise UsageError(f"{folder}: a file stands there. Choose another folder with --out.")
+    names = sorted(entry.name for entry in folder.iterdir())
+    if not names:
+        return
+    strange = [name for name in names if name not in FILES]
+    if strange or EDITION_FILE not in names or not _is_edition(folder):
+        found = f"it holds {strange[0]!r}" if strange else f"it holds no readable {EDITION_FILE}"
+        raise UsageError(
+            f"{folder}: not a folder that draw wrote ({found}), so it is left alone. "
+            "Choose another folder with --out."
+        )
+    if not overwrite:
+        raise UsageError(
+            f"{folder}: an edition stands there already. "
+            "Give --overwrite to replace it, or choose another folder with --out."
+        )
+
+
+def load_edition(path: Path) -> Edition:
+    """Load an edition from its folder or its `edition.json`.
+
+    Raises
+    ------
+    EditionError
+        If there is none, or it cannot be read.
+    """
+    file = path / EDITION_FILE if path.is_dir() else path
+    try:
+        data = file.read_bytes()
+    except OSError as error:
+        raise EditionError(
+            f"{file}: cannot read the edition ({error.strerror or error}). "
+            f"Give the folder that draw wrote, or its {EDITION_FILE}."
+        ) from error
+    try:
+        return from_json(data)
+    except EditionError as error:
+        raise EditionError(f"{file}: {str(error).removeprefix('edition.json: ')}") from error
+
+
+def _is_edition(folder: Path) -> bool:
+    try:
+        load_edition(folder)
+    except SchematicError:
+        return False
+    return True
+
+
+def _replace(fresh: Path, target: Path) -> None:
+    """Rename `fresh` to `target`; an old folder comes back if that fails."""
+    if not target.exists():
+        fresh.rename(target)
+        return
+    aside = Path(tempfile.mkdtemp(prefix=f".{target.name}-old-", dir=target.parent))
+    old = aside / target.name
+    try:
+        target.rename(old)
+        try:
+            fresh.rename(target)
+        except OSError:
+            old.rename(target)
+            raise
+    finally:
+        with contextlib.suppress(OSError):
+            if target.exists():
+                shutil.rmtree(aside)
+
+
+def _umask() -> int:
+    """Read the process's file creation mask, which can only be read by setting it."""
+    mask = os.umask(0o022)
+    os.umask(mask)
+    return mask

@@ -1,0 +1,122 @@
+"""Make the edition of a labelled layout."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Sequence
+
+from gtfs_schematic.edition.model import (
+    Edition,
+    EditionFeed,
+    EditionLine,
+    EditionLink,
+    EditionStation,
+    EditionWalk,
+)
+from gtfs_schematic.feed.model import FeedInfo, Finding
+from gtfs_schematic.geometry import Point
+from gtfs_schematic.labels.model import LabelledLayout
+from gtfs_schematic.layout.model import Layout
+
+_PLACES_MM = 4
+_PLACES_DEGREES = 7
+
+
+def edition_of(labelled: LabelledLayout, title: str) -> Edition:
+    """Make the edition that a labelled layout shows.
+
+    Parameters
+    ----------
+    labelled
+        The finished layout; sheet millimetres, y down.
+    title
+        Title of the edition, as on the sheet.
+
+    Returns
+    -------
+    Edition
+        Sheet places to a tenth of a micrometre and degrees to a centimetre, so that what is
+        written is what was measured.
+    """
+    bundled = labelled.bundled
+    layout = bundled.layout
+    network = layout.network
+    return Edition(
+        title=title,
+        feed=_feed(network.info),
+        width_mm=layout.sheet.width_mm,
+        height_mm=layout.sheet.height_mm,
+        stations=_stations(labelled),
+        links=tuple(
+            EditionLink(k.id, k.start, k.end, bundled.orders[k.id], _path(layout.paths[k.id]))
+            for k in network.links
+        ),
+        lines=tuple(
+            EditionLine(k.id, k.name, k.color, k.text_color, k.route_ids, k.itineraries)
+            for k in network.lines
+        ),
+        left_out=tuple((item.kind, item.id, item.reason) for item in network.left_out),
+        findings=tuple(sentence(finding) for finding in network.findings),
+        walks=_walks(layout),
+    )
+
+
+def sentence(finding: Finding) -> str:
+    """Write a finding as one sentence that begins with how grave it is and where it stands."""
+    return f"{finding.severity}: {', '.join(_places(finding))}: {finding.message}"
+
+
+def _places(finding: Finding) -> Iterable[str]:
+    yield finding.file or "feed"
+    if finding.row is not None:
+        yield f"row {finding.row}"
+    if finding.field is not None:
+        yield f"field {finding.field}"
+    if finding.value is not None:
+        yield f"value {finding.value!r}"
+
+
+def _feed(info: FeedInfo) -> EditionFeed:
+    return EditionFeed(
+        info.sha256,
+        info.publisher,
+        info.version,
+        info.start_date,
+        info.end_date,
+        info.service_date,
+    )
+
+
+def _stations(labelled: LabelledLayout) -> tuple[EditionStation, ...]:
+    layout = labelled.bundled.layout
+    return tuple(
+        EditionStation(
+            id=station.id,
+            name=station.name,
+            stop_ids=station.stop_ids,
+            lon=round(station.lon, _PLACES_DEGREES),
+            lat=round(station.lat, _PLACES_DEGREES),
+            x_mm=_mm(layout.positions[station.id][0]),
+            y_mm=_mm(layout.positions[station.id][1]),
+            kind=station.kind,
+            lines=station.lines,
+            group=station.group,
+            label_side=labelled.labels[station.id].side if station.id in labelled.labels else "",
+        )
+        for station in layout.network.stations
+    )
+
+
+def _walks(layout: Layout) -> tuple[EditionWalk, ...]:
+    return tuple(
+        EditionWalk(walk.id, walk.start, walk.end, walk.time_s, _path(layout.walk_paths[walk.id]))
+        for walk in layout.network.walks
+    )
+
+
+def _path(points: Sequence[Point]) -> tuple[Point, ...]:
+    return tuple((_mm(x), _mm(y)) for x, y in points)
+
+
+def _mm(value: float) -> float:
+    """Round a sheet coordinate; no negative zero, so that equal editions have equal bytes."""
+    return round(float(value), _PLACES_MM) + 0.0
