@@ -9,6 +9,7 @@ from scipy.sparse.linalg import spsolve
 
 from gtfs_schematic.layout.guard import free_radii, repulsion
 from gtfs_schematic.layout.plane import PlaneGraph
+from gtfs_schematic.layout.spread import spread
 
 _PULL_TO_GROUND = 0.004
 """Weight of staying at the true place against one link's wanted vector; small, so that dense
@@ -17,6 +18,9 @@ centres open, but enough to hold far parts of the network where they belong."""
 _STEPS = 160
 _WANTED_CLEARANCE = 0.9
 """Distance, in station spacings, that a point wants from links that are not its own."""
+
+_LEAST_CLEARANCE = 0.75
+"""Distance that it gets at least."""
 
 
 def anchor_points(graph: PlaneGraph, fidelity: float) -> NDArray[np.float64]:
@@ -40,41 +44,54 @@ def anchor_points(graph: PlaneGraph, fidelity: float) -> NDArray[np.float64]:
     ImPrEd (Simonetto, Archambault, Auber and Bourqui 2011): no point moves further than 0.45 of
     its distance to the nearest foreign segment, nor does that segment's end.
     """
-    ground, lengths, spacing = _in_spacings(graph)
-    targets = _targets(graph, ground, lengths, fidelity)
-    return _guarded_move(graph, ground, targets)
+    ground, lengths = _in_spacings(graph)
+    vectors = _wanted_vectors(graph, ground, lengths, fidelity)
+    targets = _targets(graph, ground, lengths, vectors, fidelity)
+    moved = _guarded_move(graph, ground, targets)
+    return spread(moved, graph.segments, vectors, _LEAST_CLEARANCE)
 
 
 def _in_spacings(
     graph: PlaneGraph,
-) -> tuple[NDArray[np.float64], NDArray[np.float64], float]:
-    """Centre and scale the ground so that a typical link has length 1."""
+) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
+    """Centre and scale the ground so that a typical link has length 1; and segment lengths."""
     a, b = graph.segments.T
     lengths = np.hypot(*(graph.points[a] - graph.points[b]).T)
     spacing = float(np.median(lengths / graph.segment_shares)) if len(lengths) else 1.0
     ground = (graph.points - graph.points.mean(axis=0)) / max(spacing, 1e-9)
-    return ground, lengths / max(spacing, 1e-9), spacing
+    return ground, np.maximum(lengths / max(spacing, 1e-9), 1e-6)
+
+
+def _wanted_vectors(
+    graph: PlaneGraph,
+    ground: NDArray[np.float64],
+    lengths: NDArray[np.float64],
+    fidelity: float,
+) -> NDArray[np.float64]:
+    """Vector that each segment should have: true bearing, a blend of true and even length."""
+    a, b = graph.segments.T
+    wanted = lengths**fidelity * graph.segment_shares ** (1.0 - fidelity)
+    return np.asarray((ground[b] - ground[a]) / lengths[:, None] * wanted[:, None])
 
 
 def _targets(
     graph: PlaneGraph,
     ground: NDArray[np.float64],
     lengths: NDArray[np.float64],
+    vectors: NDArray[np.float64],
     fidelity: float,
 ) -> NDArray[np.float64]:
-    """Solve for points whose links have true bearing and a blend of true and even length."""
+    """Solve for points whose segments come near their wanted vectors, with a pull to the ground."""
     a, b = graph.segments.T
     m, n = len(a), len(ground)
-    true = np.maximum(lengths, 1e-6)
-    wanted = true**fidelity * graph.segment_shares ** (1.0 - fidelity)
-    vectors = (ground[b] - ground[a]) / true[:, None] * wanted[:, None]
+    wanted = np.hypot(vectors[:, 0], vectors[:, 1])
     weights = 1.0 / wanted
     rows = np.repeat(np.arange(m), 2)
     columns = np.column_stack([a, b]).ravel()
     values = np.column_stack([-weights, weights]).ravel()
     difference = sp.csr_matrix((values, (rows, columns)), shape=(m, n))
     pull = _PULL_TO_GROUND + 10.0 * fidelity**4
-    scale = float(np.sum(wanted * true) / np.sum(true * true)) if m else 1.0
+    scale = float(np.sum(wanted * lengths) / np.sum(lengths * lengths)) if m else 1.0
     normal = (difference.T @ difference + pull * sp.identity(n)).tocsc()
     right = difference.T @ (vectors * weights[:, None]) + pull * scale * ground
     return np.asarray(spsolve(normal, right)).reshape(n, 2)

@@ -1,0 +1,187 @@
+"""The layout engine: from a network to an octilinear drawing with the ground's topology.
+
+It starts from a drawing that is topologically right, the ground itself, and never leaves that
+topology: (1) planarise, (2) move towards even spacing under a guard, (3) lay every piece on an
+octilinear lattice along its course, (4) improve by local search, (5) settle all lengths by a
+linear programme on the sheet, (6) snap to whole hundredths of a millimetre and put the smoothed
+stations back.
+"""
+
+from __future__ import annotations
+
+import dataclasses
+from collections.abc import Sequence
+
+import numpy as np
+from numpy.typing import NDArray
+
+from gtfs_schematic.errors import LayoutError
+from gtfs_schematic.layout.anchors import anchor_points
+from gtfs_schematic.layout.board import Board
+from gtfs_schematic.layout.embed import check_degrees, embed
+from gtfs_schematic.layout.fit import Sizes, link_least, wants_of
+from gtfs_schematic.layout.improve import improve
+from gtfs_schematic.layout.model import (
+    Clearances,
+    Layout,
+    LayoutSettings,
+    RoomRequest,
+    SheetFrame,
+)
+from gtfs_schematic.layout.objective import Weights
+from gtfs_schematic.layout.plane import PlaneGraph
+from gtfs_schematic.layout.planarise import planarise
+from gtfs_schematic.layout.restore import restore
+from gtfs_schematic.layout.settle import settle
+from gtfs_schematic.layout.skeleton import Skeleton, build, skeleton_of
+from gtfs_schematic.layout.snap import UNITS_PER_MM, snap
+from gtfs_schematic.network.model import Network
+from gtfs_schematic.progress import Progress, Silent
+
+_SWEEPS = {"quick": 2, "standard": 8, "thorough": 30}
+_UNITS = (6, 9, 13, 20, 30, 45)
+"""Lattice steps in a spacing, tried in turn; six let all anchors keep three steps' distance."""
+_ROOM = 1.1
+"""Share by which a sheet should exceed the least size of the drawing, for labels and air."""
+_LOOSEST = 2.2
+"""A station spacing grows to at most so many times the least, however large the sheet."""
+_STUB_MM = 2.2
+
+
+def lay_out(
+    network: Network,
+    settings: LayoutSettings,
+    clearances: Clearances,
+    frames: Sequence[SheetFrame],
+    *,
+    requests: tuple[RoomRequest, ...] = (),
+    progress: Progress = Silent(),  # noqa: B008 - stateless
+) -> Layout:
+    """Lay a network out on the first sheet that holds it.
+
+    Parameters
+    ----------
+    network
+        Stations, links, walks and corridors.
+    settings
+        Fidelity to the ground, and effort.
+    clearances
+        What will be drawn, millimetres.
+    frames
+        Sheets in rising size.
+    requests
+        Wishes of later stages for longer links.
+    progress
+        Told what is going on.
+
+    Returns
+    -------
+    Layout
+        Every guarantee of `layout.check` kept.
+
+    Raises
+    ------
+    LayoutError
+        If a station has more than eight neighbours, or no sheet is large enough.
+    """
+    if not network.links:
+        raise LayoutError("The network has no links: there is nothing to draw.")
+    progress.phase("placing on the ground")
+    graph = planarise(network)
+    check_degrees(graph)
+    anchors = anchor_points(graph, settings.fidelity)
+    board = _board(graph, anchors, progress)
+    improve(board, _SWEEPS[settings.effort], progress)
+    progress.phase("settling lengths")
+    sizes = Sizes(
+        settings,
+        clearances,
+        board.anchors[: graph.n_vertices],
+        link_least(network, clearances, requests),
+    )
+    skeleton, points, frame = _on_sheet(skeleton_of(board), sizes, frames)
+    places = _on_paper(snap(skeleton, points), frame)
+    return restore(network, skeleton, places, frame, _STUB_MM)
+
+
+def _board(graph: PlaneGraph, anchors: NDArray[np.float64], progress: Progress) -> Board:
+    """Lay the graph on the coarsest lattice that holds it."""
+    progress.phase("laying lines", len(_UNITS))
+    stuck = 0
+    for unit in _UNITS:
+        board = Board(graph, anchors, Weights(), unit)
+        failed = embed(board)
+        progress.step()
+        if failed is None:
+            return board
+        stuck = failed
+    names = [graph.station_of[v] or "a crossing" for v in graph.pieces[stuck].ends]
+    raise LayoutError(
+        f"Between {names[0]} and {names[1]} the network is too dense to be drawn without new "
+        "crossings. Draw fewer lines or modes at once."
+    )
+
+
+def _on_sheet(
+    skeleton: Skeleton, sizes: Sizes, frames: Sequence[SheetFrame]
+) -> tuple[Skeleton, NDArray[np.float64], SheetFrame]:
+    """Choose the sheet by the least size, then fill it."""
+    spacing = sizes.clearances.spacing_mm
+    skeleton, points = _settled(skeleton, sizes, spacing, None)
+    width, height = np.ptp(points, axis=0)
+    fits = [f for f in frames if _inner(f)[0] >= width * _ROOM and _inner(f)[1] >= height * _ROOM]
+    fits = fits or [f for f in frames if _inner(f)[0] >= width and _inner(f)[1] >= height]
+    if not fits:
+        largest = frames[-1]
+        raise LayoutError(
+            f"The drawing needs at least {width:.0f} × {height:.0f} mm, but the largest sheet "
+            f"allowed ({largest.width_mm:.0f} × {largest.height_mm:.0f} mm) leaves "
+            f"{_inner(largest)[0]:.0f} × {_inner(largest)[1]:.0f} mm. Allow a larger sheet, "
+            "smaller type or thinner lines, or draw fewer lines."
+        )
+    frame = fits[0]
+    box = _inner(frame)
+    grow = min(box[0] / max(width, 1e-9), box[1] / max(height, 1e-9), _LOOSEST)
+    skeleton = dataclasses.replace(skeleton, points=points)
+    skeleton, points = _settled(skeleton, sizes, spacing * max(1.0, 0.95 * grow), box)
+    return skeleton, points, frame
+
+
+def _inner(frame: SheetFrame) -> tuple[float, float]:
+    return frame.right_mm - frame.left_mm, frame.bottom_mm - frame.top_mm
+
+
+def _settled(
+    skeleton: Skeleton, sizes: Sizes, scale_mm: float, box: tuple[float, float] | None
+) -> tuple[Skeleton, NDArray[np.float64]]:
+    """Settle, then take out bends that have shrunk to nothing, and settle again."""
+    for _ in range(3):
+        points = settle(skeleton, wants_of(skeleton, sizes, scale_mm, tight=box is None), box)
+        lengths = np.hypot(*np.diff(points[skeleton.segments], axis=1)[:, 0].T)
+        gone = lengths < 0.02
+        if not gone.any():
+            break
+        skeleton = _without(skeleton, points, gone)
+    return skeleton, points
+
+
+def _without(skeleton: Skeleton, points: NDArray[np.float64], gone: NDArray[np.bool_]) -> Skeleton:
+    """Drop segments without length; their neighbours run on as one."""
+    routes = []
+    for p in range(len(skeleton.courses)):
+        course = skeleton.courses[p]
+        route = [points[skeleton.segments[course[0], 0]]]
+        for k in course:
+            step = points[skeleton.segments[k, 1]] - points[skeleton.segments[k, 0]]
+            route.append(route[-1] if gone[k] else route[-1] + step)
+        routes.append(np.array(route))
+    return build(skeleton.graph, points[: skeleton.graph.n_vertices], routes)
+
+
+def _on_paper(units: NDArray[np.int64], frame: SheetFrame) -> NDArray[np.int64]:
+    """Turn y down and centre the drawing in its frame."""
+    low, high = units.min(axis=0), units.max(axis=0)
+    centre = np.array([frame.left_mm + frame.right_mm, frame.top_mm + frame.bottom_mm]) / 2.0
+    shift = np.rint(centre * UNITS_PER_MM).astype(np.int64)
+    middle = (low + high) // 2
+    return np.column_stack([units[:, 0] - middle[0] + shift[0], middle[1] - units[:, 1] + shift[1]])

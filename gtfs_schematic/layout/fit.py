@@ -1,0 +1,108 @@
+"""What lengths a drawing should have, and which sheet it fits."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from gtfs_schematic.layout.model import Clearances, LayoutSettings, RoomRequest
+from gtfs_schematic.layout.settle import Wants
+from gtfs_schematic.layout.skeleton import Skeleton
+from gtfs_schematic.network.model import Network
+
+_WALK_SHARE = 0.75
+"""Length of a walk in shares of a station spacing: short, so that it reads as one place."""
+
+_CORNER = 0.85
+"""Length that two 45-degree corners of one radius take of the segment between them:
+2 tan(22.5°) of that radius."""
+
+
+@dataclass(frozen=True)
+class Sizes:
+    """Everything that lengths depend on beside the drawing itself."""
+
+    settings: LayoutSettings
+    clearances: Clearances
+    anchors: NDArray[np.float64]
+    """Anchors of the vertices in station spacings, y north, shape (n, 2)."""
+    link_least: Mapping[str, float]
+    """Least length of each link and walk, millimetres."""
+
+
+def wants_of(skeleton: Skeleton, sizes: Sizes, scale_mm: float, *, tight: bool) -> Wants:
+    """Say what the lengths should be when a station spacing is `scale_mm` on the sheet.
+
+    `tight` asks for the least size instead: that is how the sheet is chosen.
+    """
+    clearances = sizes.clearances
+    graph = skeleton.graph
+    walk = np.array([piece.is_walk for piece in graph.pieces], dtype=bool)
+    least = np.array(
+        [sum(p.share * sizes.link_least[p.owner] for p in piece.parts) for piece in graph.pieces]
+    )
+    goal = _spans(skeleton, sizes.settings.fidelity) * scale_mm
+    goal[walk] = np.maximum(least[walk], _WALK_SHARE * scale_mm)
+    spans = np.array([piece.spans for piece in graph.pieces])
+    owner = skeleton.piece_of
+    lines = np.array([max(1, len(graph.pieces[p].lines)) for p in owner])
+    pitch = clearances.line_width_mm + clearances.line_gap_mm
+    half = (lines * pitch - clearances.line_gap_mm) / 2.0
+    half[walk[owner]] = clearances.line_width_mm / 4.0
+    jog = _jogs(skeleton)
+    corner = _CORNER * (clearances.marker_mm + half)
+    weight = 1.0 / np.sqrt(np.maximum(spans, 0.3))
+    return Wants(
+        least=np.where(jog, 0.0, corner),
+        piece_least=least,
+        piece_goal=least if tight else np.maximum(goal, least),
+        piece_weight=np.where(walk, 0.5, 1.0) * weight,
+        anchors=sizes.anchors * scale_mm,
+        anchor_weight=0.02 if tight else 0.05 + 0.5 * sizes.settings.fidelity**2,
+        half_width=half,
+        clear=2.0 * clearances.line_gap_mm + 0.5,
+        room=2.0 * clearances.line_gap_mm + 0.5
+        if tight
+        else clearances.label_height_mm + clearances.line_width_mm,
+        jogs=np.where(jog, 0.4 * lines, 0.0),
+        spread=2.0 if tight else 0.0,
+    )
+
+
+def link_least(
+    network: Network, clearances: Clearances, requests: tuple[RoomRequest, ...]
+) -> dict[str, float]:
+    """Give every link its least length: the spacing, more where a station asks for room, and
+    for a walk a share of it; millimetres."""
+    asked: dict[str, float] = {}
+    for request in requests:
+        asked[request.station_id] = max(asked.get(request.station_id, 0.0), request.length_mm)
+    least = {
+        link.id: max(clearances.spacing_mm, asked.get(link.start, 0.0), asked.get(link.end, 0.0))
+        for link in network.links
+    }
+    least |= {walk.id: _WALK_SHARE * clearances.spacing_mm for walk in network.walks}
+    return least
+
+
+def _spans(skeleton: Skeleton, fidelity: float) -> NDArray[np.float64]:
+    """Length of each piece in spacings: a blend of true and even, link by link."""
+    graph = skeleton.graph
+    a, b = graph.segments.T
+    true = np.hypot(*(graph.points[a] - graph.points[b]).T)
+    spacing = float(np.median(true / graph.segment_shares)) if len(true) else 1.0
+    blend = (true / max(spacing, 1e-9)) ** fidelity * graph.segment_shares ** (1.0 - fidelity)
+    owner = np.repeat(np.arange(len(graph.pieces)), [len(p.parts) for p in graph.pieces])
+    return np.asarray(np.bincount(owner, weights=blend, minlength=len(graph.pieces)))
+
+
+def _jogs(skeleton: Skeleton) -> NDArray[np.bool_]:
+    """Inner segments between two of one direction: without length they would be no bend."""
+    jog = np.zeros(len(skeleton.segments), dtype=bool)
+    for course in skeleton.courses:
+        for before, k, after in zip(course, course[1:], course[2:], strict=False):
+            jog[k] = skeleton.directions[before] == skeleton.directions[after]
+    return jog

@@ -1,0 +1,65 @@
+"""Which segments must stay apart, by how much, and along which axis."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+import shapely
+from numpy.typing import NDArray
+
+from gtfs_schematic.layout.skeleton import STEP, Skeleton
+
+_NORMALS = STEP / np.hypot(STEP[:, :1], STEP[:, 1:])
+
+
+@dataclass(frozen=True)
+class Separations:
+    """Pairs of segments without a common node; `axis` points from the second to the first.
+
+    For both nodes i of segment `first` and both nodes j of `second`:
+    n(axis) · (point i − point j) ≥ gap.
+    """
+
+    first: NDArray[np.int64]
+    second: NDArray[np.int64]
+    axis: NDArray[np.int64]
+
+    def extended(self, other: Separations) -> Separations:
+        """Give both lists as one."""
+        return Separations(
+            np.concatenate([self.first, other.first]),
+            np.concatenate([self.second, other.second]),
+            np.concatenate([self.axis, other.axis]),
+        )
+
+    def normals(self) -> NDArray[np.float64]:
+        """Unit vectors of the axes, shape (n, 2)."""
+        return np.asarray(_NORMALS[self.axis])
+
+
+def near_pairs(
+    points: NDArray[np.float64], segments: NDArray[np.int64], distance: float
+) -> NDArray[np.int64]:
+    """Pairs (i < j) of segments without a common node nearer than `distance`, shape (n, 2)."""
+    lines = shapely.linestrings(points[segments])
+    pairs = shapely.STRtree(lines).query(lines, predicate="dwithin", distance=distance).T
+    pairs = pairs[pairs[:, 0] < pairs[:, 1]]
+    a, b = segments[pairs[:, 0]], segments[pairs[:, 1]]
+    apart = (a[:, :, None] != b[:, None, :]).all(axis=(1, 2))
+    pairs = pairs[apart]
+    return np.asarray(pairs[np.lexsort((pairs[:, 1], pairs[:, 0]))], dtype=np.int64)
+
+
+def separate(skeleton: Skeleton, pairs: NDArray[np.int64]) -> Separations:
+    """Choose for every pair the octilinear axis along which it is furthest apart now.
+
+    Two disjoint segments are always apart along a normal of one of them or along one of them,
+    so for octilinear segments one of the eight directions serves.
+    """
+    ends = skeleton.points[skeleton.segments]
+    along = np.einsum("mij,dj->mdi", ends, _NORMALS)
+    low, high = along.min(axis=2), along.max(axis=2)
+    first, second = pairs[:, 0], pairs[:, 1]
+    gaps = low[first] - high[second]
+    return Separations(first, second, np.argmax(np.round(gaps, 9), axis=1))
