@@ -1,0 +1,151 @@
+"""Reading calendar.txt, calendar_dates.txt and frequencies.txt."""
+
+from __future__ import annotations
+
+import datetime as dt
+from collections import defaultdict
+from collections.abc import Mapping
+from dataclasses import dataclass
+
+from gtfs_schematic.feed.cells import Cell, whole_of
+from gtfs_schematic.feed.tables import REQUIRED_COLUMNS, Tables
+from gtfs_schematic.feed.values import parse_date, parse_time
+
+_LONGEST_YEARS = 20
+"""A calendar row that runs longer than this is cut, so that a slip of the pen in a year does
+not cost millions of dates."""
+
+
+@dataclass(frozen=True, slots=True)
+class Span:
+    """A usable row of calendar.txt; dates inclusive."""
+
+    service_id: str
+    weekdays: tuple[bool, ...]
+    start: dt.date
+    end: dt.date
+
+
+@dataclass(frozen=True, slots=True)
+class Exceptional:
+    """A usable row of calendar_dates.txt."""
+
+    service_id: str
+    date: dt.date
+    added: bool
+
+
+@dataclass(frozen=True, slots=True)
+class Headway:
+    """A usable row of frequencies.txt; seconds after noon minus 12 h, end exclusive."""
+
+    start_s: int
+    end_s: int
+    headway_s: int
+
+    @property
+    def departures(self) -> range:
+        """Departures from the trip's first stop."""
+        return range(self.start_s, self.end_s, self.headway_s)
+
+
+@dataclass(frozen=True)
+class Calendars:
+    """When the services of one feed run."""
+
+    spans: tuple[Span, ...]
+    exceptions: tuple[Exceptional, ...]
+
+
+def read_calendars(tables: Tables) -> Calendars:
+    """Read both calendar tables, of which either may be missing."""
+    return Calendars(tuple(_spans(tables)), tuple(_exceptions(tables)))
+
+
+def read_headways(tables: Tables) -> Mapping[str, tuple[Headway, ...]]:
+    """Give the usable rows of frequencies.txt per trip id, in order of time."""
+    headways: defaultdict[str, list[Headway]] = defaultdict(list)
+    file = "frequencies.txt"
+    for row, (trip, start, end, text) in tables.rows(file, REQUIRED_COLUMNS[file]):
+        headway = whole_of(tables.notebook, Cell(file, row, "headway_secs", text))
+        try:
+            start_s, end_s = parse_time(start), parse_time(end)
+        except ValueError:
+            start_s = end_s = 0
+        if headway is None or headway <= 0 or end_s <= start_s:
+            tables.notebook.find(
+                "error",
+                file,
+                "row needs a start before its end and a headway above zero; it does not count",
+                row=row,
+                value=f"{start}, {end}, {text}",
+            )
+            continue
+        headways[trip].append(Headway(start_s, end_s, headway))
+    return {
+        trip: tuple(sorted(rows, key=lambda r: (r.start_s, r.end_s, r.headway_s)))
+        for trip, rows in headways.items()
+    }
+
+
+def _spans(tables: Tables) -> list[Span]:
+    spans = []
+    file = "calendar.txt"
+    for row, (service, *days, start, end) in tables.rows(file, REQUIRED_COLUMNS[file]):
+        dates = (
+            _date(tables, file, row, "start_date", start),
+            _date(tables, file, row, "end_date", end),
+        )
+        weekdays = []
+        for name, text in zip(REQUIRED_COLUMNS[file][1:8], days, strict=True):
+            if text not in {"0", "1"}:
+                message = "a weekday needs 0 or 1 and is taken as 0"
+                tables.notebook.find("error", file, message, row=row, field=name, value=text)
+            weekdays.append(text == "1")
+        first, last = dates
+        if first is None or last is None:
+            continue
+        if last < first:
+            message = "service ends before it starts and does not count"
+            tables.notebook.find("error", file, message, row=row, field="end_date", value=end)
+            continue
+        limit = first + dt.timedelta(days=366 * _LONGEST_YEARS)
+        if last > limit:
+            message = f"service runs for more than {_LONGEST_YEARS} years; only those count"
+            tables.notebook.find("warning", file, message, row=row, field="end_date", value=end)
+        spans.append(Span(service, tuple(weekdays), first, min(last, limit)))
+    return spans
+
+
+def _exceptions(tables: Tables) -> list[Exceptional]:
+    exceptions = []
+    file = "calendar_dates.txt"
+    for row, (service, text, kind) in tables.rows(file, REQUIRED_COLUMNS[file]):
+        date = _date(tables, file, row, "date", text)
+        if kind not in {"1", "2"}:
+            tables.notebook.find(
+                "error",
+                file,
+                "exception type is neither 1 (added) nor 2 (removed); the row does not count",
+                row=row,
+                field="exception_type",
+                value=kind,
+            )
+        elif date is not None:
+            exceptions.append(Exceptional(service, date, kind == "1"))
+    return exceptions
+
+
+def _date(tables: Tables, file: str, row: int, field: str, text: str) -> dt.date | None:
+    try:
+        return parse_date(text)
+    except ValueError:
+        tables.notebook.find(
+            "error",
+            file,
+            "not a date as YYYYMMDD; the row does not count",
+            row=row,
+            field=field,
+            value=text,
+        )
+        return None

@@ -1,0 +1,86 @@
+"""Collecting what is wrong or odd in a feed while it is being read."""
+
+from __future__ import annotations
+
+from collections import Counter
+
+from gtfs_schematic.feed.model import Finding, LeftOut, Severity
+
+_LISTED = 20
+"""Findings of one kind listed one by one; the others are only counted, so that a systematic
+fault in millions of rows stays readable."""
+
+
+class Notebook:
+    """Findings and things left out, gathered by everybody who reads a part of the feed.
+
+    Parameters
+    ----------
+    prefix
+        Put before file names and ids, "" or such as "2:", when several feeds are read as one.
+    """
+
+    def __init__(self, prefix: str = "") -> None:
+        self.prefix = prefix
+        self._findings: list[Finding] = []
+        self._count: Counter[tuple[Severity, str, str, str | None]] = Counter()
+        self._left_out: dict[tuple[str, str], str] = {}
+
+    def find(  # noqa: PLR0913 - a finding has six parts, and all but two are optional
+        self,
+        severity: Severity,
+        file: str,
+        message: str,
+        *,
+        row: int | None = None,
+        field: str | None = None,
+        value: str | None = None,
+    ) -> None:
+        """Note a finding; `message` names the kind of fault, so it holds no values."""
+        kind = (severity, file, message, field)
+        self._count[kind] += 1
+        if self._count[kind] <= _LISTED:
+            self._findings.append(
+                Finding(severity, self.prefix + file, message, row=row, field=field, value=value)
+            )
+
+    def leave_out(self, kind: str, ident: str, reason: str) -> None:
+        """Note that something of the feed is not shown; the first reason given stands."""
+        self._left_out.setdefault((kind, self.prefix + ident), reason)
+
+    def left_out_ids(self, kind: str) -> frozenset[str]:
+        """Give the ids, prefix included, of one kind that are left out."""
+        return frozenset(ident for what, ident in self._left_out if what == kind)
+
+    @property
+    def findings(self) -> tuple[Finding, ...]:
+        """All findings, sorted by file, row, field and message."""
+        more = [
+            Finding(
+                severity,
+                self.prefix + file,
+                f"{message} (so in {count} places; the first {_LISTED} are listed)",
+                field=field,
+            )
+            for (severity, file, message, field), count in self._count.items()
+            if count > _LISTED
+        ]
+        return tuple(sorted(self._findings + more, key=_place))
+
+    @property
+    def left_out(self) -> tuple[LeftOut, ...]:
+        """All things left out, sorted by kind and id."""
+        return tuple(
+            LeftOut(kind, ident, reason) for (kind, ident), reason in sorted(self._left_out.items())
+        )
+
+
+def _place(finding: Finding) -> tuple[str, int, str, str, str, str]:
+    return (
+        finding.file,
+        finding.row or 0,
+        finding.field or "",
+        finding.message,
+        finding.value or "",
+        finding.severity,
+    )

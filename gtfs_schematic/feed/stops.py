@@ -1,0 +1,192 @@
+"""Reading stops.txt: where stops lie, which station they belong to, who can board."""
+
+from __future__ import annotations
+
+from collections import defaultdict
+from collections.abc import Iterable, Mapping
+from dataclasses import dataclass, field, replace
+from functools import partial
+
+from gtfs_schematic.feed.cells import Cell, is_usable_id, name_of, whole_of
+from gtfs_schematic.feed.model import Boarding, Stop
+from gtfs_schematic.feed.tables import Tables
+from gtfs_schematic.feed.values import clean_name, is_nowhere, parse_degrees
+
+_FILE = "stops.txt"
+_COLUMNS = (
+    "stop_id",
+    "stop_name",
+    "stop_code",
+    "stop_lat",
+    "stop_lon",
+    "location_type",
+    "parent_station",
+    "wheelchair_boarding",
+    "platform_code",
+)
+_BOARDING: Mapping[int | None, Boarding] = {1: "yes", 2: "no"}
+
+
+@dataclass(frozen=True)
+class StopTable:
+    """All rows of stops.txt, with their own values and with those they inherit."""
+
+    own: Mapping[str, Stop]
+    """As the feed has them: parent as written, coordinates None where there are none."""
+    rows: Mapping[str, int]
+    chain: Mapping[str, tuple[str, ...]]
+    """Per stop the ids above it, nearest first, the top station last."""
+    placed: Mapping[str, tuple[float, float]] = field(default_factory=dict)
+    """Lon and lat in degrees of every stop that can be placed; see `read_stops`."""
+
+
+def read_stops(tables: Tables) -> StopTable:
+    """Read all stops and settle their parents and places.
+
+    A stop's place is its own, else that of the nearest stop above it that has one, else (the
+    whole family has none above) the mean of those below its top station.
+    """
+    own: dict[str, Stop] = {}
+    rows: dict[str, int] = {}
+    notes = tables.notebook
+    for row, texts in tables.rows(_FILE, _COLUMNS):
+        ident, name, code, lat, lon, type_, parent, boarding, platform = map(
+            partial(Cell, _FILE, row), _COLUMNS, texts
+        )
+        if not is_usable_id(notes, ident, rows):
+            continue
+        rows[ident.text] = row
+        place = _place(tables, lon, lat)
+        kind = whole_of(notes, type_) or 0
+        if kind not in range(5):
+            type_.found(notes, "warning", "location type is not one of 0 to 4; taken as 0")
+            kind = 0
+        own[ident.text] = Stop(
+            ident.text,
+            name_of(notes, name),
+            clean_name(code.text),
+            place[0] if place else None,
+            place[1] if place else None,
+            kind,
+            parent.text or None,
+            _BOARDING.get(whole_of(notes, boarding), "unknown"),
+            platform_code=clean_name(platform.text),
+        )
+    chain = {ident: _chain(tables, own, rows, ident) for ident in own}
+    return StopTable(own, rows, chain, _placed(own, chain))
+
+
+def stops_of_timetable(tables: Tables, table: StopTable, called: Iterable[str]) -> tuple[Stop, ...]:
+    """Give the stops called at and the stations above them, ready for the timetable.
+
+    `parent_id` is the top station; boarding that a stop does not tell is that of the stop above
+    (GTFS Schedule reference, stops.txt, wheelchair_boarding); every stop has coordinates.
+    """
+    wanted = set()
+    for ident in called:
+        wanted.add(ident)
+        wanted.update(table.chain[ident][-1:])
+    return tuple(_settled(tables, table, ident) for ident in sorted(wanted))
+
+
+def _settled(tables: Tables, table: StopTable, ident: str) -> Stop:
+    stop, above, row = table.own[ident], table.chain[ident], table.rows[ident]
+    lon, lat = table.placed[ident]
+    if stop.lon is None:
+        message = "stop has no coordinates of its own and is put where its station or platforms lie"
+        tables.notebook.find("warning", _FILE, message, row=row, value=ident)
+    family = [stop, *(table.own[parent] for parent in above)]
+    name = next((member.name for member in family if member.name), "")
+    if not stop.name:
+        message = "stop has no name; its station's name, its code or its id stands for it"
+        tables.notebook.find("warning", _FILE, message, row=row, field="stop_name", value=ident)
+    told: list[Boarding] = [m.boarding for m in family if m.boarding != "unknown"]
+    return replace(
+        stop,
+        name=name or stop.code or ident,
+        lon=lon,
+        lat=lat,
+        parent_id=above[-1] if above else None,
+        boarding=told[0] if told else "unknown",
+    )
+
+
+def _place(tables: Tables, lon: Cell, lat: Cell) -> tuple[float, float] | None:
+    if not lon.text and not lat.text:
+        return None
+    degrees = []
+    for cell, limit in ((lon, 180.0), (lat, 90.0)):
+        try:
+            degrees.append(parse_degrees(cell.text, limit))
+        except ValueError:
+            fault = "coordinate is not a number of degrees within its range; it does not count"
+            cell.found(tables.notebook, "error", fault)
+            return None
+    place = degrees[0], degrees[1]
+    if is_nowhere(*place):
+        fault = "coordinates near 0, 0 or at a pole stand for none; they do not count"
+        lat.found(tables.notebook, "error", fault)
+        return None
+    return place
+
+
+def _chain(
+    tables: Tables, own: Mapping[str, Stop], rows: Mapping[str, int], ident: str
+) -> tuple[str, ...]:
+    """Follow parents up to the top; broken references end the chain and are found."""
+    chain: list[str] = []
+    here = own[ident]
+    while here.parent_id is not None:
+        fault = ""
+        if here.location_type == 1:
+            fault = "a station may have no station above it; it does not count"
+        elif here.parent_id not in own:
+            fault = "parent station is not in stops.txt; it does not count"
+        elif here.parent_id == ident or here.parent_id in chain:
+            fault = "parent stations go round in a circle; it does not count"
+        if fault:
+            if here.id == ident or "circle" in fault:  # else found at the row at fault
+                tables.notebook.find(
+                    "error",
+                    _FILE,
+                    fault,
+                    row=rows[ident],
+                    field="parent_station",
+                    value=here.parent_id,
+                )
+            # In a circle nobody is on top: all its stops stand alone.
+            return () if "circle" in fault else tuple(chain)
+        chain.append(here.parent_id)
+        here = own[here.parent_id]
+    if len(chain) == 1 and here.location_type != 1 and own[ident].location_type != 4:
+        tables.notebook.find(
+            "warning",
+            _FILE,
+            "stop above is not marked as a station (location type 1); it is taken as one",
+            row=rows[ident],
+            field="parent_station",
+            value=chain[-1],
+        )
+    return tuple(chain)
+
+
+def _placed(
+    own: Mapping[str, Stop], chain: Mapping[str, tuple[str, ...]]
+) -> dict[str, tuple[float, float]]:
+    below: defaultdict[str, list[tuple[float, float]]] = defaultdict(list)
+    for ident in sorted(own):  # sorted: a mean of floats hangs on their order
+        stop = own[ident]
+        if chain[ident] and stop.location_type == 0 and stop.lon is not None:
+            below[chain[ident][-1]].append((stop.lon, stop.lat or 0.0))
+    placed = {}
+    for ident in own:
+        for member in (own[i] for i in (ident, *chain[ident])):
+            if member.lon is not None and member.lat is not None:
+                placed[ident] = (member.lon, member.lat)
+                break
+        else:
+            points = below[(ident, *chain[ident])[-1]]
+            if points:
+                lons, lats = zip(*points, strict=True)
+                placed[ident] = (sum(lons) / len(lons), sum(lats) / len(lats))
+    return placed
