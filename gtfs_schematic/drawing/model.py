@@ -6,9 +6,55 @@ from collections.abc import Mapping
 from dataclasses import dataclass, field
 from typing import Literal
 
-from pydantic import BaseModel, ConfigDict, Field
+from pydantic import BaseModel, ConfigDict, Field, field_validator
 
 from gtfs_schematic.geometry import Point
+
+SHEET_SIZES: Mapping[str, tuple[int, int]] = {
+    "A5": (148, 210),
+    "A4": (210, 297),
+    "A3": (297, 420),
+    "A2": (420, 594),
+    "A1": (594, 841),
+    "A0": (841, 1189),
+    "2A0": (1189, 1682),
+    "4A0": (1682, 2378),
+}
+"""Short and long side in millimetres, rising (ISO 216:2007; 2A0 and 4A0 are DIN 476's doubles)."""
+_LEAST_SIDE_MM, _MOST_SIDE_MM = 80.0, 5000.0
+
+
+class SheetSettings(BaseModel):
+    """The page on which the diagram stands."""
+
+    model_config = ConfigDict(frozen=True, extra="forbid")
+
+    size: str = "auto"
+    """"auto", a size of ISO 216 from A5 to A0, 2A0, 4A0, or width and height in mm: "420x297"."""
+    orientation: Literal["auto", "portrait", "landscape"] = "auto"
+    """"auto" follows the network, or the order in which width and height are given."""
+    margin_mm: float = Field(default=10.0, ge=0.0)
+    """White margin on all sides, millimetres."""
+
+    @field_validator("size")
+    @classmethod
+    def _known(cls, size: str) -> str:
+        """Refuse a size that is no size, and say what is one."""
+        text = size.strip().replace("×", "x").lower()
+        if text == "auto" or text.upper() in SHEET_SIZES:
+            return text if text == "auto" else text.upper()
+        sides = text.removesuffix("mm").split("x")
+        try:
+            width, height = (float(side) for side in sides)
+        except ValueError:
+            width = height = 0.0
+        if not all(_LEAST_SIDE_MM <= side <= _MOST_SIDE_MM for side in (width, height)):
+            raise ValueError(
+                f'{size!r} is no sheet size: use "auto", {", ".join(SHEET_SIZES)}, or width and '
+                f"height in millimetres from {_LEAST_SIDE_MM:g} to {_MOST_SIDE_MM:g}, "
+                'such as "420x297".'
+            )
+        return f"{width:g}x{height:g}"
 
 
 class DrawingSettings(BaseModel):

@@ -1,0 +1,121 @@
+"""Painting a scene on a cairo surface: what the PDF and PNG exports share."""
+
+from __future__ import annotations
+
+import math
+from typing import Any
+
+from gtfs_schematic.drawing.model import Drawing, Group, PathShape, TextShape
+from gtfs_schematic.drawing.paths import commands
+from gtfs_schematic.drawing.typeface import cairo, font_face
+from gtfs_schematic.labels import fonts
+
+_TAGS = {
+    "sheet-title": "H1",
+    "key-heading": "H2",
+    "sheet-subtitle": "P",
+    "key-row": "P",
+    "station": "P",
+    "note": "P",
+}
+"""Structure types of ISO 32000 for the groups that hold words, by class."""
+
+
+def paint(context: Any, drawing: Drawing, *, tagged: bool) -> None:  # noqa: ANN401 - untyped library
+    """Paint a drawing on a context whose unit is the millimetre, y down.
+
+    `tagged` adds the structure that lets a reading aid find heading, key, stations and notes.
+    """
+    module = cairo()
+    options = module.FontOptions()
+    options.set_hint_style(module.HINT_STYLE_NONE)
+    options.set_hint_metrics(module.HINT_METRICS_OFF)
+    options.set_antialias(module.ANTIALIAS_GRAY)
+    context.set_font_options(options)
+    context.set_line_join(module.LINE_JOIN_ROUND)
+    context.set_source_rgb(*_rgb(drawing.background))
+    context.paint()
+    if tagged:
+        context.tag_begin("Document")
+    for group in drawing.groups:
+        _group(context, group, tagged=tagged)
+    if tagged:
+        context.tag_end("Document")
+
+
+def _group(context: Any, group: Group, *, tagged: bool) -> None:  # noqa: ANN401
+    tag = _TAGS.get(group.css_class) if tagged else None
+    if tag:
+        context.tag_begin(tag)
+    for child in group.children:
+        if isinstance(child, Group):
+            _group(context, child, tagged=tagged and not tag)
+        elif isinstance(child, PathShape):
+            _path(context, child)
+        else:
+            _text(context, child)
+    if tag:
+        context.tag_end(tag)
+
+
+def _path(context: Any, shape: PathShape) -> None:  # noqa: ANN401
+    context.new_path()
+    for letter, values in commands(shape.d):
+        match letter:
+            case "M":
+                context.move_to(*values)
+            case "L":
+                context.line_to(*values)
+            case "C":
+                context.curve_to(*values)
+            case _:
+                context.close_path()
+    if shape.fill is not None:
+        context.set_source_rgb(*_rgb(shape.fill))
+        context.fill_preserve()
+    if shape.stroke is not None and shape.stroke_width > 0.0:
+        module = cairo()
+        context.set_source_rgb(*_rgb(shape.stroke))
+        context.set_line_width(shape.stroke_width)
+        context.set_line_cap(
+            module.LINE_CAP_ROUND if shape.cap == "round" else module.LINE_CAP_BUTT
+        )
+        context.set_dash(list(shape.dash))
+        context.stroke_preserve()
+    context.new_path()
+
+
+def _text(context: Any, shape: TextShape) -> None:  # noqa: ANN401
+    context.save()
+    if shape.angle_deg:
+        context.translate(*shape.pivot)
+        context.rotate(math.radians(shape.angle_deg))
+        context.translate(-shape.pivot[0], -shape.pivot[1])
+    context.set_font_face(font_face(bold=shape.bold))
+    context.set_font_size(shape.size)
+    context.set_source_rgb(*_rgb(shape.fill))
+    shaped = fonts.shape(shape.text, bold=shape.bold)
+    glyphs, x = [], shape.x
+    for glyph in shaped:
+        glyphs.append(
+            (glyph.glyph_id, x + glyph.x_offset * shape.size, shape.y - glyph.y_offset * shape.size)
+        )
+        x += glyph.x_advance * shape.size
+    context.show_text_glyphs(shape.text, glyphs, _clusters(shape.text, shaped), 0)
+    context.restore()
+
+
+def _clusters(text: str, shaped: tuple[fonts.Glyph, ...]) -> list[tuple[int, int]]:
+    """Give cairo's clusters: bytes of text and count of glyphs that belong together."""
+    starts = sorted({glyph.cluster for glyph in shaped})
+    counts = [sum(glyph.cluster == start for glyph in shaped) for start in starts]
+    ends = [*starts[1:], len(text)]
+    return [
+        (len(text[start:end].encode()), count)
+        for start, end, count in zip(starts, ends, counts, strict=True)
+    ]
+
+
+def _rgb(color: str) -> tuple[float, float, float]:
+    red, green, blue = (int(color[i : i + 2], 16) / 255.0 for i in (1, 3, 5))
+    return red, green, blue

@@ -1,0 +1,47 @@
+"""Compose the scene: the network in its frame, and title, key and notes round it."""
+
+from __future__ import annotations
+
+from gtfs_schematic.drawing.furniture import key_group, notes_group, title_group
+from gtfs_schematic.drawing.lines import direction_marks, line_groups, walk_groups
+from gtfs_schematic.drawing.model import Drawing, DrawingSettings, Group
+from gtfs_schematic.drawing.page import plan_of_frame
+from gtfs_schematic.drawing.stations import marker_look, station_groups
+from gtfs_schematic.drawing.style import line_styles
+from gtfs_schematic.drawing.words import description, sheet_title
+from gtfs_schematic.labels.model import LabelledLayout
+
+
+def compose(labelled: LabelledLayout, settings: DrawingSettings) -> Drawing:
+    """Give the whole sheet as a scene, sheet millimetres, y down.
+
+    Parameters
+    ----------
+    labelled
+        The network placed, its lines in order, its names placed; its sheet frame must be one that
+        `candidate_frames` gave for the same network and settings.
+    settings
+        Colours and words.
+    """
+    bundled = labelled.bundled
+    layout = bundled.layout
+    network = layout.network
+    styles = line_styles(network, settings)
+    page = plan_of_frame(network, settings, layout.sheet)
+    return Drawing(
+        width_mm=layout.sheet.width_mm,
+        height_mm=layout.sheet.height_mm,
+        title=sheet_title(network, settings),
+        description=description(network),
+        lang="en",
+        background=settings.background,
+        groups=(
+            title_group(page, settings),
+            Group("walks", tuple(walk_groups(layout, settings))),
+            Group("lines", tuple(line_groups(bundled, styles, settings.background))),
+            Group("directions", tuple(direction_marks(bundled, styles))),
+            Group("stations", tuple(station_groups(labelled, styles, settings))),
+            key_group(page, network, settings, marker_look(labelled, settings)),
+            notes_group(page, settings),
+        ),
+    )

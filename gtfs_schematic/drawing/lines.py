@@ -1,0 +1,82 @@
+"""Lines, their casings and arrowheads, and walks, as groups of the scene."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Mapping
+
+from gtfs_schematic.bundles.model import BundledLayout
+from gtfs_schematic.drawing.course import half_way, on_line
+from gtfs_schematic.drawing.markers import chevron, walk_shapes
+from gtfs_schematic.drawing.model import DrawingSettings, Group, PathShape
+from gtfs_schematic.drawing.paths import polyline, rounded
+from gtfs_schematic.drawing.style import (
+    WALK_WIDTH_MM,
+    LineStyle,
+    line_stroke,
+    quiet,
+    under_strokes,
+    weight,
+)
+from gtfs_schematic.drawing.words import line_course, walk_title
+from gtfs_schematic.layout.model import Layout
+from gtfs_schematic.network.model import Line
+
+
+def walk_groups(layout: Layout, settings: DrawingSettings) -> Iterator[Group]:
+    """Give the connectors of all walks that the layout drew."""
+    for walk in layout.network.walks:
+        path = layout.walk_paths.get(walk.id)
+        if path is not None:
+            shapes = walk_shapes(
+                polyline(path), quiet(settings), settings.background, WALK_WIDTH_MM
+            )
+            title = walk_title(walk, layout.network)
+            yield Group("walk", shapes, data={"walk": walk.id}, title=title)
+
+
+def line_groups(
+    bundled: BundledLayout, styles: Mapping[str, LineStyle], background: str
+) -> Iterator[Group]:
+    """Give the lines, the lightest first, each on a casing in the colour of the paper.
+
+    The casing is as wide as the gap between neighbours, so it parts lines that cross without
+    touching those alongside; it lies under all stretches of its line, so that branches join.
+    """
+    full, gap = bundled.settings.line_width_mm, bundled.settings.line_gap_mm
+    halo = 0.95 * gap if gap else 0.15 * full
+    network = bundled.layout.network
+    for line in sorted(network.lines, key=_paint_order):
+        style = styles[line.id]
+        paths = [rounded(s.corners) for s in bundled.stretches if s.line_id == line.id]
+        wide = style.width * full + 2.0 * halo
+        casing = [PathShape(d, stroke=background, stroke_width=wide, cap="butt") for d in paths]
+        under = [shape for d in paths for shape in under_strokes(d, style, full)]
+        yield Group("casing", (*casing, *under))
+        yield Group(
+            "line",
+            tuple(line_stroke(d, style, full) for d in paths),
+            data={"line": line.id},
+            title=f"Line {line.name}: {line_course(line, network)}",
+        )
+
+
+def direction_marks(bundled: BundledLayout, styles: Mapping[str, LineStyle]) -> Iterator[PathShape]:
+    """Give an arrowhead half way along every link that a line runs in one direction only."""
+    layout = bundled.layout
+    for line in layout.network.lines:
+        size = 0.27 * styles[line.id].width * bundled.settings.line_width_mm
+        for start, end in line.one_way_links:
+            link = layout.network.link_between.get(frozenset((start, end)))
+            if link is None or link.id not in layout.paths:
+                continue
+            path = layout.paths[link.id]
+            found = on_line(
+                bundled, line.id, *half_way(path if link.start == start else path[::-1])
+            )
+            if found is not None:
+                yield chevron(*found, size, line.text_color)
+
+
+def _paint_order(line: Line) -> tuple[int, int, str]:
+    """Put the weightiest and busiest lines on top; ties by id."""
+    return (-weight(line.mode), line.trips, line.id)
