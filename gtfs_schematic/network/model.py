@@ -78,6 +78,8 @@ class Line:
     """Median time between departures of the busier direction at its first stop, seconds."""
     one_way_links: tuple[tuple[str, str], ...] = ()
     """(from, to) of links that the line runs in this direction only."""
+    sort_order: int | None = None
+    """The feed's wish for the line's place in keys and bundles, smaller first."""
 
 
 @dataclass(frozen=True, slots=True)

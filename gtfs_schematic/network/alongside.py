@@ -1,0 +1,208 @@
+"""Put stations of one line onto the course of another that runs along the same way."""
+
+from __future__ import annotations
+
+import itertools
+from collections import defaultdict
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass
+from functools import cached_property
+
+import numpy as np
+import shapely
+from numpy.typing import NDArray
+
+from gtfs_schematic.geometry import Point, distance
+from gtfs_schematic.network.links import Pair
+from gtfs_schematic.network.model import NetworkSettings
+from gtfs_schematic.network.patterns import Ids
+from gtfs_schematic.network.tracks import Course, Track, samples
+
+_TOGETHER = 5.0
+"""Two courses run along each other if they stay within `alongside_m` for this many times as far:
+at a crossing of 30° or more they part sooner (2 / sin 30° = 4)."""
+_END_M = 20.0
+"""A station this near the end of a step stands beside its stop, not between two stops."""
+_STRETCH = 1.1
+"""Stations put in may not make a step longer than by this factor: no zigzags."""
+
+
+@dataclass(frozen=True)
+class _Run:
+    """One pattern with what the comparison needs, computed once."""
+
+    track: Track
+    way: str
+
+    @cached_property
+    def line(self) -> shapely.LineString:
+        line = shapely.linestrings(self.track.whole)
+        shapely.prepare(line)
+        return line
+
+    @cached_property
+    def points(self) -> Course:
+        return samples(self.track.whole)
+
+    @cached_property
+    def called(self) -> frozenset[str]:
+        return frozenset(self.track.calling.stations)
+
+    @cached_property
+    def steps(self) -> tuple[tuple[Pair, Course], ...]:
+        steps = itertools.pairwise(self.track.calling.stations)
+        return tuple(zip(steps, self.track.sections, strict=True))
+
+
+def passed_alongside(
+    tracks: Sequence[Track],
+    way_of: Mapping[str, str],
+    at: Mapping[str, Point],
+    done: Mapping[Pair, Ids],
+    settings: NetworkSettings,
+) -> dict[Pair, Ids]:
+    """Find the stations that stand beside a step of another line which runs along it.
+
+    A station goes in if (1) it lies within `alongside_m` of the step's course, between its ends;
+    (2) the step's pattern does not call there; (3) a pattern on the same kind of way calls there
+    and stays within `alongside_m` of the first for a long stretch about the station; (4) off the
+    street, where tracks side by side are often separate: both patterns also call at a common
+    station before and after it, and stay together between the two.
+
+    Parameters
+    ----------
+    tracks
+        All kept patterns.
+    way_of
+        Per line id the kind of way that it runs on.
+    at
+        Places of the stations, local metres.
+    done
+        Pairs that already run over other stations.
+    settings
+        For `alongside_m`.
+
+    Returns
+    -------
+    dict
+        Per pair the whole way from the lesser id to the greater.
+    """
+    runs = [_Run(track, way_of[track.calling.line_id]) for track in _undirected(tracks)]
+    callers: dict[str, list[int]] = defaultdict(list)
+    for n, run in enumerate(runs):
+        for station in sorted(run.called):
+            callers[station].append(n)
+    ids = sorted(callers)
+    tree = shapely.STRtree([shapely.points(at[station]) for station in ids])
+    banned = _neighbours(tracks)
+    found: dict[Pair, set[str]] = defaultdict(set)
+    courses: dict[Pair, Course] = {}
+    together: dict[tuple[int, int], NDArray[np.bool_]] = {}
+    for n, run in enumerate(runs):
+        for (a, b), section in run.steps:
+            pair = (min(a, b), max(a, b))
+            if pair in done:
+                continue
+            line = shapely.linestrings(section)
+            near = tree.query(line, predicate="dwithin", distance=settings.alongside_m)
+            for station in sorted(ids[i] for i in near):
+                if station in run.called or station in banned[pair]:
+                    continue
+                place = float(shapely.line_locate_point(line, shapely.points(at[station])))
+                if not _END_M < place < line.length - _END_M:
+                    continue
+                for m in callers[station]:
+                    if runs[m].way != run.way:
+                        continue
+                    if (n, m) not in together:
+                        together[n, m] = shapely.dwithin(
+                            run.line, shapely.points(runs[m].points), settings.alongside_m
+                        )
+                    if _runs_along(run, runs[m], (a, b), station, at, together[n, m], settings):
+                        found[pair].add(station)
+                        courses.setdefault(pair, section if a < b else section[::-1])
+                        break
+    return {
+        pair: way
+        for pair, stations in sorted(found.items())
+        if len(way := _in_order(pair, stations, courses[pair], at)) > 2
+    }
+
+
+def _undirected(tracks: Sequence[Track]) -> list[Track]:
+    """Keep one direction of every pattern that is run both ways over the same stations."""
+    kept: dict[tuple[str, Ids], Track] = {}
+    for track in tracks:
+        stations = track.calling.stations
+        kept.setdefault((track.calling.line_id, min(stations, stations[::-1])), track)
+    return list(kept.values())
+
+
+def _neighbours(tracks: Sequence[Track]) -> dict[Pair, set[str]]:
+    """Per step the stations that some pattern calls at right before or after it."""
+    beside: dict[Pair, set[str]] = defaultdict(set)
+    for track in tracks:
+        ids = track.calling.stations
+        for i, (a, b) in enumerate(itertools.pairwise(ids)):
+            beside[min(a, b), max(a, b)].update(ids[max(0, i - 1) : i], ids[i + 2 : i + 3])
+    return beside
+
+
+def _runs_along(
+    run: _Run,
+    other: _Run,
+    step: Pair,
+    station: str,
+    at: Mapping[str, Point],
+    inside: NDArray[np.bool_],
+    settings: NetworkSettings,
+) -> bool:
+    """Rules 3 and 4 for one station; `inside` says which points of `other` lie near `run`."""
+    points = other.points
+    middle = _nearest(points, at[station])
+    if not inside[middle]:
+        return False
+    outside = np.flatnonzero(~inside)
+    first = int(outside[outside < middle].max(initial=-1)) + 1
+    last = int(outside[outside > middle].min(initial=len(points))) - 1
+    gaps = np.hypot(*np.diff(points[first : last + 1], axis=0).T)
+    if float(gaps.sum()) < _TOGETHER * settings.alongside_m:
+        return False
+    if run.way == "street":
+        return True
+    return _joined_both_sides(run, other, step, (first, last), at)
+
+
+def _joined_both_sides(
+    run: _Run, other: _Run, step: Pair, stretch: tuple[int, int], at: Mapping[str, Point]
+) -> bool:
+    """Whether both call at a common station on either side within the stretch together."""
+    ids = run.track.calling.stations
+    i = next(k for k, pair in enumerate(itertools.pairwise(ids)) if pair == step)
+    sides = (
+        next((s for s in ids[i::-1] if s in other.called), None),
+        next((s for s in ids[i + 1 :] if s in other.called), None),
+    )
+    return all(
+        s is not None and stretch[0] <= _nearest(other.points, at[s]) <= stretch[1] for s in sides
+    )
+
+
+def _nearest(points: Course, place: Point) -> int:
+    return int(np.argmin(np.hypot(points[:, 0] - place[0], points[:, 1] - place[1])))
+
+
+def _in_order(pair: Pair, stations: set[str], course: Course, at: Mapping[str, Point]) -> Ids:
+    """Sort the stations along the step; drop the farthest aside until none makes a zigzag."""
+    line = shapely.linestrings(course)
+    dots = {station: shapely.points(at[station]) for station in sorted(stations)}
+    place = {s: float(shapely.line_locate_point(line, dot)) for s, dot in dots.items()}
+    aside = {s: float(shapely.distance(line, dot)) for s, dot in dots.items()}
+    inner = sorted(stations, key=lambda s: (place[s], s))
+    limit = _STRETCH * max(line.length, distance(at[pair[0]], at[pair[1]]))
+    while inner:
+        way = (pair[0], *inner, pair[1])
+        if sum(distance(at[p], at[q]) for p, q in itertools.pairwise(way)) <= limit:
+            return way
+        inner.remove(max(inner, key=lambda s: (aside[s], s)))
+    return pair

@@ -1,0 +1,305 @@
+"""Build the network of a timetable: the one way from `Timetable` to `Network`."""
+
+from __future__ import annotations
+
+from collections import defaultdict
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass
+
+from gtfs_schematic.errors import FeedError
+from gtfs_schematic.feed.model import Finding, LeftOut, Pattern, Route, Timetable
+from gtfs_schematic.geometry import distance
+from gtfs_schematic.network.alongside import passed_alongside
+from gtfs_schematic.network.colors import (
+    contrast,
+    generated_colors,
+    is_usable,
+    text_color_on,
+)
+from gtfs_schematic.network.kinds import kinds_of
+from gtfs_schematic.network.lines import name_of, route_groups
+from gtfs_schematic.network.links import (
+    WAYS,
+    Expansion,
+    expresses,
+    links_of,
+    steps_of,
+)
+from gtfs_schematic.network.model import Line, Link, Network, NetworkSettings, Station, Walk
+from gtfs_schematic.network.patterns import (
+    Calling,
+    Ids,
+    callings_of,
+    itineraries_of,
+    one_way_links,
+    shows,
+    without_rare,
+)
+from gtfs_schematic.network.service import service_of
+from gtfs_schematic.network.smooth import corridors_of
+from gtfs_schematic.network.stations import Sites, sites_of
+from gtfs_schematic.network.tracks import Track, sections_by_pair, track_of
+from gtfs_schematic.network.transfers import footways_of, merge_by_transfer, walks_between
+from gtfs_schematic.progress import Progress, Silent
+
+
+@dataclass(frozen=True)
+class _Chosen:
+    """Lines and the patterns of theirs that are drawn."""
+
+    groups: Mapping[str, tuple[Route, ...]]
+    """Per line id its routes."""
+    callings: tuple[Calling, ...]
+    left_out: tuple[LeftOut, ...]
+
+
+def build_network(
+    timetable: Timetable, settings: NetworkSettings, *, progress: Progress = Silent()
+) -> Network:
+    """Turn the timetable of one service date into its route-station graph.
+
+    Parameters
+    ----------
+    timetable
+        What the feed room read.
+    settings
+        How stops become stations and trips become links.
+    progress
+        Who listens.
+
+    Returns
+    -------
+    Network
+        Depends on the content of the timetable alone, not on the order of its tuples.
+
+    Raises
+    ------
+    FeedError
+        If nothing is left to draw.
+    """
+    progress.phase("Merging stops into stations")
+    sites, walk_notes = _sites(timetable, settings)
+    progress.phase("Gathering lines")
+    chosen = _choose(timetable, sites, settings)
+    if not chosen.callings:
+        raise FeedError(
+            "No trip of the service date calls at two places with coordinates, so there is no "
+            "network to draw. Choose another date or other modes.",
+            file="stop_times.txt",
+        )
+    progress.phase("Joining stations by links")
+    expansion = _expand(timetable, sites, chosen, settings)
+    ways = _ways(chosen, expansion)
+    links = links_of({line: [course for _, course in pairs] for line, pairs in ways.items()})
+    drawn = {station for link in links for station in (link.start, link.end)}
+    footways, far_walks = footways_of(timetable, sites)
+    walks = walks_between(footways, drawn, {frozenset((k.start, k.end)) for k in links})
+    stations = _stations(sites, links, walks, ways)
+    lines = _lines(timetable, chosen, ways, expansion)
+    undrawn = tuple(
+        LeftOut("station", site_id, "only patterns that are left out call here")
+        for site_id in sites.sites
+        if site_id not in drawn
+    )
+    left_out = (*sites.left_out, *chosen.left_out, *undrawn, *far_walks, *walk_notes)
+    return Network(
+        info=timetable.info,
+        agencies=tuple(sorted({agency.name for agency in timetable.agencies})),
+        stations=stations,
+        links=links,
+        walks=walks,
+        lines=lines,
+        corridors=corridors_of(stations, links),
+        findings=(*timetable.findings, *_color_findings(chosen, lines)),
+        left_out=tuple(
+            sorted({*timetable.left_out, *left_out}, key=lambda o: (o.kind, o.id, o.reason))
+        ),
+    )
+
+
+def _sites(timetable: Timetable, settings: NetworkSettings) -> tuple[Sites, tuple[LeftOut, ...]]:
+    sites = sites_of(timetable, settings)
+    footways, _ = footways_of(timetable, sites)
+    return merge_by_transfer(sites, footways, settings), ()
+
+
+def _choose(timetable: Timetable, sites: Sites, settings: NetworkSettings) -> _Chosen:
+    routes = sorted(timetable.routes, key=lambda route: route.id)
+    groups = {
+        group[0].id: group for group in route_groups(routes, timetable.patterns, sites.site_of)
+    }
+    line_of = {route.id: line_id for line_id, group in groups.items() for route in group}
+    by_line: dict[str, list[Calling]] = defaultdict(list)
+    for calling in callings_of(timetable.patterns, line_of, sites.site_of):
+        by_line[calling.line_id].append(calling)
+
+    def length(a: str, b: str) -> float:
+        return distance(sites.sites[a].at, sites.sites[b].at)
+
+    def same_way(part: Ids, whole: Ids) -> bool:
+        return shows(part, whole, length, settings.express_detour)
+
+    kept: list[Calling] = []
+    left_out = [
+        LeftOut("route", route.id, "none of its trips calls at two places with coordinates")
+        for route in routes
+        if route.id not in line_of
+    ]
+    for line_id in sorted(by_line):
+        some, rare = without_rare(by_line[line_id], settings.min_pattern_share, same_way)
+        kept.extend(some)
+        left_out.extend(rare)
+    return _Chosen(groups, tuple(kept), tuple(left_out))
+
+
+def _expand(
+    timetable: Timetable, sites: Sites, chosen: _Chosen, settings: NetworkSettings
+) -> Expansion:
+    at = {site_id: site.at for site_id, site in sites.sites.items()}
+    tracks = _tracks(timetable, sites, chosen)
+    way_of = {
+        line_id: WAYS.get(group[0].mode, group[0].mode) for line_id, group in chosen.groups.items()
+    }
+    steps = steps_of(tracks, sections_by_pair(tracks), way_of)
+    over = expresses(steps, at, settings)
+    return Expansion(over | passed_alongside(tracks, way_of, at, over, settings))
+
+
+def _tracks(timetable: Timetable, sites: Sites, chosen: _Chosen) -> tuple[Track, ...]:
+    at = {site_id: site.at for site_id, site in sites.sites.items()}
+    placed = [s for s in timetable.stops if s.id in sites.site_of and s.lon is not None]
+    metres = sites.ground.metres([(s.lon or 0.0, s.lat or 0.0) for s in placed])
+    stops = {s.id: (float(x), float(y)) for s, (x, y) in zip(placed, metres, strict=True)}
+    shapes = {
+        shape_id: sites.ground.metres(timetable.shapes[shape_id])
+        for shape_id in sorted({c.shape_id for c in chosen.callings if c.shape_id is not None})
+        if shape_id in timetable.shapes
+    }
+    return tuple(
+        track_of(calling, stops, at, shapes.get(calling.shape_id or ""))
+        for calling in chosen.callings
+    )
+
+
+def _ways(chosen: _Chosen, expansion: Expansion) -> dict[str, tuple[tuple[Ids, Ids], ...]]:
+    """Per line its (itinerary, course) pairs."""
+    by_line: dict[str, list[Calling]] = defaultdict(list)
+    for calling in chosen.callings:
+        by_line[calling.line_id].append(calling)
+    return {
+        line_id: itineraries_of(callings, expansion.course)
+        for line_id, callings in sorted(by_line.items())
+    }
+
+
+def _stations(
+    sites: Sites,
+    links: Sequence[Link],
+    walks: Sequence[Walk],
+    ways: Mapping[str, Sequence[tuple[Ids, Ids]]],
+) -> tuple[Station, ...]:
+    calls: dict[str, set[str]] = {s: set() for k in links for s in (k.start, k.end)}
+    for line_id, pairs in ways.items():
+        for itinerary, _ in pairs:
+            for station in itinerary:
+                calls[station].add(line_id)
+    group = {station: station for station in calls}
+    for walk in walks:
+        low, high = sorted((group[walk.start], group[walk.end]))
+        group = {station: low if head == high else head for station, head in group.items()}
+    walked = frozenset(end for walk in walks for end in (walk.start, walk.end))
+    kinds = kinds_of({s: frozenset(ids) for s, ids in calls.items()}, links, walked, ways)
+    ids = sorted(calls)
+    degrees = sites.ground.degrees([sites.sites[station].at for station in ids])
+    return tuple(
+        Station(
+            id=site.id,
+            name=site.name,
+            second_name=site.second_name,
+            stop_ids=site.stop_ids,
+            lon=round(float(lon), 7),
+            lat=round(float(lat), 7),
+            kind=kinds[site.id],
+            group=group[site.id],
+            lines=tuple(sorted(calls[site.id])),
+            boarding=site.boarding,
+            merge_reason=site.merge_reason,
+        )
+        for site, (lon, lat) in zip((sites.sites[s] for s in ids), degrees, strict=True)
+    )
+
+
+def _lines(
+    timetable: Timetable,
+    chosen: _Chosen,
+    ways: Mapping[str, Sequence[tuple[Ids, Ids]]],
+    expansion: Expansion,
+) -> tuple[Line, ...]:
+    patterns: dict[str, list[Pattern]] = defaultdict(list)
+    for pattern in timetable.patterns:
+        patterns[pattern.route_id].append(pattern)
+    named = {line_id: _main_route(chosen.groups[line_id], patterns) for line_id in ways}
+    usable = {
+        key: route.color for key, route in named.items() if route.color and is_usable(route.color)
+    }
+    colors = usable | generated_colors([key for key in named if key not in usable], usable.values())
+    days = timetable.operating_days
+    all_days = frozenset().union(*days.values())
+    lines = []
+    for line_id, pairs in sorted(ways.items()):
+        group = chosen.groups[line_id]
+        own_days = frozenset().union(*(days.get(route.id, frozenset()) for route in group))
+        service = service_of(
+            [pattern for route in group for pattern in patterns[route.id]], own_days, all_days
+        )
+        wanted = named[line_id].text_color if line_id in usable else None
+        orders = [route.sort_order for route in group if route.sort_order is not None]
+        lines.append(
+            Line(
+                id=line_id,
+                name=name_of(group),
+                long_name=named[line_id].long_name,
+                color=colors[line_id],
+                text_color=text_color_on(colors[line_id], wanted),
+                color_from_feed=line_id in usable,
+                mode=group[0].mode,
+                route_ids=tuple(route.id for route in group),
+                itineraries=tuple(itinerary for itinerary, _ in pairs),
+                courses=tuple(course for _, course in pairs),
+                trips=service.trips,
+                service=service.pattern,
+                first_departure_s=service.first_s,
+                last_departure_s=service.last_s,
+                headway_s=service.headway_s,
+                one_way_links=one_way_links(
+                    expansion.course(c.stations) for c in chosen.callings if c.line_id == line_id
+                ),
+                sort_order=min(orders, default=None),
+            )
+        )
+    return tuple(lines)
+
+
+def _main_route(group: Sequence[Route], patterns: Mapping[str, Sequence[Pattern]]) -> Route:
+    """The route with most trips gives the line its color and long name."""
+
+    def trips(route: Route) -> int:
+        return sum(len(pattern.departures_s) for pattern in patterns[route.id])
+
+    return min(group, key=lambda route: (-trips(route), route.id))
+
+
+def _color_findings(chosen: _Chosen, lines: Sequence[Line]) -> tuple[Finding, ...]:
+    """Name the colors that were replaced, and those that are hard to see."""
+    findings = []
+    for line in lines:
+        if not line.color_from_feed:
+            message = f"line {line.name} has no color that shows on white; {line.color} was chosen"
+            findings.append(Finding("info", "routes.txt", message, field="route_color"))
+        elif contrast(line.color, "#FFFFFF") < 3.0:
+            ratio = contrast(line.color, "#FFFFFF")
+            message = f"line {line.name} is pale: contrast {ratio:.2f}:1 on white, 3:1 is wanted"
+            findings.append(
+                Finding("warning", "routes.txt", message, field="route_color", value=line.color)
+            )
+    return tuple(findings)
