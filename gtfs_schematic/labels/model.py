@@ -11,7 +11,6 @@ from pydantic import BaseModel, ConfigDict, Field
 from gtfs_schematic.bundles.model import BundledLayout
 from gtfs_schematic.geometry import Point
 
-
 Side = Literal["E", "NE", "N", "NW", "W", "SW", "S", "SE"]
 """Where a label lies, as seen from its marker."""
 

@@ -1,0 +1,170 @@
+"""The candidates of all stations become a choice in whole numbers."""
+
+from __future__ import annotations
+
+from collections import defaultdict
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+import numpy as np
+import shapely
+from numpy.typing import NDArray
+
+from gtfs_schematic.labels.candidates import free_candidates
+from gtfs_schematic.labels.choice import PairCost, Problem
+from gtfs_schematic.labels.costs import candidate_costs
+from gtfs_schematic.labels.model import LabelSettings
+from gtfs_schematic.labels.neighbors import HAND, SIDE, TILTED, Neighbors, hand
+from gtfs_schematic.labels.obstacles import Obstacles, Shapes
+from gtfs_schematic.labels.positions import Candidate, Reach
+from gtfs_schematic.labels.site import OCTANTS, Site
+
+_UNITS = 10.0
+"""Whole numbers per unit of cost."""
+_PER_CLASS = 5
+"""Candidates kept per station, side and angle before conflicts are known."""
+_PER_STATION = 40
+"""Candidates kept per station in the end."""
+
+_WORD_SPACE_MM = 0.5
+"""Half of what two names in one row are kept apart beyond the clearance."""
+
+
+@dataclass(frozen=True, slots=True)
+class Entry:
+    """A candidate, its box on the sheet and its cost in whole numbers."""
+
+    candidate: Candidate
+    box: shapely.Polygon
+    cost: int
+
+    @property
+    def kind(self) -> tuple[int, bool]:
+        """Give the side and whether the label is tilted: all that neighbours care about."""
+        return OCTANTS.index(self.candidate.side), self.candidate.angle_deg != 0.0
+
+
+def entries_of(
+    sites: Sequence[Site], obstacles: Obstacles, settings: LabelSettings, reach: Reach
+) -> dict[str, list[Entry]]:
+    """Give the free candidates per station id, the cheapest of each side and angle."""
+    candidates, boxes = free_candidates(sites, obstacles, settings, reach)
+    costs = np.rint(_UNITS * candidate_costs(candidates, boxes, obstacles, settings))
+    found: dict[str, list[Entry]] = {site.station_id: [] for site in sites}
+    kept: dict[tuple[str, tuple[int, bool]], int] = defaultdict(int)
+    for i in np.argsort(costs, kind="stable").tolist():
+        entry = Entry(candidates[i], boxes[i], int(costs[i]))
+        key = (entry.candidate.site.station_id, entry.kind)
+        if kept[key] < _PER_CLASS:
+            kept[key] += 1
+            found[key[0]].append(entry)
+    return found
+
+
+def state_problem(
+    groups: Sequence[Sequence[Entry]],
+    neighbors: Sequence[Neighbors],
+    clearance_mm: float,
+    held: Sequence[Entry] = (),
+) -> tuple[Problem, tuple[Entry, ...]]:
+    """State the choice among entries, one group per station, and give the entries in its order.
+
+    An entry is left out if a cheaper one of the same station, side and angle excludes nothing
+    that it does not exclude itself; `held` entries always stay.
+    """
+    entries = [entry for group in groups for entry in group]
+    owner = np.repeat(np.arange(len(groups)), [len(group) for group in groups])
+    conflicts = _conflicts(entries, owner, clearance_mm)
+    wanted = {id(entry) for entry in held}
+    stay = frozenset(i for i, entry in enumerate(entries) if id(entry) in wanted)
+    kept = [
+        i
+        for group in _members(owner, len(groups))
+        for i in _undominated(group, entries, conflicts, stay)
+    ]
+    number = {old: new for new, old in enumerate(kept)}
+    members: list[list[int]] = [[] for _ in groups]
+    for old in kept:
+        members[owner[old]].append(number[old])
+    left = tuple(entries[old] for old in kept)
+    problem = Problem(
+        groups=tuple(map(tuple, members)),
+        costs=tuple(entry.cost for entry in left),
+        conflicts=tuple(
+            frozenset(number[c] for c in conflicts[old] if c in number) for old in kept
+        ),
+        sides=tuple(entry.kind[0] for entry in left),
+        tilts=tuple(entry.kind[1] for entry in left),
+        pairs=tuple(_pair_cost(pair, members, left) for pair in neighbors),
+    )
+    return problem, left
+
+
+def _members(owner: NDArray[np.int64], count: int) -> list[list[int]]:
+    """Give the entries of each station."""
+    members: list[list[int]] = [[] for _ in range(count)]
+    for i, station in enumerate(owner.tolist()):
+        members[station].append(i)
+    return members
+
+
+def _conflicts(
+    entries: Sequence[Entry], owner: NDArray[np.int64], clearance_mm: float
+) -> list[frozenset[int]]:
+    """Give for each entry those of other stations that come too near."""
+    if not entries:
+        return []
+    boxes = _lengthened(np.array([entry.box for entry in entries], dtype=object))
+    tree = shapely.STRtree(boxes)
+    first, second = tree.query(boxes, predicate="dwithin", distance=clearance_mm)
+    foreign = owner[first] != owner[second]
+    lists: list[list[int]] = [[] for _ in entries]
+    for i, j in zip(first[foreign].tolist(), second[foreign].tolist(), strict=True):
+        lists[i].append(j)
+    return [frozenset(others) for others in lists]
+
+
+def _lengthened(boxes: Shapes) -> Shapes:
+    """Give boxes that are longer at both ends of the text, so that names in a row stay apart."""
+    corners = shapely.get_coordinates(boxes).reshape(len(boxes), 5, 2)[:, :4]
+    along = corners[:, 1] - corners[:, 0]
+    ends = _WORD_SPACE_MM * along / np.linalg.norm(along, axis=1)[:, None]
+    ways = np.array([-1.0, 1.0, 1.0, -1.0])
+    longer: Shapes = shapely.polygons(corners + ways[None, :, None] * ends[:, None, :])
+    return longer
+
+
+def _undominated(
+    group: Sequence[int],
+    entries: Sequence[Entry],
+    conflicts: Sequence[frozenset[int]],
+    stay: frozenset[int],
+) -> list[int]:
+    """Give the entries of a station worth choosing from, cheapest first."""
+    kept: list[int] = []
+    for i in sorted(group, key=lambda i: (entries[i].cost, i)):
+        better = (j for j in kept if entries[j].kind == entries[i].kind)
+        if i in stay or not any(conflicts[j] <= conflicts[i] for j in better):
+            kept.append(i)
+    return [i for rank, i in enumerate(kept) if rank < _PER_STATION or i in stay]
+
+
+def _pair_cost(
+    pair: Neighbors, members: Sequence[Sequence[int]], entries: Sequence[Entry]
+) -> PairCost:
+    """Give the cost of a pair of neighbours in whole numbers."""
+    ends = ((pair.first, pair.leaving), (pair.second, pair.arriving))
+    hands = {
+        i: hand(direction, entries[i].candidate.side)
+        for station, direction in ends
+        for i in members[station]
+    }
+    scale = _UNITS * pair.weight
+    return PairCost(
+        first=pair.first,
+        second=pair.second,
+        hands=hands,
+        hand=round(scale * HAND),
+        tilt=round(scale * TILTED),
+        side=round(scale * SIDE),
+    )
