@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import datetime as dt
 from collections import defaultdict
-from collections.abc import Mapping
+from collections.abc import Container, Iterable, Mapping
 from dataclasses import dataclass
 
 from gtfs_schematic.feed.cells import Cell, whole_of
@@ -62,11 +62,24 @@ def read_calendars(tables: Tables) -> Calendars:
     return Calendars(tuple(_spans(tables)), tuple(_exceptions(tables)))
 
 
-def read_headways(tables: Tables) -> Mapping[str, tuple[Headway, ...]]:
+def find_unknown_services(tables: Tables, calendars: Calendars, service_ids: Iterable[str]) -> None:
+    """Find services of trips that neither calendar table has; such trips never run."""
+    known = {row.service_id for row in calendars.spans}
+    known |= {row.service_id for row in calendars.exceptions}
+    for ident in sorted(set(service_ids) - known):
+        fault = "service of a trip is in neither calendar.txt nor calendar_dates.txt"
+        tables.notebook.find("error", "trips.txt", fault, field="service_id", value=ident)
+
+
+def read_headways(tables: Tables, trip_ids: Container[str]) -> Mapping[str, tuple[Headway, ...]]:
     """Give the usable rows of frequencies.txt per trip id, in order of time."""
     headways: defaultdict[str, list[Headway]] = defaultdict(list)
     file = "frequencies.txt"
     for row, (trip, start, end, text) in tables.rows(file, REQUIRED_COLUMNS[file]):
+        if trip not in trip_ids:
+            fault = "trip is not in trips.txt; the row does not count"
+            Cell(file, row, "trip_id", trip).found(tables.notebook, "error", fault)
+            continue
         headway = whole_of(tables.notebook, Cell(file, row, "headway_secs", text))
         try:
             start_s, end_s = parse_time(start), parse_time(end)

@@ -25,6 +25,8 @@ _COLUMNS = (
     "pickup_type",
     "drop_off_type",
 )
+NOT_TODAY = -1
+_UNKNOWN = -2
 _NO_TIME = -1
 
 
@@ -64,6 +66,8 @@ def read_calls(
 ) -> Calls:
     """Read the calls of the trips given, leaving out trips that cannot be used.
 
+    Rows are read one by one and only the calls of these trips are kept, as numbers.
+
     A call does not count if riders can neither board nor alight, if it names no stop or one
     that stops.txt does not have, or if its stop cannot be placed. A trip does not count if the
     order of its calls is unknown, if it has no time, or if fewer than two calls remain.
@@ -71,14 +75,15 @@ def read_calls(
     Parameters
     ----------
     trips
-        Numbers of the trips of the service date, by id, from 0 in order.
+        Numbers of all trips by id: from 0 in order of id for those of the service date,
+        `NOT_TODAY` for the others.
     stops
         Numbers of all stops, by id; order of ids and of numbers are the same.
     placed
         Numbers of the stops that have a place.
     """
     calls, broken = _stream(tables, trips, stops)
-    ids = list(trips)
+    ids = [ident for ident, number in trips.items() if number != NOT_TODAY]
     for trip in sorted(broken):
         tables.notebook.leave_out("trip", ids[trip], "the order of its stops is unknown")
     calls = calls.where(~np.isin(calls.trip, sorted(broken)))
@@ -106,8 +111,12 @@ def _stream(
     for row, (trip_id, stop_id, sequence, arrival, departure, pickup, drop_off) in tables.rows(
         _FILE, _COLUMNS
     ):
-        trip = trips.get(trip_id)
-        if trip is None or (pickup == "1" and drop_off == "1"):
+        trip = trips.get(trip_id, _UNKNOWN)
+        if trip < 0 or (pickup == "1" and drop_off == "1"):
+            if trip == _UNKNOWN:
+                Cell(_FILE, row, "trip_id", trip_id).found(
+                    notes, "error", "trip is not in trips.txt"
+                )
             continue
         stop = stops.get(stop_id)
         if stop is None:
@@ -199,53 +208,61 @@ def _drop_short(tables: Tables, calls: Calls, trip_ids: list[str]) -> Calls:
 
 
 def _with_times(tables: Tables, calls: Calls, trip_ids: list[str]) -> Calls:
-    """Fill in missing times and make them run forward.
+    """Fill in missing times and make them run forward; trips without any time are left out."""
+    calls = replace(
+        calls,
+        arrival=np.where(calls.arrival == _NO_TIME, calls.departure, calls.arrival),
+        departure=np.where(calls.departure == _NO_TIME, calls.arrival, calls.departure),
+    )
+    timed = np.isin(calls.trip, calls.trip[calls.arrival != _NO_TIME])
+    for trip in np.unique(calls.trip[~timed]).tolist():
+        tables.notebook.leave_out("trip", trip_ids[trip], "no time at any stop")
+    return _forward(tables, _interpolated(calls.where(timed)))
 
-    A call with one time has it as both. Between known times, missing ones lie evenly by number
-    of calls; before the first and after the last known one, they are equal to it. Trips without
-    any time are left out.
+
+def _interpolated(calls: Calls) -> Calls:
+    """Fill in missing times.
+
+    Between known times, missing ones lie evenly by number of calls; before the first and after
+    the last known one of a trip, they are equal to it.
     """
-    arrival = np.where(calls.arrival == _NO_TIME, calls.departure, calls.arrival)
-    departure = np.where(calls.departure == _NO_TIME, calls.arrival, calls.departure)
+    arrival, departure = calls.arrival.copy(), calls.departure.copy()
     known = arrival != _NO_TIME
-    starts, ends = _bounds(calls.trip)
-    if not known.all():
-        timed = np.zeros(len(trip_ids), dtype=bool)
-        timed[calls.trip[known]] = True
-        for trip in np.unique(calls.trip[~timed[calls.trip]]).tolist():
-            tables.notebook.leave_out("trip", trip_ids[trip], "no time at any stop")
-        keep = timed[calls.trip]
-        calls, arrival, departure, known = (
-            calls.where(keep),
-            arrival[keep],
-            departure[keep],
-            known[keep],
-        )
-        starts, ends = _bounds(calls.trip)
-        for start, end in zip(starts.tolist(), ends.tolist(), strict=True):
-            if known[start] and known[end - 1]:
-                continue
-            there = start + np.flatnonzero(known[start:end])
-            arrival[start : there[0]] = departure[start : there[0]] = arrival[there[0]]
-            arrival[there[-1] + 1 : end] = departure[there[-1] + 1 : end] = departure[there[-1]]
-            known[start : there[0]] = known[there[-1] + 1 : end] = True
-        # All ends are known now, so interpolation never reaches from trip to trip.
-        place = np.arange(len(known))
-        filled = np.rint(np.interp(place, place[known], arrival[known])).astype(np.int64)
-        arrival = np.where(known, arrival, filled)
-        departure = np.where(known, departure, filled)
-    backward = (calls.trip[1:] == calls.trip[:-1]) & (arrival[1:] < arrival[:-1])
+    if known.all():
+        return calls
+    for start, end in calls.spans():
+        if known[start] and known[end - 1]:
+            continue
+        there = start + np.flatnonzero(known[start:end])
+        first, last = int(there[0]), int(there[-1])
+        arrival[start:first] = departure[start:first] = arrival[first]
+        arrival[last + 1 : end] = departure[last + 1 : end] = departure[last]
+        known[start:first] = known[last + 1 : end] = True
+    # All ends are known now, so interpolation never reaches from trip to trip.
+    place = np.arange(len(known))
+    gaps = ~known
+    between = np.interp(place[gaps], place[known], arrival[known])
+    arrival[gaps] = departure[gaps] = np.rint(between).astype(np.int64)
+    return replace(calls, arrival=arrival, departure=departure)
+
+
+def _forward(tables: Tables, calls: Calls) -> Calls:
+    """Make no arrival earlier than the one before."""
+    backward = (calls.trip[1:] == calls.trip[:-1]) & (calls.arrival[1:] < calls.arrival[:-1])
+    if not backward.any():
+        return calls
     for n in np.flatnonzero(backward).tolist():
         tables.notebook.find(
             "error",
             _FILE,
-            "arrives earlier than at the stop before; the earlier time is taken for both",
+            "arrives earlier than at a stop before; the later time is taken for both",
             row=int(calls.row[n + 1]),
             field="arrival_time",
         )
-    for start, end in zip(starts.tolist(), ends.tolist(), strict=True) if backward.any() else ():
+    arrival = calls.arrival.copy()
+    for start, end in calls.spans():
         arrival[start:end] = np.maximum.accumulate(arrival[start:end])
-    return replace(calls, arrival=arrival, departure=departure)
+    return replace(calls, arrival=arrival)
 
 
 def _bounds(trip: Ints) -> tuple[Ints, Ints]:

@@ -60,7 +60,8 @@ def name_of(notebook: Notebook, cell: Cell) -> str:
         cell.found(
             notebook,
             "info",
-            "text holds line ends, tabs, double spaces or control characters; each run is taken as one space",
+            "text holds line ends, tabs, double spaces or control characters; "
+            "each run of them is taken as one space",
         )
     return cleaned
 

@@ -2,56 +2,35 @@
 
 The page to read first in this room. Each feed goes through: finding its files (archive.py), a
 fingerprint (digest.py), its tables as text (tables.py), routes and trips (routes.py), calendars
-(calendars.py); then one service date is chosen for all (service.py); then, per feed, the calls of
-that date (calls.py) become patterns (patterns.py), and what those need is added: stops (stops.py),
-transfers and shapes (ways.py), names and credits (info.py). Several feeds are joined at the end
-(join.py).
+(calendars.py), all of it called by plan.py. Then one service date is chosen for all feeds
+(service.py). Then, per feed, the calls of that date (calls.py) become patterns (patterns.py), and
+what those need is added: stops (stops.py), transfers and shapes (ways.py), names and credits
+(info.py). Several feeds are joined at the end (join.py).
 """
 
 from __future__ import annotations
 
 import datetime as dt
 from collections import Counter, defaultdict
-from collections.abc import Mapping, Sequence
-from contextlib import ExitStack
-from dataclasses import dataclass
+from collections.abc import Iterator, Sequence
+from contextlib import ExitStack, contextmanager
 from pathlib import Path
 
 from gtfs_schematic.errors import FeedError, UsageError
-from gtfs_schematic.feed.archive import FeedFiles, open_feed
-from gtfs_schematic.feed.calendars import Headway, read_calendars, read_headways
-from gtfs_schematic.feed.calls import read_calls
-from gtfs_schematic.feed.digest import fingerprint
-from gtfs_schematic.feed.findings import Notebook
-from gtfs_schematic.feed.info import Imprint, read_attributions, read_imprint, read_stop_names
+from gtfs_schematic.feed.archive import open_feed
+from gtfs_schematic.feed.calls import NOT_TODAY, read_calls
+from gtfs_schematic.feed.info import read_attributions, read_stop_names
 from gtfs_schematic.feed.join import join_timetables
-from gtfs_schematic.feed.model import Agency, FeedInfo, FeedSettings, Pattern, Route, Timetable
+from gtfs_schematic.feed.model import FeedInfo, FeedSettings, Pattern, Route, Timetable
 from gtfs_schematic.feed.modes import MODES, REPLACEMENT
 from gtfs_schematic.feed.patterns import gather_patterns
-from gtfs_schematic.feed.routes import Trip, keep_modes, read_agencies, read_routes, read_trips
-from gtfs_schematic.feed.service import Validity, choose_date, typical_weekdays, validity_of
-from gtfs_schematic.feed.stops import read_stops, stops_of_timetable
-from gtfs_schematic.feed.tables import Tables, check_tables
+from gtfs_schematic.feed.plan import Plan, plan_feed
+from gtfs_schematic.feed.service import choose_date, typical_weekdays
+from gtfs_schematic.feed.stops import leave_out_unserved, read_stops, stops_of_timetable
 from gtfs_schematic.feed.ways import read_shapes, read_transfers, without_missing_shapes
 from gtfs_schematic.progress import Progress, Silent
 
 _SILENT = Silent()
-
-
-@dataclass(frozen=True)
-class _Plan:
-    """What is known of a feed before its service date is chosen."""
-
-    tables: Tables
-    sha256: str
-    imprint: Imprint
-    agencies: Mapping[str, Agency]
-    routes: Mapping[str, Route]
-    """Of the wanted modes."""
-    trips: Sequence[Trip]
-    """Of those routes, in order of id."""
-    headways: Mapping[str, tuple[Headway, ...]]
-    validity: Validity
 
 
 def read_feed(
@@ -92,13 +71,16 @@ def read_feed(
         plans = []
         for number, path in enumerate(paths, start=1):
             prefix = f"{number}:" if len(paths) > 1 else ""
-            plans.append(_plan(stack.enter_context(open_feed(Path(path))), prefix, settings))
+            files = stack.enter_context(open_feed(Path(path)))
+            with _naming(prefix):
+                plans.append(plan_feed(files, prefix, settings))
             progress.step()
         date, reason = choose_date([plan.validity for plan in plans], settings.date)
         progress.note(reason)
         parts = []
         for plan in plans:
-            parts.append(_timetable(plan, date, reason, settings))
+            with _naming(plan.tables.notebook.prefix):
+                parts.append(_timetable(plan, date, reason, settings))
             progress.step()
     timetable = join_timetables(parts)
     if not timetable.patterns:
@@ -108,36 +90,35 @@ def read_feed(
     return timetable
 
 
-def _plan(files: FeedFiles, prefix: str, settings: FeedSettings) -> _Plan:
-    """Read what is needed to choose the service date."""
-    content = fingerprint(files)
-    tables = Tables(files, content.not_utf8, Notebook(prefix))
-    check_tables(tables)
-    agencies = read_agencies(tables)
-    routes = read_routes(tables, agencies)
-    trips = read_trips(tables, routes)
-    kept = keep_modes(tables, routes, settings.modes)
-    headways = read_headways(tables)
-    drawn = sorted((t for t in trips.values() if t.route_id in kept), key=lambda trip: trip.id)
-    counts: Counter[str] = Counter()
-    for trip in drawn:
-        counts[trip.service_id] += sum(len(r.departures) for r in headways.get(trip.id, ())) or 1
-    imprint = read_imprint(tables)
-    validity = validity_of(prefix + files.label, read_calendars(tables), imprint, counts)
-    return _Plan(tables, content.sha256, imprint, agencies, kept, drawn, headways, validity)
+@contextmanager
+def _naming(prefix: str) -> Iterator[None]:
+    """Let errors of one feed among several say which."""
+    try:
+        yield
+    except FeedError as error:
+        if not prefix or error.file is None:
+            raise
+        raise FeedError(
+            error.what,
+            file=prefix + error.file,
+            row=error.row,
+            field=error.field,
+            value=error.value,
+        ) from error
 
 
-def _timetable(plan: _Plan, date: dt.date, reason: str, settings: FeedSettings) -> Timetable:
+def _timetable(plan: Plan, date: dt.date, reason: str, settings: FeedSettings) -> Timetable:
     """Read what runs on the service date; ids are as in the feed, without prefix."""
     tables = plan.tables
     running = plan.validity.days.get(date, frozenset())
     trips = [trip for trip in plan.trips if trip.service_id in running]
+    today = {trip.id: n for n, trip in enumerate(trips)}
     table = read_stops(tables)
     stop_ids = sorted(table.own)
     numbers = {ident: n for n, ident in enumerate(stop_ids)}
     calls = read_calls(
         tables,
-        {trip.id: n for n, trip in enumerate(trips)},
+        {ident: today.get(ident, NOT_TODAY) for ident in plan.trip_ids},
         numbers,
         frozenset(numbers[ident] for ident in table.placed),
     )
@@ -145,9 +126,12 @@ def _timetable(plan: _Plan, date: dt.date, reason: str, settings: FeedSettings) 
     shapes = read_shapes(tables, {p.shape_id for p in patterns if p.shape_id})
     patterns = without_missing_shapes(tables, patterns, shapes)
     stops = stops_of_timetable(tables, table, {s for p in patterns for s in p.stop_ids})
+    leave_out_unserved(tables, table, stops, date)
     names = read_stop_names(tables, settings.language)
     routes = _running_routes(plan, patterns, date)
     agency_ids = {route.agency_id for route in routes}
+    for ident in plan.agencies.keys() - agency_ids:
+        tables.notebook.leave_out("agency", ident, f"none of its routes is drawn on {date}")
     return Timetable(
         _info(plan, date, reason, agency_ids, [route.id for route in routes]),
         tuple(plan.agencies[ident] for ident in sorted(agency_ids & plan.agencies.keys())),
@@ -162,7 +146,7 @@ def _timetable(plan: _Plan, date: dt.date, reason: str, settings: FeedSettings) 
     )
 
 
-def _running_routes(plan: _Plan, patterns: Sequence[Pattern], date: dt.date) -> tuple[Route, ...]:
+def _running_routes(plan: Plan, patterns: Sequence[Pattern], date: dt.date) -> tuple[Route, ...]:
     """Give the routes with patterns; the others are noted as left out, with the reason."""
     running = {pattern.route_id for pattern in patterns}
     trips: defaultdict[str, set[str]] = defaultdict(set)
@@ -182,7 +166,7 @@ def _running_routes(plan: _Plan, patterns: Sequence[Pattern], date: dt.date) -> 
     return tuple(plan.routes[ident] for ident in sorted(running))
 
 
-def _operating_days(plan: _Plan, routes: Sequence[Route]) -> dict[str, frozenset[int]]:
+def _operating_days(plan: Plan, routes: Sequence[Route]) -> dict[str, frozenset[int]]:
     services: dict[str, set[str]] = {route.id: set() for route in routes}
     for trip in plan.trips:
         if trip.route_id in services:
@@ -191,7 +175,7 @@ def _operating_days(plan: _Plan, routes: Sequence[Route]) -> dict[str, frozenset
 
 
 def _info(
-    plan: _Plan, date: dt.date, reason: str, agency_ids: set[str], route_ids: list[str]
+    plan: Plan, date: dt.date, reason: str, agency_ids: set[str], route_ids: list[str]
 ) -> FeedInfo:
     return FeedInfo(
         plan.sha256,

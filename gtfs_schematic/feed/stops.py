@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import datetime as dt
 from collections import defaultdict
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, field, replace
@@ -87,6 +88,18 @@ def stops_of_timetable(tables: Tables, table: StopTable, called: Iterable[str]) 
         wanted.add(ident)
         wanted.update(table.chain[ident][-1:])
     return tuple(_settled(tables, table, ident) for ident in sorted(wanted))
+
+
+def leave_out_unserved(
+    tables: Tables, table: StopTable, stops: Iterable[Stop], date: dt.date
+) -> None:
+    """Note the stops and stations of the feed that no trip in the timetable calls at."""
+    served = {stop.id for stop in stops}
+    kinds = {0: "stop", 1: "station"}
+    for ident, stop in table.own.items():
+        if ident not in served and stop.location_type in kinds:
+            reason = f"no trip in the timetable of {date} calls at it"
+            tables.notebook.leave_out(kinds[stop.location_type], ident, reason)
 
 
 def _settled(tables: Tables, table: StopTable, ident: str) -> Stop:

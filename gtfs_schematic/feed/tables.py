@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import csv
 import io
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 from contextlib import contextmanager
 from dataclasses import dataclass
 from operator import itemgetter
@@ -74,7 +74,7 @@ class Tables:
         if not self.has(name):
             return
         with self._reader(name) as reader:
-            header = _header(name, reader)
+            header = self._header(name, reader)
             width = len(header)
             places = [header.index(column) if column in header else -1 for column in columns]
             # A place of -1 picks the empty text that is appended to every row.
@@ -98,7 +98,25 @@ class Tables:
     def header(self, name: str) -> list[str]:
         """Give the column names of a table, stripped; empty if the file is empty."""
         with self._reader(name) as reader:
-            return _header(name, reader)
+            return self._header(name, reader)
+
+    def _header(self, name: str, reader: Iterator[list[str]]) -> list[str]:
+        try:
+            header = [column.strip() for column in next(reader, [])]
+        except csv.Error as error:
+            raise FeedError(f"cannot be read as CSV ({error}).", file=name, row=1) from error
+        if name in self.not_utf8:
+            _refuse_bad_text(name, 1, header, header)
+        doubled = sorted({c for c in header if c and header.count(c) > 1})
+        if doubled:
+            raise FeedError(
+                "stands twice in the header, so it is not clear which column holds. "
+                "Remove one of them.",
+                file=name,
+                row=1,
+                field=doubled[0],
+            )
+        return header
 
     @contextmanager
     def _reader(self, name: str) -> Iterator[Iterator[list[str]]]:
@@ -189,31 +207,12 @@ def _lacking(name: str, present: tuple[str, ...]) -> str:
     return f"{name} (found {alike[0]!r})" if alike else name
 
 
-def _header(name: str, reader: Iterator[list[str]]) -> list[str]:
-    try:
-        header = [column.strip() for column in next(reader, [])]
-    except csv.Error as error:
-        raise FeedError(f"cannot be read as CSV ({error}).", file=name, row=1) from error
-    doubled = sorted({c for c in header if c and header.count(c) > 1})
-    if doubled:
-        raise FeedError(
-            f"has the column {doubled[0]} twice, so it is not clear which one holds. "
-            "Remove one of them.",
-            file=name,
-            row=1,
-            field=doubled[0],
-        )
-    return header
-
-
 def _pick_one(place: int) -> itemgetter[slice]:
     """Pick one value as a list of one, so that one column reads as several do."""
     return itemgetter(slice(place, place + 1 or None))
 
 
-def _refuse_bad_text(
-    name: str, number: int, columns: tuple[str, ...], texts: tuple[str, ...]
-) -> None:
+def _refuse_bad_text(name: str, number: int, columns: Sequence[str], texts: Sequence[str]) -> None:
     for column, text in zip(columns, texts, strict=True):
         if text.isascii():
             continue
@@ -224,6 +223,6 @@ def _refuse_bad_text(
                 "is not UTF-8 text. Save the file as UTF-8 (it may be in a Windows or Latin code).",
                 file=name,
                 row=number,
-                field=column,
+                field=column.encode("utf-8", "surrogateescape").decode("utf-8", "replace"),
                 value=shown,
             )

@@ -50,13 +50,15 @@ def read_transfers(
             continue  # a change within one stop, or from trip to trip, joins no two stops
         kind = whole_of(notes, at("transfer_type", type_)) or 0
         ident = f"{start} → {end}"
-        if kind not in _TRANSFER_TYPES:
-            at("transfer_type", type_).found(notes, "warning", "transfer type is unknown")
-            notes.leave_out("transfer", ident, "its type is unknown")
-        elif start not in stop_ids or end not in stop_ids:
+        if start not in stop_ids or end not in stop_ids:
             notes.leave_out("transfer", ident, "it names a stop that is not in the timetable")
+        elif kind not in _TRANSFER_TYPES:
+            at("transfer_type", type_).found(notes, "warning", "transfer type is unknown")
+            notes.leave_out("transfer", f"{ident}, type {kind}", "its type is unknown")
         elif kind == _NOT_POSSIBLE and any(narrowing):
-            notes.leave_out("transfer", ident, "forbidden for certain routes or trips only")
+            notes.leave_out(
+                "transfer", f"{ident}, type 3", "forbidden for certain routes or trips only"
+            )
         else:
             seconds = whole_of(notes, at("min_transfer_time", time))
             usable = seconds if seconds is not None and seconds >= 0 else None
