@@ -1,0 +1,116 @@
+"""Command `inspect`: what is in a feed, what is wrong with it, what a diagram would hold."""
+
+from __future__ import annotations
+
+import json
+from dataclasses import asdict
+from pathlib import Path
+from typing import TYPE_CHECKING, Any
+
+import click
+
+from gtfs_schematic.cli import options, words
+from gtfs_schematic.cli.console import listening
+
+if TYPE_CHECKING:
+    from gtfs_schematic.network.model import Line, Network
+
+_EPILOG = """\b
+Example:
+  gtfs-schematic inspect feed.zip --date 2026-03-11
+  gtfs-schematic inspect feed.zip --json > feed.json
+"""
+
+
+@click.command(epilog=_EPILOG)
+@options.feeds
+@options.feed_options
+@options.as_json
+@click.option(
+    "--geojson",
+    type=click.Path(path_type=Path),
+    metavar="FILE",
+    help="Also write the network as GeoJSON, to look at on a map.",
+)
+@click.option("--all", "everything", is_flag=True, help="List everything left out and found.")
+@options.quiet
+def inspect(
+    feeds: tuple[Path, ...],
+    geojson: Path | None,
+    **given: Any,  # noqa: ANN401 - the options of the registry
+) -> None:
+    """Show what is in FEED, what is wrong with it, and what a diagram of it would hold.
+
+    FEED is a GTFS zip file or a folder; several are taken as one network.
+    """
+    settings = options.settings_from(given)
+    from gtfs_schematic.network.export import to_geojson
+    from gtfs_schematic.pipeline import inspect as read
+
+    with listening(quiet=given["quiet"]) as progress:
+        _, network = read(feeds, settings, progress=progress)
+    if geojson is not None:
+        options.write_file(geojson, to_geojson(network))
+    if given["as_json"]:
+        click.echo(to_json(network))
+    else:
+        click.echo("\n".join(describe(network, everything=given["everything"])))
+
+
+def to_json(network: Network) -> bytes:
+    """Write what a feed holds, for machines."""
+    document = {
+        "service_date": network.info.service_date,
+        "service_reason": network.info.service_reason,
+        "publisher": network.info.publisher,
+        "version": network.info.version,
+        "start_date": network.info.start_date,
+        "end_date": network.info.end_date,
+        "agencies": list(network.agencies),
+        "lines": [
+            {
+                "id": line.id,
+                "name": line.name,
+                "mode": line.mode,
+                "route_ids": list(line.route_ids),
+                "trips": line.trips,
+            }
+            for line in network.lines
+        ],
+        "stations": len(network.stations),
+        "interchange_groups": network.groups,
+        "links": len(network.links),
+        "left_out": [asdict(item) for item in network.left_out],
+        "findings": [asdict(finding) for finding in network.findings],
+    }
+    return json.dumps(document, ensure_ascii=False, indent=1).encode()
+
+
+def describe(network: Network, *, everything: bool) -> list[str]:
+    """Write what a feed holds, for people."""
+    info = network.info
+    where = "--all lists them"
+    name = info.publisher or ", ".join(network.agencies) or "unknown publisher"
+    until = " to ".join(date for date in (info.start_date, info.end_date) if date)
+    version = f", version {info.version}" if info.version else ""
+    return [
+        f"Feed: {name}{version}{f', valid {until}' if until else ''}",
+        f"Agencies: {', '.join(network.agencies) or 'none named'}",
+        words.service_date(info),
+        f"Network: {words.size(network)}",
+        "Lines:",
+        *(f"  {_line(line, network)}" for line in network.lines),
+        *words.left_out(network.left_out, everything=everything, where=where),
+        *words.findings(network.findings, everything=everything, where=where),
+    ]
+
+
+def _line(line: Line, network: Network) -> str:
+    longest = max(line.itineraries, key=len, default=())
+    ends = [network.station[key].name for key in (longest[0], longest[-1])] if longest else []
+    course = f": {' – '.join(dict.fromkeys(ends))}" if ends else ""
+    stations = len({key for itinerary in line.itineraries for key in itinerary})
+    return (
+        f"{line.name} ({line.mode}){course}, {words.count(stations, 'station')}, "
+        f"{words.count(line.trips, 'trip')}"
+    )

@@ -1,0 +1,138 @@
+"""Arguments and options that several commands share, each said once."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Mapping
+from pathlib import Path
+from typing import TYPE_CHECKING, Any, TypeVar
+
+import click
+
+from gtfs_schematic.errors import UsageError
+
+if TYPE_CHECKING:
+    from gtfs_schematic.config import Settings
+
+Command = TypeVar("Command", bound=Callable[..., Any])
+
+SETTINGS = {
+    "date": "feed.date",
+    "mode": "feed.modes",
+    "language": "feed.language",
+    "sheet": "sheet.size",
+    "orientation": "sheet.orientation",
+    "fidelity": "layout.fidelity",
+    "effort": "layout.effort",
+    "title": "drawing.title",
+    "attribution": "drawing.attribution",
+}
+"""Which setting each option changes."""
+
+feeds = click.argument(
+    "feeds", nargs=-1, required=True, metavar="FEED...", type=click.Path(path_type=Path)
+)
+edition = click.argument("edition", metavar="EDITION", type=click.Path(path_type=Path))
+as_json = click.option("--json", "as_json", is_flag=True, help="Write JSON on standard output.")
+overwrite = click.option("--overwrite", is_flag=True, help="Replace what an earlier run wrote.")
+quiet = click.option("--quiet", "-q", is_flag=True, help="No progress on standard error.")
+limit = click.option(
+    "--limit",
+    "limits",
+    multiple=True,
+    metavar="MEASURE<VALUE",
+    help="Exit with 4 if the drift exceeds this, such as 'residual<0.1' (quote it); repeatable.",
+)
+
+_FEED_OPTIONS = (
+    click.option("--date", metavar="DATE", help="Service date: YYYY-MM-DD, or busiest."),
+    click.option("--mode", multiple=True, metavar="MODE", help="Keep this mode only; repeatable."),
+    click.option("--language", metavar="TAG", help="Second language for names, as a BCP 47 tag."),
+    click.option(
+        "--config",
+        type=click.Path(path_type=Path),
+        metavar="FILE",
+        help="Settings as TOML; configs/standard.toml explains them all.",
+    ),
+)
+_DRAW_OPTIONS = (
+    click.option("--sheet", metavar="SIZE", help="A4, A3 … 4A0, auto, or millimetres: 420x297."),
+    click.option(
+        "--orientation", metavar="WAY", help="portrait, landscape, or auto: as suits the network."
+    ),
+    click.option(
+        "--fidelity", type=float, metavar="0…1", help="1 keeps geography, 0 spaces stations evenly."
+    ),
+    click.option("--effort", metavar="LEVEL", help="quick, standard or thorough."),
+    click.option("--title", metavar="TEXT", help="Title on the sheet."),
+    click.option("--attribution", metavar="TEXT", help="Credit that the feed's licence asks for."),
+)
+
+
+def feed_options(command: Command) -> Command:
+    """Give a command the options that choose what of a feed is used."""
+    return _with(_FEED_OPTIONS, command)
+
+
+def draw_options(command: Command) -> Command:
+    """Give a command the options that change the picture."""
+    return _with(_DRAW_OPTIONS, command)
+
+
+def read_bytes(path: Path, what: str) -> bytes:
+    """Read a file that the user named.
+
+    Raises
+    ------
+    UsageError
+        If it cannot be read.
+    """
+    try:
+        return path.read_bytes()
+    except OSError as error:
+        raise UsageError(f"{path}: cannot read the {what} ({error.strerror or error}).") from error
+
+
+def write_file(path: Path, data: bytes) -> None:
+    """Write a file that the user named.
+
+    Raises
+    ------
+    UsageError
+        If it cannot be written.
+    """
+    try:
+        path.write_bytes(data)
+    except OSError as error:
+        raise UsageError(
+            f"{path}: cannot be written ({error.strerror or error}). Name another file."
+        ) from error
+
+
+def settings_from(given: Mapping[str, Any]) -> Settings:
+    """Give the settings of a configuration file and the options that win over it.
+
+    Parameters
+    ----------
+    given
+        The command's options by name; those that are None or empty were not given.
+    """
+    from gtfs_schematic.config import Settings, settings_from_toml, with_values
+
+    config = given.get("config")
+    settings = (
+        settings_from_toml(read_bytes(config, "configuration"), str(config))
+        if config is not None
+        else Settings()
+    )
+    values = {
+        SETTINGS[name]: value
+        for name, value in given.items()
+        if name in SETTINGS and value is not None and value != ()
+    }
+    return with_values(settings, values, "option") if values else settings
+
+
+def _with(options: tuple[Callable[[Command], Command], ...], command: Command) -> Command:
+    for option in reversed(options):
+        command = option(command)
+    return command

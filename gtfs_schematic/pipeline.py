@@ -1,0 +1,257 @@
+"""The whole way from a feed to the files of an edition: the page to read first.
+
+    feed -> network -> layout -> bundles -> labels -> drawing -> files
+                                             |
+                                             +-> edition -> drift
+
+Each stage is a pure function from one frozen type to the next. Behind each stands its own check,
+which shares no code with it: what a check faults never reaches a file.
+"""
+
+from __future__ import annotations
+
+import os
+from collections.abc import Sequence
+from dataclasses import dataclass
+from pathlib import Path
+
+from gtfs_schematic.bundles import check as bundles_check
+from gtfs_schematic.bundles.build import bundle
+from gtfs_schematic.bundles.model import BundledLayout, BundleSettings
+from gtfs_schematic.config import Settings
+from gtfs_schematic.drawing import check as drawing_check
+from gtfs_schematic.drawing.compose import compose
+from gtfs_schematic.drawing.model import Drawing
+from gtfs_schematic.drawing.pdf import to_pdf
+from gtfs_schematic.drawing.sheet import candidate_frames
+from gtfs_schematic.drawing.svg import to_svg
+from gtfs_schematic.drawing.words import sheet_title
+from gtfs_schematic.drift import check as drift_check
+from gtfs_schematic.drift.limits import Limit, judge
+from gtfs_schematic.drift.measure import measure_edition
+from gtfs_schematic.drift.model import DriftReport
+from gtfs_schematic.drift.page import to_html
+from gtfs_schematic.drift.report import to_csv
+from gtfs_schematic.drift.report import to_json as drift_to_json
+from gtfs_schematic.edition import check as edition_check
+from gtfs_schematic.edition.make import edition_of
+from gtfs_schematic.edition.model import Edition
+from gtfs_schematic.edition.save import to_json as edition_to_json
+from gtfs_schematic.errors import InternalFaultError, LayoutError
+from gtfs_schematic.feed import check as feed_check
+from gtfs_schematic.feed.model import Timetable
+from gtfs_schematic.feed.read import read_feed
+from gtfs_schematic.labels import check as labels_check
+from gtfs_schematic.labels.fonts import text_width_mm
+from gtfs_schematic.labels.model import LabelledLayout, LabelSettings
+from gtfs_schematic.labels.place import place_labels
+from gtfs_schematic.labels.room import room_requests
+from gtfs_schematic.layout import check as layout_check
+from gtfs_schematic.layout.engine import lay_out
+from gtfs_schematic.layout.model import Clearances, Layout, RoomRequest, SheetFrame
+from gtfs_schematic.network import check as network_check
+from gtfs_schematic.network.build import build_network
+from gtfs_schematic.network.model import Network
+from gtfs_schematic.progress import Progress, Silent
+
+ROUNDS = 3
+"""How often the layout may be asked for more room before names are left without a place."""
+
+MM_PER_PT = 25.4 / 72.0
+
+StrPath = str | os.PathLike[str]
+
+
+@dataclass(frozen=True, slots=True)
+class Result:
+    """What every stage of a run gave."""
+
+    settings: Settings
+    timetable: Timetable
+    network: Network
+    layout: Layout
+    bundled: BundledLayout
+    labelled: LabelledLayout
+    drawing: Drawing
+    edition: Edition
+    drift: DriftReport
+
+
+def draw(
+    paths: StrPath | Sequence[StrPath],
+    settings: Settings | None = None,
+    *,
+    progress: Progress = Silent(),  # noqa: B008 - it has no state
+) -> Result:
+    """Draw feeds as one diagram.
+
+    Parameters
+    ----------
+    paths
+        Zip file or folder; several are drawn as one network.
+    settings
+        What each room is told; None for the defaults.
+    progress
+        Who listens to what is going on.
+
+    Raises
+    ------
+    SchematicError
+        If the feed cannot be used, or the layout cannot meet what was asked.
+    InternalFaultError
+        If a stage's check faults its output: a defect of this program.
+    """
+    settings = settings or Settings()
+    timetable, network = inspect(paths, settings, progress=progress)
+    frames = candidate_frames(network, settings.sheet, settings.drawing)
+    labelled = _labelled(network, settings, frames, progress)
+
+    progress.phase("composing the sheet")
+    drawing = compose(labelled, settings.drawing)
+    _must_be_sound("drawing", drawing_check.faults(drawing, network))
+
+    progress.phase("measuring the drift")
+    edition = edition_of(labelled, sheet_title(network, settings.drawing))
+    _must_be_sound("edition", edition_check.faults(edition))
+    drift = measure_edition(edition)
+    _must_be_sound("drift", drift_check.faults(drift))
+
+    bundled = labelled.bundled
+    return Result(
+        settings,
+        timetable,
+        network,
+        bundled.layout,
+        bundled,
+        labelled,
+        drawing,
+        edition,
+        drift,
+    )
+
+
+def inspect(
+    paths: StrPath | Sequence[StrPath],
+    settings: Settings | None = None,
+    *,
+    progress: Progress = Silent(),  # noqa: B008 - it has no state
+) -> tuple[Timetable, Network]:
+    """Read feeds and build the network that a diagram of them would show.
+
+    Raises
+    ------
+    SchematicError
+        If the feed cannot be used.
+    """
+    settings = settings or Settings()
+    progress.phase("reading the feed")
+    each = [paths] if isinstance(paths, str | os.PathLike) else paths
+    timetable = read_feed([Path(path) for path in each], settings.feed, progress=progress)
+    _must_be_sound("feed", feed_check.faults(timetable))
+
+    progress.phase("building the network")
+    network = build_network(timetable, settings.network, progress=progress)
+    _must_be_sound("network", network_check.faults(network))
+    return timetable, network
+
+
+def files_of(result: Result, limits: Sequence[Limit] = ()) -> dict[str, bytes]:
+    """Give the files of an edition by name: the same result always gives the same bytes.
+
+    Parameters
+    ----------
+    result
+        What was drawn.
+    limits
+        Limits on drift; what became of them stands in the drift report.
+    """
+    svg = to_svg(result.drawing)
+    judged = judge(result.drift, limits)
+    return {
+        "diagram.svg": svg,
+        "diagram.pdf": to_pdf(result.drawing),
+        "edition.json": edition_to_json(result.edition),
+        "drift.json": drift_to_json(result.drift, judged),
+        "drift.csv": to_csv(result.drift),
+        "drift.html": to_html(result.drift, svg, title=result.edition.title, limits=judged),
+    }
+
+
+def clearances_of(network: Network, bundles: BundleSettings, labels: LabelSettings) -> Clearances:
+    """Give the plain numbers by which the layout knows what will be drawn.
+
+    Neighbouring stations keep so far apart that a name fits between their names on one side, and
+    that two large markers do not touch.
+    """
+    height = labels.size_pt * labels.leading * MM_PER_PT
+    large = 2.0 * labels.interchange_radius_mm
+    widths = {}
+    for station in network.stations:
+        plain = station.kind == "stop"
+        size = (labels.size_pt if plain else labels.interchange_size_pt) * MM_PER_PT
+        widths[station.id] = text_width_mm(station.name, size, bold=not plain)
+    return Clearances(
+        line_width_mm=bundles.line_width_mm,
+        line_gap_mm=bundles.line_gap_mm,
+        marker_mm=2.0 * labels.marker_radius_mm,
+        label_height_mm=height,
+        spacing_mm=max(height + 2.0 * labels.clearance_mm, large + bundles.line_width_mm),
+        label_width_mm=widths,
+    )
+
+
+def _labelled(
+    network: Network, settings: Settings, frames: tuple[SheetFrame, ...], progress: Progress
+) -> LabelledLayout:
+    """Lay out, bundle and label; again with more room as long as that places more names."""
+    clearances = clearances_of(network, settings.bundles, settings.labels)
+    requests: tuple[RoomRequest, ...] = ()
+    best: LabelledLayout | None = None
+    for _ in range(1 + ROUNDS):
+        progress.phase("laying out the network")
+        try:
+            layout = lay_out(
+                network, settings.layout, clearances, frames, requests=requests, progress=progress
+            )
+        except LayoutError:
+            # More room was asked for than the sheet has: the drawing without it still stands.
+            if best is None:
+                raise
+            return best
+        _must_be_sound("layout", layout_check.faults(layout, clearances))
+
+        progress.phase("ordering parallel lines")
+        bundled = bundle(layout, settings.bundles, progress=progress)
+        _must_be_sound("bundles", bundles_check.faults(bundled))
+
+        progress.phase("placing names")
+        labelled = place_labels(bundled, settings.labels, progress=progress)
+        _must_be_sound("labels", labels_check.faults(labelled))
+
+        if best is not None and len(labelled.unplaced) >= len(best.unplaced):
+            return best
+        best = labelled
+        if not labelled.unplaced:
+            return labelled
+        progress.note(f"{len(labelled.unplaced)} names found no place; asking for more room")
+        requests = _joined(requests, room_requests(labelled))
+    return labelled
+
+
+def _joined(old: tuple[RoomRequest, ...], new: tuple[RoomRequest, ...]) -> tuple[RoomRequest, ...]:
+    """Keep the larger request of each station, so that room once given is not taken back."""
+    wanted: dict[str, float] = {}
+    for request in (*old, *new):
+        wanted[request.station_id] = max(request.length_mm, wanted.get(request.station_id, 0.0))
+    return tuple(RoomRequest(key, wanted[key]) for key in sorted(wanted))
+
+
+def _must_be_sound(stage: str, faults: tuple[str, ...]) -> None:
+    """Stop if a stage's own check faults its output."""
+    if faults:
+        listed = "\n".join(f"  - {fault}" for fault in faults[:10])
+        more = f"\n  … and {len(faults) - 10} more" if len(faults) > 10 else ""
+        raise InternalFaultError(
+            f"The check of the {stage} stage found {len(faults)} faults, so nothing was written. "
+            f"This is a defect of the program: please report it with the feed.\n{listed}{more}"
+        )
