@@ -1,0 +1,161 @@
+"""Labels stand free, on the sides that lettering prefers, whatever the order of the input."""
+
+from __future__ import annotations
+
+import random
+from collections.abc import Callable, Mapping
+from dataclasses import replace
+
+import pytest
+import shapely
+from hypothesis import HealthCheck, given, settings
+from hypothesis import strategies as st
+
+from gtfs_schematic.bundles.model import BundledLayout
+from gtfs_schematic.labels.check import faults
+from gtfs_schematic.labels.fonts import text_width_mm
+from gtfs_schematic.labels.model import LabelledLayout, LabelSettings
+from gtfs_schematic.labels.place import place_labels
+from gtfs_schematic.labels.room import room_requests
+
+NAMES = ("ribbon", "ring", "star", "walk_and_crossing")
+Straight = Callable[..., BundledLayout]
+
+
+@pytest.fixture(scope="module")
+def placed(networks: Mapping[str, BundledLayout]) -> dict[str, LabelledLayout]:
+    return {name: place_labels(networks[name], LabelSettings()) for name in networks}
+
+
+@pytest.mark.parametrize("name", NAMES)
+def test_every_station_of_the_hand_drawn_networks_gets_a_sound_label(
+    placed: dict[str, LabelledLayout], name: str
+):
+    labelled = placed[name]
+    assert labelled.unplaced == ()
+    assert room_requests(labelled) == ()
+    assert set(labelled.labels) == set(labelled.bundled.layout.positions)
+    assert faults(labelled) == ()
+
+
+@pytest.mark.parametrize("name", NAMES)
+def test_shapely_finds_no_overlap(placed: dict[str, LabelledLayout], name: str):
+    labelled = placed[name]
+    boxes = shapely.polygons([labelled.labels[key].outline_mm for key in sorted(labelled.labels)])
+    assert shapely.union_all(boxes).area == pytest.approx(float(shapely.area(boxes).sum()))
+    width = labelled.bundled.settings.line_width_mm
+    for path in labelled.bundled.layout.paths.values():
+        drawn = shapely.LineString(path).buffer(width / 2.0)
+        hit = boxes[shapely.intersects(boxes, drawn)]
+        # the sharp centre line may cut a corner that the drawn line rounds off
+        assert all(shapely.area(shapely.intersection(box, drawn)) < 0.5 for box in hit)
+
+
+@pytest.mark.parametrize("name", NAMES)
+def test_rows_have_the_width_of_the_typeface(placed: dict[str, LabelledLayout], name: str):
+    for label in placed[name].labels.values():
+        for row in label.lines:
+            bold = label.bold and not row.second
+            width = text_width_mm(row.text, row.size_mm, bold=bold)
+            assert row.width_mm == pytest.approx(width)
+
+
+def test_termini_carry_badges_of_the_lines_that_end(placed: dict[str, LabelledLayout]):
+    star = placed["star"].labels
+    assert {key: [b.text for b in label.badges] for key, label in star.items() if label.badges} == {
+        "amsel": ["A"],
+        "iller": ["A"],
+        "dorn": ["B"],
+        "lohe": ["B"],
+        "moor": ["B"],
+        "furt": ["C"],
+        "otter": ["C"],
+        "pappel": ["D"],
+        "sand": ["D"],
+    }
+    assert [b.text for b in placed["ribbon"].labels["b1"].badges] == ["2", "4"]
+
+
+def test_badges_can_be_left_out(networks: Mapping[str, BundledLayout]):
+    labelled = place_labels(networks["star"], LabelSettings(line_badges=False))
+    assert not any(label.badges for label in labelled.labels.values())
+
+
+def test_names_stand_to_the_right_of_a_vertical_line(straight: Straight):
+    labelled = place_labels(straight(["Amsel", "Birke", "Dorn", "Eiche"], (0.0, 15.0)), _plain())
+    assert [labelled.labels[f"s{i:02d}"].side for i in (1, 2)] == ["E", "E"]
+
+
+def test_names_stay_on_one_side_of_a_level_line(straight: Straight):
+    labelled = place_labels(straight(["Amsel", "Birke", "Dorn", "Eiche"], (22.0, 0.0)), _plain())
+    assert {labelled.labels[f"s{i:02d}"].side for i in (1, 2)} == {"N"}
+    rows = [labelled.labels[f"s{i:02d}"].lines[0].y_mm for i in (1, 2)]
+    assert rows[0] == pytest.approx(rows[1])
+
+
+def test_crowded_names_on_a_level_line_are_tilted_at_one_angle(straight: Straight):
+    names = [f"Unterer Grundweg {n}" for n in "ABCDEFGHIJKLMN"]
+    labelled = place_labels(straight(names, (6.5, 0.0)), _plain())
+    assert labelled.unplaced == ()
+    assert faults(labelled) == ()
+    assert {label.angle_deg for label in labelled.labels.values()} <= {0.0, -45.0}
+    assert sum(label.angle_deg != 0.0 for label in labelled.labels.values()) >= 8
+
+
+def test_a_person_may_ask_for_a_side(straight: Straight):
+    bundled = straight(["Amsel", "Birke", "Dorn"], (0.0, 15.0))
+    labelled = place_labels(bundled, LabelSettings(sides={"s01": "W"}))
+    assert labelled.labels["s01"].side == "W"
+    assert faults(labelled) == ()
+
+
+def test_a_name_without_any_room_is_listed_and_asks_for_some(straight: Straight):
+    long_name = "Weitläufigkeitsbeschreibungsanstalt" * 4
+    labelled = place_labels(straight(["Amsel", long_name, "Dorn"], (0.0, 15.0)), LabelSettings())
+    assert labelled.unplaced == ("s01",)
+    assert faults(labelled) == ()
+    (request,) = room_requests(labelled)
+    assert request.station_id == "s01"
+    assert request.length_mm > 15.0
+
+
+def test_second_names_stand_beneath_in_a_smaller_size(straight: Straight):
+    bundled = straight(["Amselgrund", "Birkenhain", "Dornau"], (0.0, 15.0))
+    network = bundled.layout.network
+    stations = tuple(replace(s, second_name="Άνω Πόλη") for s in network.stations)
+    layout = replace(bundled.layout, network=replace(network, stations=stations))
+    labelled = place_labels(replace(bundled, layout=layout), LabelSettings())
+    assert faults(labelled) == ()
+    for label in labelled.labels.values():
+        first, second = label.lines
+        assert (first.second, second.second) == (False, True)
+        assert second.text == "Άνω Πόλη"
+        assert second.y_mm > first.y_mm
+        assert second.size_mm == pytest.approx(0.75 * first.size_mm)
+
+
+@settings(
+    max_examples=8, deadline=None, suppress_health_check=[HealthCheck.function_scoped_fixture]
+)
+@given(st.randoms(use_true_random=False), st.sampled_from(["star", "walk_and_crossing"]))
+def test_the_order_of_the_input_does_not_matter(
+    networks: Mapping[str, BundledLayout],
+    placed: dict[str, LabelledLayout],
+    rng: random.Random,
+    name: str,
+):
+    bundled = networks[name]
+    network = bundled.layout.network
+    shuffled = replace(
+        network,
+        stations=tuple(rng.sample(network.stations, len(network.stations))),
+        links=tuple(rng.sample(network.links, len(network.links))),
+        lines=tuple(rng.sample(network.lines, len(network.lines))),
+    )
+    layout = replace(bundled.layout, network=shuffled)
+    again = place_labels(replace(bundled, layout=layout), LabelSettings())
+    assert again.labels == placed[name].labels
+
+
+def _plain() -> LabelSettings:
+    return LabelSettings(line_badges=False)
