@@ -19,6 +19,9 @@ _STEPS = 160
 _WANTED_CLEARANCE = 0.9
 """Distance, in station spacings, that a point wants from links that are not its own."""
 
+_THIN = 0.1
+"""Free radius, in station spacings, below which moves get shorter than PrEd allows."""
+
 _LEAST_CLEARANCE = 0.75
 """Distance that it gets at least."""
 
@@ -109,10 +112,11 @@ def _guarded_move(
     points = points * (np.ptp(targets, axis=0).max() / max(np.ptp(points, axis=0).max(), 1e-9))
     points += targets.mean(axis=0) - points.mean(axis=0)
     for _ in range(_STEPS):
-        pull = targets - points
+        radii = free_radii(points, segments)
+        # Thin gaps shrink ever more slowly, so that many steps do not grind them to nothing.
+        radii *= 0.45 * np.minimum(1.0, radii / _THIN)
         push = repulsion(points, segments, _WANTED_CLEARANCE)
-        move = 0.2 * pull + 0.6 * push
-        radii = 0.45 * free_radii(points, segments)
+        move = 0.2 * (targets - points) + 0.6 * push
         length = np.hypot(move[:, 0], move[:, 1])
         factor = np.minimum(1.0, radii / np.maximum(length, 1e-12))
         points = points + move * factor[:, None]

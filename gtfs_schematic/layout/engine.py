@@ -45,6 +45,9 @@ _ROOM = 1.1
 """Share by which a sheet should exceed the least size of the drawing, for labels and air."""
 _LOOSEST = 2.2
 """A station spacing grows to at most so many times the least, however large the sheet."""
+_FILLINGS = 3
+_FULL = 1.06
+"""How often the scale is raised to fill the sheet, and when it is full: sheet over drawing."""
 _STUB_MM = 2.2
 
 
@@ -139,12 +142,23 @@ def _on_sheet(
             f"{_inner(largest)[0]:.0f} × {_inner(largest)[1]:.0f} mm. Allow a larger sheet, "
             "smaller type or thinner lines, or draw fewer lines."
         )
-    frame = fits[0]
-    box = _inner(frame)
-    grow = min(box[0] / max(width, 1e-9), box[1] / max(height, 1e-9), _LOOSEST)
+    frame = _best_of_size(fits, width, height)
+    box, scale = _inner(frame), spacing
     skeleton = dataclasses.replace(skeleton, points=points)
-    skeleton, points = _settled(skeleton, sizes, spacing * max(1.0, 0.95 * grow), box)
+    for _ in range(_FILLINGS):
+        width, height = np.ptp(points, axis=0)
+        grow = min(box[0] / max(width, 1e-9), box[1] / max(height, 1e-9))
+        if grow < _FULL or scale >= _LOOSEST * spacing:
+            break
+        scale = min(scale * grow * 0.98, _LOOSEST * spacing)
+        skeleton, points = _settled(skeleton, sizes, scale, box)
     return skeleton, points, frame
+
+
+def _best_of_size(fits: list[SheetFrame], width: float, height: float) -> SheetFrame:
+    """Of the least sheets, upright or not, the one that the drawing can fill best."""
+    least = [f for f in fits if f.width_mm * f.height_mm <= fits[0].width_mm * fits[0].height_mm]
+    return max(least, key=lambda f: min(_inner(f)[0] / width, _inner(f)[1] / max(height, 1e-9)))
 
 
 def _inner(frame: SheetFrame) -> tuple[float, float]:

@@ -9,6 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from gtfs_schematic.layout.model import Clearances, LayoutSettings, RoomRequest
+from gtfs_schematic.layout.plane import PlaneGraph
 from gtfs_schematic.layout.settle import Wants
 from gtfs_schematic.layout.skeleton import Skeleton
 from gtfs_schematic.network.model import Network
@@ -44,12 +45,14 @@ def wants_of(skeleton: Skeleton, sizes: Sizes, scale_mm: float, *, tight: bool) 
     least = np.array(
         [sum(p.share * sizes.link_least[p.owner] for p in piece.parts) for piece in graph.pieces]
     )
+    lines = np.array([max(1, len(piece.lines)) for piece in graph.pieces])
+    pitch = clearances.line_width_mm + clearances.line_gap_mm
+    least = np.maximum(least, _between_ends(graph, clearances))
     goal = _spans(skeleton, sizes.settings.fidelity) * scale_mm
     goal[walk] = np.maximum(least[walk], _WALK_SHARE * scale_mm)
     spans = np.array([piece.spans for piece in graph.pieces])
     owner = skeleton.piece_of
-    lines = np.array([max(1, len(graph.pieces[p].lines)) for p in owner])
-    pitch = clearances.line_width_mm + clearances.line_gap_mm
+    lines = lines[owner]
     half = (lines * pitch - clearances.line_gap_mm) / 2.0
     half[walk[owner]] = clearances.line_width_mm / 4.0
     jog = _jogs(skeleton)
@@ -86,6 +89,24 @@ def link_least(
     }
     least |= {walk.id: _WALK_SHARE * clearances.spacing_mm for walk in network.walks}
     return least
+
+
+def _between_ends(graph: PlaneGraph, clearances: Clearances) -> NDArray[np.float64]:
+    """Least length of each piece for what stands at its ends: a marker, or a bundle it crosses."""
+    pitch = clearances.line_width_mm + clearances.line_gap_mm
+    ends = np.zeros(len(graph.pieces))
+    for p, piece in enumerate(graph.pieces):
+        for i, v in enumerate(piece.ends):
+            if graph.station_of[v] is not None:
+                ends[p] += clearances.marker_mm / 2.0
+            else:
+                crossed = max(
+                    len(graph.pieces[end // 2].lines)
+                    for end in graph.rotation[v]
+                    if end != 2 * p + i
+                )
+                ends[p] += crossed * pitch / 2.0
+    return ends + pitch
 
 
 def _spans(skeleton: Skeleton, fidelity: float) -> NDArray[np.float64]:

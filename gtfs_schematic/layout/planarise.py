@@ -15,6 +15,8 @@ from gtfs_schematic.network.model import Corridor, Network
 
 _TOGETHER_M = 2.0
 _ASIDE_M = 6.0
+_LEAST_SHARE = 0.5
+"""Share of a spacing that each part of a crossed link gets: crossings need room, too."""
 
 
 def planarise(network: Network) -> PlaneGraph:
@@ -149,7 +151,7 @@ def _split_chains(
         for i, owner in enumerate(chain.link_ids):
             forward = starts[owner] == chain.station_ids[i]
             stops = cuts.get(owner, [])
-            share = 1.0 / (len(stops) + 1)
+            share = max(1.0 / (len(stops) + 1), _LEAST_SHARE) if stops else 1.0
             for _, node in stops if forward else reversed(stops):
                 close([*nodes, node], [*parts, Part(owner, share, forward)], stations)
                 nodes, parts, stations = [node], [], []

@@ -11,7 +11,10 @@ from numpy.typing import NDArray
 
 @dataclass(frozen=True, slots=True)
 class Part:
-    """A share of one link or walk inside a piece; shares of one link over all pieces sum to 1."""
+    """A share of one link or walk inside a piece, in station spacings.
+
+    The shares of one link over all pieces sum to 1, or more where several others cross it.
+    """
 
     owner: str
     share: float

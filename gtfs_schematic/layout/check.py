@@ -1,0 +1,282 @@
+"""The faults of a layout against the guarantees; shares no code with the engine.
+
+1. Every station and link is drawn, and paths end at their stations.
+2. Every segment runs at an exact multiple of 45 degrees.
+3. Links and walks cross where they cross on the ground, and nowhere else.
+4. The cyclic order of links round every station is that of the ground.
+5. Clearances are kept, and everything lies on the sheet.
+
+On the ground, stations nearer than a few metres to a foreign link touch it as far as anyone can
+tell; where the order or a crossing hangs on less than that, both outcomes are right.
+"""
+
+from __future__ import annotations
+
+import itertools
+import math
+from collections import defaultdict
+from collections.abc import Mapping
+from dataclasses import dataclass
+
+import networkx as nx
+import numpy as np
+import shapely
+from numpy.typing import NDArray
+from pyproj import Geod
+
+from gtfs_schematic.geometry import Point
+from gtfs_schematic.layout.model import Clearances, Layout
+
+_TOUCH_M = 30.0
+"""Distance on the ground below which touching and missing are not told apart, metres."""
+_TOLERANCE_MM = 0.15
+"""What clearances may lack for rounding to hundredths of a millimetre."""
+
+
+@dataclass(frozen=True)
+class _Edge:
+    """A link or walk: its stations and its path on the sheet, millimetres."""
+
+    id: str
+    start: str
+    end: str
+    lines: int
+    path: tuple[Point, ...]
+
+
+def faults(layout: Layout, clearances: Clearances) -> tuple[str, ...]:
+    """Name everything in which a layout breaks its guarantees; empty if all are kept.
+
+    Parameters
+    ----------
+    layout
+        Positions and paths in sheet millimetres, y down.
+    clearances
+        Widths and distances that were asked for, millimetres.
+    """
+    found = list(_missing(layout))
+    if found:
+        return tuple(found)
+    edges = _edges(layout)
+    ground = _ground(layout)
+    found += _off_angle(edges)
+    found += _wrong_crossings(layout, edges, ground)
+    found += _wrong_order(layout, edges, ground)
+    found += _too_close(layout, edges, clearances)
+    found += _off_sheet(layout, edges)
+    return tuple(found)
+
+
+def _edges(layout: Layout) -> tuple[_Edge, ...]:
+    network = layout.network
+    links = [
+        _Edge(k.id, k.start, k.end, len(k.lines), layout.paths[k.id]) for k in network.links
+    ]
+    walks = [_Edge(w.id, w.start, w.end, 0, layout.walk_paths[w.id]) for w in network.walks]
+    return tuple(links + walks)
+
+
+def _ground(layout: Layout) -> dict[str, Point]:
+    """Metres east and north of the first station, by forward geodesics (a second projection)."""
+    stations = layout.network.stations
+    geod = Geod(ellps="WGS84")
+    count = len(stations)
+    lon = float(np.mean([station.lon for station in stations]))
+    lat = float(np.mean([station.lat for station in stations]))
+    azimuth, _, length = geod.inv(
+        [lon] * count, [lat] * count, [s.lon for s in stations], [s.lat for s in stations]
+    )
+    return {
+        station.id: (r * math.sin(math.radians(a)), r * math.cos(math.radians(a)))
+        for station, a, r in zip(stations, azimuth, length, strict=True)
+    }
+
+
+def _missing(layout: Layout) -> list[str]:
+    network = layout.network
+    found = [
+        f"Station {station.id} ({station.name}) is not placed."
+        for station in network.stations
+        if station.id not in layout.positions
+    ]
+    paths = {**layout.paths, **layout.walk_paths}
+    for edge in (*network.links, *network.walks):
+        path = paths.get(edge.id)
+        if path is None or len(path) < 2:
+            found.append(f"{edge.id} has no path.")
+        elif (path[0], path[-1]) != (
+            layout.positions.get(edge.start),
+            layout.positions.get(edge.end),
+        ):
+            found.append(f"{edge.id} does not run from its start to its end.")
+    return found
+
+
+def _off_angle(edges: tuple[_Edge, ...]) -> list[str]:
+    found = []
+    for edge in edges:
+        for (ax, ay), (bx, by) in itertools.pairwise(edge.path):
+            # Hundredths of a millimetre are whole numbers: the test is exact.
+            dx, dy = round((bx - ax) * 100), round((by - ay) * 100)
+            if (dx, dy) == (0, 0):
+                found.append(f"{edge.id} has a segment without length at ({ax}, {ay}).")
+            elif dx != 0 and dy != 0 and abs(dx) != abs(dy):
+                found.append(f"{edge.id} is off the eight directions at ({ax}, {ay}).")
+    return found
+
+
+def _wrong_crossings(
+    layout: Layout, edges: tuple[_Edge, ...], ground: Mapping[str, Point]
+) -> list[str]:
+    found = []
+    lines = np.array([shapely.LineString(edge.path) for edge in edges])
+    pairs = shapely.STRtree(lines).query(lines, predicate="intersects").T
+    drawn: dict[tuple[int, int], int] = {}
+    for i, j in sorted({(int(i), int(j)) for i, j in pairs if i < j}):
+        shared = {edges[i].start, edges[i].end} & {edges[j].start, edges[j].end}
+        ends = [shapely.Point(layout.positions[s]) for s in shared]
+        for part in shapely.get_parts(lines[i].intersection(lines[j])):
+            if part.geom_type == "Point" and any(part.distance(end) < 0.006 for end in ends):
+                continue
+            if part.geom_type != "Point":
+                found.append(f"{edges[i].id} and {edges[j].id} lie on each other.")
+            drawn[i, j] = drawn.get((i, j), 0) + 1
+    for i, edge in enumerate(edges):
+        if not lines[i].is_simple and edge.start != edge.end:
+            found.append(f"{edge.id} crosses itself.")
+    courses = np.array([shapely.LineString([ground[e.start], ground[e.end]]) for e in edges])
+    return found + _compare_crossings(layout, edges, courses, drawn)
+
+
+def _compare_crossings(
+    layout: Layout,
+    edges: tuple[_Edge, ...],
+    courses: NDArray[np.object_],
+    drawn: Mapping[tuple[int, int], int],
+) -> list[str]:
+    """Compare drawn crossings with those of the straight links on the ground."""
+    found = []
+    for (i, j), count in drawn.items():
+        a, b = edges[i].id, edges[j].id
+        if count > 1:
+            found.append(f"{a} and {b} cross {count} times.")
+        if courses[i].distance(courses[j]) > _TOUCH_M:
+            found.append(f"{a} and {b} cross, but not on the ground.")
+    real = shapely.STRtree(courses).query(courses, predicate="crosses").T
+    for i, j in sorted({(int(i), int(j)) for i, j in real if i < j}):
+        if (i, j) in drawn:
+            continue
+        ends = shapely.points([*courses[i].coords, *courses[j].coords])
+        reach = [shapely.distance(ends[:2], courses[j]), shapely.distance(ends[2:], courses[i])]
+        if min(map(min, reach)) > _TOUCH_M:
+            found.append(f"{edges[i].id} and {edges[j].id} cross on the ground, but not here.")
+    listed = {frozenset((c.first, c.second)) for c in layout.crossings}
+    found += [
+        f"The crossing of {edges[i].id} and {edges[j].id} is not listed."
+        for i, j in drawn
+        if frozenset((edges[i].id, edges[j].id)) not in listed
+    ]
+    return found
+
+
+def _wrong_order(
+    layout: Layout, edges: tuple[_Edge, ...], ground: Mapping[str, Point]
+) -> list[str]:
+    """Compare, for every three links at a station, their turn on the ground and here."""
+    around: dict[str, list[tuple[float, float, float]]] = defaultdict(list)
+    for edge in edges:
+        for here, there, path in (
+            (edge.start, edge.end, edge.path),
+            (edge.end, edge.start, edge.path[::-1]),
+        ):
+            dx, dy = ground[there][0] - ground[here][0], ground[there][1] - ground[here][1]
+            doubt = math.asin(min(1.0, _TOUCH_M / max(math.hypot(dx, dy), 1e-9)))
+            drawn = math.atan2(-(path[1][1] - path[0][1]), path[1][0] - path[0][0])
+            around[here].append((math.atan2(dy, dx), drawn, doubt))
+    found = []
+    for station, ends in sorted(around.items()):
+        for a, b, c in itertools.combinations(ends, 3):
+            clear = all(
+                abs(math.remainder(p[0] - q[0], math.tau)) > p[2] + q[2]
+                for p, q in ((a, b), (b, c), (a, c))
+            )
+            if clear and _turn(a[0], b[0], c[0]) != _turn(a[1], b[1], c[1]):
+                name = layout.network.station[station].name
+                found.append(f"The order of links round {station} ({name}) is not the ground's.")
+                break
+    return found
+
+
+def _turn(a: float, b: float, c: float) -> bool:
+    """Whether three bearings follow each other counter-clockwise."""
+    return (b - a) % math.tau < (c - a) % math.tau
+
+
+def _too_close(layout: Layout, edges: tuple[_Edge, ...], clearances: Clearances) -> list[str]:
+    found = []
+    pitch = clearances.line_width_mm + clearances.line_gap_mm
+    half = np.array([(max(1, e.lines) * pitch - clearances.line_gap_mm) / 2 for e in edges])
+    half[[e.lines == 0 for e in edges]] = clearances.line_width_mm / 4
+    lines = np.array([shapely.LineString(edge.path) for edge in edges])
+    reach = 2.0 * float(half.max()) + clearances.line_gap_mm
+    near = shapely.STRtree(lines).query(lines, predicate="dwithin", distance=reach).T
+    ways = _ways(layout, edges)
+    for i, j in sorted({(int(i), int(j)) for i, j in near if i < j}):
+        a, b = edges[i], edges[j]
+        wanted = half[i] + half[j] + clearances.line_gap_mm
+        gap = float(lines[i].distance(lines[j]))
+        if gap < wanted - _TOLERANCE_MM and not _converge(ways, a, b, wanted):
+            found.append(f"{a.id} and {b.id} are {gap:.2f} mm apart, less than {wanted:.2f} mm.")
+    places = shapely.points([layout.positions[s.id] for s in layout.network.stations])
+    close = shapely.STRtree(places).query(
+        places, predicate="dwithin", distance=clearances.marker_mm - _TOLERANCE_MM
+    ).T
+    for i, j in sorted({(int(i), int(j)) for i, j in close if i < j}):
+        a_id, b_id = layout.network.stations[i].id, layout.network.stations[j].id
+        found.append(f"Stations {a_id} and {b_id} are nearer than a marker is wide.")
+    return found
+
+
+def _ways(layout: Layout, edges: tuple[_Edge, ...]) -> nx.Graph:
+    """Graph of stations and crossings with the drawn lengths between them."""
+    at: dict[str, list[Point]] = defaultdict(list)
+    for crossing in layout.crossings:
+        at[crossing.first].append(crossing.at_mm)
+        at[crossing.second].append(crossing.at_mm)
+    ways = nx.Graph()
+    for edge in edges:
+        line = shapely.LineString(edge.path)
+        stops = [(line.project(shapely.Point(p)), p) for p in at[edge.id]]
+        stops = [(0.0, edge.start), *sorted(stops), (line.length, edge.end)]
+        for (s, a), (t, b) in itertools.pairwise(stops):
+            if not ways.has_edge(a, b) or ways.edges[a, b]["length"] > t - s:
+                ways.add_edge(a, b, length=t - s, edge=edge.id)
+    return ways
+
+
+def _converge(ways: nx.Graph, a: _Edge, b: _Edge, wanted: float) -> bool:
+    """Whether two links belong to one bend or branching: a short way along the drawing joins them.
+
+    At an angle of 45 degrees a gap of `wanted` opens after 2.5 times that length of way.
+    """
+    ends = [n for x, y, d in ways.edges(data="edge") if d == a.id for n in (x, y)]
+    others = {n for x, y, d in ways.edges(data="edge") if d == b.id for n in (x, y)}
+    reached = nx.multi_source_dijkstra_path_length(
+        ways, {a.start, a.end, *ends}, cutoff=2.5 * wanted, weight="length"
+    )
+    return bool(({b.start, b.end} | others) & set(reached))
+
+
+def _off_sheet(layout: Layout, edges: tuple[_Edge, ...]) -> list[str]:
+    sheet = layout.sheet
+    return [
+        f"{edge.id} leaves the frame of the sheet."
+        for edge in edges
+        if any(
+            not (
+                sheet.left_mm - _TOLERANCE_MM <= x <= sheet.right_mm + _TOLERANCE_MM
+                and sheet.top_mm - _TOLERANCE_MM <= y <= sheet.bottom_mm + _TOLERANCE_MM
+            )
+            for x, y in edge.path
+        )
+    ]
