@@ -99,7 +99,10 @@ class _KeyArtist:
             return Group("key-heading", (text,))
         middle = y + 0.5 * keys.badge_height(self.type)
         start = x + keys.sample_offset(self.key, self.type)
-        piece = ((start, middle), (start + keys.sample_length(self.type), middle))
+        if row.kind == "sign":
+            start = x
+        end = x + keys.sample_offset(self.key, self.type) + keys.sample_length(self.type)
+        piece = ((start, middle), (end, middle))
         shapes: tuple[PathShape | TextShape, ...]
         if row.kind == "line":
             shapes = (*self._stroke(piece, self.styles[row.id]), *self._badge(row, (x, y)))
@@ -143,7 +146,7 @@ class _KeyArtist:
         if sign == "walk":
             return walk_shapes(polyline(piece), quiet(settings), settings.background, WALK_WIDTH_MM)
         if sign == "one-way":
-            head = chevron(middle, (1.0, 0.0), 0.26 * body, settings.background)
+            head = chevron(middle, (1.0, 0.0), 0.34 * _SAMPLE_WIDTH * body, settings.background)
             return (*full, head)
         if sign == "step-free":
             size = 1.1 * body

@@ -211,9 +211,13 @@ def _column_width(rows: Sequence[KeyRow], type_: TypeScale) -> float:
     return before + math.ceil(max(texts, default=0.0))
 
 
-def _flow(rows: Sequence[KeyRow], limit: float) -> list[list[KeyRow]]:
-    """Fill columns no higher than `limit` in order; a heading never stands last in one."""
-    columns: list[list[KeyRow]] = [[]]
+def _flow(rows: Sequence[KeyRow], limit: float) -> list[list[tuple[KeyRow, float]]]:
+    """Fill columns no higher than `limit` in order, each row with its height in the column.
+
+    A heading never stands last in a column, and where a section goes on in the next column, its
+    rows begin as far down as under a heading, so that they stand level with their neighbours.
+    """
+    columns: list[list[tuple[KeyRow, float]]] = [[]]
     used = 0.0
     for i, row in enumerate(rows):
         needed = row.height
@@ -221,26 +225,23 @@ def _flow(rows: Sequence[KeyRow], limit: float) -> list[list[KeyRow]]:
             needed += rows[i + 1].height
         if columns[-1] and used + needed > limit + 1e-9:
             columns.append([])
-            used = 0.0
-        columns[-1].append(row)
+            used = 0.0 if row.kind == "heading" else rows[0].height
+        columns[-1].append((row, used))
         used += row.height
     return columns
 
 
-def _placed(rows: Sequence[KeyRow], columns: list[list[KeyRow]], type_: TypeScale) -> Key:
+def _placed(
+    rows: Sequence[KeyRow], columns: list[list[tuple[KeyRow, float]]], type_: TypeScale
+) -> Key:
     column_width = _column_width(rows, type_)
     pitch = column_width + _COLUMN_GAP * type_.body
-    placed, height = [], 0.0
-    for i, column in enumerate(columns):
-        y = 0.0
-        for row in column:
-            placed.append(PlacedRow(row, i * pitch, y))
-            y += row.height
-        height = max(height, y)
     return Key(
-        rows=tuple(placed),
+        rows=tuple(
+            PlacedRow(row, i * pitch, y) for i, column in enumerate(columns) for row, y in column
+        ),
         width=(len(columns) - 1) * pitch + column_width,
-        height=height,
+        height=max(column[-1][1] + column[-1][0].height for column in columns),
         badge_width=_badge_width(rows, type_),
         columns=len(columns),
     )

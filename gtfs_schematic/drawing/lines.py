@@ -64,7 +64,7 @@ def direction_marks(bundled: BundledLayout, styles: Mapping[str, LineStyle]) -> 
     """Give an arrowhead half way along every link that a line runs in one direction only."""
     layout = bundled.layout
     for line in layout.network.lines:
-        size = 0.27 * styles[line.id].width * bundled.settings.line_width_mm
+        size = 0.34 * styles[line.id].width * bundled.settings.line_width_mm
         for start, end in line.one_way_links:
             link = layout.network.link_between.get(frozenset((start, end)))
             if link is None or link.id not in layout.paths:

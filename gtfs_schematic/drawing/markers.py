@@ -8,6 +8,7 @@ bar across the line's end.
 from __future__ import annotations
 
 import itertools
+import math
 from collections.abc import Sequence
 from dataclasses import dataclass
 
@@ -110,15 +111,27 @@ def walk_shapes(d: str, color: str, paper: str, width: float) -> tuple[PathShape
 def step_free_sign(
     x: float, y: float, size: float, colors: tuple[str, str]
 ) -> tuple[PathShape, ...]:
-    """Give the step-free sign, a ramp on a square tile; (x, y) is its upper left corner."""
+    """Give the step-free sign on a square tile; (x, y) is its upper left corner.
+
+    A plain rendering of the symbol of access of ISO 7000 (number 0100) and ISO 7001, from memory:
+    head, seated body and wheel.
+    """
     tile, figure = colors
-    ramp = [(0.14, 0.8), (0.86, 0.8), (0.86, 0.36)]
+
+    def stroke(points: Sequence[Point]) -> PathShape:
+        d = polyline([(x + size * a, y + size * b) for a, b in points])
+        return PathShape(d, stroke=figure, stroke_width=0.085 * size)
+
+    wheel = [
+        (0.46 + 0.22 * math.cos(math.radians(a)), 0.64 + 0.22 * math.sin(math.radians(a)))
+        for a in range(20, 236, 15)
+    ]
     return (
         PathShape(rounded_rectangle((x, y, x + size, y + size), 0.18 * size), fill=tile),
-        PathShape(
-            polyline([(x + size * a, y + size * b) for a, b in ramp], closed=True), fill=figure
-        ),
-        PathShape(circle((x + 0.36 * size, y + 0.3 * size), 0.15 * size), fill=figure),
+        PathShape(circle((x + 0.43 * size, y + 0.19 * size), 0.075 * size), fill=figure),
+        stroke([(0.43, 0.34), (0.43, 0.6), (0.66, 0.6), (0.77, 0.82)]),
+        stroke([(0.43, 0.45), (0.63, 0.45)]),
+        stroke(wheel),
     )
 
 

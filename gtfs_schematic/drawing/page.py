@@ -61,7 +61,7 @@ def plan_page(
     title = wrap(sheet_title(network, settings), inner, type_.title, bold=True)
     under = wrap(subtitle(network), inner, type_.subtitle)
     title_y = margin_mm + 0.8 * type_.title
-    under_y = title_y + (len(title) - 1) * 1.15 * type_.title + 0.75 * type_.title
+    under_y = title_y + (len(title) - 1) * 1.15 * type_.title + 0.85 * type_.title
     top = under_y + len(under) * LEADING * type_.subtitle + 1.2 * type_.body
     blocks, rule_y = _notes(network, settings, type_, (width, height), margin_mm)
     bottom = rule_y - 1.5 * type_.body

@@ -1,0 +1,126 @@
+"""The PDF, read back with pypdf: exact page, searchable names, embedded typeface, no surprises."""
+
+from __future__ import annotations
+
+import io
+import re
+from typing import Any
+
+import pypdf
+import pytest
+
+from gtfs_schematic.drawing.model import SHEET_SIZES, Drawing, Group, TextShape
+from gtfs_schematic.drawing.pdf import to_pdf
+from gtfs_schematic.labels import fonts
+from gtfs_schematic.labels.model import LabelledLayout
+
+
+@pytest.fixture(scope="session")
+def reader(drawing: Drawing) -> pypdf.PdfReader:
+    """Give the PDF of each hand-made network, read by another library."""
+    return pypdf.PdfReader(io.BytesIO(to_pdf(drawing)))
+
+
+def embedded_fonts(page: Any) -> list[Any]:  # noqa: ANN401 - pypdf's objects
+    found = []
+    for reference in page["/Resources"]["/Font"].values():
+        font = reference.get_object()
+        holder = font["/DescendantFonts"][0].get_object() if "/DescendantFonts" in font else font
+        found.append((font["/BaseFont"], holder["/FontDescriptor"].get_object()))
+    return found
+
+
+def dense(text: str) -> str:
+    return re.sub(r"\s+", "", text)
+
+
+def test_the_page_is_a3_to_the_point_in_every_box(reader: pypdf.PdfReader):
+    (page,) = reader.pages
+    # A point is 1/72 inch, an inch 25.4 mm by definition.
+    expected = sorted(side / 25.4 * 72.0 for side in SHEET_SIZES["A3"])
+    for box in (page.mediabox, page.trimbox, page.bleedbox, page.cropbox):
+        assert sorted((float(box.width), float(box.height))) == pytest.approx(expected, abs=0.001)
+
+
+def test_every_station_name_can_be_found(reader: pypdf.PdfReader, labelled: LabelledLayout):
+    text = dense(reader.pages[0].extract_text())
+    for station in labelled.bundled.layout.network.stations:
+        assert dense(station.name) in text
+
+
+def test_title_dates_and_cautions_can_be_found(reader: pypdf.PdfReader):
+    text = dense(reader.pages[0].extract_text())
+    for words in (
+        "Verkehrsbund Auenland-Mitte",
+        "2026-03-01/2026-06-30",
+        "not to scale",
+        "frei nutzbar",
+    ):
+        assert dense(words) in text
+
+
+def test_every_font_is_an_embedded_subset_of_the_typeface(reader: pypdf.PdfReader):
+    embedded = embedded_fonts(reader.pages[0])
+    assert embedded
+    for name, descriptor in embedded:
+        assert re.fullmatch(r"/[A-Z]{6}\+NotoSans.*", name)
+        assert "/FontFile2" in descriptor or "/FontFile3" in descriptor
+        assert descriptor["/FontFamily"] == fonts.FAMILY
+
+
+def test_language_title_and_structure_are_stated(reader: pypdf.PdfReader, drawing: Drawing):
+    catalog = reader.trailer["/Root"]
+    assert catalog["/Lang"] == "en"
+    assert catalog["/MarkInfo"]["/Marked"]
+    assert catalog["/ViewerPreferences"]["/DisplayDocTitle"]
+    assert reader.metadata is not None
+    assert reader.metadata.title == drawing.title
+    assert reader.metadata.creation_date is None
+    assert reader.xmp_metadata is not None
+    assert reader.xmp_metadata.dc_title["x-default"] == drawing.title
+
+
+def test_the_structure_begins_with_the_title(reader: pypdf.PdfReader):
+    catalog = reader.trailer["/Root"]
+    document = catalog["/StructTreeRoot"]["/K"][0].get_object()
+    kinds = [child.get_object()["/S"] for child in document["/K"]]
+    assert document["/S"] == "/Document"
+    assert kinds[0] == "/H1"
+    assert set(kinds) <= {"/H1", "/H2", "/P"}
+
+
+def test_the_same_drawing_gives_the_same_bytes(drawing: Drawing):
+    assert to_pdf(drawing) == to_pdf(drawing)
+
+
+def small(*texts: str) -> Drawing:
+    """Give a sheet with a few words."""
+    runs = tuple(
+        TextShape(text, 10.0, 20.0 + 10.0 * i, 5.0, "#000000", 0.0) for i, text in enumerate(texts)
+    )
+    return Drawing(148.0, 105.0, "Words", "Words", "en", "#FFFFFF", (Group("words", runs),))
+
+
+@pytest.mark.parametrize(
+    "text", ["Affenfels", "Schifflände", "Fluß am Hof", "Ελληνικό", "Жуковка", "Ōsaki Nguyễn"]
+)
+def test_ligatures_and_other_alphabets_read_back_letter_by_letter(text: str):
+    page = pypdf.PdfReader(io.BytesIO(to_pdf(small(text)))).pages[0]
+    assert page.extract_text().strip() == text
+
+
+def test_text_stands_where_it_should():
+    places: list[tuple[float, float]] = []
+
+    def visit(text: str, matrix: Any, text_matrix: Any, *_: Any) -> None:  # noqa: ANN401
+        if text.strip():
+            x = text_matrix[4] * matrix[0] + text_matrix[5] * matrix[2] + matrix[4]
+            y = text_matrix[4] * matrix[1] + text_matrix[5] * matrix[3] + matrix[5]
+            places.append((x / 72.0 * 25.4, 105.0 - y / 72.0 * 25.4))
+
+    pypdf.PdfReader(io.BytesIO(to_pdf(small("Eins", "Zwei")))).pages[0].extract_text(
+        visitor_text=visit
+    )
+    assert [p == pytest.approx((10.0, y), abs=0.01) for p, y in zip(places, (20, 30), strict=True)]
+    assert places[0] == pytest.approx((10.0, 20.0), abs=0.01)
+    assert places[1] == pytest.approx((10.0, 30.0), abs=0.01)
