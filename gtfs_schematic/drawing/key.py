@@ -223,7 +223,8 @@ def _flow(rows: Sequence[KeyRow], limit: float) -> list[list[tuple[KeyRow, float
         needed = row.height
         if row.kind == "heading" and i + 1 < len(rows):
             needed += rows[i + 1].height
-        if columns[-1] and used + needed > limit + 1e-9:
+        alone = not columns[-1] or columns[-1][-1][0].kind == "heading"
+        if not alone and used + needed > limit + 1e-9:
             columns.append([])
             used = 0.0 if row.kind == "heading" else rows[0].height
         columns[-1].append((row, used))
