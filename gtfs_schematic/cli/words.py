@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import datetime as dt
 from collections import Counter
 from collections.abc import Iterable, Sequence
 from typing import TYPE_CHECKING
@@ -39,11 +38,7 @@ def first_few(rows: Sequence[str], *, everything: bool, where: str) -> list[str]
 
 def service_date(info: FeedInfo) -> str:
     """Say which date is drawn, and why."""
-    try:
-        weekday = f" ({dt.date.fromisoformat(info.service_date):%A})"
-    except ValueError:
-        weekday = ""
-    return f"Service date: {info.service_date}{weekday}. {info.service_reason}"
+    return f"Service date: {info.service_date}. {info.service_reason}"
 
 
 def size(network: Network) -> str:

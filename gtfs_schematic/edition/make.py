@@ -62,7 +62,8 @@ def edition_of(labelled: LabelledLayout, title: str) -> Edition:
 
 def sentence(finding: Finding) -> str:
     """Write a finding as one sentence that begins with how grave it is and where it stands."""
-    return f"{finding.severity}: {', '.join(_places(finding))}: {finding.message}"
+    severity = "note" if finding.severity == "info" else finding.severity
+    return f"{severity}: {', '.join(_places(finding))}: {finding.message}"
 
 
 def _places(finding: Finding) -> Iterable[str]:

@@ -46,4 +46,4 @@ def test_rounding_is_done_before_writing():
 def test_a_finding_as_a_sentence():
     finding = Finding("warning", "stops.txt", "Far away.", row=7, field="stop_lat", value="0")
     assert sentence(finding) == "warning: stops.txt, row 7, field stop_lat, value '0': Far away."
-    assert sentence(Finding("info", "", "No shapes.")) == "info: feed: No shapes."
+    assert sentence(Finding("info", "", "No shapes.")) == "note: feed: No shapes."
