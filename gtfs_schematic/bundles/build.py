@@ -1,0 +1,44 @@
+"""Order the lines of a layout and draw each one's own course."""
+
+from __future__ import annotations
+
+from gtfs_schematic.bundles.check import count_order
+from gtfs_schematic.bundles.junction import junctions
+from gtfs_schematic.bundles.model import BundledLayout, BundleSettings, OrderQuality
+from gtfs_schematic.bundles.offset import draw_courses
+from gtfs_schematic.bundles.order import order_lines
+from gtfs_schematic.bundles.slots import Slots
+from gtfs_schematic.bundles.spans import find_spans
+from gtfs_schematic.layout.model import Layout
+from gtfs_schematic.progress import Progress, Silent
+
+
+def bundle(
+    layout: Layout, settings: BundleSettings, *, progress: Progress | None = None
+) -> BundledLayout:
+    """Give a layout with its lines ordered, offset, and rounded at corners.
+
+    Parameters
+    ----------
+    layout
+        An octilinear layout; sheet millimetres, y down.
+    settings
+        Width and gap of lines, radius of corners, millimetres.
+    progress
+        Who is told about the components that are ordered.
+    """
+    progress = progress or Silent()
+    found = order_lines(layout, progress=progress)
+    nodes = junctions(layout)
+    slots = Slots(found.orders, settings)
+    progress.phase("drawing lines side by side")
+    stretches = draw_courses(layout, nodes, slots)
+    crossings, separations = count_order(layout, found.orders)
+    return BundledLayout(
+        layout=layout,
+        settings=settings,
+        orders=found.orders,
+        stretches=stretches,
+        spans=find_spans(layout, nodes, slots, stretches),
+        quality=OrderQuality(crossings, separations, found.crossings_bound),
+    )
