@@ -4,11 +4,11 @@ from __future__ import annotations
 
 from collections.abc import Iterator, Mapping
 
-from gtfs_schematic.bundles.model import BundledLayout
+from gtfs_schematic.bundles.model import BundledLayout, Corner
 from gtfs_schematic.drawing.course import half_way, on_line
 from gtfs_schematic.drawing.markers import chevron, walk_shapes
 from gtfs_schematic.drawing.model import DrawingSettings, Group, PathShape
-from gtfs_schematic.drawing.paths import polyline, rounded
+from gtfs_schematic.drawing.paths import rounded
 from gtfs_schematic.drawing.style import (
     WALK_WIDTH_MM,
     LineStyle,
@@ -21,15 +21,16 @@ from gtfs_schematic.drawing.words import line_course, walk_title
 from gtfs_schematic.layout.model import Layout
 from gtfs_schematic.network.model import Line
 
+_WALK_CORNER_MM = 2.0
+
 
 def walk_groups(layout: Layout, settings: DrawingSettings) -> Iterator[Group]:
     """Give the connectors of all walks that the layout drew."""
     for walk in layout.network.walks:
         path = layout.walk_paths.get(walk.id)
         if path is not None:
-            shapes = walk_shapes(
-                polyline(path), quiet(settings), settings.background, WALK_WIDTH_MM
-            )
+            d = rounded([Corner(point, _WALK_CORNER_MM) for point in path])
+            shapes = walk_shapes(d, quiet(settings), settings.background, WALK_WIDTH_MM)
             title = walk_title(walk, layout.network)
             yield Group("walk", shapes, data={"walk": walk.id}, title=title)
 

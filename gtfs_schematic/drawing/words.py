@@ -102,9 +102,10 @@ def subtitle(network: Network) -> str:
 
 def credits_line(network: Network, settings: DrawingSettings) -> str:
     """Give the attribution: the one asked for, then the feed's own, without repeats."""
-    parts = [part for part in (settings.attribution, *network.info.attributions) if part]
-    if parts:
-        return " ".join(dict.fromkeys(parts))
+    owed = "; ".join(dict.fromkeys(network.info.attributions))
+    parts = [settings.attribution, f"Credit: {owed}." if owed else ""]
+    if any(parts):
+        return " ".join(part for part in parts if part)
     source = network.info.publisher or ", ".join(network.agencies)
     return f"Timetable data: {source}." if source else ""
 
@@ -122,8 +123,16 @@ def line_title(line: Line, network: Network) -> str:
 
 
 def line_course(line: Line, network: Network) -> str:
-    """Give a line's ends, e.g. "Furt – Lohe / Moorende", or say that it is a ring."""
-    ends = [(course[0], course[-1]) for course in line.itineraries if course]
+    """Give a line's ends, e.g. "Furt – Lohe / Moorende", or say that it is a ring.
+
+    An itinerary that calls nowhere but at stations of a longer one is a short working, not a branch.
+    """
+    calls = sorted((set(course) for course in line.itineraries), key=len)
+    ends = [
+        (course[0], course[-1])
+        for course in line.itineraries
+        if course and not any(set(course) < longer for longer in calls)
+    ]
     if not ends:
         return line.name
     start, end = ends[0]
