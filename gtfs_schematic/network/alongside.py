@@ -5,7 +5,7 @@ from __future__ import annotations
 import itertools
 from collections import defaultdict
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from functools import cached_property
 
 import numpy as np
@@ -64,10 +64,11 @@ def passed_alongside(
     """Find the stations that stand beside a step of another line which runs along it.
 
     A station goes in if (1) it lies within `alongside_m` of the step's course, between its ends;
-    (2) the step's pattern does not call there; (3) a pattern on the same kind of way calls there
-    and stays within `alongside_m` of the first for a long stretch about the station; (4) off the
-    street, where tracks side by side are often separate: both patterns also call at a common
-    station before and after it, and stay together between the two.
+    (2) the step's pattern does not call there, nor any pattern right before or after the step;
+    (3) a pattern on the same kind of way calls there and stays within `alongside_m` of the first
+    for a long stretch about the station; (4) off the street, where tracks side by side are often
+    separate: both patterns also call at a common station before and after it, and stay together
+    between the two.
 
     Parameters
     ----------
@@ -88,45 +89,82 @@ def passed_alongside(
         Per pair the whole way from the lesser id to the greater.
     """
     runs = [_Run(track, way_of[track.calling.line_id]) for track in _undirected(tracks)]
-    callers: dict[str, list[int]] = defaultdict(list)
-    for n, run in enumerate(runs):
+    callers: dict[str, list[_Run]] = defaultdict(list)
+    for run in runs:
         for station in sorted(run.called):
-            callers[station].append(n)
+            callers[station].append(run)
     ids = sorted(callers)
     tree = shapely.STRtree([shapely.points(at[station]) for station in ids])
-    banned = _neighbours(tracks)
+    judge = _Judge(at, settings.alongside_m)
+    beside = _neighbours(tracks)
     found: dict[Pair, set[str]] = defaultdict(set)
     courses: dict[Pair, Course] = {}
-    together: dict[tuple[int, int], NDArray[np.bool_]] = {}
-    for n, run in enumerate(runs):
-        for (a, b), section in run.steps:
-            pair = (min(a, b), max(a, b))
+    for run in runs:
+        for step, section in run.steps:
+            pair = (min(step), max(step))
             if pair in done:
                 continue
             line = shapely.linestrings(section)
             near = tree.query(line, predicate="dwithin", distance=settings.alongside_m)
-            for station in sorted(ids[i] for i in near):
-                if station in run.called or station in banned[pair]:
-                    continue
-                place = float(shapely.line_locate_point(line, shapely.points(at[station])))
-                if not _END_M < place < line.length - _END_M:
-                    continue
-                for m in callers[station]:
-                    if runs[m].way != run.way:
-                        continue
-                    if (n, m) not in together:
-                        together[n, m] = shapely.dwithin(
-                            run.line, shapely.points(runs[m].points), settings.alongside_m
-                        )
-                    if _runs_along(run, runs[m], (a, b), station, at, together[n, m], settings):
-                        found[pair].add(station)
-                        courses.setdefault(pair, section if a < b else section[::-1])
-                        break
-    return {
-        pair: way
-        for pair, stations in sorted(found.items())
-        if len(way := _in_order(pair, stations, courses[pair], at)) > 2
-    }
+            for station in sorted({ids[i] for i in near} - run.called - beside[pair]):
+                if judge.is_between(station, line) and any(
+                    judge.runs_along(run, other, step, station) for other in callers[station]
+                ):
+                    found[pair].add(station)
+                    courses.setdefault(pair, section if step == pair else section[::-1])
+    ways = {pair: _in_order(pair, found[pair], courses[pair], at) for pair in sorted(found)}
+    return {pair: way for pair, way in ways.items() if len(way) > 2}
+
+
+@dataclass(frozen=True)
+class _Judge:
+    """Decides whether two patterns run along each other at a station."""
+
+    at: Mapping[str, Point]
+    radius: float
+    _inside: dict[tuple[int, int], NDArray[np.bool_]] = field(default_factory=dict)
+
+    def is_between(self, station: str, line: shapely.LineString) -> bool:
+        """Rule 1: whether the station stands beside the step, not beside its ends."""
+        place = float(shapely.line_locate_point(line, shapely.points(self.at[station])))
+        return bool(_END_M < place < line.length - _END_M)
+
+    def runs_along(self, run: _Run, other: _Run, step: Pair, station: str) -> bool:
+        """Rules 3 and 4: whether `other`, which calls at the station, runs along the step."""
+        if other.way != run.way:
+            return False
+        points, inside = other.points, self._near(run, other)
+        middle = _nearest(points, self.at[station])
+        if not inside[middle]:
+            return False
+        outside = np.flatnonzero(~inside)
+        first = int(outside[outside < middle].max(initial=-1)) + 1
+        last = int(outside[outside > middle].min(initial=len(points))) - 1
+        together = float(np.hypot(*np.diff(points[first : last + 1], axis=0).T).sum())
+        if together < _TOGETHER * self.radius:
+            return False
+        return run.way == "street" or self._joined(run, other, step, (first, last))
+
+    def _near(self, run: _Run, other: _Run) -> NDArray[np.bool_]:
+        """Which points of `other` lie near `run`."""
+        key = (id(run), id(other))
+        if key not in self._inside:
+            dots = shapely.points(other.points)
+            self._inside[key] = shapely.dwithin(run.line, dots, self.radius)
+        return self._inside[key]
+
+    def _joined(self, run: _Run, other: _Run, step: Pair, stretch: tuple[int, int]) -> bool:
+        """Rule 4: whether both call at a common station on either side, together up to there."""
+        ids = run.track.calling.stations
+        i = next(k for k, pair in enumerate(itertools.pairwise(ids)) if pair == step)
+        sides = (
+            next((s for s in ids[i::-1] if s in other.called), None),
+            next((s for s in ids[i + 1 :] if s in other.called), None),
+        )
+        return all(
+            s is not None and stretch[0] <= _nearest(other.points, self.at[s]) <= stretch[1]
+            for s in sides
+        )
 
 
 def _undirected(tracks: Sequence[Track]) -> list[Track]:
@@ -146,46 +184,6 @@ def _neighbours(tracks: Sequence[Track]) -> dict[Pair, set[str]]:
         for i, (a, b) in enumerate(itertools.pairwise(ids)):
             beside[min(a, b), max(a, b)].update(ids[max(0, i - 1) : i], ids[i + 2 : i + 3])
     return beside
-
-
-def _runs_along(
-    run: _Run,
-    other: _Run,
-    step: Pair,
-    station: str,
-    at: Mapping[str, Point],
-    inside: NDArray[np.bool_],
-    settings: NetworkSettings,
-) -> bool:
-    """Rules 3 and 4 for one station; `inside` says which points of `other` lie near `run`."""
-    points = other.points
-    middle = _nearest(points, at[station])
-    if not inside[middle]:
-        return False
-    outside = np.flatnonzero(~inside)
-    first = int(outside[outside < middle].max(initial=-1)) + 1
-    last = int(outside[outside > middle].min(initial=len(points))) - 1
-    gaps = np.hypot(*np.diff(points[first : last + 1], axis=0).T)
-    if float(gaps.sum()) < _TOGETHER * settings.alongside_m:
-        return False
-    if run.way == "street":
-        return True
-    return _joined_both_sides(run, other, step, (first, last), at)
-
-
-def _joined_both_sides(
-    run: _Run, other: _Run, step: Pair, stretch: tuple[int, int], at: Mapping[str, Point]
-) -> bool:
-    """Whether both call at a common station on either side within the stretch together."""
-    ids = run.track.calling.stations
-    i = next(k for k, pair in enumerate(itertools.pairwise(ids)) if pair == step)
-    sides = (
-        next((s for s in ids[i::-1] if s in other.called), None),
-        next((s for s in ids[i + 1 :] if s in other.called), None),
-    )
-    return all(
-        s is not None and stretch[0] <= _nearest(other.points, at[s]) <= stretch[1] for s in sides
-    )
 
 
 def _nearest(points: Course, place: Point) -> int:

@@ -7,17 +7,12 @@ from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 
 from gtfs_schematic.errors import FeedError
-from gtfs_schematic.feed.model import Finding, LeftOut, Pattern, Route, Timetable
+from gtfs_schematic.feed.model import LeftOut, Route, Timetable
 from gtfs_schematic.geometry import distance
 from gtfs_schematic.network.alongside import passed_alongside
-from gtfs_schematic.network.colors import (
-    contrast,
-    generated_colors,
-    is_usable,
-    text_color_on,
-)
+from gtfs_schematic.network.describe import color_findings, described_lines
 from gtfs_schematic.network.kinds import kinds_of
-from gtfs_schematic.network.lines import name_of, route_groups
+from gtfs_schematic.network.lines import route_groups
 from gtfs_schematic.network.links import (
     WAYS,
     Expansion,
@@ -25,22 +20,22 @@ from gtfs_schematic.network.links import (
     links_of,
     steps_of,
 )
-from gtfs_schematic.network.model import Line, Link, Network, NetworkSettings, Station, Walk
+from gtfs_schematic.network.model import Link, Network, NetworkSettings, Station, Walk
 from gtfs_schematic.network.patterns import (
     Calling,
     Ids,
     callings_of,
     itineraries_of,
-    one_way_links,
     shows,
     without_rare,
 )
-from gtfs_schematic.network.service import service_of
 from gtfs_schematic.network.smooth import corridors_of
 from gtfs_schematic.network.stations import Sites, sites_of
 from gtfs_schematic.network.tracks import Track, sections_by_pair, track_of
 from gtfs_schematic.network.transfers import footways_of, merge_by_transfer, walks_between
 from gtfs_schematic.progress import Progress, Silent
+
+_SILENT = Silent()
 
 
 @dataclass(frozen=True)
@@ -54,7 +49,7 @@ class _Chosen:
 
 
 def build_network(
-    timetable: Timetable, settings: NetworkSettings, *, progress: Progress = Silent()
+    timetable: Timetable, settings: NetworkSettings, *, progress: Progress = _SILENT
 ) -> Network:
     """Turn the timetable of one service date into its route-station graph.
 
@@ -78,7 +73,7 @@ def build_network(
         If nothing is left to draw.
     """
     progress.phase("Merging stops into stations")
-    sites, walk_notes = _sites(timetable, settings)
+    sites = _sites(timetable, settings)
     progress.phase("Gathering lines")
     chosen = _choose(timetable, sites, settings)
     if not chosen.callings:
@@ -95,13 +90,13 @@ def build_network(
     footways, far_walks = footways_of(timetable, sites)
     walks = walks_between(footways, drawn, {frozenset((k.start, k.end)) for k in links})
     stations = _stations(sites, links, walks, ways)
-    lines = _lines(timetable, chosen, ways, expansion)
+    lines = described_lines(timetable, chosen.groups, ways, _runs(chosen, expansion))
     undrawn = tuple(
         LeftOut("station", site_id, "only patterns that are left out call here")
         for site_id in sites.sites
         if site_id not in drawn
     )
-    left_out = (*sites.left_out, *chosen.left_out, *undrawn, *far_walks, *walk_notes)
+    left_out = (*sites.left_out, *chosen.left_out, *undrawn, *far_walks)
     return Network(
         info=timetable.info,
         agencies=tuple(sorted({agency.name for agency in timetable.agencies})),
@@ -110,17 +105,17 @@ def build_network(
         walks=walks,
         lines=lines,
         corridors=corridors_of(stations, links),
-        findings=(*timetable.findings, *_color_findings(chosen, lines)),
+        findings=(*timetable.findings, *color_findings(lines)),
         left_out=tuple(
             sorted({*timetable.left_out, *left_out}, key=lambda o: (o.kind, o.id, o.reason))
         ),
     )
 
 
-def _sites(timetable: Timetable, settings: NetworkSettings) -> tuple[Sites, tuple[LeftOut, ...]]:
+def _sites(timetable: Timetable, settings: NetworkSettings) -> Sites:
     sites = sites_of(timetable, settings)
     footways, _ = footways_of(timetable, sites)
-    return merge_by_transfer(sites, footways, settings), ()
+    return merge_by_transfer(sites, footways, settings)
 
 
 def _choose(timetable: Timetable, sites: Sites, settings: NetworkSettings) -> _Chosen:
@@ -192,6 +187,14 @@ def _ways(chosen: _Chosen, expansion: Expansion) -> dict[str, tuple[tuple[Ids, I
     }
 
 
+def _runs(chosen: _Chosen, expansion: Expansion) -> dict[str, list[Ids]]:
+    """Per line the courses of all kept patterns, in the direction in which they are run."""
+    runs: dict[str, list[Ids]] = defaultdict(list)
+    for calling in chosen.callings:
+        runs[calling.line_id].append(expansion.course(calling.stations))
+    return runs
+
+
 def _stations(
     sites: Sites,
     links: Sequence[Link],
@@ -227,79 +230,3 @@ def _stations(
         )
         for site, (lon, lat) in zip((sites.sites[s] for s in ids), degrees, strict=True)
     )
-
-
-def _lines(
-    timetable: Timetable,
-    chosen: _Chosen,
-    ways: Mapping[str, Sequence[tuple[Ids, Ids]]],
-    expansion: Expansion,
-) -> tuple[Line, ...]:
-    patterns: dict[str, list[Pattern]] = defaultdict(list)
-    for pattern in timetable.patterns:
-        patterns[pattern.route_id].append(pattern)
-    named = {line_id: _main_route(chosen.groups[line_id], patterns) for line_id in ways}
-    usable = {
-        key: route.color for key, route in named.items() if route.color and is_usable(route.color)
-    }
-    colors = usable | generated_colors([key for key in named if key not in usable], usable.values())
-    days = timetable.operating_days
-    all_days = frozenset().union(*days.values())
-    lines = []
-    for line_id, pairs in sorted(ways.items()):
-        group = chosen.groups[line_id]
-        own_days = frozenset().union(*(days.get(route.id, frozenset()) for route in group))
-        service = service_of(
-            [pattern for route in group for pattern in patterns[route.id]], own_days, all_days
-        )
-        wanted = named[line_id].text_color if line_id in usable else None
-        orders = [route.sort_order for route in group if route.sort_order is not None]
-        lines.append(
-            Line(
-                id=line_id,
-                name=name_of(group),
-                long_name=named[line_id].long_name,
-                color=colors[line_id],
-                text_color=text_color_on(colors[line_id], wanted),
-                color_from_feed=line_id in usable,
-                mode=group[0].mode,
-                route_ids=tuple(route.id for route in group),
-                itineraries=tuple(itinerary for itinerary, _ in pairs),
-                courses=tuple(course for _, course in pairs),
-                trips=service.trips,
-                service=service.pattern,
-                first_departure_s=service.first_s,
-                last_departure_s=service.last_s,
-                headway_s=service.headway_s,
-                one_way_links=one_way_links(
-                    expansion.course(c.stations) for c in chosen.callings if c.line_id == line_id
-                ),
-                sort_order=min(orders, default=None),
-            )
-        )
-    return tuple(lines)
-
-
-def _main_route(group: Sequence[Route], patterns: Mapping[str, Sequence[Pattern]]) -> Route:
-    """The route with most trips gives the line its color and long name."""
-
-    def trips(route: Route) -> int:
-        return sum(len(pattern.departures_s) for pattern in patterns[route.id])
-
-    return min(group, key=lambda route: (-trips(route), route.id))
-
-
-def _color_findings(chosen: _Chosen, lines: Sequence[Line]) -> tuple[Finding, ...]:
-    """Name the colors that were replaced, and those that are hard to see."""
-    findings = []
-    for line in lines:
-        if not line.color_from_feed:
-            message = f"line {line.name} has no color that shows on white; {line.color} was chosen"
-            findings.append(Finding("info", "routes.txt", message, field="route_color"))
-        elif contrast(line.color, "#FFFFFF") < 3.0:
-            ratio = contrast(line.color, "#FFFFFF")
-            message = f"line {line.name} is pale: contrast {ratio:.2f}:1 on white, 3:1 is wanted"
-            findings.append(
-                Finding("warning", "routes.txt", message, field="route_color", value=line.color)
-            )
-    return tuple(findings)

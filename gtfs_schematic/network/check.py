@@ -2,12 +2,13 @@
 
 from __future__ import annotations
 
+import itertools
 import re
 from collections import Counter
 from collections.abc import Iterator, Sequence
 from typing import Protocol
 
-from gtfs_schematic.network.model import Corridor, Line, Network
+from gtfs_schematic.network.model import Corridor, Line, Link, Network, Walk
 
 _COLOR = re.compile(r"#[0-9A-F]{6}", re.IGNORECASE)
 
@@ -29,17 +30,15 @@ def faults(network: Network) -> tuple[str, ...]:
     5. Groups are what the walks join, named by their least station.
     6. Lines have colors, trips and times in order.
     """
-    return tuple(
-        [
-            *_ids(network),
-            *_stations(network),
-            *_links(network),
-            *(fault for line in network.lines for fault in _courses(network, line)),
-            *_coverage(network),
-            *_corridors(network),
-            *_groups(network),
-            *(fault for line in network.lines for fault in _line(line)),
-        ]
+    return (
+        *_ids(network),
+        *_stations(network),
+        *_links(network),
+        *(fault for line in network.lines for fault in _courses(network, line)),
+        *_coverage(network),
+        *_corridors(network),
+        *_groups(network),
+        *(fault for line in network.lines for fault in _line(line)),
     )
 
 
@@ -86,7 +85,8 @@ def _stations(network: Network) -> Iterator[str]:
 
 def _links(network: Network) -> Iterator[str]:
     pairs: Counter[frozenset[str]] = Counter()
-    for edge in (*network.links, *network.walks):
+    edges: tuple[Link | Walk, ...] = (*network.links, *network.walks)
+    for edge in edges:
         if not edge.start < edge.end:
             yield f"{edge.id}: start {edge.start} does not sort before end {edge.end}"
         yield from (
@@ -121,7 +121,7 @@ def _courses(network: Network, line: Line) -> Iterator[str]:
             yield f"{where}: course {course} does not run through itinerary {itinerary}"
         if (course[0], course[-1]) != (itinerary[0], itinerary[-1]):
             yield f"{where}: course and itinerary {itinerary} end differently"
-        for a, b in zip(course, course[1:], strict=False):
+        for a, b in itertools.pairwise(course):
             steps |= {(a, b), (b, a)}
             link = network.link_between.get(frozenset((a, b)))
             if link is None or line.id not in link.lines:
@@ -138,7 +138,7 @@ def _coverage(network: Network) -> Iterator[str]:
         (line.id, frozenset(step))
         for line in network.lines
         for course in line.courses
-        for step in zip(course, course[1:], strict=False)
+        for step in itertools.pairwise(course)
     }
     for link in network.links:
         for line in link.lines:

@@ -57,7 +57,7 @@ class Expansion:
     """Per pair the whole way from the lesser id to the greater."""
 
     def way(self, a: str, b: str) -> Ids:
-        """Give all stations from a to b, both included, with everything put in that lies between."""
+        """Give all stations from a to b, both included, and those that lie between."""
         return self._way(a, b, frozenset())
 
     def _way(self, a: str, b: str, above: frozenset[Pair]) -> Ids:
@@ -117,14 +117,16 @@ def expresses(
     step, and
 
     - where the step has a shape: every station on it lies near the shape;
-    - where it has none: one line of the same kind calls all along it.
+    - where it has none, and off the street also where no station lies near: one line of the
+      same kind calls all along it. A fast railway may take a short cut of its own; on the
+      street a shape elsewhere means another street.
     """
     graph = nx.Graph()
     dots = {station: shapely.points(place) for station, place in sorted(at.items())}
     over: dict[Pair, Ids] = {}
     for step in steps:
         way = _way_near_shape(step, graph, dots, settings) if step.shaped else None
-        if way is None and not step.shaped:
+        if way is None and not (step.shaped and "street" in step.ways):
             way = _way_of_one_line(step, graph, settings)
         if way is None:
             a, b = step.pair

@@ -21,6 +21,9 @@ class NetworkSettings(BaseModel):
 
     merge_name_m: float = Field(default=150.0, ge=0.0)
     """Stops without a parent and of the same name merge if no further apart than this, metres."""
+    merge_kerbs_m: float = Field(default=45.0, ge=0.0)
+    """Stops without a parent at which a route calls in opposed directions merge within this
+    distance under any names, metres."""
     merge_group_m: float = Field(default=90.0, ge=0.0)
     """Stations joined by transfers merge into one if all lie within this distance, metres."""
     min_pattern_share: float = Field(default=0.04, ge=0.0, le=1.0)

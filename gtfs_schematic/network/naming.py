@@ -6,11 +6,12 @@ import re
 import unicodedata
 
 _BARE_WORDS = frozenset(
-    """
-    inbound outbound northbound southbound eastbound westbound nb sb eb wb ib ob
-    opp opposite stop station
-    """.split()
+    {
+        *("inbound", "outbound", "northbound", "southbound", "eastbound", "westbound"),
+        *("nb", "sb", "eb", "wb", "ib", "ob", "opp", "opposite", "stop", "station"),
+    }
 )
+"""Words that say which kerb or what kind of place is meant, not which place."""
 _NUMBERED = frozenset(["bay", "gate", "platform", "pole", "stand", "stop"])
 """Words that say which part of a stop is meant together with the number or letter after them."""
 _POLE_CODE = re.compile(r"[a-z]{0,2}\d{1,5}[a-z]?")

@@ -13,6 +13,7 @@ from scipy.spatial import cKDTree
 from gtfs_schematic.feed.model import Boarding, LeftOut, Stop, Timetable
 from gtfs_schematic.geometry import Point, distance
 from gtfs_schematic.network.ground import Ground, ground_about
+from gtfs_schematic.network.kerbs import facing_pairs
 from gtfs_schematic.network.model import NetworkSettings
 from gtfs_schematic.network.naming import loose_key, name_key
 
@@ -49,16 +50,19 @@ class Sites:
     """Per stop id the id of its site; stops that are left out are missing."""
     left_out: tuple[LeftOut, ...] = ()
 
-    def merged(self, clusters: Iterable[Sequence[str]], reason: str) -> Sites:
-        """Give the sites with each cluster of site ids made one."""
+    def merged(
+        self, clusters: Iterable[Sequence[str]], reason: Callable[[Sequence[Site]], str]
+    ) -> Sites:
+        """Give the sites with each cluster of site ids made one, and why."""
         sites = dict(self.sites)
         site_of = dict(self.site_of)
         for cluster in clusters:
-            whole = _merge([self.sites[site_id] for site_id in cluster], reason)
+            members = [self.sites[site_id] for site_id in cluster]
+            whole = _merge(members, reason(members))
             for site_id in cluster:
                 del sites[site_id]
             sites[whole.id] = whole
-            site_of.update(dict.fromkeys(whole.stop_ids, whole.id))
+            site_of.update((stop_id, whole.id) for stop_id in whole.stop_ids)
         return replace(self, sites=dict(sorted(sites.items())), site_of=site_of)
 
 
@@ -67,30 +71,40 @@ def sites_of(timetable: Timetable, settings: NetworkSettings) -> Sites:
 
     1. Platforms go to the station on top of their chain of parents.
     2. Places without coordinates, and outliers, are left out and named.
-    3. Sites of the same name merge within `merge_name_m` if one of them has no parent (within
-       `merge_group_m` if the feed says of both that they are stations of their own). The two
+    3. Sites of the same name merge within `merge_name_m` if one of them has no parent. The two
        kerbs of a street often differ by a direction or a pole code; then they merge unless a
-       trip calls at one right after the other.
+       trip calls at one right after the other. Stops that face each other (kerbs.py) merge under
+       any name.
+    4. Where the feed says of both that they are stations of their own, they merge within
+       `merge_group_m`, and only if the feed has no transfers: if it has, those decide.
     """
     sites = _near_sites(_sites_by_parent(timetable), settings)
     follows = _followers(timetable, sites.site_of)
+    places = {site.id: site.at for site in sites.sites.values()}
+    facing = facing_pairs(timetable, places, sites.site_of, settings.merge_kerbs_m)
 
     def same(a: Site, b: Site) -> bool:
         apart = distance(a.at, b.at)
-        if name_key(a.name) == name_key(b.name):
-            both = a.has_parent and b.has_parent
-            return apart <= (settings.merge_group_m if both else settings.merge_name_m)
-        if a.has_parent or b.has_parent or apart > settings.merge_name_m:
-            return False
-        return (
-            bool(loose_key(a.name))
-            and loose_key(a.name) == loose_key(b.name)
-            and frozenset((a.id, b.id)) not in follows
-        )
+        alike = name_key(a.name) == name_key(b.name)
+        if a.has_parent and b.has_parent:
+            return alike and apart <= settings.merge_group_m and not timetable.transfers
+        if a.has_parent or b.has_parent:
+            return alike and apart <= settings.merge_name_m
+        pair = frozenset((a.id, b.id))
+        kerbs = loose_key(a.name) == loose_key(b.name) != "" and pair not in follows
+        return pair in facing or ((alike or kerbs) and apart <= settings.merge_name_m)
 
-    radius = max(settings.merge_name_m, settings.merge_group_m)
+    radius = max(settings.merge_name_m, settings.merge_kerbs_m, settings.merge_group_m)
     clusters = join_close(sites.sites, _pairs_within(sites.sites, radius), same)
-    return sites.merged(clusters, "same name, close together")
+    return sites.merged(clusters, _why)
+
+
+def _why(members: Sequence[Site]) -> str:
+    if len({name_key(site.name) for site in members}) == 1:
+        return "same name, close together"
+    if len({loose_key(site.name) for site in members}) == 1:
+        return "same name but for the side of the street"
+    return "across the street from each other"
 
 
 def join_close(
@@ -113,7 +127,7 @@ def join_close(
             continue
         if all(same(sites[p], sites[q]) for p, q in itertools.product(one, other)):
             joined = tuple(sorted(one + other))
-            cluster_of.update(dict.fromkeys(joined, joined))
+            cluster_of.update((site_id, joined) for site_id in joined)
     return sorted({cluster for cluster in cluster_of.values() if len(cluster) > 1})
 
 
@@ -172,7 +186,7 @@ def _place(stop: Stop) -> Point | None:
 
 
 def _boarding(platform: Stop, top: Stop) -> Boarding:
-    """A platform without a word of its own inherits its station's (GTFS, stops.txt)."""
+    """Let a platform without a word of its own inherit its station's (GTFS, stops.txt)."""
     return platform.boarding if platform.boarding != "unknown" else top.boarding
 
 
@@ -208,8 +222,10 @@ def _pairs_within(sites: Mapping[str, Site], radius: float) -> list[tuple[str, s
 
 
 def _merge(members: Sequence[Site], reason: str) -> Site:
-    """Make one site of several: the least id of those with parents, else the least; its place is
-    that of the only one with a parent, else the mean; its name the one most called at.
+    """Make one site of several.
+
+    Its id is the least of those with parents, else the least; its place that of the only one
+    with a parent, else the mean; its name the one most called at.
     """
     stations = [site for site in members if site.has_parent] or list(members)
     located = stations if len(stations) == 1 else members

@@ -68,7 +68,7 @@ def merge_by_transfer(
     for group in sorted(sorted(part) for part in nx.connected_components(graph)):
         pairs = [(a, b) for i, a in enumerate(group) for b in group[i + 1 :]]
         clusters += join_close(sites.sites, pairs, lambda a, b: _close(a, b, settings), most=_FEW)
-    return sites.merged(clusters, "joined by transfers, close together")
+    return sites.merged(clusters, lambda _: "joined by transfers, close together")
 
 
 def walks_between(
