@@ -125,7 +125,7 @@ def line_title(line: Line, network: Network) -> str:
 def line_course(line: Line, network: Network) -> str:
     """Give a line's ends, e.g. "Furt – Lohe / Moorende", or say that it is a ring.
 
-    An itinerary that calls nowhere but at stations of a longer one is a short working, not a branch.
+    An itinerary that calls only at stations of a longer one is a short working, not a branch.
     """
     calls = sorted((set(course) for course in line.itineraries), key=len)
     ends = [
