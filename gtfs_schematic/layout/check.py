@@ -69,9 +69,7 @@ def faults(layout: Layout, clearances: Clearances) -> tuple[str, ...]:
 
 def _edges(layout: Layout) -> tuple[_Edge, ...]:
     network = layout.network
-    links = [
-        _Edge(k.id, k.start, k.end, len(k.lines), layout.paths[k.id]) for k in network.links
-    ]
+    links = [_Edge(k.id, k.start, k.end, len(k.lines), layout.paths[k.id]) for k in network.links]
     walks = [_Edge(w.id, w.start, w.end, 0, layout.walk_paths[w.id]) for w in network.walks]
     return tuple(links + walks)
 
@@ -228,9 +226,11 @@ def _too_close(layout: Layout, edges: tuple[_Edge, ...], clearances: Clearances)
         if gap < wanted - _TOLERANCE_MM and not _converge(ways, a, b, wanted):
             found.append(f"{a.id} and {b.id} are {gap:.2f} mm apart, less than {wanted:.2f} mm.")
     places = shapely.points([layout.positions[s.id] for s in layout.network.stations])
-    close = shapely.STRtree(places).query(
-        places, predicate="dwithin", distance=clearances.marker_mm - _TOLERANCE_MM
-    ).T
+    close = (
+        shapely.STRtree(places)
+        .query(places, predicate="dwithin", distance=clearances.marker_mm - _TOLERANCE_MM)
+        .T
+    )
     for i, j in sorted({(int(i), int(j)) for i, j in close if i < j}):
         a_id, b_id = layout.network.stations[i].id, layout.network.stations[j].id
         found.append(f"Stations {a_id} and {b_id} are nearer than a marker is wide.")

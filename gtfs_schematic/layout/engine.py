@@ -19,7 +19,7 @@ from gtfs_schematic.errors import LayoutError
 from gtfs_schematic.layout.anchors import anchor_points
 from gtfs_schematic.layout.board import Board
 from gtfs_schematic.layout.embed import check_degrees, embed
-from gtfs_schematic.layout.fit import Sizes, link_least, wants_of
+from gtfs_schematic.layout.fit import Sizes, link_least, part_wants, wants_of
 from gtfs_schematic.layout.improve import improve
 from gtfs_schematic.layout.model import (
     Clearances,
@@ -48,7 +48,6 @@ _LOOSEST = 2.2
 _FILLINGS = 3
 _FULL = 1.06
 """How often the scale is raised to fill the sheet, and when it is full: sheet over drawing."""
-_STUB_MM = 2.2
 
 
 def lay_out(
@@ -104,7 +103,7 @@ def lay_out(
     )
     skeleton, points, frame = _on_sheet(skeleton_of(board), sizes, frames)
     places = _on_paper(snap(skeleton, points), frame)
-    return restore(network, skeleton, places, frame, _STUB_MM)
+    return restore(network, skeleton, places, frame, part_wants(graph, sizes))
 
 
 def _board(graph: PlaneGraph, anchors: NDArray[np.float64], progress: Progress) -> Board:
@@ -158,7 +157,8 @@ def _on_sheet(
 def _best_of_size(fits: list[SheetFrame], width: float, height: float) -> SheetFrame:
     """Of the least sheets, upright or not, the one that the drawing can fill best."""
     least = [f for f in fits if f.width_mm * f.height_mm <= fits[0].width_mm * fits[0].height_mm]
-    return max(least, key=lambda f: min(_inner(f)[0] / width, _inner(f)[1] / max(height, 1e-9)))
+    wide, high = max(width, 1e-9), max(height, 1e-9)
+    return max(least, key=lambda f: min(_inner(f)[0] / wide, _inner(f)[1] / high))
 
 
 def _inner(frame: SheetFrame) -> tuple[float, float]:

@@ -109,6 +109,34 @@ def _between_ends(graph: PlaneGraph, clearances: Clearances) -> NDArray[np.float
     return ends + pitch
 
 
+def part_wants(graph: PlaneGraph, sizes: Sizes) -> tuple[NDArray[np.float64], ...]:
+    """Say per piece what share of it each of its parts should get, and no less than what.
+
+    Stations of a corridor stand evenly but for high fidelity: its third power blends towards
+    true lengths, so that unevenness shows only where it is asked for.
+
+    Returns
+    -------
+    tuple
+        Per piece an array of shape (parts, 2): wanted share, least length in millimetres.
+    """
+    a, b = graph.segments.T
+    true = np.hypot(*(graph.points[a] - graph.points[b]).T)
+    power = sizes.settings.fidelity**3
+    wants = []
+    start = 0
+    for piece in graph.pieces:
+        stop = start + len(piece.parts)
+        shares = np.array([part.share for part in piece.parts])
+        least = np.array([part.share * sizes.link_least[part.owner] for part in piece.parts])
+        run = true[start:stop]
+        run = run / max(float(run.sum()), 1e-9)
+        blend = run**power * (shares / shares.sum()) ** (1.0 - power)
+        wants.append(np.column_stack([blend, least]))
+        start = stop
+    return tuple(wants)
+
+
 def _spans(skeleton: Skeleton, fidelity: float) -> NDArray[np.float64]:
     """Length of each piece in spacings: a blend of true and even, link by link."""
     graph = skeleton.graph

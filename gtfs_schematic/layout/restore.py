@@ -16,13 +16,16 @@ from gtfs_schematic.network.model import Network
 
 _Place = tuple[int, int]
 
+_STUB_MM = 2.2
+"""Distance that a smoothed station keeps from a bend where it can."""
+
 
 def restore(
     network: Network,
     skeleton: Skeleton,
     places: NDArray[np.int64],
     frame: SheetFrame,
-    stub_mm: float,
+    part_wants: tuple[NDArray[np.float64], ...],
 ) -> Layout:
     """Unfold a settled skeleton into a layout.
 
@@ -34,8 +37,8 @@ def restore(
         Directions, and the nodes in units of 1 / `UNITS_PER_MM` mm, y down, shape (k, 2).
     frame
         The sheet.
-    stub_mm
-        Distance that a smoothed station keeps from a bend where it can, millimetres.
+    part_wants
+        Per piece the wanted share and the least length, millimetres, of each part.
     """
     graph = skeleton.graph
     at: dict[str, _Place] = {}
@@ -45,7 +48,7 @@ def restore(
     runs: dict[str, list[list[_Place]]] = defaultdict(list)
     for p, piece in enumerate(graph.pieces):
         corners = [_place(places[node]) for node in skeleton.polyline(p)]
-        stops = _stops(corners, [part.share for part in piece.parts], stub_mm * UNITS_PER_MM)
+        stops = _stops(corners, part_wants[p])
         at.update(zip(piece.stations, (place for place, _ in stops), strict=True))
         for part, run in zip(piece.parts, _cut(corners, stops), strict=True):
             runs[part.owner].append(run if part.forward else run[::-1])
@@ -63,15 +66,14 @@ def _point(place: _Place) -> Point:
     return place[0] / UNITS_PER_MM, place[1] / UNITS_PER_MM
 
 
-def _stops(corners: list[_Place], shares: list[float], stub: float) -> list[tuple[_Place, int]]:
+def _stops(corners: list[_Place], wants: NDArray[np.float64]) -> list[tuple[_Place, int]]:
     """Places of the stations on a piece, each with the number of the segment it stands on."""
     points = np.array(corners, dtype=np.float64)
     ends = np.concatenate([[0.0], np.cumsum(np.hypot(*np.diff(points, axis=0).T))])
-    wanted = np.cumsum(shares)[:-1] / sum(shares) * ends[-1]
-    gap = ends[-1] / sum(shares)
+    lengths = _share_out(float(ends[-1]), wants[:, 0], wants[:, 1] * UNITS_PER_MM)
     stops: list[tuple[_Place, int]] = []
-    for s in wanted:
-        s = _off_bends(float(s), ends, min(stub, 0.3 * gap))
+    for t, gap in zip(np.cumsum(lengths)[:-1], np.minimum(lengths[:-1], lengths[1:]), strict=True):
+        s = _off_bends(float(t), ends, min(_STUB_MM * UNITS_PER_MM, 0.3 * float(gap)))
         k = min(max(int(np.searchsorted(ends, s, side="right")) - 1, 0), len(corners) - 2)
         (ax, ay), (bx, by) = corners[k], corners[k + 1]
         steps = max(abs(bx - ax), abs(by - ay))
@@ -79,6 +81,22 @@ def _stops(corners: list[_Place], shares: list[float], stub: float) -> list[tupl
         place = (ax + step * (bx > ax) - step * (bx < ax), ay + step * (by > ay) - step * (by < ay))
         stops.append((place, k))
     return stops
+
+
+def _share_out(
+    total: float, shares: NDArray[np.float64], least: NDArray[np.float64]
+) -> NDArray[np.float64]:
+    """Share a length out in proportion, none less than its least (if there is enough at all)."""
+    if total <= least.sum():
+        return np.asarray(least * (total / least.sum()))
+    short = np.zeros(len(shares), dtype=bool)
+    while True:
+        rest = total - least[short].sum()
+        lengths = np.where(short, least, shares * (rest / shares[~short].sum()))
+        fresh = (lengths < least) & ~short
+        if not fresh.any():
+            return np.asarray(lengths)
+        short |= fresh
 
 
 def _off_bends(s: float, ends: NDArray[np.float64], stub: float) -> float:
