@@ -108,7 +108,7 @@ def draw(
 
     progress.phase("composing the sheet")
     drawing = compose(labelled, settings.drawing)
-    _must_be_sound("drawing", drawing_check.faults(drawing, network))
+    _must_be_sound("drawing", drawing_check.faults(drawing, network, unnamed=labelled.unplaced))
 
     progress.phase("measuring the drift")
     edition = edition_of(labelled, sheet_title(network, settings.drawing))
