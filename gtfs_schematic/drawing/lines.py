@@ -42,6 +42,7 @@ def line_groups(
 
     The casing is as wide as the gap between neighbours, so it parts lines that cross without
     touching those alongside; it lies under all stretches of its line, so that branches join.
+    Arrowheads come right after their line, so that lines which cross above hide them too.
     """
     full, gap = bundled.settings.line_width_mm, bundled.settings.line_gap_mm
     halo = 0.95 * gap if gap else 0.15 * full
@@ -59,23 +60,22 @@ def line_groups(
             data={"line": line.id},
             title=f"Line {line.name}: {line_course(line, network)}",
         )
+        marks = tuple(_direction_marks(bundled, line, style.width * full))
+        if marks:
+            yield Group("direction", marks, data={"for-line": line.id})
 
 
-def direction_marks(bundled: BundledLayout, styles: Mapping[str, LineStyle]) -> Iterator[PathShape]:
+def _direction_marks(bundled: BundledLayout, line: Line, width: float) -> Iterator[PathShape]:
     """Give an arrowhead half way along every link that a line runs in one direction only."""
     layout = bundled.layout
-    for line in layout.network.lines:
-        size = 0.34 * styles[line.id].width * bundled.settings.line_width_mm
-        for start, end in line.one_way_links:
-            link = layout.network.link_between.get(frozenset((start, end)))
-            if link is None or link.id not in layout.paths:
-                continue
-            path = layout.paths[link.id]
-            found = on_line(
-                bundled, line.id, *half_way(path if link.start == start else path[::-1])
-            )
-            if found is not None:
-                yield chevron(*found, size, line.text_color)
+    for start, end in line.one_way_links:
+        link = layout.network.link_between.get(frozenset((start, end)))
+        if link is None or link.id not in layout.paths:
+            continue
+        path = layout.paths[link.id]
+        found = on_line(bundled, line.id, *half_way(path if link.start == start else path[::-1]))
+        if found is not None:
+            yield chevron(*found, 0.34 * width, line.text_color)
 
 
 def _paint_order(line: Line) -> tuple[int, int, str]:

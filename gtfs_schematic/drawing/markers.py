@@ -12,6 +12,8 @@ import math
 from collections.abc import Sequence
 from dataclasses import dataclass
 
+import shapely
+
 from gtfs_schematic.drawing.model import PathShape
 from gtfs_schematic.drawing.paths import circle, polyline, rounded_rectangle
 from gtfs_schematic.geometry import Point, distance, unit_vector
@@ -141,9 +143,18 @@ def _capsules(
     measure: tuple[float, float],
     look: MarkerLook,
 ) -> tuple[PathShape, ...]:
-    """Give discs round the points, drawn out along the edges: all ink first, then all paper."""
+    """Give discs round the points, drawn out along the edges: all ink first, then all paper.
+
+    Points that lie in a clump get one smooth shape round their hull instead.
+    """
     radius, outline = measure
     inner = radius * (1.0 - outline)
+    if len(edges) == len(points) - 1 and (hull := _clump(points, look.pitch)):
+        d = polyline(hull, closed=True)
+        return tuple(
+            PathShape(d, stroke=color, stroke_width=2.0 * size, fill=color)
+            for size, color in ((radius, look.ink), (inner, look.paper))
+        )
     shapes = []
     for size, color in ((radius, look.ink), (inner, look.paper)):
         shapes += [
@@ -154,6 +165,17 @@ def _capsules(
             PathShape(circle(point, size), fill=color) for point in points if point not in joined
         ]
     return tuple(shapes)
+
+
+def _clump(points: Sequence[Point], pitch: float) -> tuple[Point, ...]:
+    """Give the corners of the points' convex hull if it is slim; nothing for a row or a wide one.
+
+    A slim hull of area A and perimeter P is about 2 A / P wide.
+    """
+    hull = shapely.MultiPoint(points).convex_hull
+    if hull.geom_type != "Polygon" or 2.0 * hull.area > hull.length * pitch:
+        return ()
+    return tuple((float(x), float(y)) for x, y in hull.normalize().exterior.coords[:-1])
 
 
 def _bar(points: Sequence[Point], across: Point, look: MarkerLook) -> PathShape:

@@ -29,7 +29,7 @@ _DASHES: dict[str, tuple[float, ...]] = {
 }
 """In line widths, with butt ends."""
 _BEADS = (0.0, 1.5)
-EDGE_MM = 0.18
+EDGE_MM = 0.2
 WALK_WIDTH_MM = 1.3
 
 
@@ -65,15 +65,23 @@ def weight(mode: str) -> int:
 
 def _style(line: Line, present: list[int], settings: DrawingSettings) -> LineStyle:
     ferry = line.mode == "ferry"
-    pale = contrast_ratio(line.color, settings.background) < GRAPHIC_MINIMUM
     return LineStyle(
         color=line.color,
         width=_WIDTH_STEPS[0 if ferry else present.index(weight(line.mode))],
         dash=_BEADS if ferry else _DASHES[line.service],
         beads=ferry,
         under=line.color if ferry else mix(line.color, settings.background, 0.68),
-        edge=settings.ink if pale else "",
+        edge=_edge(line.color, settings),
     )
+
+
+def _edge(color: str, settings: DrawingSettings) -> str:
+    """Give the line's color, with as much ink as makes it show on the sheet; "" if it shows."""
+    if contrast_ratio(color, settings.background) >= GRAPHIC_MINIMUM:
+        return ""
+    darker = (mix(color, settings.ink, tenths / 10.0) for tenths in range(1, 10))
+    fitting = (c for c in darker if contrast_ratio(c, settings.background) >= GRAPHIC_MINIMUM)
+    return next(fitting, settings.ink)
 
 
 def service_style(sign: str, style: LineStyle) -> LineStyle:

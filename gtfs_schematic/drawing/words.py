@@ -46,7 +46,24 @@ def run(
 
 
 def wrap(text: str, width: float, size: float, *, bold: bool = False) -> tuple[str, ...]:
-    """Break a text at blanks into lines no wider than `width` millimetres; words stay whole."""
+    """Break a text at blanks into as few lines as fit `width` millimetres, about equally long.
+
+    Words stay whole, even where one is wider.
+    """
+    best = _filled(text, width, size, bold=bold)
+    if len(best) < 2:
+        return best
+    # Set again ever narrower, as long as that takes no further line.
+    for twentieths in range(19, 9, -1):
+        narrower = _filled(text, width * twentieths / 20.0, size, bold=bold)
+        if len(narrower) > len(best):
+            break
+        best = narrower
+    return best
+
+
+def _filled(text: str, width: float, size: float, *, bold: bool) -> tuple[str, ...]:
+    """Break a text at blanks, each line as full as `width` allows."""
     lines: list[str] = []
     for word in text.split():
         longer = f"{lines[-1]} {word}" if lines else word

@@ -11,6 +11,7 @@ import pytest
 
 from gtfs_schematic.bundles.model import StationSpan
 from gtfs_schematic.drawing.compose import compose
+from gtfs_schematic.drawing.contrast import contrast_ratio
 from gtfs_schematic.drawing.markers import MarkerLook, marker, spanning_edges
 from gtfs_schematic.drawing.model import DrawingSettings, Group, PathShape
 from gtfs_schematic.drawing.paths import commands
@@ -92,7 +93,9 @@ def test_an_arrowhead_points_along_the_only_direction():
     )
     layout = replace(layout, network=replace(layout.network, lines=lines))
     labelled = drawn_sheets.naive_labels(drawn_sheets.naive_bundle(layout))
-    (marks,) = (g for g in compose_groups(labelled) if g.css_class == "directions")
+    (drawn,) = (group for group in compose_groups(labelled) if group.css_class == "lines")
+    (marks,) = (c for c in drawn.children if isinstance(c, Group) and c.css_class == "direction")
+    assert marks.data == {"for-line": "D"}
     (head,) = marks.children
     assert isinstance(head, PathShape)
     (_, first), (_, tip), (_, last) = commands(head.d)
@@ -113,12 +116,12 @@ def test_modes_and_services_differ_without_color():
     assert {(style.width, style.dash) for style in plain.values()} == {(1.0, ())}
 
 
-def test_a_pale_line_gets_an_edge_in_ink_and_keeps_its_color():
+def test_a_pale_line_gets_an_edge_that_shows_and_keeps_its_color():
     network = drawn_networks.ribbon().network
     pale = (replace(network.lines[0], color="#FFE45C"), *network.lines[1:])
     styles = line_styles(replace(network, lines=pale), DrawingSettings())
     assert styles["1"].color == "#FFE45C"
-    assert styles["1"].edge == DrawingSettings().ink
+    assert contrast_ratio(styles["1"].edge, "#FFFFFF") >= 3.0
     assert styles["2"].edge == ""
 
 
