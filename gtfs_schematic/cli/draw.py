@@ -121,6 +121,7 @@ def describe(
         *words.left_out(network.left_out, where=_WHERE),
         *words.findings(network.findings, where=_WHERE),
         *_names(result),
+        *_letters(result),
         *_contrast(result),
         _GUARANTEES,
         *words.drift(result.drift),
@@ -142,6 +143,21 @@ def _names(result: Result) -> list[str]:
     head = f"Names: {whole - len(missing)} of {whole} placed; no room for"
     advice = "a larger sheet or smaller type gives room"
     return [head, *words.first_few(rows, everything=False, where=advice)]
+
+
+def _letters(result: Result) -> list[str]:
+    """Say which names hold characters that the typeface lacks."""
+    from gtfs_schematic.labels.fonts import missing_characters
+
+    rows = []
+    for station in result.network.stations:
+        missing = missing_characters(station.name + station.second_name)
+        if missing:
+            rows.append(f"{station.name} ({station.id}): {' '.join(missing)}")
+    if not rows:
+        return []
+    head = f"Typeface: {words.count(len(rows), 'name')} with characters that it lacks"
+    return [head, *words.first_few(rows, everything=False, where="they are drawn as boxes")]
 
 
 def _contrast(result: Result) -> list[str]:
