@@ -83,7 +83,7 @@ def read_calls(
         Numbers of the stops that have a place.
     """
     calls, broken = _stream(tables, trips, stops)
-    ids = [ident for ident, number in trips.items() if number != NOT_TODAY]
+    ids = sorted((i for i, number in trips.items() if number >= 0), key=trips.__getitem__)
     for trip in sorted(broken):
         tables.notebook.leave_out("trip", ids[trip], "the order of its stops is unknown")
     calls = calls.where(~np.isin(calls.trip, sorted(broken)))
@@ -94,7 +94,7 @@ def read_calls(
     calls = calls.where(order)
     _find_equal_sequences(tables, calls)
     calls = _drop_unplaced(tables, calls, list(stops), placed)
-    calls = _merge_repeated(calls)
+    calls = _merge_repeated(tables, calls)
     calls = _drop_short(tables, calls, ids)
     return _with_times(tables, calls, ids)
 
@@ -187,12 +187,15 @@ def _drop_unplaced(
     return calls.where(usable)
 
 
-def _merge_repeated(calls: Calls) -> Calls:
+def _merge_repeated(tables: Tables, calls: Calls) -> Calls:
     """Merge neighbouring calls at one stop: arrival of the first, departure of the last."""
     again = np.zeros(len(calls.trip), dtype=bool)
     again[1:] = (calls.trip[1:] == calls.trip[:-1]) & (calls.stop[1:] == calls.stop[:-1])
     if not again.any():
         return calls
+    for n in np.flatnonzero(again).tolist():
+        fault = "trip calls at the same stop as in its call before; the two are taken as one"
+        tables.notebook.find("info", _FILE, fault, row=int(calls.row[n]), field="stop_id")
     firsts = np.flatnonzero(~again)
     lasts = np.append(firsts[1:], len(again)) - 1
     return replace(calls.where(firsts), departure=calls.departure[lasts])
