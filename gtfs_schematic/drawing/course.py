@@ -13,17 +13,10 @@ _ON_LINE_MM = 0.05
 _SAME_WAY = math.cos(math.radians(30.0))
 
 
-def half_way(path: tuple[Point, ...]) -> tuple[Point, Point]:
-    """Give the point half way along a path, and the path's direction there."""
-    steps = list(itertools.pairwise(path))
-    left = sum(distance(p, q) for p, q in steps) / 2.0
-    for p, q in steps:
-        length = distance(p, q)
-        if length >= left and length > 0.0:
-            way = unit_vector(p, q)
-            return (p[0] + way[0] * left, p[1] + way[1] * left), way
-        left -= length
-    return path[-1], unit_vector(path[0], path[-1])
+def straight_middle(path: tuple[Point, ...]) -> tuple[Point, Point]:
+    """Give the middle of a path's longest straight piece, and its direction; ties: the first."""
+    p, q = max(itertools.pairwise(path), key=lambda piece: round(distance(*piece), 6))
+    return ((p[0] + q[0]) / 2.0, (p[1] + q[1]) / 2.0), unit_vector(p, q)
 
 
 def on_line(

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterator, Mapping
 
 from gtfs_schematic.bundles.model import BundledLayout, Corner
-from gtfs_schematic.drawing.course import half_way, on_line
+from gtfs_schematic.drawing.course import on_line, straight_middle
 from gtfs_schematic.drawing.markers import chevron, walk_shapes
 from gtfs_schematic.drawing.model import DrawingSettings, Group, PathShape
 from gtfs_schematic.drawing.paths import rounded
@@ -66,14 +66,16 @@ def line_groups(
 
 
 def _direction_marks(bundled: BundledLayout, line: Line, width: float) -> Iterator[PathShape]:
-    """Give an arrowhead half way along every link that a line runs in one direction only."""
+    """Give an arrowhead on every link that a line runs in one direction only."""
     layout = bundled.layout
     for start, end in line.one_way_links:
         link = layout.network.link_between.get(frozenset((start, end)))
         if link is None or link.id not in layout.paths:
             continue
         path = layout.paths[link.id]
-        found = on_line(bundled, line.id, *half_way(path if link.start == start else path[::-1]))
+        found = on_line(
+            bundled, line.id, *straight_middle(path if link.start == start else path[::-1])
+        )
         if found is not None:
             yield chevron(*found, 0.34 * width, line.text_color)
 

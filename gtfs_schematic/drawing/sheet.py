@@ -24,7 +24,8 @@ def candidate_frames(
 ) -> tuple[SheetFrame, ...]:
     """Give the pages to try, the smallest first, each with the part that the network may fill.
 
-    On each page the key stands where it leaves the network the larger scale.
+    A page comes twice, with the key beside and below, where both leave enough room: which is
+    better depends on the shape of the drawing, which nobody knows yet. The likelier comes first.
 
     Raises
     ------
@@ -33,11 +34,7 @@ def candidate_frames(
     """
     shape = _extent(network)
     sizes = _sizes(sheet, shape)
-    frames = [_best_frame(network, sheet, drawing, size) for size in sizes]
-    good = tuple(frame for frame in frames if frame is not None and _share(frame) >= _LEAST_SHARE)
-    if good:
-        return good
-    usable = [frame for frame in frames if frame is not None]
+    usable = [frame for size in sizes for frame in _usable_frames(network, sheet, drawing, size)]
     if not usable:
         width, height = sizes[-1]
         raise UsageError(
@@ -45,7 +42,8 @@ def candidate_frames(
             f"{len(network.lines)} lines and notes: choose a larger size, a smaller margin, or "
             "fewer lines."
         )
-    return (usable[-1],)
+    good = tuple(frame for frame in usable if _share(frame) >= _LEAST_SHARE)
+    return good or (usable[-1],)
 
 
 def _sizes(sheet: SheetSettings, shape: tuple[float, float]) -> tuple[tuple[float, float], ...]:
@@ -78,16 +76,14 @@ def _orientations(sheet: SheetSettings, shape: tuple[float, float]) -> tuple[str
     return ("landscape", "portrait") if ratio >= 1.0 else ("portrait", "landscape")
 
 
-def _best_frame(
+def _usable_frames(
     network: Network, sheet: SheetSettings, drawing: DrawingSettings, size: tuple[float, float]
-) -> SheetFrame | None:
-    """Give the frame of a page with the key where it does least harm; None if nothing is left."""
+) -> list[SheetFrame]:
+    """Give the frames of a page that are large enough to hold a network, the likelier first."""
     shape = _extent(network)
     frames = [plan_page(network, drawing, size, sheet.margin_mm, place).frame for place in _PLACES]
     usable = [frame for frame in frames if min(_sides(frame)) >= _LEAST_SIDE_MM]
-    if not usable:
-        return None
-    return max(usable, key=lambda frame: _scale(frame, shape))
+    return sorted(usable, key=lambda frame: -_scale(frame, shape))
 
 
 def _sides(frame: SheetFrame) -> tuple[float, float]:
@@ -105,7 +101,10 @@ def _share(frame: SheetFrame) -> float:
 
 
 def _extent(network: Network) -> tuple[float, float]:
-    """Give the network's width and height, in degrees of latitude; never nought.
+    """Guess the drawing's width and height from the ground, in no unit; never nought.
+
+    Schematic drawings are less oblong than the ground, since their long tails are shortened: the
+    guess is the root of the ground's proportion (common practice, no source).
 
     A degree of longitude is a degree of latitude times the cosine of the latitude, on a sphere:
     near enough for choosing between upright and oblong.
@@ -116,4 +115,4 @@ def _extent(network: Network) -> tuple[float, float]:
     width = (max(lons) - min(lons)) * math.cos(math.radians(middle))
     height = max(lats) - min(lats)
     least = max(width, height, 1e-6) / 10.0
-    return max(width, least), max(height, least)
+    return math.sqrt(max(width, least)), math.sqrt(max(height, least))

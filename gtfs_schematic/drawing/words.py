@@ -27,6 +27,8 @@ SERVICE_NOTES: dict[ServicePattern, str] = {
     "night": "nights only",
     "some-days": "not every day",
 }
+_WORDS = re.compile(r"\S+(?:\s[–—/·-](?=\s|$))*")
+"""Words, a dash or stroke between blanks staying with the word before it."""
 _NATURAL = re.compile(r"(\d+)")
 
 
@@ -65,7 +67,7 @@ def wrap(text: str, width: float, size: float, *, bold: bool = False) -> tuple[s
 def _filled(text: str, width: float, size: float, *, bold: bool) -> tuple[str, ...]:
     """Break a text at blanks, each line as full as `width` allows."""
     lines: list[str] = []
-    for word in text.split():
+    for word in _WORDS.findall(text):
         longer = f"{lines[-1]} {word}" if lines else word
         if lines and fonts.text_width_mm(longer, size, bold=bold) <= width:
             lines[-1] = longer

@@ -104,6 +104,11 @@ def test_wrapping_keeps_words_and_width(text: str, width: float):
         assert text_width_mm(line, 3.0) <= width or " " not in line
 
 
+def test_a_line_never_begins_with_a_dash():
+    lines = wrap("Krähenwald – Auenbruck – Neustift", 20.0, 3.0)
+    assert lines == ("Krähenwald –", "Auenbruck –", "Neustift")
+
+
 def test_natural_order_counts():
     assert sorted(["10", "2", "1A", "S1", "1"], key=natural) == ["1", "1A", "2", "10", "S1"]
 
