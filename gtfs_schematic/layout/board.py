@@ -11,11 +11,9 @@ from numpy.typing import NDArray
 from gtfs_schematic.layout import router
 from gtfs_schematic.layout.objective import Weights, port_bearing_costs, turn_cost
 from gtfs_schematic.layout.plane import PlaneGraph
-from gtfs_schematic.layout.router import BLOCKED, DX, DY, FREE
+from gtfs_schematic.layout.router import BLOCKED, DX, DY, FREE, Lattice, Prices, Trip
 
 _MARGIN_SPACINGS = 5.0
-_NO_GOALS = np.empty(0, dtype=np.int64)
-_FREE_PORTS = np.zeros(8, dtype=np.int64)
 
 
 class Board:
@@ -40,21 +38,20 @@ class Board:
             lines = count
             if graph.station_of[v] is None:
                 lines = max(lines, weights.crossing_bend)
-            lines = min(lines, 5)
+            lines = min(lines, weights.most_lines)
             self.turns[a].append((b, lines, v))
             self.turns[b].append((a, lines, v))
         self.position = {
             end: (v, k) for v, around in enumerate(graph.rotation) for k, end in enumerate(around)
         }
         extent = self.anchors.max(axis=0) + _MARGIN_SPACINGS
-        self.width, self.height = (int(math.ceil(side * unit)) + 1 for side in extent)
+        self.width, self.height = (math.ceil(side * unit) + 1 for side in extent)
         size = self.width * self.height
-        self.occupied = np.full(size, FREE, dtype=np.int32)
-        self.diagonals = np.full(size, FREE, dtype=np.int32)
-        self.guard = np.full(size, FREE, dtype=np.int32)
-        self.claims = np.zeros(size, dtype=np.int32)
+        occupied, diagonals, guard = (np.full(size, FREE, dtype=np.int32) for _ in range(3))
+        claims = np.zeros(size, dtype=np.int32)
+        self.lattice = Lattice(self.width, self.height, occupied, diagonals, guard, claims)
         self.courses = [self._course(p) for p in range(len(self.graph.pieces))]
-        self.costs = [self._costs(p) for p in range(len(self.graph.pieces))]
+        self.prices = [self._prices(p) for p in range(len(self.graph.pieces))]
 
     def _course(self, p: int) -> NDArray[np.float64]:
         points = self.anchors[list(self.graph.pieces[p].nodes)] * self.unit
@@ -72,22 +69,20 @@ class Board:
                 bearings[2 * p + i] = math.atan2(ahead.y - run[0][1], ahead.x - run[0][0])
         return bearings
 
-    def _costs(self, p: int) -> NDArray[np.int64]:
+    def _prices(self, p: int) -> Prices:
         weights = self.weights
-        lines = min(max(1, len(self.graph.pieces[p].lines)), 4)
+        piece = self.graph.pieces[p]
+        lines = min(max(1, len(piece.lines)), weights.most_lines)
         low, high = weights.piece_bends
-        share = 1.0 if self.graph.pieces[p].lines else 0.4
-        return np.array(
-            [
-                round(weights.length * share),
-                round(low * lines * share),
-                round(high * lines * share),
-                weights.near,
-                round(weights.course * share),
-                self.unit,
-                weights.claim,
-            ],
-            dtype=np.int64,
+        share = weights.walk_share if piece.is_walk else 1.0
+        return Prices(
+            hop=round(weights.length * share),
+            bend_135=round(low * lines * share),
+            bend_90=round(high * lines * share),
+            near=weights.near,
+            course=round(weights.course * share),
+            claim=weights.claim,
+            unit=self.unit,
         )
 
     # ---- vertices and paths ----------------------------------------------------------------
@@ -95,30 +90,30 @@ class Board:
     def put(self, v: int, node: int) -> None:
         """Stand vertex `v` on a node."""
         self.place[v] = node
-        self.occupied[node] = v
+        self.lattice.occupied[node] = v
         self._set_guard(node, v)
 
     def take(self, v: int) -> None:
         """Take vertex `v` off the lattice."""
         node = int(self.place[v])
         self.place[v] = -1
-        self.occupied[node] = FREE
+        self.lattice.occupied[node] = FREE
         self._set_guard(node, FREE)
 
     def _set_guard(self, node: int, value: int) -> None:
         for d in range(8):
-            self.guard[node + int(DY[d]) * self.width + int(DX[d])] = value
+            self.lattice.guard[node + int(DY[d]) * self.width + int(DX[d])] = value
 
     def lay(self, p: int, path: NDArray[np.int64]) -> None:
         """Lay the path of piece `p`, from its first end to its second."""
         self.paths[p] = path
-        router.mark(path, self.n + p, self.occupied, self.diagonals, self.width)
+        router.mark(path, self.n + p, self.lattice)
 
     def lift(self, p: int) -> NDArray[np.int64]:
         """Lift the path of piece `p` and give it back."""
         path = self.paths[p]
         assert path is not None  # noqa: S101 - callers lift only what is laid
-        router.mark(path, FREE, self.occupied, self.diagonals, self.width)
+        router.mark(path, FREE, self.lattice)
         self.paths[p] = None
         return path
 
@@ -127,12 +122,8 @@ class Board:
         path = self.paths[end // 2]
         if path is None:
             return -1
-        a, b = (path[0], path[1]) if end % 2 == 0 else (path[-1], path[-2])
-        dx, dy = int(b % self.width - a % self.width), int(b // self.width - a // self.width)
-        return (0, 1, 2, 3, 4, 5, 6, 7)[
-            {(1, 0): 0, (1, 1): 1, (0, 1): 2, (-1, 1): 3, (-1, 0): 4, (-1, -1): 5, (0, -1): 6,
-             (1, -1): 7}[dx, dy]
-        ]  # fmt: skip
+        start, after = (path[0], path[1]) if end % 2 == 0 else (path[-1], path[-2])
+        return int(router.direction(start, after, self.width))
 
     def acceptable(self, node: int) -> bool:
         """Whether a new vertex may stand on a node: it and all around are free of others."""
@@ -140,8 +131,8 @@ class Board:
         if not (2 <= x < self.width - 2 and 2 <= y < self.height - 2):
             return False
         block = (slice(y - 1, y + 2), slice(x - 1, x + 2))
-        occupied = self.occupied.reshape(self.height, self.width)[block]
-        guard = self.guard.reshape(self.height, self.width)[block]
+        occupied = self.lattice.occupied.reshape(self.height, self.width)[block]
+        guard = self.lattice.guard.reshape(self.height, self.width)[block]
         return bool((occupied == FREE).all() and (guard == FREE).all())
 
     def port_costs(self, end: int) -> NDArray[np.int64]:
@@ -193,13 +184,13 @@ class Board:
     ) -> tuple[int, NDArray[np.int64]]:
         """Find the cheapest path of piece `p` between its placed ends; nothing is laid."""
         a, b = self.graph.pieces[p].ends
-        source, target = (a, int(self.place[a])), (b, int(self.place[b]))
-        cost, path = router.route(
-            self.occupied, self.diagonals, self.guard, self.claims, (self.width, self.height),
-            self.window(p, [source[1], target[1]], margin), source, target,
-            self.port_costs(2 * p), self.port_costs(2 * p + 1), _NO_GOALS,
-            self.courses[p], self.costs[p],
+        nodes = [int(self.place[a]), int(self.place[b])]
+        trip = Trip(
+            a, nodes[0], b, nodes[1],
+            self.port_costs(2 * p), self.port_costs(2 * p + 1),
+            *self.window(p, nodes, margin),
         )  # fmt: skip
+        cost, path = router.route(self.lattice, trip, self.courses[p], self.prices[p])
         return (cost, path) if cost < limit else (int(BLOCKED), path[:0])
 
     def anchor_cost(self, v: int, node: int) -> int:
@@ -215,10 +206,8 @@ class Board:
         for p in pieces:
             path = self.paths[p]
             assert path is not None  # noqa: S101 - asked only of laid pieces
-            total += router.path_cost(
-                path, self.n + p, self.graph.pieces[p].ends, self.occupied, self.claims,
-                (self.width, self.height), self.courses[p], self.costs[p],
-            )  # fmt: skip
+            codes = (*self.graph.pieces[p].ends, self.n + p)
+            total += router.path_cost(path, codes, self.lattice, self.courses[p], self.prices[p])
             for end in (2 * p, 2 * p + 1):
                 port = self.port(end)
                 total += int(port_bearing_costs(float(self.bearings[end]), self.weights)[port])

@@ -43,9 +43,9 @@ def embed(board: Board) -> int | None:
     courses = [_true_course(board, p) for p in range(len(board.paths))]
     claims = [_claimed(board, course) for course in courses]
     for nodes in claims:
-        board.claims[nodes] += 1
+        board.lattice.claims[nodes] += 1
     for p in sorted(range(len(board.paths)), key=lambda p: _freedom(board, p)):
-        board.claims[claims[p]] -= 1
+        board.lattice.claims[claims[p]] -= 1
         if not _insert(board, p, courses[p]):
             return p
     return None

@@ -45,6 +45,7 @@ _ROOM = 1.1
 """Share by which a sheet should exceed the least size of the drawing, for labels and air."""
 _LOOSEST = 2.2
 """A station spacing grows to at most so many times the least, however large the sheet."""
+_NO_LENGTH_MM = 0.02
 _FILLINGS = 3
 _FULL = 1.06
 """How often the scale is raised to fill the sheet, and when it is full: sheet over drawing."""
@@ -129,7 +130,7 @@ def _on_sheet(
 ) -> tuple[Skeleton, NDArray[np.float64], SheetFrame]:
     """Choose the sheet by the least size, then fill it."""
     spacing = sizes.clearances.spacing_mm
-    skeleton, points = _settled(skeleton, sizes, spacing, None)
+    skeleton, points, pairs = _settled(skeleton, sizes, spacing, None)
     width, height = np.ptp(points, axis=0)
     fits = [f for f in frames if _inner(f)[0] >= width * _ROOM and _inner(f)[1] >= height * _ROOM]
     fits = fits or [f for f in frames if _inner(f)[0] >= width and _inner(f)[1] >= height]
@@ -150,7 +151,7 @@ def _on_sheet(
         if grow < _FULL or scale >= _LOOSEST * spacing:
             break
         scale = min(scale * grow * 0.98, _LOOSEST * spacing)
-        skeleton, points = _settled(skeleton, sizes, scale, box)
+        skeleton, points, pairs = _settled(skeleton, sizes, scale, box, pairs)
     return skeleton, points, frame
 
 
@@ -166,17 +167,21 @@ def _inner(frame: SheetFrame) -> tuple[float, float]:
 
 
 def _settled(
-    skeleton: Skeleton, sizes: Sizes, scale_mm: float, box: tuple[float, float] | None
-) -> tuple[Skeleton, NDArray[np.float64]]:
+    skeleton: Skeleton,
+    sizes: Sizes,
+    scale_mm: float,
+    box: tuple[float, float] | None,
+    pairs: NDArray[np.int64] | None = None,
+) -> tuple[Skeleton, NDArray[np.float64], NDArray[np.int64] | None]:
     """Settle, then take out bends that have shrunk to nothing, and settle again."""
-    for _ in range(3):
-        points = settle(skeleton, wants_of(skeleton, sizes, scale_mm, tight=box is None), box)
+    while True:
+        wants = wants_of(skeleton, sizes, scale_mm, tight=box is None)
+        points, pairs = settle(skeleton, wants, box, pairs)
         lengths = np.hypot(*np.diff(points[skeleton.segments], axis=1)[:, 0].T)
-        gone = lengths < 0.02
+        gone = lengths < _NO_LENGTH_MM
         if not gone.any():
-            break
-        skeleton = _without(skeleton, points, gone)
-    return skeleton, points
+            return skeleton, points, pairs
+        skeleton, pairs = _without(skeleton, points, gone), None
 
 
 def _without(skeleton: Skeleton, points: NDArray[np.float64], gone: NDArray[np.bool_]) -> Skeleton:

@@ -62,7 +62,7 @@ def wants_of(skeleton: Skeleton, sizes: Sizes, scale_mm: float, *, tight: bool) 
         least=np.where(jog, 0.0, corner),
         piece_least=least,
         piece_goal=least if tight else np.maximum(goal, least),
-        piece_weight=np.where(walk, 0.5, 1.0) * weight,
+        piece_weight=np.where(walk, 2.0, 1.0) * weight,
         anchors=sizes.anchors * scale_mm,
         anchor_weight=0.02 if tight else 0.05 + 0.5 * sizes.settings.fidelity**2,
         half_width=half,

@@ -25,6 +25,10 @@ class Weights:
     """Per line that turns at a vertex by 0, 45, 90, 135 degrees (angle 180, 135, 90, 45)."""
     piece_bends: tuple[int, int] = (900, 2600)
     """Per line that turns on a piece between vertices by 45 or 90 degrees."""
+    most_lines: int = 5
+    """Lines beyond this count no more: a bend of a wide bundle is one bend to the eye."""
+    walk_share: float = 0.4
+    """Share of all prices that a walk pays."""
     crossing_bend: int = 2
     """How many lines a crossing counts for at least: crossings are passed straight."""
     near: int = 260

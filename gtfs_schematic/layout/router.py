@@ -1,13 +1,15 @@
 """Cheapest octilinear path over a lattice on which other paths and vertices are obstacles.
 
 The lattice, its bend costs and its blocked ports follow the idea of octilinear grid-graph routing
-(Bast, Brosi and Storandt 2020); costs are whole numbers, so that ties and sums are exact.
+(Bast, Brosi and Storandt 2020); the search is A* (Hart, Nilsson and Raphael 1968) over nodes and
+arrival directions. Costs are whole numbers, so that ties and sums are exact.
 """
 
 from __future__ import annotations
 
 import heapq
 import math
+from typing import NamedTuple
 
 import numpy as np
 from numba import njit
@@ -21,14 +23,60 @@ DX = np.array([1, 1, 0, -1, -1, -1, 0, 1], dtype=np.int64)
 DY = np.array([0, 1, 1, 1, 0, -1, -1, -1], dtype=np.int64)
 """Steps of the eight ports, 0 east, counter-clockwise with y north."""
 
-HOP, BEND_135, BEND_90, NEAR, COURSE, UNIT, CLAIM = range(7)
-"""Places of the parameters in the `costs` array: per spacing of length; per bend; per node next
-to something else; per spacing of length and spacing of distance from the true course; lattice
-steps in a spacing; per step onto the course of a piece that is not laid yet."""
+_ROOT_2 = 1.4142135623730951
+
+
+class Lattice(NamedTuple):
+    """What stands on the lattice; arrays hold one entry per node, row by row."""
+
+    width: int
+    height: int
+    occupied: NDArray[np.int32]
+    """Code of the vertex or path on the node; `FREE` where none."""
+    diagonals: NDArray[np.int32]
+    """Code of the path whose diagonal crosses the cell above right of the node."""
+    guard: NDArray[np.int32]
+    """Vertex among whose eight neighbours the node is: only its own pieces pass there."""
+    claims: NDArray[np.int32]
+    """Count of courses of other pieces, not laid yet, that pass the node."""
+
+
+class Prices(NamedTuple):
+    """What a piece pays, in the thousandths of `objective.Weights`."""
+
+    hop: int
+    """Per spacing of length."""
+    bend_135: int
+    bend_90: int
+    near: int
+    """Per node next to something else, on a lattice of one step to the spacing."""
+    course: int
+    """Per spacing of length at one spacing from the true course; more than in proportion
+    further away."""
+    claim: int
+    """Per step onto the course of a piece that is not laid yet."""
+    unit: int
+    """Lattice steps in a spacing."""
+
+
+class Trip(NamedTuple):
+    """From which vertex and node to which, at what cost of each port, and within what window."""
+
+    source: int
+    source_node: int
+    target: int
+    target_node: int
+    source_ports: NDArray[np.int64]
+    target_ports: NDArray[np.int64]
+    low_x: int
+    low_y: int
+    high_x: int
+    high_y: int
 
 
 @njit(cache=True)
-def _course_distance(x: float, y: float, course: NDArray[np.float64]) -> float:
+def _off_course(x: float, y: float, course: NDArray[np.float64]) -> float:
+    """Distance of a node from a polyline, in steps."""
     best = 1e18
     for i in range(course.shape[0] - 1):
         ax, ay = course[i, 0], course[i, 1]
@@ -45,257 +93,208 @@ def _course_distance(x: float, y: float, course: NDArray[np.float64]) -> float:
 def _step_cost(
     x: int,
     y: int,
-    diagonal: int,
-    occupied: NDArray[np.int32],
-    width: int,
-    height: int,
-    codes: tuple[int, int, int],
-    claims: NDArray[np.int32],
+    lattice: Lattice,
+    own: tuple[int, int, int],
     course: NDArray[np.float64],
-    costs: NDArray[np.int64],
+    prices: Prices,
 ) -> int:
-    """Cost of a step onto node (x, y): its length, its neighbours, its distance from course."""
-    unit = costs[5]
-    length = 1.4142135623730951 if diagonal else 1.0
+    """Cost of an upright step onto node (x, y); a diagonal one costs √2 times as much."""
     crowd = 0
     for d in range(8):
         i, j = x + DX[d], y + DY[d]
-        if 0 <= i < width and 0 <= j < height:
-            code = occupied[j * width + i]
-            if code != -1 and code != codes[0] and code != codes[1] and code != codes[2]:
+        if 0 <= i < lattice.width and 0 <= j < lattice.height:
+            code = lattice.occupied[j * lattice.width + i]
+            if code not in (FREE, own[0], own[1], own[2]):
                 crowd += 1
-    away = _course_distance(float(x), float(y), course) / unit
-    cost = (costs[0] + costs[4] * min(away, 4.0) * (1.0 + 0.5 * min(away, 4.0))) * length / unit
-    cost += costs[3] * min(crowd, 3) / unit + costs[6] * claims[y * width + x]
-    return int(round(cost))
+    away = min(4.0, _off_course(float(x), float(y), course) / prices.unit)
+    length = prices.hop + prices.course * away * (1.0 + 0.5 * away)
+    claims = prices.claim * lattice.claims[y * lattice.width + x]
+    return int(round((length + prices.near * min(crowd, 3)) / prices.unit + claims))
 
 
 @njit(cache=True)
-def route(
-    occupied: NDArray[np.int32],
-    diagonals: NDArray[np.int32],
-    guard: NDArray[np.int32],
-    claims: NDArray[np.int32],
-    shape: tuple[int, int],
-    window: tuple[int, int, int, int],
-    source: tuple[int, int],
-    target: tuple[int, int],
-    source_ports: NDArray[np.int64],
-    target_ports: NDArray[np.int64],
-    goals: NDArray[np.int64],
-    course: NDArray[np.float64],
-    costs: NDArray[np.int64],
-) -> tuple[int, NDArray[np.int64]]:
-    """Find the cheapest path from vertex `source` to vertex `target`, or to the best goal.
+def _diagonal(cost: int) -> int:
+    return (cost * 181) // 128
 
-    Parameters
-    ----------
-    occupied, diagonals, guard
-        Per node: the code of what stands there; the path whose diagonal crosses the cell above
-        right of it; the vertex whose eight neighbours it is among. -1 where nothing.
-    claims
-        Per node the count of courses of other pieces, not laid yet, that pass it.
-    shape, window
-        (width, height) of the lattice; (x0, y0, x1, y1) that the path may use, inclusive.
-    source, target
-        (vertex, node) of the ends; target (-1, -1): any node whose `goals` is below BLOCKED.
-    source_ports, target_ports
-        Cost of leaving or entering through each port; BLOCKED where not allowed.
-    goals
-        Per node of the window (row by row) the cost of ending there; empty with a target.
-    course
-        The true course in lattice coordinates, shape (m, 2).
-    costs
-        See the places above; the two bend costs include the weight of the piece.
 
-    Returns
-    -------
-    tuple
-        Total cost and the nodes from source to end; BLOCKED and no nodes if there is no path.
-    """
-    width, height = shape
-    x0, y0, x1, y1 = window
-    w = x1 - x0 + 1
-    size = w * (y1 - y0 + 1) * 8
-    best = np.full(size, BLOCKED, dtype=np.int64)
-    parent = np.full(size, -1, dtype=np.int64)
-    steps = np.full(size // 8, -1, dtype=np.int64)
-    codes = (source[0], target[0], -2)
-    unit = costs[5]
-    hop = costs[0] / unit
-    free_target = target[0] < 0
-    tx, ty = target[1] % width, target[1] // width
-    sx, sy = source[1] % width, source[1] // width
-    heap = [(np.int64(0), np.int64(-1))]
-    heap.pop()
-    for d in range(8):
-        if source_ports[d] >= BLOCKED:
-            continue
-        x, y = sx + DX[d], sy + DY[d]
-        if x < x0 or x > x1 or y < y0 or y > y1:
-            continue
-        node = y * width + x
-        if occupied[node] != -1 or (guard[node] != source[0] and guard[node] != -1):
-            continue
-        if d % 2 == 1 and diagonals[min(y, sy) * width + min(x, sx)] != -1:
-            continue
-        cost = source_ports[d] + _step_cost(
-            x, y, d % 2, occupied, width, height, codes, claims, course, costs
-        )
-        state = ((y - y0) * w + (x - x0)) * 8 + d
-        best[state] = cost
-        h = 0
-        if not free_target:
-            ax, ay = abs(x - tx), abs(y - ty)
-            h = int(hop * (max(ax, ay) + 0.41421356 * min(ax, ay)))
-        heapq.heappush(heap, (np.int64(cost + h), np.int64(state)))
-    final, final_cost = np.int64(-1), BLOCKED
-    while heap:
-        key, state = heapq.heappop(heap)
-        if key >= final_cost:
-            break
-        cost = best[state]
-        d = state % 8
-        cell = state // 8
-        x, y = cell % w + x0, cell // w + y0
-        if not free_target:
-            ax, ay = abs(x - tx), abs(y - ty)
-            if key > cost + int(hop * (max(ax, ay) + 0.41421356 * min(ax, ay))):
-                continue
-        elif key > cost:
-            continue
-        node = y * width + x
-        if free_target:
-            total = cost + goals[cell]
-            if goals[cell] < BLOCKED and total + target_ports[(d + 4) % 8] < final_cost:
-                final, final_cost = state, total + target_ports[(d + 4) % 8]
-        elif node == target[1]:
-            final, final_cost = state, cost
-            break
-        at_target = (not free_target) and guard[node] == target[0]
-        for turn in range(-2, 3):
-            e = (d + turn + 8) % 8
-            i, j = x + DX[e], y + DY[e]
-            if i < x0 or i > x1 or j < y0 or j > y1:
-                continue
-            there = j * width + i
-            arrives = (not free_target) and there == target[1]
-            if arrives:
-                if target_ports[(e + 4) % 8] >= BLOCKED:
-                    continue
-            else:
-                if at_target or occupied[there] != -1:
-                    continue
-                if guard[there] != -1 and (free_target or guard[there] != target[0]):
-                    continue
-            if e % 2 == 1 and diagonals[min(y, j) * width + min(x, i)] != -1:
-                continue
-            fresh = cost
-            if turn == 1 or turn == -1:
-                fresh += costs[1]
-            elif turn != 0:
-                fresh += costs[2]
-            spot = (j - y0) * w + (i - x0)
-            if arrives:
-                fresh += target_ports[(e + 4) % 8] + int(
-                    round(hop * (1.4142135623730951 if e % 2 else 1.0))
-                )
-            else:
-                # The cost of a node is asked for up to eight times: keep both kinds of step.
-                if steps[spot] < 0:
-                    steps[spot] = _step_cost(
-                        i, j, 0, occupied, width, height, codes, claims, course, costs
-                    )
-                fresh += steps[spot] if e % 2 == 0 else (steps[spot] * 181) // 128
-            onward = spot * 8 + e
-            if fresh < best[onward]:
-                best[onward] = fresh
-                parent[onward] = state
-                h = 0
-                if not free_target:
-                    ax, ay = abs(i - tx), abs(j - ty)
-                    h = int(hop * (max(ax, ay) + 0.41421356 * min(ax, ay)))
-                heapq.heappush(heap, (np.int64(fresh + h), np.int64(onward)))
-    if final < 0:
-        return BLOCKED, np.empty(0, dtype=np.int64)
-    count = 0
+@njit(cache=True)
+def _at_least(x: int, y: int, trip: Trip, width: int, hop: float) -> int:
+    """Lower bound of the cost from (x, y) to the target: its octilinear distance."""
+    dx = abs(x - trip.target_node % width)
+    dy = abs(y - trip.target_node // width)
+    return int(hop * (max(dx, dy) + 0.41421356 * min(dx, dy)))
+
+
+@njit(cache=True)
+def _open(x: int, y: int, step: int, lattice: Lattice, trip: Trip, vertex: int) -> bool:
+    """Whether a path may step onto free node (x, y); `vertex` is whose neighbours it may touch."""
+    node = y * lattice.width + x
+    guard = lattice.guard[node]
+    if lattice.occupied[node] != FREE or guard not in (FREE, vertex):
+        return False
+    return _uncrossed(x, y, step, lattice)
+
+
+@njit(cache=True)
+def _uncrossed(x: int, y: int, step: int, lattice: Lattice) -> bool:
+    """Whether no diagonal crosses the step that arrives at (x, y)."""
+    if step % 2 == 0:
+        return True
+    corner = min(y, y - DY[step]) * lattice.width + min(x, x - DX[step])
+    return bool(lattice.diagonals[corner] == FREE)
+
+
+@njit(cache=True)
+def _bend(turn: int, prices: Prices) -> int:
+    if turn == 0:
+        return 0
+    return prices.bend_135 if abs(turn) == 1 else prices.bend_90
+
+
+@njit(cache=True)
+def _traced(
+    parent: NDArray[np.int64], final: int, trip: Trip, columns: int, width: int
+) -> NDArray[np.int64]:
+    """Nodes from the source to the final state."""
+    count = 1
     state = final
     while state >= 0:
         count += 1
         state = parent[state]
-    path = np.empty(count + 1, dtype=np.int64)
-    path[0] = source[1]
+    path = np.empty(count, dtype=np.int64)
+    path[0] = trip.source_node
     state = final
-    for k in range(count, 0, -1):
+    for k in range(count - 1, 0, -1):
         cell = state // 8
-        path[k] = (cell // w + y0) * width + cell % w + x0
+        path[k] = (cell // columns + trip.low_y) * width + cell % columns + trip.low_x
         state = parent[state]
-    return final_cost, path
+    return path
+
+
+@njit(cache=True)
+def route(
+    lattice: Lattice, trip: Trip, course: NDArray[np.float64], prices: Prices
+) -> tuple[int, NDArray[np.int64]]:
+    """Find the cheapest path of a trip.
+
+    Parameters
+    ----------
+    lattice, trip
+        Where, and from where to where.
+    course
+        The true course in lattice coordinates, shape (m, 2).
+    prices
+        Costs of the piece; bends include the weight of its lines.
+
+    Returns
+    -------
+    tuple
+        Total cost and the nodes from source to target; `BLOCKED` and no nodes if there is none.
+    """
+    width = lattice.width
+    columns = trip.high_x - trip.low_x + 1
+    cells = columns * (trip.high_y - trip.low_y + 1)
+    best = np.full(cells * 8, BLOCKED, dtype=np.int64)
+    parent = np.full(cells * 8, -1, dtype=np.int64)
+    steps = np.full(cells, -1, dtype=np.int64)
+    own = (trip.source, trip.target, FREE)
+    hop = prices.hop / prices.unit
+    heap = [(np.int64(0), np.int64(-1))]
+    while heap:
+        key, state = heapq.heappop(heap)
+        if state < 0:
+            # The start: leave through any port; there is no direction to bend from.
+            cost, d = np.int64(0), -1
+            x, y = trip.source_node % width, trip.source_node // width
+        else:
+            cost, d = best[state], state % 8
+            x, y = state // 8 % columns + trip.low_x, state // 8 // columns + trip.low_y
+            if key > cost + _at_least(x, y, trip, width, hop):
+                continue
+            if y * width + x == trip.target_node:
+                return cost, _traced(parent, state, trip, columns, width)
+        beside = d >= 0 and lattice.guard[y * width + x] == trip.target
+        for turn in range(-2, 3) if d >= 0 else range(8):
+            e = (d + turn + 8) % 8 if d >= 0 else turn
+            i, j = x + DX[e], y + DY[e]
+            if not (trip.low_x <= i <= trip.high_x and trip.low_y <= j <= trip.high_y):
+                continue
+            cell = (j - trip.low_y) * columns + i - trip.low_x
+            fresh = cost + (_bend(turn, prices) if d >= 0 else trip.source_ports[e])
+            if j * width + i == trip.target_node:
+                if not _uncrossed(i, j, e, lattice):
+                    continue
+                fresh += trip.target_ports[(e + 4) % 8]
+                fresh += int(round(hop * (_ROOT_2 if e % 2 else 1.0)))
+            else:
+                # Beside the target only the step onto it is left; beside the source, only the
+                # step from it.
+                vertex = trip.source if d < 0 else trip.target
+                if beside or not _open(i, j, e, lattice, trip, vertex):
+                    continue
+                if steps[cell] < 0:
+                    steps[cell] = _step_cost(i, j, lattice, own, course, prices)
+                fresh += _diagonal(steps[cell]) if e % 2 else steps[cell]
+            onward = cell * 8 + e
+            if fresh < best[onward]:
+                best[onward] = fresh
+                parent[onward] = state
+                bound = _at_least(i, j, trip, width, hop)
+                heapq.heappush(heap, (np.int64(fresh + bound), np.int64(onward)))
+    return BLOCKED, np.empty(0, dtype=np.int64)
 
 
 @njit(cache=True)
 def path_cost(
     path: NDArray[np.int64],
-    code: int,
-    ends: tuple[int, int],
-    occupied: NDArray[np.int32],
-    claims: NDArray[np.int32],
-    shape: tuple[int, int],
+    own: tuple[int, int, int],
+    lattice: Lattice,
     course: NDArray[np.float64],
-    costs: NDArray[np.int64],
+    prices: Prices,
 ) -> int:
-    """Cost of a laid path without its ports: length, bends, crowding, distance from course."""
-    width, height = shape
+    """Cost of a laid path without its ports, as `route` counts it.
+
+    `own` are the codes of its two vertices and of the path itself.
+    """
+    width = lattice.width
     total = 0
     before = -1
     for k in range(1, path.shape[0]):
         x, y = path[k] % width, path[k] // width
-        dx, dy = x - path[k - 1] % width, y - path[k - 1] // width
-        d = 0
-        for e in range(8):
-            if DX[e] == dx and DY[e] == dy:
-                d = e
+        d = direction(path[k - 1], path[k], width)
         if k < path.shape[0] - 1:
-            total += _step_cost(
-                x,
-                y,
-                d % 2,
-                occupied,
-                width,
-                height,
-                (code, ends[0], ends[1]),
-                claims,
-                course,
-                costs,
-            )
+            cost = _step_cost(x, y, lattice, own, course, prices)
+            total += _diagonal(cost) if d % 2 else cost
         else:
-            total += int(round(costs[0] / costs[5] * (1.4142135623730951 if d % 2 else 1.0)))
+            total += int(round(prices.hop / prices.unit * (_ROOT_2 if d % 2 else 1.0)))
         if before >= 0:
-            turn = min((d - before + 8) % 8, (before - d + 8) % 8)
-            if turn == 1:
-                total += costs[1]
-            elif turn >= 2:
-                total += costs[2]
+            turn = (d - before + 12) % 8 - 4
+            total += _bend(turn, prices)
         before = d
     return total
 
 
 @njit(cache=True)
-def mark(
-    path: NDArray[np.int64],
-    code: int,
-    occupied: NDArray[np.int32],
-    diagonals: NDArray[np.int32],
-    width: int,
-) -> None:
-    """Lay a path on the lattice with its code, or lift it with code -1; ends stay as they are."""
+def direction(start: int, end: int, width: int) -> int:
+    """Port through which a step from one node to a neighbour leaves."""
+    dx, dy = end % width - start % width, end // width - start // width
+    for d in range(8):
+        if DX[d] == dx and DY[d] == dy:
+            return d
+    return -1
+
+
+@njit(cache=True)
+def mark(path: NDArray[np.int64], code: int, lattice: Lattice) -> None:
+    """Lay a path on the lattice with its code, or lift it with `FREE`; ends stay as they are."""
+    width = lattice.width
     for k in range(1, path.shape[0]):
         if k < path.shape[0] - 1:
-            occupied[path[k]] = code
+            lattice.occupied[path[k]] = code
         x, y = path[k] % width, path[k] // width
         i, j = path[k - 1] % width, path[k - 1] // width
         if x != i and y != j:
-            diagonals[min(y, j) * width + min(x, i)] = code
+            lattice.diagonals[min(y, j) * width + min(x, i)] = code
 
 
 @njit(cache=True)

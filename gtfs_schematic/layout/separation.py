@@ -17,8 +17,8 @@ _NORMALS = STEP / np.hypot(STEP[:, :1], STEP[:, 1:])
 class Separations:
     """Pairs of segments without a common node; `axis` points from the second to the first.
 
-    For both nodes i of segment `first` and both nodes j of `second`:
-    n(axis) · (point i − point j) ≥ gap.
+    For the nodes i of segment `first` and j of `second` that face each other:
+    n(axis) · (point i − point j) ≥ gap. Directions are fixed, so the facing ends stay the same.
     """
 
     first: NDArray[np.int64]
@@ -31,6 +31,17 @@ class Separations:
             np.concatenate([self.first, other.first]),
             np.concatenate([self.second, other.second]),
             np.concatenate([self.axis, other.axis]),
+        )
+
+    def facing(self, skeleton: Skeleton) -> tuple[NDArray[np.int64], NDArray[np.int64]]:
+        """Node of the first segment furthest back along the axis, and of the second furthest on."""
+        normal = STEP[self.axis]
+        ahead = (STEP[skeleton.directions[self.first]] * normal).sum(axis=1) >= 0
+        behind = (STEP[skeleton.directions[self.second]] * normal).sum(axis=1) < 0
+        first, second = skeleton.segments[self.first], skeleton.segments[self.second]
+        return (
+            np.where(ahead, first[:, 0], first[:, 1]),
+            np.where(behind, second[:, 0], second[:, 1]),
         )
 
     def normals(self) -> NDArray[np.float64]:

@@ -12,6 +12,7 @@ from dataclasses import dataclass
 
 import numpy as np
 import scipy.sparse as sp
+import shapely
 from numpy.typing import NDArray
 from scipy.optimize import linprog
 
@@ -20,6 +21,8 @@ from gtfs_schematic.layout.separation import Separations, near_pairs, separate
 from gtfs_schematic.layout.skeleton import STEP, Skeleton
 
 _MOST_REPAIRS = 20
+_SLACK = 1e-4
+"""Distance by which a solution may miss a clearance, millimetres."""
 
 
 @dataclass(frozen=True)
@@ -87,8 +90,11 @@ class _Rows:
 
 
 def settle(
-    skeleton: Skeleton, wants: Wants, box: tuple[float, float] | None
-) -> NDArray[np.float64]:
+    skeleton: Skeleton,
+    wants: Wants,
+    box: tuple[float, float] | None,
+    pairs: NDArray[np.int64] | None = None,
+) -> tuple[NDArray[np.float64], NDArray[np.int64]]:
     """Solve for the nodes' places.
 
     Parameters
@@ -99,25 +105,29 @@ def settle(
         Lengths and distances, millimetres.
     box
         Width and height that the drawing may fill, millimetres; None: as much as it needs.
+    pairs
+        Pairs of segments known to matter, shape (q, 2); None: those that are near.
 
     Returns
     -------
-    NDArray
-        Places in millimetres, y north, the box's lower left corner at the origin, shape (k, 2).
+    tuple
+        Places in millimetres, y north, the box's lower left corner at the origin, shape (k, 2);
+        and the pairs of segments that mattered.
 
     Raises
     ------
     InternalFaultError
         If the box is too small (the caller has asked for the size first) or no end is found.
     """
-    spacing = float(np.median(np.hypot(*np.diff(skeleton.points[skeleton.segments], axis=1).T)))
-    pairs = near_pairs(skeleton.points, skeleton.segments, 2.0 * spacing)
+    if pairs is None:
+        lengths = np.hypot(*np.diff(skeleton.points[skeleton.segments], axis=1)[:, 0].T)
+        pairs = near_pairs(skeleton.points, skeleton.segments, 2.0 * float(np.median(lengths)))
     apart = separate(skeleton, pairs)
     for _ in range(_MOST_REPAIRS):
         points = _solve(skeleton, wants, apart, box)
         fresh = _too_near(skeleton, wants, points, pairs)
         if not len(fresh):
-            return points
+            return points, pairs
         pairs = np.concatenate([pairs, fresh])
         apart = apart.extended(separate(skeleton, fresh))
     raise InternalFaultError("Settling the lengths found no end.")
@@ -130,12 +140,13 @@ def _too_near(
     known: NDArray[np.int64],
 ) -> NDArray[np.int64]:
     """Pairs that came too near and are not among the `known` ones."""
-    widest = 2.0 * float(wants.half_width.max(initial=0.0)) + wants.clear
-    pairs = near_pairs(points, skeleton.segments, widest)
-    seen = set(map(tuple, known.tolist()))
-    return np.array(
-        [p for p in map(tuple, pairs.tolist()) if p not in seen], dtype=np.int64
-    ).reshape(-1, 2)
+    half = wants.half_width
+    pairs = near_pairs(points, skeleton.segments, 2.0 * float(half.max()) + wants.clear)
+    lines = shapely.linestrings(points[skeleton.segments])
+    gaps = shapely.distance(lines[pairs[:, 0]], lines[pairs[:, 1]])
+    pairs = pairs[gaps < half[pairs[:, 0]] + half[pairs[:, 1]] + wants.clear - _SLACK]
+    count = len(skeleton.segments)
+    return pairs[~np.isin(pairs @ [count, 1], known @ [count, 1])]
 
 
 def _solve(
@@ -194,16 +205,15 @@ def _solve(
 
     normal = apart.normals()
     gap = wants.half_width[apart.first] + wants.half_width[apart.second]
-    for i in skeleton.segments[apart.first].T:
-        for j in skeleton.segments[apart.second].T:
-            terms = [
-                (i, -normal[:, 0]),
-                (j, normal[:, 0]),
-                (i + k, -normal[:, 1]),
-                (j + k, normal[:, 1]),
-            ]
-            most.add(terms, -(gap + wants.clear))
-            most.add([*terms, (lack, -1.0)], -(gap + wants.room))
+    i, j = apart.facing(skeleton)
+    terms = [
+        (i, -normal[:, 0]),
+        (j, normal[:, 0]),
+        (i + k, -normal[:, 1]),
+        (j + k, normal[:, 1]),
+    ]
+    most.add(terms, -(gap + wants.clear))
+    most.add([*terms, (lack, -1.0)], -(gap + wants.room))
 
     nodes = np.arange(k)
     for shift in (0, 1):
