@@ -13,15 +13,13 @@ from gtfs_schematic.labels.obstacles import Obstacles, Shapes
 from gtfs_schematic.labels.positions import NEAR, Candidate, Reach, positions
 from gtfs_schematic.labels.site import Site
 
-_PUSH_STEP_MM = 0.25
-
 
 def free_candidates(
     sites: Sequence[Site], obstacles: Obstacles, settings: LabelSettings, reach: Reach = NEAR
 ) -> tuple[list[Candidate], Shapes]:
     """Give all free candidates of some stations, and their boxes as polygons, in step.
 
-    Each position is pushed away from the marker by the least distance (in steps of 0.25 mm) at
+    Each position is pushed away from the marker by the least distance (in steps) at
     which it is free; positions that are free nowhere are left out.
     """
     raw = [candidate for site in sites for candidate in positions(site, settings, reach)]
@@ -29,7 +27,7 @@ def free_candidates(
         return [], np.empty(0, dtype=object)
     corners = np.array([candidate.corners() for candidate in raw])
     vectors = np.array([candidate.push for candidate in raw])
-    first = _first_free(corners, vectors, obstacles, reach.push_mm)
+    first = _first_free(corners, vectors, obstacles, reach)
     free = np.flatnonzero(np.isfinite(first))
     chosen, lengths = [free], [first[free]]
     for further in reach.further_mm:
@@ -56,15 +54,17 @@ def _first_free(
     corners: NDArray[np.float64],
     vectors: NDArray[np.float64],
     obstacles: Obstacles,
-    most_mm: float,
+    reach: Reach,
 ) -> NDArray[np.float64]:
     """Give for each box the least push at which it is free, infinite if there is none."""
     first = np.full(len(corners), np.inf)
     waiting = np.arange(len(corners))
-    for step in range(round(most_mm / _PUSH_STEP_MM) + 1):
-        length = step * _PUSH_STEP_MM
+    for step in range(round(reach.push_mm / reach.step_mm) + 1):
+        length = step * reach.step_mm
         boxes = _boxes(corners[waiting], vectors[waiting], np.full(len(waiting), length))
         free = ~obstacles.blocked(boxes)
         first[waiting[free]] = length
         waiting = waiting[~free]
+        if step == 0:  # the rest cannot be moved
+            waiting = waiting[np.any(vectors[waiting] != 0.0, axis=1)]
     return first

@@ -136,6 +136,7 @@ def solve(
     solver.parameters.num_workers = 1
     solver.parameters.random_seed = 1
     solver.parameters.max_deterministic_time = work
+    solver.parameters.linearization_level = 2  # the whole relaxation: it is nearly tight here
     status = solver.solve(model.model)
     if status not in (cp_model.OPTIMAL, cp_model.FEASIBLE):
         return start

@@ -15,33 +15,35 @@ from numpy.typing import NDArray
 
 from gtfs_schematic.labels.model import LabelSettings, Side
 from gtfs_schematic.labels.obstacles import Obstacles, Shapes
-from gtfs_schematic.labels.positions import GAP_MM, Candidate
+from gtfs_schematic.labels.positions import NEAR, Candidate
 from gtfs_schematic.labels.site import OCTANTS, Run
 
-TILT = 5.0
 ROW = 1.5
 """Each row more than the name's length asks for, or less."""
 SLIDE = 2.0
 """A slide of one width, or one row."""
 DISTANCE = 2.0
-"""Each millimetre between label and own marker beyond the usual gap."""
-SMALLER = 120.0
+"""A millimetre between label and own marker beyond the usual gap; more grow by the square too."""
+SMALLER = 200.0
 """Setting a name a whole size smaller; 90 % cost a tenth of it."""
 BARE = 10.0
 """Leaving out the badges."""
 BENEATH = 0.6
 """Badges in a row of their own."""
-AMBIGUOUS = 4.0
+AMBIGUOUS = 8.0
 """A foreign marker as near as can be; it fades to nothing at `_NEAR_MM`."""
-NEARER = 5.0
-"""A foreign marker nearer than the own one."""
+NEARER = 6.0
+"""A foreign marker as near as the own one, or nearly (`_NEARLY_MM`)."""
 FOREIGN_LINE = 1.5
 """A line that does not call as near as can be; it fades to nothing at `_LINE_MM`."""
 CUT_OFF = 8.0
 """A line that does not call between the label and its marker."""
 NOT_ASKED = 1000.0
 """Another side than a person asks for."""
-_NEAR_MM = 2.0
+_NEAR_MM = 2.5
+_NEARLY_MM = 0.5
+_OFF_MM = 2.0
+"""A label further than this from its marker lies off it."""
 _LINE_MM = 1.2
 _ROW_MM = 24.0
 """A row longer than this is better broken."""
@@ -54,6 +56,10 @@ SIDE_COST: Mapping[Run, Mapping[Side, float]] = {
     "end": {"E": 0, "NE": 0.4, "SE": 0.6, "W": 0.6, "N": 0.8, "S": 1, "NW": 1, "SW": 1.2},
     "node": {"NE": 0, "E": 0.3, "SE": 0.5, "NW": 0.9, "W": 1.2, "SW": 1.5, "N": 1.5, "S": 2},
 }
+TILT_COST: Mapping[Side, float] = {"NE": 5.0, "SW": 5.7}
+"""Tilted labels stand above and begin at the marker, or below and end there; never elsewhere."""
+TILT_BOLD = 6.0
+"""Names of interchanges and termini are better level."""
 END_COST = (0.0, 1.0, 2.0, 5.0, 9.0)
 """At a line's end, by the angle (in 45 degrees) between the side and straight on."""
 CROWDED = 1.0
@@ -66,15 +72,19 @@ def candidate_costs(
     obstacles: Obstacles,
     settings: LabelSettings,
 ) -> NDArray[np.float64]:
-    """Give the cost of each candidate by itself, at least 0."""
+    """Give the cost of each candidate by itself, at least 0; infinite if it would mislead.
+
+    A label misleads if it lies off its own marker and nearer to a foreign one.
+    """
     costs = np.array([_own_cost(candidate, settings) for candidate in candidates])
     if not len(costs):
         return costs
     index = {station_id: i for i, station_id in enumerate(obstacles.stations)}
     own = np.array([index[candidate.site.station_id] for candidate in candidates])
     own_distance = shapely.distance(boxes, obstacles.markers[own])
-    usual = settings.clearance_mm + GAP_MM
-    costs += DISTANCE * np.maximum(0.0, own_distance - usual)
+    usual = settings.clearance_mm + NEAR.gap_mm
+    off = np.maximum(0.0, own_distance - usual)
+    costs += DISTANCE * (off + off**2 / 2.0)
     costs += _ambiguity(boxes, own, own_distance, obstacles)
     costs += _foreign_lines(candidates, boxes, own, obstacles)
     return costs
@@ -103,7 +113,8 @@ def _own_cost(candidate: Candidate, settings: LabelSettings) -> float:
     cost += ROW * abs(candidate.rows - wanted) + 0.1 * max(0.0, widest - 1.3 * _ROW_MM)
     cost += SMALLER * (1.0 - candidate.scale)
     if candidate.angle_deg:
-        cost += TILT - SIDE_COST[candidate.site.run][candidate.side]
+        cost += TILT_COST[candidate.side] - side_cost(candidate)
+        cost += TILT_BOLD if candidate.site.bold else 0.0
     if candidate.block.foot > candidate.block.last_baseline:
         cost += BENEATH
     if candidate.bare:
@@ -123,7 +134,8 @@ def _ambiguity(
     nearest = np.full(len(boxes), np.inf)
     np.minimum.at(nearest, box, shapely.distance(boxes[box], obstacles.markers[marker]))
     cost = AMBIGUOUS * np.clip(1.0 - nearest / _NEAR_MM, 0.0, 1.0)
-    cost += NEARER * (nearest < own_distance)
+    cost += NEARER * (nearest < own_distance + _NEARLY_MM)
+    cost[(nearest < own_distance) & (own_distance > _OFF_MM)] = np.inf
     return np.asarray(cost, dtype=np.float64)
 
 

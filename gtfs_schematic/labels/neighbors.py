@@ -13,7 +13,7 @@ from gtfs_schematic.labels.site import Site, side_vector
 
 HAND = 3.0
 """Changing from one side of the lines to the other between neighbours."""
-TILTED = 3.0
+TILTED = 4.0
 """A tilted label beside one that is not."""
 SIDE = 0.5
 """Another of the eight sides than the neighbour's."""

@@ -9,7 +9,7 @@ from gtfs_schematic.labels.choice import Choice, Problem, greedy, solve
 from gtfs_schematic.labels.model import Label, LabelledLayout, LabelSettings
 from gtfs_schematic.labels.neighbors import Neighbors, neighbors_of
 from gtfs_schematic.labels.obstacles import Obstacles, obstacles_of
-from gtfs_schematic.labels.positions import FAR, NEAR
+from gtfs_schematic.labels.positions import ANYWHERE, FAR, NEAR
 from gtfs_schematic.labels.problem import Entry, entries_of, state_problem
 from gtfs_schematic.labels.site import Site, sites_of
 from gtfs_schematic.progress import Progress, Silent
@@ -71,9 +71,9 @@ def _widen(
     lost = [i for i, site in enumerate(sites) if site.station_id not in chosen]
     more = dict(entries)
     wide = lost
-    for _ in range(2):  # first for the lost ones, then for all that are in their way
+    for reach in (ANYWHERE, FAR):  # first for the lost ones, then for all that are in their way
         new = [sites[i] for i in wide if more[sites[i].station_id] is entries[sites[i].station_id]]
-        for station_id, found in entries_of(new, obstacles, settings, FAR).items():
+        for station_id, found in entries_of(new, obstacles, settings, reach).items():
             more[station_id] = [*entries[station_id], *found]
         groups = [more[site.station_id] for site in sites]
         problem, listed = state_problem(

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import itertools
 import math
 from collections.abc import Callable, Iterator
 from dataclasses import dataclass, replace
@@ -17,12 +18,10 @@ from gtfs_schematic.labels.blocks import (
 )
 from gtfs_schematic.labels.breaks import break_name
 from gtfs_schematic.labels.model import LabelSettings, Side
-from gtfs_schematic.labels.site import Site, side_vector
+from gtfs_schematic.labels.site import OCTANTS, Site, octant, side_vector
 
 TILT_DEG = -45.0
 """The one angle of tilted labels: reading upwards to the right."""
-GAP_MM = 0.3
-"""Distance of a label from its own marker beyond the clearance."""
 _BADGE_SIZE = 0.78
 """Type size of badges in sizes of stop names."""
 _AFTER_MOST = 3
@@ -41,6 +40,10 @@ _LEFT_CORNERS: tuple[tuple[Side, Side], ...] = (
     ("NW", "N"),
     ("SW", "S"),
 )
+_ALIGNS: tuple[Align, ...] = ("left", "center", "right")
+_LATTICE = tuple(i / 16.0 for i in range(-16, 17))
+_ASTRAY = 4.0
+"""The slide that a place off the usual ones counts as."""
 _ABOVE_BELOW: tuple[Side, ...] = ("N", "S")
 _TILTS: tuple[tuple[Side, Side, Align], ...] = (("NE", "N", "left"), ("SW", "S", "right"))
 """(side, push, alignment): begun above the marker, or ended below it."""
@@ -50,8 +53,12 @@ _TILTS: tuple[tuple[Side, Side, Align], ...] = (("NE", "N", "left"), ("SW", "S",
 class Reach:
     """How far the search for places goes."""
 
+    gap_mm: float = 0.3
+    """Least distance of a label from its own marker beyond the clearance."""
     push_mm: float = 2.5
     """How far a label may be pushed from its marker."""
+    step_mm: float = 0.25
+    """Steps in which it is pushed."""
     further_mm: tuple[float, ...] = ()
     """Distances beyond the first free place that are tried too."""
     rows: int = 3
@@ -60,17 +67,25 @@ class Reach:
     scales: tuple[float, ...] = (1.0,)
     """Type sizes in sizes of the settings."""
     drop_badges: bool = False
+    around_mm: float = 0.0
+    """How far from the marker any place at all is tried."""
+    kept: int = 6
+    """Free places kept per station, side and angle: the cheapest."""
 
 
 NEAR = Reach()
 FAR = Reach(
+    gap_mm=0.05,
     push_mm=4.0,
+    step_mm=0.1,
     further_mm=(0.75, 1.5),
     rows=4,
     slides=(0.0, -0.25, 0.25, -0.4, 0.4),
     scales=(1.0, 0.9),
     drop_badges=True,
+    kept=12,
 )
+ANYWHERE = replace(FAR, around_mm=7.0, kept=30)
 
 
 @dataclass(frozen=True, slots=True)
@@ -142,7 +157,7 @@ def positions(site: Site, settings: LabelSettings, reach: Reach = NEAR) -> Itera
         for wording in _wordings(site, settings, reach, scale):
             rows = len(wording.rows)
             bare = bool(site.badges) and wording.badge_place == "none"
-            gap = settings.clearance_mm + GAP_MM
+            gap = settings.clearance_mm + reach.gap_mm
             for align, spots_of in _SPOTS.items():
                 block = set_block(wording, align)
                 for spot in spots_of(site, block, gap, reach.slides):
@@ -153,6 +168,8 @@ def positions(site: Site, settings: LabelSettings, reach: Reach = NEAR) -> Itera
                     )  # fmt: skip
             if rows <= 2 and wording.badge_place != "beneath":
                 yield from _tilted(site, wording, gap, scale, bare=bare)
+            if reach.around_mm > 0.0:
+                yield from _anywhere(site, wording, reach.around_mm, scale, bare=bare)
 
 
 def _wordings(site: Site, settings: LabelSettings, reach: Reach, scale: float) -> Iterator[Wording]:
@@ -235,6 +252,28 @@ def _centered_spots(
         for slide in slides:
             x = px - block.width / 2.0 + slide * block.width
             yield _Spot(side, x, y, side, slide)
+
+
+def _anywhere(
+    site: Site, wording: Wording, around: float, scale: float, *, bare: bool
+) -> Iterator[Candidate]:
+    """Give a lattice of places, not pushed, whose box reaches to within a distance."""
+    px, py = site.at
+    for align in _ALIGNS:
+        block = set_block(wording, align)
+        height = block.ink_bottom - block.ink_top
+        for row, column in itertools.product(_LATTICE, repeat=2):
+            x = px + column * (block.width / 2.0 + around) - block.width / 2.0
+            y = py + row * (height / 2.0 + around) - height / 2.0 - block.ink_top
+            middle = (x + block.width / 2.0, y + (block.ink_top + block.ink_bottom) / 2.0)
+            side = OCTANTS[octant(site.at, middle)]
+            ahead = (middle[0] - px) * (1.0 if align == "left" else -1.0)
+            if (align == "center") != (side in _ABOVE_BELOW) or (align != "center" and ahead < 0.0):
+                continue
+            yield Candidate(
+                site, block, side, (x, y), (x, y), (0.0, 0.0),
+                0.0, len(wording.rows), _ASTRAY, scale, bare,
+            )  # fmt: skip
 
 
 _SPOTS: dict[Align, Callable[[Site, Block, float, tuple[float, ...]], Iterator[_Spot]]] = {

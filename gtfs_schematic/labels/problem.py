@@ -21,9 +21,7 @@ from gtfs_schematic.labels.site import OCTANTS, Site
 
 _UNITS = 10.0
 """Whole numbers per unit of cost."""
-_PER_CLASS = 5
-"""Candidates kept per station, side and angle before conflicts are known."""
-_PER_STATION = 40
+_PER_STATION = 120
 """Candidates kept per station in the end."""
 
 _WORD_SPACE_MM = 0.5
@@ -52,10 +50,10 @@ def entries_of(
     costs = np.rint(_UNITS * candidate_costs(candidates, boxes, obstacles, settings))
     found: dict[str, list[Entry]] = {site.station_id: [] for site in sites}
     kept: dict[tuple[str, tuple[int, bool]], int] = defaultdict(int)
-    for i in np.argsort(costs, kind="stable").tolist():
+    for i in np.argsort(costs, kind="stable")[: int(np.isfinite(costs).sum())].tolist():
         entry = Entry(candidates[i], boxes[i], int(costs[i]))
         key = (entry.candidate.site.station_id, entry.kind)
-        if kept[key] < _PER_CLASS:
+        if kept[key] < reach.kept:
             kept[key] += 1
             found[key[0]].append(entry)
     return found
