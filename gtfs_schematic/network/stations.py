@@ -119,7 +119,9 @@ def join_close(
     Clusters hold at most `most` sites. That *all* pairs must agree keeps a long row of stops
     from growing into one.
     """
-    cluster_of = {site_id: (site_id,) for pair in pairs for site_id in pair}
+    cluster_of: dict[str, tuple[str, ...]] = {
+        site_id: (site_id,) for pair in pairs for site_id in pair
+    }
     ranked = sorted((distance(sites[a].at, sites[b].at), a, b) for a, b in pairs)
     for _, a, b in ranked:
         one, other = cluster_of[a], cluster_of[b]
