@@ -14,7 +14,10 @@ from gtfs_schematic.progress import Progress, Silent
 
 
 def bundle(
-    layout: Layout, settings: BundleSettings, *, progress: Progress | None = None
+    layout: Layout,
+    settings: BundleSettings,
+    *,
+    progress: Progress = Silent(),  # noqa: B008 - it has no state
 ) -> BundledLayout:
     """Give a layout with its lines ordered, offset, and rounded at corners.
 
@@ -27,7 +30,6 @@ def bundle(
     progress
         Who is told about the components that are ordered.
     """
-    progress = progress or Silent()
     found = order_lines(layout, progress=progress)
     nodes = junctions(layout)
     slots = Slots(found.orders, settings)

@@ -16,6 +16,8 @@ from gtfs_schematic.network.model import Network
 
 _TOLERANCE_MM = 0.02
 _CHORDS_PER_TURN = 48
+_SHARES = (0.2, 0.35, 0.5, 0.65, 0.8)
+"""Where along a straight piece of a link its lines are measured."""
 
 
 def faults(bundled: BundledLayout) -> tuple[str, ...]:
@@ -25,14 +27,16 @@ def faults(bundled: BundledLayout) -> tuple[str, ...]:
     2. The links of a line lie on its stretches, each on one.
     3. Crossings and separations are counted right, and no fewer than the bound.
     4. Arcs fit between their neighbours, and ends are sharp.
-    5. Amid each straight piece of a link, lines stand in order, at their offsets from the centre
-       line, and so at least a line's width and gap apart.
+    5. Amid each straight piece of a link that is long enough, all lines stand in order, at their
+       offsets from the centre line, and so a line's width and gap apart.
     6. Every station has a span, whose points lie on the courses of its lines.
     """
+    plain = (*_order_faults(bundled), *_coverage_faults(bundled))
+    if plain:
+        # What is missing cannot be measured.
+        return plain
     by_line = _courses(bundled)
     return (
-        *_order_faults(bundled),
-        *_coverage_faults(bundled),
         *_quality_faults(bundled),
         *(fault for stretch in bundled.stretches for fault in _radius_faults(stretch)),
         *_offset_faults(bundled, by_line),
@@ -64,7 +68,10 @@ def count_order(layout: Layout, orders: Mapping[str, tuple[str, ...]]) -> tuple[
 
 
 def _ways(network: Network) -> dict[str, set[tuple[str, str, str]]]:
-    """Give per station (line, station before, station after), the two stations sorted."""
+    """Give per station (line, station before, station after), the two stations sorted.
+
+    A line with just two neighbours counts as passing even if all its courses end there.
+    """
     ways: dict[str, set[tuple[str, str, str]]] = defaultdict(set)
     for line in network.lines:
         for course in line.courses:
@@ -74,6 +81,14 @@ def _ways(network: Network) -> dict[str, set[tuple[str, str, str]]]:
             for before, here, after in zip(stops, stops[1:], stops[2:], strict=False):
                 if before != after:
                     ways[here].add((line.id, min(before, after), max(before, after)))
+    beside: dict[tuple[str, str], set[str]] = defaultdict(set)
+    for link in network.links:
+        for line_id in link.lines:
+            beside[link.start, line_id].add(link.end)
+            beside[link.end, line_id].add(link.start)
+    for (here, line_id), around in beside.items():
+        if len(around) == 2 and not any(way[0] == line_id for way in ways[here]):
+            ways[here].add((line_id, min(around), max(around)))
     return dict(sorted(ways.items()))
 
 
@@ -171,24 +186,38 @@ def _arc(a: np.ndarray, b: np.ndarray, c: np.ndarray, radius: float) -> list[tup
 def _offset_faults(
     bundled: BundledLayout, courses: Mapping[tuple[str, str], shapely.LineString]
 ) -> Iterator[str]:
-    settings = bundled.settings
-    pitch = settings.line_width_mm + settings.line_gap_mm
+    pitch = bundled.settings.line_width_mm + bundled.settings.line_gap_mm
+    widest: Counter[str] = Counter()
+    for link in bundled.layout.network.links:
+        for end in (link.start, link.end):
+            widest[end] = max(widest[end], len(link.lines))
     for link in bundled.layout.network.links:
         order = bundled.orders[link.id]
+        wanted = (np.arange(len(order)) - (len(order) - 1) / 2.0) * pitch
+        # Joints take room at both ends, the more the wider the bundles that meet there.
+        joints = 2.0 * (widest[link.start] + widest[link.end]) * pitch
         for p, q in itertools.pairwise(np.array(bundled.layout.paths[link.id])):
             length = float(np.hypot(*(q - p)))
-            if length < 4.0 * len(order) * pitch + 4.0 * settings.corner_radius_mm:
+            if length < joints + 4.0 * bundled.settings.corner_radius_mm:
                 continue
             right = np.array([p[1] - q[1], q[0] - p[0]]) / length
-            middle, reach = (p + q) / 2.0, len(order) * pitch
-            ray = shapely.LineString([middle - reach * right, middle + reach * right])
-            for i, line_id in enumerate(order):
-                meeting = courses[line_id, link.id].intersection(ray)
-                wanted = (i - (len(order) - 1) / 2.0) * pitch
-                at = shapely.get_coordinates(meeting)
-                off = [abs(float((point - middle) @ right) - wanted) for point in at]
-                if min(off, default=math.inf) > _TOLERANCE_MM:
-                    yield f"link {link.id}: line {line_id} is not {wanted:.2f} mm from the middle"
+            lines = [courses[line_id, link.id] for line_id in order]
+            rays = [(p + share * (q - p), right) for share in _SHARES]
+            if not any(_at_offsets(lines, wanted, *ray) for ray in rays):
+                yield f"link {link.id}: its lines are nowhere beside each other as they should be"
+
+
+def _at_offsets(
+    lines: list[shapely.LineString], wanted: np.ndarray, middle: np.ndarray, right: np.ndarray
+) -> bool:
+    """Say whether each line meets a ray across the link at its wanted offset from the middle."""
+    reach = float(np.abs(wanted).max()) + 1.0
+    ray = shapely.LineString([middle - reach * right, middle + reach * right])
+    for line, offset in zip(lines, wanted, strict=True):
+        found = (shapely.get_coordinates(line.intersection(ray)) - middle) @ right
+        if not (np.abs(found - offset) < _TOLERANCE_MM).any():
+            return False
+    return True
 
 
 def _span_faults(

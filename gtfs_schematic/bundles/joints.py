@@ -92,7 +92,10 @@ def _shifted(junction: Junction, way: Pass, slots: Slots, shifts: Shifts) -> tup
 
 
 def _mitre(junction: Junction, way: Pass, slots: Slots) -> tuple[Knot, ...]:
-    """Let the two parallels meet; where they meet too far out, cut the corner."""
+    """Let the two parallels meet; where one runs past the station and too far out, cut across.
+
+    On the inside of a turn the parallels meet before the station, and cannot meet elsewhere.
+    """
     first, second = junction.leg[way.first], junction.leg[way.second]
     p, q = (slots.foot(junction, leg, way.line_id) for leg in (first, second))
     d, e = first.direction, second.direction
@@ -103,13 +106,12 @@ def _mitre(junction: Junction, way: Pass, slots: Slots) -> tuple[Knot, ...]:
     most_first = slots.reach(first, way.line_id)
     most_second = slots.reach(second, way.line_id)
     into, out = _back(first), second.direction
-    if along_first <= most_first and along_second <= most_second:
+    inside = along_first > 0.0 and along_second > 0.0
+    if inside or (along_first <= most_first and along_second <= most_second):
         extra = _extra(junction, way, slots)
         group = (junction.station_id, way.first, way.second)
         return (Knot(moved(p, d, along_first), into, out, group, extra),)
-    if along_first > most_first and along_second > most_second:
-        a, b = most_first, most_second
-    elif along_second > most_second:
+    if along_second > most_second:
         b = most_second
         a = _early(moved(q, e, b), p, d)
     else:

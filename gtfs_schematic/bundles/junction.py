@@ -81,7 +81,8 @@ def line_passes(network: Network) -> Mapping[str, tuple[Pass, ...]]:
     """Give per station the passes of its lines: two links that a course uses one after the other.
 
     A closed course (its first station is its last) also passes there; a course that turns back
-    on its own link does not.
+    on its own link does not. Where a line has just two links and no course uses one after the
+    other, as at the far end of a terminal loop, it passes all the same.
     """
     found: dict[str, set[tuple[str, str, str]]] = defaultdict(set)
     for line in network.lines:
@@ -93,10 +94,23 @@ def line_passes(network: Network) -> Mapping[str, tuple[Pass, ...]]:
                 second = network.link_between[frozenset((b, c))].id
                 if first != second:
                     found[b].add((line.id, min(first, second), max(first, second)))
+    for (station_id, line_id), links in _own_links(network).items():
+        if len(links) == 2 and all(line_id != way[0] for way in found[station_id]):
+            found[station_id].add((line_id, min(links), max(links)))
     return {
         station_id: tuple(Pass(*key) for key in sorted(found[station_id]))
         for station_id in sorted(found)
     }
+
+
+def _own_links(network: Network) -> dict[tuple[str, str], list[str]]:
+    """Give the links of each line at each station, by (station, line)."""
+    own: dict[tuple[str, str], list[str]] = defaultdict(list)
+    for link in network.links:
+        for line_id in link.lines:
+            own[link.start, line_id].append(link.id)
+            own[link.end, line_id].append(link.id)
+    return own
 
 
 def _leg(link_id: str, path: tuple[Point, ...], *, forward: bool) -> Leg:

@@ -31,13 +31,16 @@ class LineOrder:
     crossings_bound: int
 
 
-def order_lines(layout: Layout, *, progress: Progress | None = None) -> LineOrder:
+def order_lines(
+    layout: Layout,
+    *,
+    progress: Progress = Silent(),  # noqa: B008 - it has no state
+) -> LineOrder:
     """Order the lines of every link of a layout.
 
     The pairwise bound and the greedy order come first; each component of chains that depend on
     each other is then solved exactly as far as a fixed amount of work allows.
     """
-    progress = progress or Silent()
     problem = state_problem(layout)
     bounds, left = order_pairs(problem)
     orders = order_greedily(problem, left)

@@ -13,8 +13,8 @@ from gtfs_schematic.bundles.junction import Junction, Leg, Pass
 from gtfs_schematic.bundles.slots import Slots, moved
 from gtfs_schematic.geometry import Point
 
-_LENGTH = 1.5
-"""Length of the oblique piece in multiples of the largest change of slot."""
+_LENGTHS = (2.5, 1.5)
+"""Lengths of the oblique piece to try, in multiples of the largest change of slot."""
 _STARTS = (0.0, 0.5, 1.0, 1.5, 2.0, 3.0)
 """Distances from the station to try, in multiples of the lines' pitch."""
 _CLEAR = 0.95
@@ -62,19 +62,18 @@ def _options(
     junction: Junction, links: tuple[str, str], lines: list[str], slots: Slots
 ) -> Iterator[Shift]:
     first, second = (junction.leg[link_id] for link_id in links)
-    wanted = _LENGTH * max(abs(slot_change(first, second, line, slots)) for line in lines)
-    narrow_first = sorted(
-        (first, second), key=lambda leg: (slots.half_width(leg.link_id), leg.link_id)
-    )
+    change = max(abs(slot_change(first, second, line, slots)) for line in lines)
+    room = {leg.link_id: min(slots.reach(leg, line) for line in lines) for leg in (first, second)}
+    legs = sorted((first, second), key=lambda leg: (slots.half_width(leg.link_id), leg.link_id))
     fits = False
-    for leg, start in itertools.product(narrow_first, _STARTS):
-        room = min(slots.reach(leg, line) for line in lines)
-        if start * slots.pitch + wanted <= room:
+    for leg, start, factor in itertools.product(legs, _STARTS, _LENGTHS):
+        shift = Shift(leg.link_id, start * slots.pitch, factor * change)
+        if shift.start_mm + shift.length_mm <= room[leg.link_id]:
             fits = True
-            yield Shift(leg.link_id, start * slots.pitch, wanted)
+            yield shift
     if not fits:
-        leg = max((first, second), key=lambda leg: (leg.length_mm, leg.link_id))
-        yield Shift(leg.link_id, 0.0, min(slots.reach(leg, line) for line in lines))
+        widest = max(room, key=lambda link_id: (room[link_id], link_id))
+        yield Shift(widest, 0.0, room[widest])
 
 
 def _cost(
@@ -101,7 +100,7 @@ def _cost(
     widths = [slots.half_width(link_id) for link_id in links]
     wide = slots.half_width(shift.link_id) > min(widths)
     cost = overlap + _DELAY_COST * shift.start_mm + _WIDE_COST * wide
-    return (round(cost, 6), shift.start_mm, shift.link_id)
+    return (round(cost, 6), -shift.length_mm, shift.link_id)
 
 
 def _local_course(junction: Junction, way: Pass, slots: Slots, shifts: Shifts) -> list[Point]:

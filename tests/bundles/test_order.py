@@ -101,18 +101,22 @@ def test_hand_drawn_networks_reach_their_bound(name, brute_force):
 
 @st.composite
 def tree_networks(draw, *, leaf_ends):
-    """Lines between stations of a small tree; with `leaf_ends`, each between leaves of its own."""
+    """Draw lines along a small tree; with `leaf_ends` each ends at two leaves of its own.
+
+    Without, an end is a leaf of its own or an inner station, as it comes.
+    """
     size = draw(st.integers(2, 5))
-    parents = [draw(st.integers(0, i - 1)) for i in range(1, size)]
+    parents = [draw(st.integers(max(0, i - 2), i - 1)) for i in range(1, size)]
     edges = [(i + 1, parent) for i, parent in enumerate(parents)]
-    count = draw(st.integers(2, 4 if leaf_ends else 3))
-    ends = [(draw(st.integers(0, size - 1)), draw(st.integers(0, size - 1))) for _ in range(count)]
-    if leaf_ends:
-        for i, pair in enumerate(ends):
-            edges += [(size + 2 * i, pair[0]), (size + 2 * i + 1, pair[1])]
-        ends = [(size + 2 * i, size + 2 * i + 1) for i in range(count)]
-    else:
-        ends = [pair for pair in ends if pair[0] != pair[1]] or [(0, 1)]
+    ends = []
+    for _ in range(draw(st.integers(2, 4))):
+        pair = [draw(st.integers(0, size // 2)), draw(st.integers(size // 2, size - 1))]
+        for i in (0, 1):
+            if leaf_ends or pair[0] == pair[1] or draw(st.booleans()):
+                leaf = len(edges) + 1
+                edges.append((leaf, pair[i]))
+                pair[i] = leaf
+        ends.append(tuple(pair))
     around: dict[int, list[int]] = {}
     for a, b in edges:
         around.setdefault(a, []).append(b)
