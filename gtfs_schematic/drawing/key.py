@@ -220,16 +220,23 @@ def _flow(rows: Sequence[KeyRow], limit: float) -> list[list[tuple[KeyRow, float
     columns: list[list[tuple[KeyRow, float]]] = [[]]
     used = 0.0
     for i, row in enumerate(rows):
-        needed = row.height
+        lead = _lead(row) if columns[-1] else 0.0
+        needed = lead + row.height
         if row.kind == "heading" and i + 1 < len(rows):
             needed += rows[i + 1].height
         alone = not columns[-1] or columns[-1][-1][0].kind == "heading"
         if not alone and used + needed > limit + 1e-9:
             columns.append([])
             used = 0.0 if row.kind == "heading" else rows[0].height
-        columns[-1].append((row, used))
-        used += row.height
+            lead = 0.0
+        columns[-1].append((row, used + lead))
+        used += lead + row.height
     return columns
+
+
+def _lead(row: KeyRow) -> float:
+    """Give the white above a row that is not the first of its column."""
+    return 0.4 * row.height if row.kind == "heading" else 0.0
 
 
 def _placed(

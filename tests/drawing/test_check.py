@@ -67,6 +67,18 @@ def test_a_missing_or_wrong_name_is_found(drawing: Drawing, network: Network):
     assert sum("Nirgendwo" in fault for fault in found) == len(network.stations)
 
 
+def test_a_name_that_found_no_room_may_be_missing_but_not_wrong(drawing: Drawing, network: Network):
+    def nameless(group: Group) -> tuple[Group, ...]:
+        kept = tuple(child for child in group.children if not isinstance(child, TextShape))
+        return (replace(group, children=kept),)
+
+    bare = altered(drawing, "station", nameless)
+    ids = [station.id for station in network.stations]
+    assert len(faults(bare, network)) == len(ids)
+    assert faults(bare, network, unnamed=ids) == ()
+    assert len(faults(drawing, network, unnamed=ids)) == len(ids)
+
+
 def test_what_leaves_the_page_is_found(drawing: Drawing, network: Network):
     cut = replace(drawing, width_mm=drawing.width_mm / 2.0)
     found = faults(cut, network)
