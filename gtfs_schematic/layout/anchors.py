@@ -104,7 +104,7 @@ def _guarded_move(
     graph: PlaneGraph, start: NDArray[np.float64], targets: NDArray[np.float64]
 ) -> NDArray[np.float64]:
     """Walk from `start` to `targets`; give way, but never cross, where links come near."""
-    points = np.ascontiguousarray(start)
+    points: NDArray[np.float64] = np.ascontiguousarray(start)
     segments = np.ascontiguousarray(graph.segments)
     if not len(segments):
         return points

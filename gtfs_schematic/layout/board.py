@@ -59,7 +59,7 @@ class Board:
         return np.array(line.coords)
 
     def _bearings(self) -> NDArray[np.float64]:
-        """True bearing of every piece end, radians, a spacing or so along its course."""
+        """Measure the true bearing of every piece end a spacing or so along, radians."""
         bearings = np.zeros(2 * len(self.graph.pieces))
         for p, piece in enumerate(self.graph.pieces):
             points = self.anchors[list(piece.nodes)]
@@ -197,7 +197,7 @@ class Board:
         """Cost of vertex `v` standing on a node away from its anchor."""
         dx = node % self.width / self.unit - self.anchors[v, 0]
         dy = node // self.width / self.unit - self.anchors[v, 1]
-        return round(self.weights.anchor * (dx * dx + dy * dy))
+        return round(self.weights.anchor * float(dx * dx + dy * dy))
 
     def cost(self, pieces: list[int], vertices: list[int]) -> int:
         """Cost of everything that the given pieces and vertices take part in."""

@@ -26,6 +26,7 @@ from pyproj import Geod
 
 from gtfs_schematic.geometry import Point
 from gtfs_schematic.layout.model import Clearances, Layout
+from gtfs_schematic.network.model import Link, Walk
 
 _TOUCH_M = 30.0
 """Distance on the ground below which touching and missing are not told apart, metres."""
@@ -98,7 +99,8 @@ def _missing(layout: Layout) -> list[str]:
         if station.id not in layout.positions
     ]
     paths = {**layout.paths, **layout.walk_paths}
-    for edge in (*network.links, *network.walks):
+    edges: list[Link | Walk] = [*network.links, *network.walks]
+    for edge in edges:
         path = paths.get(edge.id)
         if path is None or len(path) < 2:
             found.append(f"{edge.id} has no path.")
@@ -246,8 +248,8 @@ def _ways(layout: Layout, edges: tuple[_Edge, ...]) -> nx.Graph:
     ways = nx.Graph()
     for edge in edges:
         line = shapely.LineString(edge.path)
-        stops = [(line.project(shapely.Point(p)), p) for p in at[edge.id]]
-        stops = [(0.0, edge.start), *sorted(stops), (line.length, edge.end)]
+        between = sorted((line.project(shapely.Point(p)), p) for p in at[edge.id])
+        stops: list[tuple[float, object]] = [(0.0, edge.start), *between, (line.length, edge.end)]
         for (s, a), (t, b) in itertools.pairwise(stops):
             if not ways.has_edge(a, b) or ways.edges[a, b]["length"] > t - s:
                 ways.add_edge(a, b, length=t - s, edge=edge.id)

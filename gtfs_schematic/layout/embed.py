@@ -79,7 +79,7 @@ def _stand(board: Board) -> bool:
 def _true_course(board: Board, p: int) -> NDArray[np.float64]:
     """Course of a piece in lattice coordinates, its ends where the vertices stand."""
     piece = board.graph.pieces[p]
-    course = board.anchors[list(piece.nodes)] * board.unit
+    course: NDArray[np.float64] = board.anchors[list(piece.nodes)] * board.unit
     ends = board.xy(board.place[list(piece.ends)])
     course[0], course[-1] = ends
     return course
@@ -89,8 +89,8 @@ def _claimed(board: Board, course: NDArray[np.float64]) -> NDArray[np.int64]:
     """Nodes that a course passes within a step, but for those near its ends."""
     line = shapely.LineString(course)
     x0, y0, x1, y1 = (int(side) for side in line.bounds)
-    x, y = np.meshgrid(np.arange(x0 - 1, x1 + 3), np.arange(y0 - 1, y1 + 3))
-    x, y = x.ravel(), y.ravel()
+    grid = np.meshgrid(np.arange(x0 - 1, x1 + 3), np.arange(y0 - 1, y1 + 3))
+    x, y = (axis.ravel() for axis in grid)
     near = shapely.dwithin(line, shapely.points(x, y), _CLAIM_STEPS)
     for end in (course[0], course[-1]):
         near &= np.maximum(abs(x - end[0]), abs(y - end[1])) > 1.5

@@ -29,8 +29,8 @@ from gtfs_schematic.layout.model import (
     SheetFrame,
 )
 from gtfs_schematic.layout.objective import Weights
-from gtfs_schematic.layout.plane import PlaneGraph
 from gtfs_schematic.layout.planarise import planarise
+from gtfs_schematic.layout.plane import PlaneGraph
 from gtfs_schematic.layout.restore import restore
 from gtfs_schematic.layout.settle import settle
 from gtfs_schematic.layout.skeleton import Skeleton, build, skeleton_of

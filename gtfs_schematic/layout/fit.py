@@ -78,8 +78,10 @@ def wants_of(skeleton: Skeleton, sizes: Sizes, scale_mm: float, *, tight: bool) 
 def link_least(
     network: Network, clearances: Clearances, requests: tuple[RoomRequest, ...]
 ) -> dict[str, float]:
-    """Give every link its least length: the spacing, more where a station asks for room, and
-    for a walk a share of it; millimetres."""
+    """Give every link and walk its least length, millimetres.
+
+    It is the spacing, more where a station asks for room, and a share of it for a walk.
+    """
     asked: dict[str, float] = {}
     for request in requests:
         asked[request.station_id] = max(asked.get(request.station_id, 0.0), request.length_mm)

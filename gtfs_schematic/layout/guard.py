@@ -25,10 +25,11 @@ def _nearest(
 def free_radii(
     points: NDArray[np.float64], segments: NDArray[np.int64]
 ) -> NDArray[np.float64]:  # pragma: no cover - compiled
-    """Give each point its distance to the nearest foreign segment, or, as the end of a segment,
-    that of the nearest foreign point to the segment, whichever is less; shape (n,).
+    """Give each point its distance to the nearest foreign segment; shape (n,).
 
-    The unit is that of `points`. A point is foreign to a segment of which it is not an end.
+    As the end of a segment, a point takes that of the nearest foreign point to the segment, if
+    it is less. The unit is that of `points`. A point is foreign to a segment of which it is no
+    end.
     """
     n, m = points.shape[0], segments.shape[0]
     radii = np.full(n, np.inf)
@@ -42,7 +43,7 @@ def free_radii(
                 continue
             px, py = points[i, 0], points[i, 1]
             # A box test first: beyond the radii known so far nothing changes.
-            reach = max(radii[i], max(radii[a], radii[b]))
+            reach = max(radii[i], radii[a], radii[b])
             if (
                 px < low_x - reach
                 or px > high_x + reach

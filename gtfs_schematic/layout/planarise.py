@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from collections import defaultdict
+from collections.abc import Iterator
 
 import numpy as np
 import shapely
@@ -106,8 +107,8 @@ def _crossings(
         extra.append(p + s * u)
         cuts[edges[i][2]].append((float(s), node))
         cuts[edges[j][2]].append((float(t), node))
-    for owner in cuts:
-        cuts[owner].sort()
+    for stops in cuts.values():
+        stops.sort()
     return cuts, np.array(extra).reshape(-1, 2)
 
 
@@ -166,7 +167,7 @@ def _split_chains(
     return pieces
 
 
-def _assemble(  # noqa: PLR0913 - one call site, all of it the state of planarising
+def _assemble(
     network: Network,
     points: NDArray[np.float64],
     ids: list[str],
@@ -219,7 +220,6 @@ def _through(
     end_at: dict[tuple[str, str], int] = {}
     crossing_ends: dict[tuple[int, str], list[int]] = defaultdict(list)
     vertex_of = {s: v for v, s in enumerate(station_of) if s is not None}
-    ends_of = {owner: (a, b) for a, b, owner, _ in _owners(network)}
     for p, piece in enumerate(pieces):
         for i, part in ((0, piece.parts[0]), (1, piece.parts[-1])):
             v = piece.ends[i]
@@ -229,21 +229,26 @@ def _through(
             else:
                 end_at[station, part.owner] = 2 * p + i
     counts: dict[tuple[int, int, int], int] = defaultdict(int)
+    for a, b, c in _passes(network):
+        if b not in vertex_of:
+            continue
+        first = end_at[b, network.link_between[frozenset((a, b))].id]
+        second = end_at[b, network.link_between[frozenset((b, c))].id]
+        if first != second:
+            low, high = sorted((first, second))
+            counts[vertex_of[b], low, high] += 1
+    for (v, owner), ends in crossing_ends.items():
+        low, high = sorted(ends)
+        counts[v, low, high] += len(network.link[owner].lines) if owner in network.link else 1
+    return tuple((v, a, b, count) for (v, a, b), count in sorted(counts.items()))
+
+
+def _passes(network: Network) -> Iterator[tuple[str, str, str]]:
+    """Per line every (station before, station, station after) once, whatever the direction."""
     for line in network.lines:
         seen: set[tuple[str, frozenset[str]]] = set()
         for course in line.courses:
             for a, b, c in zip(course, course[1:], course[2:], strict=False):
-                if b not in vertex_of or (b, frozenset((a, c))) in seen:
-                    continue
-                seen.add((b, frozenset((a, c))))
-                first = end_at[b, network.link_between[frozenset((a, b))].id]
-                second = end_at[b, network.link_between[frozenset((b, c))].id]
-                if first != second:
-                    low, high = sorted((first, second))
-                    counts[vertex_of[b], low, high] += 1
-    for (v, owner), ends in crossing_ends.items():
-        if len(ends) == 2:
-            low, high = sorted(ends)
-            lines = network.link[owner].lines if owner in network.link else ()
-            counts[v, low, high] += max(1, len(lines)) if owner in ends_of else 0
-    return tuple((v, a, b, count) for (v, a, b), count in sorted(counts.items()))
+                if (b, frozenset((a, c))) not in seen:
+                    seen.add((b, frozenset((a, c))))
+                    yield a, b, c

@@ -109,7 +109,7 @@ def _step_cost(
     away = min(4.0, _off_course(float(x), float(y), course) / prices.unit)
     length = prices.hop + prices.course * away * (1.0 + 0.5 * away)
     claims = prices.claim * lattice.claims[y * lattice.width + x]
-    return int(round((length + prices.near * min(crowd, 3)) / prices.unit + claims))
+    return round(float((length + prices.near * min(crowd, 3)) / prices.unit + claims))
 
 
 @njit(cache=True)
@@ -126,7 +126,7 @@ def _at_least(x: int, y: int, trip: Trip, width: int, hop: float) -> int:
 
 
 @njit(cache=True)
-def _open(x: int, y: int, step: int, lattice: Lattice, trip: Trip, vertex: int) -> bool:
+def _open(x: int, y: int, step: int, lattice: Lattice, vertex: int) -> bool:
     """Whether a path may step onto free node (x, y); `vertex` is whose neighbours it may touch."""
     node = y * lattice.width + x
     guard = lattice.guard[node]
@@ -172,7 +172,7 @@ def _traced(
 
 
 @njit(cache=True)
-def route(
+def route(  # noqa: C901, PLR0912 - one loop of a search, compiled
     lattice: Lattice, trip: Trip, course: NDArray[np.float64], prices: Prices
 ) -> tuple[int, NDArray[np.int64]]:
     """Find the cheapest path of a trip.
@@ -199,15 +199,15 @@ def route(
     steps = np.full(cells, -1, dtype=np.int64)
     own = (trip.source, trip.target, FREE)
     hop = prices.hop / prices.unit
-    heap = [(np.int64(0), np.int64(-1))]
+    heap = [(0, -1)]
     while heap:
         key, state = heapq.heappop(heap)
         if state < 0:
             # The start: leave through any port; there is no direction to bend from.
-            cost, d = np.int64(0), -1
+            cost, d = 0, -1
             x, y = trip.source_node % width, trip.source_node // width
         else:
-            cost, d = best[state], state % 8
+            cost, d = int(best[state]), state % 8
             x, y = state // 8 % columns + trip.low_x, state // 8 // columns + trip.low_y
             if key > cost + _at_least(x, y, trip, width, hop):
                 continue
@@ -216,7 +216,7 @@ def route(
         beside = d >= 0 and lattice.guard[y * width + x] == trip.target
         for turn in range(-2, 3) if d >= 0 else range(8):
             e = (d + turn + 8) % 8 if d >= 0 else turn
-            i, j = x + DX[e], y + DY[e]
+            i, j = x + int(DX[e]), y + int(DY[e])
             if not (trip.low_x <= i <= trip.high_x and trip.low_y <= j <= trip.high_y):
                 continue
             cell = (j - trip.low_y) * columns + i - trip.low_x
@@ -225,12 +225,12 @@ def route(
                 if not _uncrossed(i, j, e, lattice):
                     continue
                 fresh += trip.target_ports[(e + 4) % 8]
-                fresh += int(round(hop * (_ROOT_2 if e % 2 else 1.0)))
+                fresh += round(hop * (_ROOT_2 if e % 2 else 1.0))
             else:
                 # Beside the target only the step onto it is left; beside the source, only the
                 # step from it.
                 vertex = trip.source if d < 0 else trip.target
-                if beside or not _open(i, j, e, lattice, trip, vertex):
+                if beside or not _open(i, j, e, lattice, vertex):
                     continue
                 if steps[cell] < 0:
                     steps[cell] = _step_cost(i, j, lattice, own, course, prices)
@@ -240,8 +240,8 @@ def route(
                 best[onward] = fresh
                 parent[onward] = state
                 bound = _at_least(i, j, trip, width, hop)
-                heapq.heappush(heap, (np.int64(fresh + bound), np.int64(onward)))
-    return BLOCKED, np.empty(0, dtype=np.int64)
+                heapq.heappush(heap, (int(fresh + bound), int(onward)))
+    return int(BLOCKED), np.empty(0, dtype=np.int64)
 
 
 @njit(cache=True)
@@ -266,7 +266,7 @@ def path_cost(
             cost = _step_cost(x, y, lattice, own, course, prices)
             total += _diagonal(cost) if d % 2 else cost
         else:
-            total += int(round(prices.hop / prices.unit * (_ROOT_2 if d % 2 else 1.0)))
+            total += round(prices.hop / prices.unit * (_ROOT_2 if d % 2 else 1.0))
         if before >= 0:
             turn = (d - before + 12) % 8 - 4
             total += _bend(turn, prices)

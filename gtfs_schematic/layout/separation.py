@@ -45,7 +45,7 @@ class Separations:
         )
 
     def normals(self) -> NDArray[np.float64]:
-        """Unit vectors of the axes, shape (n, 2)."""
+        """Give the unit vectors of the axes, shape (n, 2)."""
         return np.asarray(_NORMALS[self.axis])
 
 

@@ -8,6 +8,7 @@ but fixed by the drawing at hand.
 
 from __future__ import annotations
 
+import itertools
 from dataclasses import dataclass
 
 import numpy as np
@@ -17,10 +18,13 @@ from numpy.typing import NDArray
 from scipy.optimize import linprog
 
 from gtfs_schematic.errors import InternalFaultError
+from gtfs_schematic.layout.rows import Rows
 from gtfs_schematic.layout.separation import Separations, near_pairs, separate
 from gtfs_schematic.layout.skeleton import STEP, Skeleton
 
 _MOST_REPAIRS = 20
+_LACK_WEIGHT = 0.6
+"""Price of a millimetre lacking to the wanted room, against one of wanted length."""
 _SLACK = 1e-4
 """Distance by which a solution may miss a clearance, millimetres."""
 
@@ -50,43 +54,6 @@ class Wants:
     """Weight of the drawing's width and height."""
     jogs: NDArray[np.float64]
     """Weight of the length of each segment that is better gone, shape (m,)."""
-
-
-class _Rows:
-    """Sparse rows that grow in blocks."""
-
-    def __init__(self) -> None:
-        self.rows: list[NDArray[np.int64]] = []
-        self.columns: list[NDArray[np.int64]] = []
-        self.values: list[NDArray[np.float64]] = []
-        self.right: list[NDArray[np.float64]] = []
-        self.count = 0
-
-    def add(
-        self,
-        terms: list[tuple[NDArray[np.int64], NDArray[np.float64] | float]],
-        right: NDArray[np.float64] | float,
-    ) -> None:
-        """Add one row per entry of the column arrays: Σ value · x[column] ≤ or = right."""
-        size = len(terms[0][0])
-        row = np.arange(self.count, self.count + size)
-        for columns, values in terms:
-            self.rows.append(row)
-            self.columns.append(np.asarray(columns, dtype=np.int64))
-            self.values.append(np.broadcast_to(np.asarray(values, dtype=np.float64), size))
-        self.right.append(np.broadcast_to(np.asarray(right, dtype=np.float64), size))
-        self.count += size
-
-    def matrix(self, width: int) -> tuple[sp.csc_matrix, NDArray[np.float64]]:
-        """Give the matrix and the right-hand side."""
-        if not self.count:
-            return sp.csc_matrix((0, width)), np.zeros(0)
-        entries = (
-            np.concatenate(self.values),
-            (np.concatenate(self.rows), np.concatenate(self.columns)),
-        )
-        matrix = sp.csc_matrix(entries, shape=(self.count, width))
-        return matrix, np.concatenate(self.right)
 
 
 def settle(
@@ -146,101 +113,158 @@ def _too_near(
     gaps = shapely.distance(lines[pairs[:, 0]], lines[pairs[:, 1]])
     pairs = pairs[gaps < half[pairs[:, 0]] + half[pairs[:, 1]] + wants.clear - _SLACK]
     count = len(skeleton.segments)
-    return pairs[~np.isin(pairs @ [count, 1], known @ [count, 1])]
+    return np.asarray(pairs[~np.isin(pairs @ [count, 1], known @ [count, 1])])
 
 
 def _solve(
     skeleton: Skeleton, wants: Wants, apart: Separations, box: tuple[float, float] | None
 ) -> NDArray[np.float64]:
-    k, n = len(skeleton.points), skeleton.graph.n_vertices
-    a, b = skeleton.segments.T
-    pieces = len(skeleton.courses)
-    steps = STEP[skeleton.directions]
-    euclid = np.hypot(steps[:, 0], steps[:, 1])
-    # Columns: x, y of nodes; slack of piece lengths; displacement; lack of room; width, height.
-    size = 2 * k + pieces + 2 * n + len(apart.first) + 2
-    slack = np.arange(2 * k, 2 * k + pieces)
-    away = np.arange(2 * k + pieces, 2 * k + pieces + 2 * n)
-    lack = np.arange(2 * k + pieces + 2 * n, size - 2)
-    width = np.array([size - 2, size - 1])
-    equal, most = _Rows(), _Rows()
-
-    level = steps[:, 1] == 0
-    upright = steps[:, 0] == 0
-    slope = ~(level | upright)
-    equal.add([(b[level] + k, 1.0), (a[level] + k, -1.0)], 0.0)
-    equal.add([(b[upright], 1.0), (a[upright], -1.0)], 0.0)
-    sign = (steps[:, 0] * steps[:, 1])[slope].astype(np.float64)
-    equal.add(
-        [
-            (b[slope] + k, 1.0),
-            (a[slope] + k, -1.0),
-            (b[slope], -sign),
-            (a[slope], sign),
-        ],
-        0.0,
-    )
-    # Length along the axis that the segment runs on, as a pair of columns.
-    axis = np.where(upright, k, 0)
-    forward = np.where(upright, steps[:, 1], steps[:, 0]).astype(np.float64)
-    most.add([(b + axis, -forward), (a + axis, forward)], -wants.least / euclid)
-
-    owner = skeleton.piece_of
-    length = sp.csr_matrix(
-        (
-            np.concatenate([forward * euclid, -forward * euclid]),
-            (np.concatenate([owner, owner]), np.concatenate([b + axis, a + axis])),
-        ),
-        shape=(pieces, size),
-    )
-    eye = sp.csr_matrix((np.ones(pieces), (np.arange(pieces), slack)), shape=(pieces, size))
-    blocks = [-length, length - eye, -length - eye]
-    rights = [-wants.piece_least, wants.piece_goal, -wants.piece_goal]
-
-    v = np.arange(n)
-    for shift in (0, 1):
-        goal = wants.anchors[:, shift]
-        most.add([(v + shift * k, 1.0), (away[shift * n : (shift + 1) * n], -1.0)], goal)
-        most.add([(v + shift * k, -1.0), (away[shift * n : (shift + 1) * n], -1.0)], -goal)
-
-    normal = apart.normals()
-    gap = wants.half_width[apart.first] + wants.half_width[apart.second]
-    i, j = apart.facing(skeleton)
-    terms = [
-        (i, -normal[:, 0]),
-        (j, normal[:, 0]),
-        (i + k, -normal[:, 1]),
-        (j + k, normal[:, 1]),
-    ]
-    most.add(terms, -(gap + wants.clear))
-    most.add([*terms, (lack, -1.0)], -(gap + wants.room))
-
-    nodes = np.arange(k)
-    for shift in (0, 1):
-        most.add([(nodes + shift * k, 1.0), (np.full(k, width[shift]), -1.0)], 0.0)
-
-    cost = np.zeros(size)
-    cost[slack] = wants.piece_weight
-    cost[away] = wants.anchor_weight
-    cost[lack] = 0.6
-    cost[width] = wants.spread
-    np.add.at(cost, b + axis, wants.jogs * forward)
-    np.add.at(cost, a + axis, -wants.jogs * forward)
-    bounds = np.zeros((size, 2))
+    runs = _Runs.of(skeleton)
+    columns = _Columns.of(skeleton, len(apart.first))
+    equal, most = Rows(), Rows()
+    _keep_directions(equal, runs, columns)
+    _bound_lengths(most, runs, columns, wants)
+    _reach_anchors(most, columns, wants)
+    _keep_apart(most, skeleton, columns, wants, apart)
+    for axis, nodes in enumerate((columns.x, columns.y)):
+        most.add([(nodes, 1.0), (np.full(len(nodes), columns.extent[axis]), -1.0)], 0.0)
+    bounds = np.zeros((columns.count, 2))
     bounds[:, 1] = np.inf
     if box is not None:
-        bounds[width, 1] = box
-    upper, right = most.matrix(size)
-    matrix, zero = equal.matrix(size)
+        bounds[columns.extent, 1] = box
+    blocks, rights = _piece_lengths(runs, columns, wants)
+    upper, right = most.matrix(columns.count)
+    matrix, zero = equal.matrix(columns.count)
     solution = linprog(
-        cost,
+        _cost(runs, columns, wants),
         A_ub=sp.vstack([upper, *blocks], format="csc"),
         b_ub=np.concatenate([right, *rights]),
-        A_eq=matrix if matrix.shape[0] else None,
-        b_eq=zero if matrix.shape[0] else None,
+        A_eq=matrix,
+        b_eq=zero,
         bounds=bounds,
         method="highs-ipm",
     )
     if not solution.success:
         raise InternalFaultError(f"Settling the lengths failed: {solution.message}")
-    return np.asarray(solution.x[: 2 * k].reshape(2, k).T)
+    return np.column_stack([solution.x[columns.x], solution.x[columns.y]])
+
+
+@dataclass(frozen=True)
+class _Runs:
+    """The segments: their ends, steps, the axis they are measured along, and their piece."""
+
+    start: NDArray[np.int64]
+    end: NDArray[np.int64]
+    steps: NDArray[np.int64]
+    upright: NDArray[np.bool_]
+    forward: NDArray[np.float64]
+    """+1 or −1 by which the measured coordinate grows along the segment."""
+    stretch: NDArray[np.float64]
+    """Length per unit of the measured coordinate: 1 or √2."""
+    piece: NDArray[np.int64]
+
+    @staticmethod
+    def of(skeleton: Skeleton) -> _Runs:
+        start, end = skeleton.segments.T
+        steps = STEP[skeleton.directions]
+        upright = steps[:, 0] == 0
+        forward = np.where(upright, steps[:, 1], steps[:, 0]).astype(np.float64)
+        stretch = np.hypot(steps[:, 0], steps[:, 1])
+        return _Runs(start, end, steps, upright, forward, stretch, skeleton.piece_of)
+
+
+@dataclass(frozen=True)
+class _Columns:
+    """Places of the variables: all at least 0."""
+
+    x: NDArray[np.int64]
+    y: NDArray[np.int64]
+    slack: NDArray[np.int64]
+    """Per piece, how far its length is from the wanted one."""
+    away: NDArray[np.int64]
+    """Per vertex and axis, how far it is from its anchor, shape (2, n)."""
+    lack: NDArray[np.int64]
+    """Per separated pair, what is lacking of the wanted room."""
+    extent: NDArray[np.int64]
+    """Width and height of the drawing."""
+    count: int
+
+    @staticmethod
+    def of(skeleton: Skeleton, pairs: int) -> _Columns:
+        k, n, p = len(skeleton.points), skeleton.graph.n_vertices, len(skeleton.courses)
+        ends = np.cumsum([0, k, k, p, 2 * n, pairs, 2])
+        x, y, slack, away, lack, extent = (
+            np.arange(a, b) for a, b in itertools.pairwise(ends.tolist())
+        )
+        return _Columns(x, y, slack, away.reshape(2, n), lack, extent, int(ends[-1]))
+
+    def along(self, runs: _Runs, nodes: NDArray[np.int64]) -> NDArray[np.int64]:
+        """Give the column that measures each segment at one of its ends."""
+        return np.where(runs.upright, self.y[nodes], self.x[nodes])
+
+
+def _keep_directions(equal: Rows, runs: _Runs, columns: _Columns) -> None:
+    x, y = columns.x, columns.y
+    for kept, nodes in ((runs.steps[:, 1] == 0, y), (runs.upright, x)):
+        equal.add([(nodes[runs.end[kept]], 1.0), (nodes[runs.start[kept]], -1.0)], 0.0)
+    slope = (runs.steps != 0).all(axis=1)
+    a, b = runs.start[slope], runs.end[slope]
+    sign = (runs.steps[slope, 0] * runs.steps[slope, 1]).astype(np.float64)
+    equal.add([(y[b], 1.0), (y[a], -1.0), (x[b], -sign), (x[a], sign)], 0.0)
+
+
+def _bound_lengths(most: Rows, runs: _Runs, columns: _Columns, wants: Wants) -> None:
+    a, b = columns.along(runs, runs.start), columns.along(runs, runs.end)
+    most.add([(b, -runs.forward), (a, runs.forward)], -wants.least / runs.stretch)
+
+
+def _piece_lengths(
+    runs: _Runs, columns: _Columns, wants: Wants
+) -> tuple[list[sp.csr_matrix], list[NDArray[np.float64]]]:
+    """Give matrix blocks and right-hand sides for least and wanted lengths of whole pieces."""
+    pieces = len(columns.slack)
+    shape = (pieces, columns.count)
+    a, b = columns.along(runs, runs.start), columns.along(runs, runs.end)
+    value = runs.forward * runs.stretch
+    entries = (np.concatenate([runs.piece, runs.piece]), np.concatenate([b, a]))
+    length = sp.csr_matrix((np.concatenate([value, -value]), entries), shape=shape)
+    slack = sp.csr_matrix((np.ones(pieces), (np.arange(pieces), columns.slack)), shape=shape)
+    return (
+        [-length, length - slack, -length - slack],
+        [-wants.piece_least, wants.piece_goal, -wants.piece_goal],
+    )
+
+
+def _reach_anchors(most: Rows, columns: _Columns, wants: Wants) -> None:
+    for axis, nodes in enumerate((columns.x, columns.y)):
+        away = columns.away[axis]
+        vertices, goal = nodes[: len(away)], wants.anchors[:, axis]
+        most.add([(vertices, 1.0), (away, -1.0)], goal)
+        most.add([(vertices, -1.0), (away, -1.0)], -goal)
+
+
+def _keep_apart(
+    most: Rows, skeleton: Skeleton, columns: _Columns, wants: Wants, apart: Separations
+) -> None:
+    normal = apart.normals()
+    gap = wants.half_width[apart.first] + wants.half_width[apart.second]
+    i, j = apart.facing(skeleton)
+    terms = [
+        (columns.x[i], -normal[:, 0]),
+        (columns.x[j], normal[:, 0]),
+        (columns.y[i], -normal[:, 1]),
+        (columns.y[j], normal[:, 1]),
+    ]
+    most.add(terms, -(gap + wants.clear))
+    most.add([*terms, (columns.lack, np.full(len(gap), -1.0))], -(gap + wants.room))
+
+
+def _cost(runs: _Runs, columns: _Columns, wants: Wants) -> NDArray[np.float64]:
+    cost = np.zeros(columns.count)
+    cost[columns.slack] = wants.piece_weight
+    cost[columns.away] = wants.anchor_weight
+    cost[columns.lack] = _LACK_WEIGHT
+    cost[columns.extent] = wants.spread
+    np.add.at(cost, columns.along(runs, runs.end), wants.jogs * runs.forward)
+    np.add.at(cost, columns.along(runs, runs.start), -wants.jogs * runs.forward)
+    return cost

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import itertools
+import math
 from dataclasses import dataclass
 
 import numpy as np
@@ -77,7 +79,7 @@ def build(
             points.append(tuple(end))
         nodes.append(piece.ends[1])
         first = len(segments)
-        segments += list(zip(nodes[:-1], nodes[1:], strict=True))
+        segments += list(itertools.pairwise(nodes))
         directions += [direction for direction, _ in runs]
         courses.append(tuple(range(first, len(segments))))
     return Skeleton(
@@ -92,11 +94,11 @@ def build(
 def _runs(route: NDArray[np.float64]) -> list[tuple[int, NDArray[np.float64]]]:
     """Straight runs of a route: (direction, end)."""
     runs: list[tuple[int, NDArray[np.float64]]] = []
-    for a, b in zip(route[:-1], route[1:], strict=True):
+    for a, b in itertools.pairwise(route):
         step = b - a
         if not step.any():
             continue
-        direction = int(round(np.arctan2(step[1], step[0]) / (np.pi / 4))) % 8
+        direction = round(float(np.arctan2(step[1], step[0])) / (math.pi / 4)) % 8
         if runs and runs[-1][0] == direction:
             runs[-1] = (direction, b)
         else:
