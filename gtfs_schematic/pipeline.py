@@ -144,12 +144,10 @@ def inspect(
         If the feed cannot be used.
     """
     settings = settings or Settings()
-    progress.phase("reading the feed")
     each = [paths] if isinstance(paths, str | os.PathLike) else paths
     timetable = read_feed([Path(path) for path in each], settings.feed, progress=progress)
     _must_be_sound("feed", feed_check.faults(timetable))
 
-    progress.phase("building the network")
     network = build_network(timetable, settings.network, progress=progress)
     _must_be_sound("network", network_check.faults(network))
     return timetable, network
@@ -208,7 +206,6 @@ def _labelled(
     requests: tuple[RoomRequest, ...] = ()
     best: LabelledLayout | None = None
     for _ in range(1 + ROUNDS):
-        progress.phase("laying out the network")
         try:
             layout = lay_out(
                 network, settings.layout, clearances, frames, requests=requests, progress=progress
@@ -220,11 +217,9 @@ def _labelled(
             return best
         _must_be_sound("layout", layout_check.faults(layout, clearances))
 
-        progress.phase("ordering parallel lines")
         bundled = bundle(layout, settings.bundles, progress=progress)
         _must_be_sound("bundles", bundles_check.faults(bundled))
 
-        progress.phase("placing names")
         labelled = place_labels(bundled, settings.labels, progress=progress)
         _must_be_sound("labels", labels_check.faults(labelled))
 

@@ -41,6 +41,7 @@ TOP_LEVEL = {
 # Distributions whose modules go by another name than the distribution.
 MODULES_OF = {
     "fontpkg-noto-sans": {"fontpkg_noto_sans", "fontpkg"},
+    "fonttools": {"fontTools"},
     "import-linter": {"importlinter"},
     "pytest-xdist": {"xdist"},
 }

@@ -31,6 +31,11 @@ def listening(*, quiet: bool = False) -> Iterator[Progress]:
         plain.end()
 
 
+def _capital(name: str) -> str:
+    """Begin a phase's name with a capital letter, however the stage wrote it."""
+    return name[:1].upper() + name[1:]
+
+
 def _bars() -> Bars:
     from rich.console import Console
     from rich.progress import (
@@ -64,7 +69,7 @@ class _Live:
         """Begin a new line."""
         if self._task is not None:
             self._bars.remove_task(self._task)
-        self._task = self._bars.add_task(name, total=total)
+        self._task = self._bars.add_task(_capital(name), total=total)
 
     def step(self, count: int = 1) -> None:
         """Move the bar on."""
@@ -86,7 +91,7 @@ class _Plain:
     def phase(self, name: str, total: int | None = None) -> None:  # noqa: ARG002 - no bar here
         """End the phase before and begin a new one."""
         self.end()
-        self._name, self._since = name, time.monotonic()
+        self._name, self._since = _capital(name), time.monotonic()
 
     def step(self, count: int = 1) -> None:
         """Keep quiet: a log wants no bar."""

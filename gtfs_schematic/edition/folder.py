@@ -13,6 +13,8 @@ from gtfs_schematic.edition.model import Edition
 from gtfs_schematic.edition.save import from_json
 from gtfs_schematic.errors import EditionError, SchematicError, UsageError
 
+StrPath = str | os.PathLike[str]
+
 EDITION_FILE = "edition.json"
 
 FILES = (
@@ -26,7 +28,7 @@ FILES = (
 """What an edition's folder holds, and nothing else."""
 
 
-def write_folder(folder: Path, files: Mapping[str, bytes], *, overwrite: bool = False) -> None:
+def write_folder(folder: StrPath, files: Mapping[str, bytes], *, overwrite: bool = False) -> None:
     """Write files into a folder that then holds just them.
 
     1. Everything is first written into a hidden folder beside the wanted one.
@@ -48,7 +50,7 @@ def write_folder(folder: Path, files: Mapping[str, bytes], *, overwrite: bool = 
     EditionError
         If the disk refuses.
     """
-    check_target(folder, overwrite=overwrite)
+    check_target(Path(folder), overwrite=overwrite)
     target = Path(os.path.realpath(folder))
     try:
         target.parent.mkdir(parents=True, exist_ok=True)
@@ -98,7 +100,7 @@ def check_target(folder: Path, *, overwrite: bool) -> None:
         )
 
 
-def load_edition(path: Path) -> Edition:
+def load_edition(path: StrPath) -> Edition:
     """Load an edition from its folder or its `edition.json`.
 
     Raises
@@ -106,7 +108,9 @@ def load_edition(path: Path) -> Edition:
     EditionError
         If there is none, or it cannot be read.
     """
-    file = path / EDITION_FILE if path.is_dir() else path
+    file = Path(path)
+    if file.is_dir():
+        file /= EDITION_FILE
     try:
         data = file.read_bytes()
     except OSError as error:
