@@ -45,6 +45,10 @@ class _Run:
         return samples(self.track.whole)
 
     @cached_property
+    def dots(self) -> NDArray[np.object_]:
+        return np.asarray(shapely.points(self.points))
+
+    @cached_property
     def called(self) -> frozenset[str]:
         return frozenset(self.track.calling.stations)
 
@@ -131,7 +135,8 @@ class _Judge:
 
     def runs_along(self, run: _Run, other: _Run, step: Pair, station: str) -> bool:
         """Rules 3 and 4: whether `other`, which calls at the station, runs along the step."""
-        if other.way != run.way:
+        common = () if run.way == "street" else _common_around(run, other, step)
+        if other.way != run.way or common is None:
             return False
         points, inside = other.points, self._near(run, other)
         middle = _nearest(points, self.at[station])
@@ -141,30 +146,25 @@ class _Judge:
         first = int(outside[outside < middle].max(initial=-1)) + 1
         last = int(outside[outside > middle].min(initial=len(points))) - 1
         together = float(np.hypot(*np.diff(points[first : last + 1], axis=0).T).sum())
-        if together < _TOGETHER * self.radius:
-            return False
-        return run.way == "street" or self._joined(run, other, step, (first, last))
+        return together >= _TOGETHER * self.radius and all(
+            first <= _nearest(points, self.at[s]) <= last for s in common
+        )
 
     def _near(self, run: _Run, other: _Run) -> NDArray[np.bool_]:
         """Which points of `other` lie near `run`."""
         key = (id(run), id(other))
         if key not in self._inside:
-            dots = shapely.points(other.points)
-            self._inside[key] = shapely.dwithin(run.line, dots, self.radius)
+            self._inside[key] = shapely.dwithin(run.line, other.dots, self.radius)
         return self._inside[key]
 
-    def _joined(self, run: _Run, other: _Run, step: Pair, stretch: tuple[int, int]) -> bool:
-        """Rule 4: whether both call at a common station on either side, together up to there."""
-        ids = run.track.calling.stations
-        i = next(k for k, pair in enumerate(itertools.pairwise(ids)) if pair == step)
-        sides = (
-            next((s for s in ids[i::-1] if s in other.called), None),
-            next((s for s in ids[i + 1 :] if s in other.called), None),
-        )
-        return all(
-            s is not None and stretch[0] <= _nearest(other.points, self.at[s]) <= stretch[1]
-            for s in sides
-        )
+
+def _common_around(run: _Run, other: _Run, step: Pair) -> tuple[str, str] | None:
+    """Rule 4: the nearest station on either side of the step at which both call, if there are."""
+    ids = run.track.calling.stations
+    i = next(k for k, pair in enumerate(itertools.pairwise(ids)) if pair == step)
+    before = next((s for s in ids[i::-1] if s in other.called), None)
+    after = next((s for s in ids[i + 1 :] if s in other.called), None)
+    return None if before is None or after is None else (before, after)
 
 
 def _undirected(tracks: Sequence[Track]) -> list[Track]:

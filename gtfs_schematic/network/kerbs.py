@@ -29,11 +29,11 @@ def facing_pairs(
     site_of
         Per stop id its site.
     limit_m
-        Greatest distance of the two, metres.
+        Greatest distance of the two, metres; 0 gives no pairs.
     """
     headings = _headings(timetable, at, site_of)
     ids = sorted(headings)
-    if len(ids) < 2:
+    if len(ids) < 2 or limit_m <= 0.0:
         return frozenset()
     tree = cKDTree(np.array([at[site] for site in ids]))
     return frozenset(

@@ -130,7 +130,7 @@ def test_progress_is_told(busy_town):
         def __init__(self) -> None:
             self.phases: list[str] = []
 
-        def phase(self, name: str, total: int | None = None) -> None:
+        def phase(self, name: str, total: int | None = None) -> None:  # noqa: ARG002 (the protocol)
             self.phases.append(name)
 
     listener = Listener()
