@@ -11,7 +11,7 @@ from gtfs_schematic.feed.cells import Cell, whole_of
 from gtfs_schematic.feed.tables import REQUIRED_COLUMNS, Tables
 from gtfs_schematic.feed.values import parse_date, parse_time
 
-_LONGEST_YEARS = 20
+_LONGEST_YEARS = 40
 """A calendar row that runs longer than this is cut, so that a slip of the pen in a year does
 not cost millions of dates."""
 
@@ -122,7 +122,8 @@ def _spans(tables: Tables) -> list[Span]:
             message = "service ends before it starts and does not count"
             tables.notebook.find("error", file, message, row=row, field="end_date", value=end)
             continue
-        limit = first + dt.timedelta(days=366 * _LONGEST_YEARS)
+        longest = dt.timedelta(days=366 * _LONGEST_YEARS)
+        limit = first + min(longest, dt.date.max - first)
         if last > limit:
             message = f"service runs for more than {_LONGEST_YEARS} years; only those count"
             tables.notebook.find("warning", file, message, row=row, field="end_date", value=end)

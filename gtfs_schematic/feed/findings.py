@@ -26,7 +26,7 @@ class Notebook:
         self._count: Counter[tuple[Severity, str, str, str | None]] = Counter()
         self._left_out: dict[tuple[str, str], str] = {}
 
-    def find(  # noqa: PLR0913 - a finding has six parts, and all but two are optional
+    def find(
         self,
         severity: Severity,
         file: str,

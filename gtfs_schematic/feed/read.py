@@ -26,6 +26,7 @@ from gtfs_schematic.feed.modes import MODES, REPLACEMENT
 from gtfs_schematic.feed.patterns import gather_patterns
 from gtfs_schematic.feed.plan import Plan, plan_feed
 from gtfs_schematic.feed.service import choose_date, typical_weekdays
+from gtfs_schematic.feed.speeds import find_leaps
 from gtfs_schematic.feed.stops import leave_out_unserved, read_stops, stops_of_timetable
 from gtfs_schematic.feed.ways import read_shapes, read_transfers, without_missing_shapes
 from gtfs_schematic.progress import Progress, Silent
@@ -59,13 +60,7 @@ def read_feed(
     UsageError
         No path, or a setting that means nothing.
     """
-    if not paths:
-        raise UsageError("No feed was given. Give a GTFS zip or a folder.")
-    unknown = sorted(set(settings.modes) - {*MODES, REPLACEMENT})
-    if unknown:
-        raise UsageError(
-            f"There is no mode {unknown[0]!r}. Modes are {', '.join((*MODES, REPLACEMENT))}."
-        )
+    _check_usage(paths, settings)
     with ExitStack() as stack:
         progress.phase("Reading the feed", 2 * len(paths))
         plans = []
@@ -88,6 +83,16 @@ def read_feed(
         told = "; ".join(f"{count} × {text}" for text, count in reasons.most_common(3))
         raise FeedError(f"Nothing is left to draw on {date}. Left out: {told or 'nothing'}.")
     return timetable
+
+
+def _check_usage(paths: Sequence[Path], settings: FeedSettings) -> None:
+    if not paths:
+        raise UsageError("No feed was given. Give a GTFS zip or a folder.")
+    unknown = sorted(set(settings.modes) - {*MODES, REPLACEMENT})
+    if unknown:
+        raise UsageError(
+            f"There is no mode {unknown[0]!r}. Modes are {', '.join((*MODES, REPLACEMENT))}."
+        )
 
 
 @contextmanager
@@ -129,6 +134,7 @@ def _timetable(plan: Plan, date: dt.date, reason: str, settings: FeedSettings) -
     leave_out_unserved(tables, table, stops, date)
     names = read_stop_names(tables, settings.language)
     routes = _running_routes(plan, patterns, date)
+    find_leaps(tables.notebook, patterns, stops, plan.routes)
     agency_ids = {route.agency_id for route in routes}
     for ident in plan.agencies.keys() - agency_ids:
         tables.notebook.leave_out("agency", ident, f"none of its routes is drawn on {date}")

@@ -88,8 +88,8 @@ def service_days(calendars: Calendars, service_ids: Iterable[str]) -> Days:
                 (
                     tokens[r.service_id],
                     *map(int, r.weekdays),
-                    f"{r.start:%Y%m%d}",
-                    f"{r.end:%Y%m%d}",
+                    _basic(r.start),
+                    _basic(r.end),
                 )
                 for r in spans
             ),
@@ -97,7 +97,7 @@ def service_days(calendars: Calendars, service_ids: Iterable[str]) -> Days:
         _write(
             folder / "calendar_dates.txt",
             [["service_id", "date", "exception_type"]],
-            ((tokens[r.service_id], f"{r.date:%Y%m%d}", 1 if r.added else 2) for r in exceptions),
+            ((tokens[r.service_id], _basic(r.date), 1 if r.added else 2) for r in exceptions),
         )
         return {
             date: frozenset(services[token] for token in running)
@@ -114,6 +114,11 @@ def _partridge_days(folder: Path) -> Days:
         except AssertionError:  # its way to say that all days were removed
             return {}
     return days
+
+
+def _basic(date: dt.date) -> str:
+    # Not strftime, which writes years before 1000 with fewer digits.
+    return date.isoformat().replace("-", "")
 
 
 def _write(path: Path, header: Sequence[Sequence[str]], rows: Iterable[Sequence[object]]) -> None:

@@ -156,6 +156,19 @@ def test_bad_calendar_rows_are_found_and_the_others_count(read_town, table):
     assert timetable.info.service_date == "2026-03-02"
 
 
+def test_dates_at_the_ends_of_time_do_no_harm(read_town, table):
+    week = "1,1,1,1,1,1,1"
+    text = table("calendar.txt") + (
+        f"sa,{week},99991230,99991231\nwk,{week},00010101,00010102\nsa,{week},20250101,20991231\n"
+    )
+    timetable = read_town({"calendar.txt": text})
+    assert (timetable.info.start_date, timetable.info.end_date) == ("0001-01-01", "9999-12-31")
+    assert timetable.info.service_date == "2026-03-02"
+    assert [(f.severity, f.row, f.field) for f in timetable.findings] == [
+        ("warning", 6, "end_date")
+    ]
+
+
 def test_services_and_routes_of_trips_that_are_nowhere_are_found(read_town, table):
     text = table("trips.txt") + "t1,zz,t1z,Nowhere,0,\nq9,wk,q9a,Nowhere,0,\n"
     timetable = read_town({"trips.txt": text})

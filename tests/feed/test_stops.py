@@ -118,3 +118,14 @@ def test_an_unknown_location_type_is_found(read_stops):
     timetable, stops = read_stops("tams,Tamselby,,47.010,8.000,9,,")
     assert stops["tams"].location_type == 0
     assert [(f.field, f.value) for f in timetable.findings] == [("location_type", "9")]
+
+
+def test_a_leap_is_found_where_no_vehicle_could_make_it(read_stops):
+    # Vendrick to Parvinholm takes 360 s; at 150 km/h and with a minute's grace 17.5 km. A degree
+    # of latitude at 47 degrees north is 111.2 km (WGS 84 series expansion, from memory).
+    near, _ = read_stops("parv,Parvinholm,4,47.165,8.010,0,,2")
+    assert near.findings == ()
+    far, _ = read_stops("parv,Parvinholm,4,47.190,8.010,0,,2")
+    assert [(f.severity, f.file, f.value) for f in far.findings] == [
+        ("warning", "stops.txt", "parv, vend: 19 km in 360 s")
+    ]
