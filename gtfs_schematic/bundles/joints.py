@@ -7,7 +7,7 @@ from collections.abc import Mapping
 from dataclasses import dataclass, replace
 
 from gtfs_schematic.bundles.junction import Junction, Leg, Pass
-from gtfs_schematic.bundles.slots import Slots, moved, turn_angle
+from gtfs_schematic.bundles.slots import JOINT_SHARES, Slots, moved, turn_angle
 from gtfs_schematic.geometry import Point
 
 STRAIGHT = math.radians(20.0)
@@ -103,8 +103,8 @@ def _mitre(junction: Junction, way: Pass, slots: Slots) -> tuple[Knot, ...]:
     gap = (q[0] - p[0], q[1] - p[1])
     along_first = (gap[0] * e[1] - gap[1] * e[0]) / det
     along_second = (gap[0] * d[1] - gap[1] * d[0]) / det
-    most_first = slots.reach(first, way.line_id)
-    most_second = slots.reach(second, way.line_id)
+    most_first = slots.reach(first, way.line_id, JOINT_SHARES)
+    most_second = slots.reach(second, way.line_id, JOINT_SHARES)
     into, out = _back(first), second.direction
     inside = along_first > 0.0 and along_second > 0.0
     if inside or (along_first <= most_first and along_second <= most_second):

@@ -2,12 +2,16 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import replace
 
 from gtfs_schematic.bundles.joints import Knot
-from gtfs_schematic.geometry import Point, distance
+from gtfs_schematic.bundles.slots import turn_angle
+from gtfs_schematic.geometry import Point, distance, unit_vector
 
 _SAME_MM = 1e-6
+_SPIKE = math.radians(150.0)
+"""No octilinear course turns so sharply."""
 _BESIDE = 3.0
 """A new corner may lie this many times further away than the two that it replaces."""
 
@@ -25,7 +29,22 @@ def mend(knots: list[Knot]) -> list[Knot]:
                 knots = _without_repeats(_merged(knots, i))
                 break
         else:
-            return knots
+            return _without_spikes(knots)
+
+
+def _without_spikes(knots: list[Knot]) -> list[Knot]:
+    """Leave out corners at which the course would all but turn back on itself."""
+    kept = list(knots)
+    i = 1
+    while i < len(kept) - 1:
+        into = unit_vector(kept[i - 1].at, kept[i].at)
+        out = unit_vector(kept[i].at, kept[i + 1].at)
+        if abs(turn_angle(into, out)) > _SPIKE:
+            del kept[i]
+            i = max(1, i - 1)
+        else:
+            i += 1
+    return _without_repeats(kept)
 
 
 def _without_repeats(knots: list[Knot]) -> list[Knot]:

@@ -13,7 +13,7 @@ from gtfs_schematic.bundles.model import Stretch
 from gtfs_schematic.bundles.rounding import round_corners
 from gtfs_schematic.bundles.routes import Route, cut_into_routes
 from gtfs_schematic.bundles.shifts import choose_shifts
-from gtfs_schematic.bundles.slots import Slots, moved, right_normal, turn_angle
+from gtfs_schematic.bundles.slots import SHIFT_SHARES, Slots, moved, right_normal, turn_angle
 from gtfs_schematic.geometry import Point, distance, unit_vector
 from gtfs_schematic.layout.model import Layout
 
@@ -113,7 +113,7 @@ def _join_point(plan: _Plan, junction: Junction, way: Pass, onto: str) -> Knot:
             turn = turn_angle(knot.into, knot.out) if knot.into and knot.out else 0.5
             radius = plan.slots.settings.corner_radius_mm + knot.extra_mm
             furthest = max(furthest, along + radius * math.tan(abs(turn) / 2.0))
-    reach = plan.slots.reach(leg, way.line_id)
+    reach = plan.slots.reach(leg, way.line_id, SHIFT_SHARES)
     back = (-leg.direction[0], -leg.direction[1])
     return Knot(moved(foot, leg.direction, min(furthest + 0.5, reach)), out=back)
 

@@ -10,7 +10,7 @@ import shapely
 
 from gtfs_schematic.bundles.joints import Shift, Shifts, is_straight, joint, slot_change
 from gtfs_schematic.bundles.junction import Junction, Leg, Pass
-from gtfs_schematic.bundles.slots import Slots, moved
+from gtfs_schematic.bundles.slots import SHIFT_SHARES, Slots, moved
 from gtfs_schematic.geometry import Point
 
 _LENGTHS = (2.5, 1.5)
@@ -63,7 +63,10 @@ def _options(
 ) -> Iterator[Shift]:
     first, second = (junction.leg[link_id] for link_id in links)
     change = max(abs(slot_change(first, second, line, slots)) for line in lines)
-    room = {leg.link_id: min(slots.reach(leg, line) for line in lines) for leg in (first, second)}
+    room = {
+        leg.link_id: min(slots.reach(leg, line, SHIFT_SHARES) for line in lines)
+        for leg in (first, second)
+    }
     legs = sorted((first, second), key=lambda leg: (slots.half_width(leg.link_id), leg.link_id))
     fits = False
     for leg, start, factor in itertools.product(legs, _STARTS, _LENGTHS):

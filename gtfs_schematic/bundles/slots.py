@@ -10,10 +10,10 @@ from gtfs_schematic.bundles.junction import Junction, Leg
 from gtfs_schematic.bundles.model import BundleSettings
 from gtfs_schematic.geometry import Point
 
-_HALF = 0.48
-"""Share of a straight link that the joint at either end may use."""
-_TO_BEND = 0.75
-"""Share of the way to a link's first bend that the joint at the station may use."""
+SHIFT_SHARES = (0.48, 0.75)
+"""Share of a straight link, or of the way to its bend, within which lines may change slots."""
+JOINT_SHARES = (0.85, 0.9)
+"""The same for the corner in which a line turns from one link into another."""
 
 
 def right_normal(direction: Point) -> Point:
@@ -68,10 +68,10 @@ class Slots:
         """Give the point at which the line's own parallel to the leg passes the station."""
         return moved(junction.at_mm, right_normal(leg.direction), self.outward(leg, line_id))
 
-    def reach(self, leg: Leg, line_id: str) -> float:
-        """Length along the leg, from the station's foot, that a joint may use."""
+    def reach(self, leg: Leg, line_id: str, shares: tuple[float, float]) -> float:
+        """Length along the leg, from the line's foot, that a joint may use."""
         if leg.bend is None:
-            return _HALF * leg.length_mm
+            return shares[0] * leg.length_mm
         turn = turn_angle(leg.direction, leg.bend)
         bend_at = leg.length_mm - self.outward(leg, line_id) * math.tan(turn / 2.0)
-        return max(0.2 * leg.length_mm, _TO_BEND * bend_at)
+        return max(0.2 * leg.length_mm, shares[1] * bend_at)
