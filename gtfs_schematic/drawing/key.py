@@ -8,7 +8,7 @@ from dataclasses import dataclass
 from typing import Literal
 
 from gtfs_schematic.drawing.model import DrawingSettings
-from gtfs_schematic.drawing.style import LEADING, TypeScale, weight
+from gtfs_schematic.drawing.style import LEADING, TypeScale, dashed_services, weight
 from gtfs_schematic.drawing.words import (
     SERVICE_NOTES,
     line_course,
@@ -125,7 +125,9 @@ def key_rows(network: Network, settings: DrawingSettings, type_: TypeScale) -> t
 def used_signs(network: Network, settings: DrawingSettings) -> tuple[str, ...]:
     """Give the names of the signs that this network needs, in the order of `SIGNS`."""
     used: set[str] = {station.kind for station in network.stations}
-    used |= {line.service for line in network.lines}
+    used |= {line.service for line in network.lines if line.mode != "ferry"} & dashed_services(
+        network
+    )
     if network.walks:
         used.add("walk")
     if any(line.one_way_links for line in network.lines):

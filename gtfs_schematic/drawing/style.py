@@ -6,13 +6,14 @@ The signs are the project's own. Dashes for limited service: common practice, no
 from __future__ import annotations
 
 import math
+from collections import Counter
 from dataclasses import dataclass, replace
 from typing import Literal
 
 from gtfs_schematic.drawing.contrast import GRAPHIC_MINIMUM, contrast_ratio, mix
 from gtfs_schematic.drawing.model import DrawingSettings, PathShape
 from gtfs_schematic.drawing.paths import rounded_rectangle
-from gtfs_schematic.network.model import Line, Network
+from gtfs_schematic.network.model import Line, Network, ServicePattern
 
 MM_PER_POINT = 25.4 / 72.0
 LEADING = 1.3
@@ -23,9 +24,9 @@ _WIDTH_STEPS = (1.0, 0.8, 0.62)
 """Width of the weightiest class of modes present, of the next, and of the third."""
 _DASHES: dict[str, tuple[float, ...]] = {
     "all-day": (),
-    "peak": (3.2, 1.0),
+    "peak": (4.6, 0.9),
     "night": (3.2, 0.8, 0.8, 0.8),
-    "some-days": (1.4, 0.9),
+    "some-days": (2.0, 0.9),
 }
 """In line widths, with butt ends."""
 _BEADS = (0.0, 1.5)
@@ -51,7 +52,22 @@ class LineStyle:
 def line_styles(network: Network, settings: DrawingSettings) -> dict[str, LineStyle]:
     """Give the style of every line, by id."""
     present = sorted({weight(line.mode) for line in network.lines if line.mode != "ferry"})
-    return {line.id: _style(line, present, settings) for line in network.lines}
+    dashed = dashed_services(network)
+    return {line.id: _style(line, present, dashed, settings) for line in network.lines}
+
+
+def dashed_services(network: Network) -> frozenset[ServicePattern]:
+    """Give the limited services that are drawn in dashes.
+
+    What more than half of the lines have in common is no exception, and dashes all over a sheet
+    would only be noise: such lines are drawn whole, and the key says of each when it runs.
+    """
+    counts = Counter(line.service for line in network.lines)
+    return frozenset(
+        service
+        for service, count in counts.items()
+        if service != "all-day" and 2 * count <= len(network.lines)
+    )
 
 
 def weight(mode: str) -> int:
@@ -63,12 +79,18 @@ def weight(mode: str) -> int:
     return 3 if mode == "ferry" else 2
 
 
-def _style(line: Line, present: list[int], settings: DrawingSettings) -> LineStyle:
+def _style(
+    line: Line,
+    present: list[int],
+    dashed: frozenset[ServicePattern],
+    settings: DrawingSettings,
+) -> LineStyle:
     ferry = line.mode == "ferry"
+    dash = _DASHES[line.service] if line.service in dashed else ()
     return LineStyle(
         color=line.color,
         width=_WIDTH_STEPS[0 if ferry else present.index(weight(line.mode))],
-        dash=_BEADS if ferry else _DASHES[line.service],
+        dash=_BEADS if ferry else dash,
         beads=ferry,
         under=line.color if ferry else mix(line.color, settings.background, 0.68),
         edge=_edge(line.color, settings),

@@ -12,6 +12,7 @@ import pytest
 from gtfs_schematic.bundles.model import StationSpan
 from gtfs_schematic.drawing.compose import compose
 from gtfs_schematic.drawing.contrast import contrast_ratio
+from gtfs_schematic.drawing.key import used_signs
 from gtfs_schematic.drawing.markers import MarkerLook, marker, spanning_edges
 from gtfs_schematic.drawing.model import DrawingSettings, Group, PathShape
 from gtfs_schematic.drawing.paths import commands
@@ -114,6 +115,14 @@ def test_modes_and_services_differ_without_color():
     assert len(looks) == 4
     plain = line_styles(network, DrawingSettings())
     assert {(style.width, style.dash) for style in plain.values()} == {(1.0, ())}
+
+
+def test_what_most_lines_have_in_common_is_not_dashed():
+    network = drawn_networks.ribbon().network
+    lines = tuple(replace(line, service="some-days") for line in network.lines[:3])
+    network = replace(network, lines=(*lines, network.lines[3]))
+    assert {style.dash for style in line_styles(network, DrawingSettings()).values()} == {()}
+    assert "some-days" not in used_signs(network, DrawingSettings())
 
 
 def test_a_pale_line_gets_an_edge_that_shows_and_keeps_its_color():
