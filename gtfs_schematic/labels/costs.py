@@ -30,7 +30,7 @@ BARE = 10.0
 """Leaving out the badges."""
 BENEATH = 0.6
 """Badges in a row of their own."""
-AMBIGUOUS = 8.0
+AMBIGUOUS = 5.5
 """A foreign marker as near as can be; it fades to nothing at `_NEAR_MM`."""
 NEARER = 6.0
 """A foreign marker as near as the own one, or nearly (`_NEARLY_MM`)."""

@@ -41,6 +41,8 @@ class Obstacles:
     """Ids of the stations, in the order of `markers`."""
     markers: Shapes
     marker_tree: shapely.STRtree
+    cores: tuple[tuple[float, shapely.STRtree], ...]
+    """Per marker radius the hulls of the points that such markers cover."""
 
     def blocked(self, boxes: Shapes) -> NDArray[np.bool_]:
         """Tell for each box whether it leaves the frame or comes too near to a drawn thing."""
@@ -55,7 +57,7 @@ class Obstacles:
         reaches = (
             (self.piece_tree, self.half_width + self.clearance),
             (self.walk_tree, WALK_WIDTH_MM / 2.0 + self.clearance),
-            (self.marker_tree, self.clearance),
+            *((tree, radius + self.clearance) for radius, tree in self.cores),
         )
         for tree, reach in reaches:
             if len(tree.geometries):
@@ -80,6 +82,12 @@ def obstacles_of(bundled: BundledLayout, settings: LabelSettings) -> Obstacles:
     ]
     stations = tuple(sorted(bundled.layout.positions))
     markers = [marker_outline(bundled, settings, station_id) for station_id in stations]
+    radii = [marker_radius(bundled, settings, station_id) for station_id in stations]
+    hulls = [shapely.MultiPoint(span_points(bundled, key)).convex_hull for key in stations]
+    cores = tuple(
+        (radius, shapely.STRtree([h for h, r in zip(hulls, radii, strict=True) if r == radius]))
+        for radius in sorted(set(radii))
+    )
     piece_array, marker_array = np.array(pieces, dtype=object), np.array(markers, dtype=object)
     return Obstacles(
         frame=bundled.layout.sheet,
@@ -92,6 +100,7 @@ def obstacles_of(bundled: BundledLayout, settings: LabelSettings) -> Obstacles:
         stations=stations,
         markers=marker_array,
         marker_tree=shapely.STRtree(marker_array),
+        cores=cores,
     )
 
 

@@ -41,7 +41,7 @@ _LEFT_CORNERS: tuple[tuple[Side, Side], ...] = (
     ("SW", "S"),
 )
 _ALIGNS: tuple[Align, ...] = ("left", "center", "right")
-_LATTICE = tuple(i / 16.0 for i in range(-16, 17))
+_LATTICE = tuple(i / 12.0 for i in range(-12, 13))
 _ASTRAY = 4.0
 """The slide that a place off the usual ones counts as."""
 _ABOVE_BELOW: tuple[Side, ...] = ("N", "S")
@@ -73,11 +73,12 @@ class Reach:
     """Free places kept per station, side and angle: the cheapest."""
 
 
-NEAR = Reach()
+NEAR = Reach(further_mm=(0.5,))
+"""The usual places."""
 FAR = Reach(
     gap_mm=0.05,
     push_mm=4.0,
-    step_mm=0.1,
+    step_mm=0.15,
     further_mm=(0.75, 1.5),
     rows=4,
     slides=(0.0, -0.25, 0.25, -0.4, 0.4),
@@ -85,7 +86,9 @@ FAR = Reach(
     drop_badges=True,
     kept=12,
 )
-ANYWHERE = replace(FAR, around_mm=7.0, kept=30)
+"""For labels in the way of one that finds no place."""
+ANYWHERE = replace(FAR, step_mm=0.1, around_mm=7.0, kept=30)
+"""For a label that finds no place."""
 
 
 @dataclass(frozen=True, slots=True)
