@@ -47,7 +47,7 @@ from gtfs_schematic.labels.model import LabelledLayout, LabelSettings
 from gtfs_schematic.labels.place import place_labels
 from gtfs_schematic.labels.room import room_requests
 from gtfs_schematic.layout import check as layout_check
-from gtfs_schematic.layout.engine import lay_out
+from gtfs_schematic.layout.engine import fit_sheet, place
 from gtfs_schematic.layout.model import Clearances, Layout, RoomRequest, SheetFrame
 from gtfs_schematic.network import check as network_check
 from gtfs_schematic.network.build import build_network
@@ -203,12 +203,13 @@ def _labelled(
 ) -> LabelledLayout:
     """Lay out, bundle and label; again with more room as long as that places more names."""
     clearances = clearances_of(network, settings.bundles, settings.labels)
+    placement = place(network, settings.layout, progress=progress)
     requests: tuple[RoomRequest, ...] = ()
     best: LabelledLayout | None = None
     for _ in range(1 + ROUNDS):
         try:
-            layout = lay_out(
-                network, settings.layout, clearances, frames, requests=requests, progress=progress
+            layout = fit_sheet(
+                placement, clearances, frames, requests=requests, progress=progress
             )
         except LayoutError:
             # More room was asked for than the sheet has: the drawing without it still stands.
@@ -228,7 +229,8 @@ def _labelled(
         best = labelled
         if not labelled.unplaced:
             return labelled
-        progress.note(f"{len(labelled.unplaced)} names found no place; asking for more room")
+        names = "name" if len(labelled.unplaced) == 1 else "names"
+        progress.note(f"{len(labelled.unplaced)} {names} found no place; asking for more room")
         requests = _joined(requests, room_requests(labelled))
     return labelled
 

@@ -161,7 +161,7 @@ class Rounds:
         self.unplaced, self.result = unplaced, result
         self.asked: list[tuple[RoomRequest, ...]] = []
 
-    def lay_out(self, *_: object, requests: tuple[RoomRequest, ...], **__: object) -> object:
+    def fit_sheet(self, *_: object, requests: tuple[RoomRequest, ...], **__: object) -> object:
         """Refuse where the list says None."""
         self.asked.append(requests)
         if self.unplaced[len(self.asked) - 1] is None:
@@ -194,7 +194,8 @@ class Rounds:
 )
 def test_room_is_asked_for_while_it_helps(unplaced, left, rounds, result, monkeypatch):
     stand_in = Rounds(unplaced, result)
-    monkeypatch.setattr(pipeline, "lay_out", stand_in.lay_out)
+    monkeypatch.setattr(pipeline, "place", lambda *_, **__: None)
+    monkeypatch.setattr(pipeline, "fit_sheet", stand_in.fit_sheet)
     monkeypatch.setattr(pipeline, "bundle", lambda *_, **__: result.bundled)
     monkeypatch.setattr(pipeline, "place_labels", stand_in.place)
     monkeypatch.setattr(pipeline, "room_requests", stand_in.wishes)
@@ -209,7 +210,8 @@ def test_room_is_asked_for_while_it_helps(unplaced, left, rounds, result, monkey
 
 def test_a_layout_that_fails_at_once_is_an_error(result, monkeypatch):
     stand_in = Rounds([None], result)
-    monkeypatch.setattr(pipeline, "lay_out", stand_in.lay_out)
+    monkeypatch.setattr(pipeline, "place", lambda *_, **__: None)
+    monkeypatch.setattr(pipeline, "fit_sheet", stand_in.fit_sheet)
     with pytest.raises(LayoutError, match="no room"):
         pipeline._labelled(result.network, QUICK, (), Silent())
 

@@ -11,6 +11,7 @@ from __future__ import annotations
 
 import dataclasses
 from collections.abc import Sequence
+from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
@@ -51,16 +52,37 @@ _FULL = 1.06
 """How often the scale is raised to fill the sheet, and when it is full: sheet over drawing."""
 
 
+@dataclass(frozen=True)
+class Placement:
+    """A network placed on the lattice: directions, bends and sides are chosen, lengths are not."""
+
+    network: Network
+    settings: LayoutSettings
+    anchors: NDArray[np.float64]
+    """Anchors of the vertices in station spacings, y north, shape (n, 2)."""
+    skeleton: Skeleton
+
+
 def lay_out(
     network: Network,
     settings: LayoutSettings,
     clearances: Clearances,
     frames: Sequence[SheetFrame],
     *,
-    requests: tuple[RoomRequest, ...] = (),
     progress: Progress = Silent(),  # noqa: B008 - stateless
 ) -> Layout:
-    """Lay a network out on the first sheet that holds it.
+    """Lay a network out on the first sheet that holds it: `place`, then `fit_sheet`."""
+    placement = place(network, settings, progress=progress)
+    return fit_sheet(placement, clearances, frames, progress=progress)
+
+
+def place(
+    network: Network,
+    settings: LayoutSettings,
+    *,
+    progress: Progress = Silent(),  # noqa: B008 - stateless
+) -> Placement:
+    """Choose the direction of everything; the sheet and its sizes play no part yet.
 
     Parameters
     ----------
@@ -68,12 +90,46 @@ def lay_out(
         Stations, links, walks and corridors.
     settings
         Fidelity to the ground, and effort.
+    progress
+        Told what is going on.
+
+    Raises
+    ------
+    LayoutError
+        If there is nothing to draw, or a station has more than eight neighbours.
+    """
+    if not network.links:
+        raise LayoutError("The network has no links: there is nothing to draw.")
+    progress.phase("placing on the ground")
+    graph = planarise(network)
+    check_degrees(graph)
+    anchors = anchor_points(graph, settings.fidelity)
+    board = _board(graph, anchors, progress)
+    improve(board, _SWEEPS[settings.effort], progress)
+    return Placement(network, settings, board.anchors[: graph.n_vertices], skeleton_of(board))
+
+
+def fit_sheet(
+    placement: Placement,
+    clearances: Clearances,
+    frames: Sequence[SheetFrame],
+    *,
+    requests: tuple[RoomRequest, ...] = (),
+    progress: Progress = Silent(),  # noqa: B008 - stateless
+) -> Layout:
+    """Settle a placement on the first sheet that holds it.
+
+    Parameters
+    ----------
+    placement
+        What `place` gave.
     clearances
         What will be drawn, millimetres.
     frames
         Sheets in rising size.
     requests
-        Wishes of later stages for longer links.
+        Wishes of later stages for longer links; they may take up the air that is left on the
+        sheet, but lead to a larger sheet only where they cannot be met without.
     progress
         Told what is going on.
 
@@ -85,26 +141,16 @@ def lay_out(
     Raises
     ------
     LayoutError
-        If a station has more than eight neighbours, or no sheet is large enough.
+        If no sheet is large enough.
     """
-    if not network.links:
-        raise LayoutError("The network has no links: there is nothing to draw.")
-    progress.phase("placing on the ground")
-    graph = planarise(network)
-    check_degrees(graph)
-    anchors = anchor_points(graph, settings.fidelity)
-    board = _board(graph, anchors, progress)
-    improve(board, _SWEEPS[settings.effort], progress)
     progress.phase("settling lengths")
-    sizes = Sizes(
-        settings,
-        clearances,
-        board.anchors[: graph.n_vertices],
-        link_least(network, clearances, requests),
-    )
-    skeleton, points, frame = _on_sheet(skeleton_of(board), sizes, frames)
+    network = placement.network
+    least = link_least(network, clearances, requests)
+    sizes = Sizes(placement.settings, clearances, placement.anchors, least)
+    room = 1.0 if requests else _ROOM
+    skeleton, points, frame = _on_sheet(placement.skeleton, sizes, frames, room)
     places = _on_paper(snap(skeleton, points), frame)
-    return restore(network, skeleton, places, frame, part_wants(graph, sizes))
+    return restore(network, skeleton, places, frame, part_wants(skeleton.graph, sizes))
 
 
 def _board(graph: PlaneGraph, anchors: NDArray[np.float64], progress: Progress) -> Board:
@@ -126,13 +172,13 @@ def _board(graph: PlaneGraph, anchors: NDArray[np.float64], progress: Progress) 
 
 
 def _on_sheet(
-    skeleton: Skeleton, sizes: Sizes, frames: Sequence[SheetFrame]
+    skeleton: Skeleton, sizes: Sizes, frames: Sequence[SheetFrame], room: float
 ) -> tuple[Skeleton, NDArray[np.float64], SheetFrame]:
-    """Choose the sheet by the least size, then fill it."""
+    """Choose the sheet by the least size with `room` around, then fill it."""
     spacing = sizes.clearances.spacing_mm
     skeleton, points, pairs = _settled(skeleton, sizes, spacing, None)
     width, height = np.ptp(points, axis=0)
-    fits = [f for f in frames if _inner(f)[0] >= width * _ROOM and _inner(f)[1] >= height * _ROOM]
+    fits = [f for f in frames if _inner(f)[0] >= width * room and _inner(f)[1] >= height * room]
     fits = fits or [f for f in frames if _inner(f)[0] >= width and _inner(f)[1] >= height]
     if not fits:
         largest = frames[-1]

@@ -15,7 +15,7 @@ from hypothesis import strategies as st
 
 from gtfs_schematic.errors import LayoutError
 from gtfs_schematic.layout.check import faults
-from gtfs_schematic.layout.engine import lay_out
+from gtfs_schematic.layout.engine import fit_sheet, lay_out, place
 from gtfs_schematic.layout.model import (
     Clearances,
     Layout,
@@ -109,7 +109,8 @@ def test_a_sheet_too_small_is_refused_with_the_size_needed():
 
 def test_a_request_for_room_lengthens_the_links_of_its_station():
     network = network_of({c: (i, 0.2 * i) for i, c in enumerate("ABCDE")}, ["ABCDE"])
-    layout = lay_out(network, QUICK, CLEARANCES, FRAMES, requests=(RoomRequest("C", 40.0),))
+    placement = place(network, QUICK)
+    layout = fit_sheet(placement, CLEARANCES, FRAMES, requests=(RoomRequest("C", 40.0),))
     total = sum(shapely.LineString(path).length for path in layout.paths.values())
     assert total >= 2 * 40.0 + 2 * CLEARANCES.spacing_mm - 0.1
 
