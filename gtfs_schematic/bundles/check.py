@@ -16,7 +16,7 @@ from gtfs_schematic.network.model import Network
 
 _TOLERANCE_MM = 0.02
 _CHORDS_PER_TURN = 48
-_SHARES = (0.2, 0.35, 0.5, 0.65, 0.8)
+_SHARES = tuple(np.linspace(0.08, 0.92, 15))
 """Where along a straight piece of a link its lines are measured."""
 
 
@@ -194,11 +194,13 @@ def _offset_faults(
     for link in bundled.layout.network.links:
         order = bundled.orders[link.id]
         wanted = (np.arange(len(order)) - (len(order) - 1) / 2.0) * pitch
-        # Joints take room at both ends, the more the wider the bundles that meet there.
-        joints = 2.0 * (widest[link.start] + widest[link.end]) * pitch
+        # Joints and arcs take room at both ends, the more the wider the bundles that meet there;
+        # a shorter piece may be all joint, and is not measured.
+        room = (widest[link.start] + widest[link.end]) * pitch
+        room += 2.0 * bundled.settings.corner_radius_mm
         for p, q in itertools.pairwise(np.array(bundled.layout.paths[link.id])):
             length = float(np.hypot(*(q - p)))
-            if length < joints + 4.0 * bundled.settings.corner_radius_mm:
+            if length < room:
                 continue
             right = np.array([p[1] - q[1], q[0] - p[0]]) / length
             lines = [courses[line_id, link.id] for line_id in order]
