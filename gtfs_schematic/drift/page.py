@@ -34,7 +34,7 @@ td.n,th.n{text-align:right;font-variant-numeric:tabular-nums}
 details{margin:.8rem 0}
 """
 
-_SHARE_EDGES = (0, 1, 2, 3, 4, 6, 8, 12)
+_SHARE_EDGES = (0, 1, 2, 4, 6, 8, 12, 16, 24)
 _BEARING_EDGES = (0, 5, 10, 15, 22.5, 45, 90)
 
 
