@@ -28,7 +28,7 @@ def place_labels(
     clearance of the settings. Where the usual places do not do, labels are pushed further out,
     broken into more rows and set at 90 % of their size; what still finds no place is listed.
     """
-    progress.phase("Labels", total=3)
+    progress.phase("placing names", 3)
     sites = sites_of(bundled, settings)
     obstacles = obstacles_of(bundled, settings)
     neighbors = neighbors_of(bundled, sites)

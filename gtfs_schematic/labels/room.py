@@ -10,7 +10,7 @@ from gtfs_schematic.labels.model import LabelledLayout, LabelSettings
 from gtfs_schematic.layout.model import RoomRequest
 from gtfs_schematic.network.model import Station
 
-_GROWTH = 1.35
+_GROWTH = 1.6
 """Length asked for in present lengths: a step, since the layout is asked again if need be."""
 _MOST_MM = 60.0
 
@@ -18,8 +18,8 @@ _MOST_MM = 60.0
 def room_requests(labelled: LabelledLayout) -> tuple[RoomRequest, ...]:
     """Give a request for every station without a label, sorted by station id.
 
-    The length is an estimate (common practice, no source): a third more than the shortest link
-    has now, and at least what half of the name on two rows takes beside the marker.
+    The length is an estimate (common practice, no source): 1.6 times what the shortest link has
+    now, and at least what half of the name on two rows takes beside the marker.
     """
     layout = labelled.bundled.layout
     requests = []
