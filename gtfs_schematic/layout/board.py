@@ -9,7 +9,7 @@ import shapely
 from numpy.typing import NDArray
 
 from gtfs_schematic.layout import router
-from gtfs_schematic.layout.objective import Weights, port_bearing_costs, turn_cost
+from gtfs_schematic.layout.objective import Weights, port_bearing_costs, turn_costs
 from gtfs_schematic.layout.plane import PlaneGraph
 from gtfs_schematic.layout.router import BLOCKED, DX, DY, FREE, Lattice, Prices, Trip
 
@@ -32,7 +32,11 @@ class Board:
         self.anchors = anchors - anchors.min(axis=0) + _MARGIN_SPACINGS
         self.place = np.full(self.n, -1, dtype=np.int64)
         self.paths: list[NDArray[np.int64] | None] = [None] * len(graph.pieces)
-        self.bearings = self._bearings()
+        self.ports = [-1] * (2 * len(graph.pieces))
+        """Port through which each piece end leaves its vertex; -1 while it is not laid."""
+        self.bearing_costs = [
+            port_bearing_costs(bearing, weights) for bearing in self._bearings().tolist()
+        ]
         self.turns: list[list[tuple[int, int, int]]] = [[] for _ in range(2 * len(graph.pieces))]
         for v, a, b, count in graph.through:
             lines = count
@@ -51,6 +55,7 @@ class Board:
         claims = np.zeros(size, dtype=np.int32)
         self.lattice = Lattice(self.width, self.height, occupied, diagonals, guard, claims)
         self.courses = [self._course(p) for p in range(len(self.graph.pieces))]
+        self.bounds = [(*c.min(axis=0).tolist(), *c.max(axis=0).tolist()) for c in self.courses]
         self.prices = [self._prices(p) for p in range(len(self.graph.pieces))]
 
     def _course(self, p: int) -> NDArray[np.float64]:
@@ -108,6 +113,8 @@ class Board:
         """Lay the path of piece `p`, from its first end to its second."""
         self.paths[p] = path
         router.mark(path, self.n + p, self.lattice)
+        self.ports[2 * p] = router.direction(path[0], path[1], self.width)
+        self.ports[2 * p + 1] = router.direction(path[-1], path[-2], self.width)
 
     def lift(self, p: int) -> NDArray[np.int64]:
         """Lift the path of piece `p` and give it back."""
@@ -115,15 +122,8 @@ class Board:
         assert path is not None  # noqa: S101 - callers lift only what is laid
         router.mark(path, FREE, self.lattice)
         self.paths[p] = None
+        self.ports[2 * p] = self.ports[2 * p + 1] = -1
         return path
-
-    def port(self, end: int) -> int:
-        """Port through which a laid piece end leaves its vertex; -1 while it is not laid."""
-        path = self.paths[end // 2]
-        if path is None:
-            return -1
-        start, after = (path[0], path[1]) if end % 2 == 0 else (path[-1], path[-2])
-        return int(router.direction(start, after, self.width))
 
     def acceptable(self, node: int) -> bool:
         """Whether a new vertex may stand on a node: it and all around are free of others."""
@@ -140,8 +140,8 @@ class Board:
         v, k = self.position[end]
         around = self.graph.rotation[v]
         degree = len(around)
-        costs = port_bearing_costs(float(self.bearings[end]), self.weights)
-        ports = [self.port(other) for other in around]
+        costs = self.bearing_costs[end].copy()
+        ports = [self.ports[other] for other in around]
         before = after = None
         for step in range(1, degree):
             if before is None and ports[(k - step) % degree] >= 0:
@@ -155,10 +155,8 @@ class Board:
                 if not before[1] <= offset <= gap - after[1]:
                     costs[port] = BLOCKED
         for other, lines, _ in self.turns[end]:
-            port = self.port(other)
-            if port >= 0:
-                for mine in range(8):
-                    costs[mine] += turn_cost(mine, port, lines, self.weights)
+            if self.ports[other] >= 0:
+                costs += turn_costs(self.ports[other], lines, self.weights)
         return np.minimum(costs, BLOCKED)
 
     # ---- routing and cost ---------------------------------------------------------------------
@@ -169,20 +167,20 @@ class Board:
 
     def window(self, p: int, nodes: list[int], margin: float) -> tuple[int, int, int, int]:
         """Part of the lattice round a piece's course and `nodes`, `margin` spacings wider."""
-        xs = [*self.courses[p][:, 0], *(n % self.width for n in nodes)]
-        ys = [*self.courses[p][:, 1], *(n // self.width for n in nodes)]
+        low_x, low_y, high_x, high_y = self.bounds[p]
+        xs, ys = [n % self.width for n in nodes], [n // self.width for n in nodes]
         wide = margin * self.unit
         return (
-            max(0, int(min(xs) - wide)),
-            max(0, int(min(ys) - wide)),
-            min(self.width - 1, int(max(xs) + wide)),
-            min(self.height - 1, int(max(ys) + wide)),
+            max(0, int(min(low_x, *xs) - wide)),
+            max(0, int(min(low_y, *ys) - wide)),
+            min(self.width - 1, int(max(high_x, *xs) + wide)),
+            min(self.height - 1, int(max(high_y, *ys) + wide)),
         )
 
     def route(
         self, p: int, margin: float, limit: int = int(BLOCKED)
     ) -> tuple[int, NDArray[np.int64]]:
-        """Find the cheapest path of piece `p` between its placed ends; nothing is laid."""
+        """Find the cheapest path of piece `p` for less than `limit`; nothing is laid."""
         a, b = self.graph.pieces[p].ends
         nodes = [int(self.place[a]), int(self.place[b])]
         trip = Trip(
@@ -190,8 +188,7 @@ class Board:
             self.port_costs(2 * p), self.port_costs(2 * p + 1),
             *self.window(p, nodes, margin),
         )  # fmt: skip
-        cost, path = router.route(self.lattice, trip, self.courses[p], self.prices[p])
-        return (cost, path) if cost < limit else (int(BLOCKED), path[:0])
+        return router.route(self.lattice, trip, self.courses[p], self.prices[p], limit)
 
     def anchor_cost(self, v: int, node: int) -> int:
         """Cost of vertex `v` standing on a node away from its anchor."""
@@ -209,13 +206,13 @@ class Board:
             codes = (*self.graph.pieces[p].ends, self.n + p)
             total += router.path_cost(path, codes, self.lattice, self.courses[p], self.prices[p])
             for end in (2 * p, 2 * p + 1):
-                port = self.port(end)
-                total += int(port_bearing_costs(float(self.bearings[end]), self.weights)[port])
+                port = self.ports[end]
+                total += int(self.bearing_costs[end][port])
                 for other, lines, _ in self.turns[end]:
                     # A turn between two of the pieces is met from both: count it once.
                     if other // 2 in own and other < end:
                         continue
-                    there = self.port(other)
+                    there = self.ports[other]
                     if there >= 0:
-                        total += turn_cost(port, there, lines, self.weights)
+                        total += int(turn_costs(there, lines, self.weights)[port])
         return total

@@ -155,4 +155,4 @@ def _run(board: Board, follow: dict[int, int], end: int) -> list[int]:
 
 
 def _straight(board: Board, a: int, b: int) -> bool:
-    return abs(board.port(a) - board.port(b)) == 4
+    return abs(board.ports[a] - board.ports[b]) == 4

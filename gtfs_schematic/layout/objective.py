@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import lru_cache
 
 import numpy as np
 from numpy.typing import NDArray
@@ -54,8 +55,12 @@ def port_bearing_costs(bearing: float, weights: Weights) -> NDArray[np.int64]:
     return costs
 
 
-def turn_cost(first: int, second: int, lines: int, weights: Weights) -> int:
-    """Cost of `lines` lines that pass a vertex from one port to another."""
-    between = abs(first - second)
-    between = min(between, 8 - between)
-    return int(BLOCKED) if between == 0 else weights.bends[4 - between] * lines
+@lru_cache(maxsize=None)
+def turn_costs(port: int, lines: int, weights: Weights) -> NDArray[np.int64]:
+    """Cost of `lines` lines that pass a vertex from `port` to each of the eight; read-only."""
+    costs = np.empty(8, dtype=np.int64)
+    for other in range(8):
+        between = min(abs(port - other), 8 - abs(port - other))
+        costs[other] = BLOCKED if between == 0 else weights.bends[4 - between] * lines
+    costs.setflags(write=False)
+    return costs

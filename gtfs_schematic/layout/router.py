@@ -173,7 +173,7 @@ def _traced(
 
 @njit(cache=True)
 def route(  # noqa: C901, PLR0912 - one loop of a search, compiled
-    lattice: Lattice, trip: Trip, course: NDArray[np.float64], prices: Prices
+    lattice: Lattice, trip: Trip, course: NDArray[np.float64], prices: Prices, limit: int
 ) -> tuple[int, NDArray[np.int64]]:
     """Find the cheapest path of a trip.
 
@@ -185,6 +185,8 @@ def route(  # noqa: C901, PLR0912 - one loop of a search, compiled
         The true course in lattice coordinates, shape (m, 2).
     prices
         Costs of the piece; bends include the weight of its lines.
+    limit
+        Paths that cost as much or more are not wanted.
 
     Returns
     -------
@@ -237,10 +239,11 @@ def route(  # noqa: C901, PLR0912 - one loop of a search, compiled
                 fresh += _diagonal(steps[cell]) if e % 2 else steps[cell]
             onward = cell * 8 + e
             if fresh < best[onward]:
-                best[onward] = fresh
-                parent[onward] = state
-                bound = _at_least(i, j, trip, width, hop)
-                heapq.heappush(heap, (int(fresh + bound), int(onward)))
+                bound = fresh + _at_least(i, j, trip, width, hop)
+                if bound < limit:
+                    best[onward] = fresh
+                    parent[onward] = state
+                    heapq.heappush(heap, (int(bound), int(onward)))
     return int(BLOCKED), np.empty(0, dtype=np.int64)
 
 
