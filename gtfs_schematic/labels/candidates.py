@@ -10,7 +10,8 @@ from numpy.typing import NDArray
 
 from gtfs_schematic.labels.model import LabelSettings
 from gtfs_schematic.labels.obstacles import Obstacles, Shapes
-from gtfs_schematic.labels.positions import NEAR, Candidate, Reach, positions
+from gtfs_schematic.labels.positions import Candidate, positions
+from gtfs_schematic.labels.reach import NEAR, Reach
 from gtfs_schematic.labels.site import Site
 
 

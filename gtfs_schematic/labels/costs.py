@@ -15,7 +15,8 @@ from numpy.typing import NDArray
 
 from gtfs_schematic.labels.model import LabelSettings, Side
 from gtfs_schematic.labels.obstacles import Obstacles, Shapes
-from gtfs_schematic.labels.positions import NEAR, Candidate
+from gtfs_schematic.labels.positions import Candidate
+from gtfs_schematic.labels.reach import NEAR
 from gtfs_schematic.labels.site import OCTANTS, Run
 
 ROW = 1.5

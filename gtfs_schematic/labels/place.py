@@ -9,12 +9,15 @@ from gtfs_schematic.labels.choice import Choice, Problem, greedy, solve
 from gtfs_schematic.labels.model import Label, LabelledLayout, LabelSettings
 from gtfs_schematic.labels.neighbors import Neighbors, neighbors_of
 from gtfs_schematic.labels.obstacles import Obstacles, obstacles_of
-from gtfs_schematic.labels.positions import ANYWHERE, FAR, NEAR
 from gtfs_schematic.labels.problem import Entry, entries_of, state_problem
+from gtfs_schematic.labels.reach import ANYWHERE, FAR, NEAR
 from gtfs_schematic.labels.site import Site, sites_of
 from gtfs_schematic.progress import Progress, Silent
 
 _SILENT = Silent()
+_ROW_SPACE_MM = 0.7
+"""What two names above each other are kept apart more, so that they do not read as one; given up
+where a name finds no place."""
 _WORK = 3.0
 """Limit of each solve in CP-SAT's deterministic seconds."""
 
@@ -35,7 +38,7 @@ def place_labels(
     entries = entries_of(sites, obstacles, settings, NEAR)
     progress.step()
     groups = [entries[site.station_id] for site in sites]
-    problem, listed = state_problem(groups, neighbors, settings.clearance_mm)
+    problem, listed = state_problem(groups, neighbors, (settings.clearance_mm, _ROW_SPACE_MM))
     choice = solve(problem, greedy(problem), work=_WORK)
     progress.step()
     chosen = _chosen(sites, choice, listed)
@@ -77,7 +80,7 @@ def _widen(
             more[station_id] = [*entries[station_id], *found]
         groups = [more[site.station_id] for site in sites]
         problem, listed = state_problem(
-            groups, neighbors, settings.clearance_mm, held=tuple(chosen.values())
+            groups, neighbors, (settings.clearance_mm, 0.0), held=tuple(chosen.values())
         )
         wide = sorted(_around(problem, lost))
     number = {id(entry): i for i, entry in enumerate(listed)}

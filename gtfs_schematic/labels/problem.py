@@ -16,7 +16,8 @@ from gtfs_schematic.labels.costs import candidate_costs
 from gtfs_schematic.labels.model import LabelSettings
 from gtfs_schematic.labels.neighbors import HAND, SIDE, TILTED, Neighbors, hand
 from gtfs_schematic.labels.obstacles import Obstacles, Shapes
-from gtfs_schematic.labels.positions import Candidate, Reach
+from gtfs_schematic.labels.positions import Candidate
+from gtfs_schematic.labels.reach import Reach
 from gtfs_schematic.labels.site import OCTANTS, Site
 
 _UNITS = 10.0
@@ -62,17 +63,18 @@ def entries_of(
 def state_problem(
     groups: Sequence[Sequence[Entry]],
     neighbors: Sequence[Neighbors],
-    clearance_mm: float,
+    clearances_mm: tuple[float, float],
     held: Sequence[Entry] = (),
 ) -> tuple[Problem, tuple[Entry, ...]]:
     """State the choice among entries, one group per station, and give the entries in its order.
 
     An entry is left out if a cheaper one of the same station, side and angle excludes nothing
-    that it does not exclude itself; `held` entries always stay.
+    that it does not exclude itself; `held` entries always stay. Two entries exclude each other if
+    they are nearer than the first clearance, or nearer than it and the second above each other.
     """
     entries = [entry for group in groups for entry in group]
     owner = np.repeat(np.arange(len(groups)), [len(group) for group in groups])
-    conflicts = _conflicts(entries, owner, clearance_mm)
+    conflicts = _conflicts(entries, owner, clearances_mm)
     wanted = {id(entry) for entry in held}
     stay = frozenset(i for i, entry in enumerate(entries) if id(entry) in wanted)
     kept = [
@@ -107,14 +109,16 @@ def _members(owner: NDArray[np.int64], count: int) -> list[list[int]]:
 
 
 def _conflicts(
-    entries: Sequence[Entry], owner: NDArray[np.int64], clearance_mm: float
+    entries: Sequence[Entry], owner: NDArray[np.int64], clearances_mm: tuple[float, float]
 ) -> list[frozenset[int]]:
     """Give for each entry those of other stations that come too near."""
     if not entries:
         return []
-    boxes = _lengthened(np.array([entry.box for entry in entries], dtype=object))
+    clearance, between_rows = clearances_mm
+    boxes = np.array([entry.box for entry in entries], dtype=object)
+    boxes = _grown(boxes, along_mm=_WORD_SPACE_MM, across_mm=between_rows / 2.0)
     tree = shapely.STRtree(boxes)
-    first, second = tree.query(boxes, predicate="dwithin", distance=clearance_mm)
+    first, second = tree.query(boxes, predicate="dwithin", distance=clearance)
     foreign = owner[first] != owner[second]
     lists: list[list[int]] = [[] for _ in entries]
     for i, j in zip(first[foreign].tolist(), second[foreign].tolist(), strict=True):
@@ -122,14 +126,16 @@ def _conflicts(
     return [frozenset(others) for others in lists]
 
 
-def _lengthened(boxes: Shapes) -> Shapes:
-    """Give boxes that are longer at both ends of the text, so that names in a row stay apart."""
+def _grown(boxes: Shapes, *, along_mm: float, across_mm: float) -> Shapes:
+    """Give boxes that reach further, along and across the text, so that names read apart."""
     corners = shapely.get_coordinates(boxes).reshape(len(boxes), 5, 2)[:, :4]
-    along = corners[:, 1] - corners[:, 0]
-    ends = _WORD_SPACE_MM * along / np.linalg.norm(along, axis=1)[:, None]
-    ways = np.array([-1.0, 1.0, 1.0, -1.0])
-    longer: Shapes = shapely.polygons(corners + ways[None, :, None] * ends[:, None, :])
-    return longer
+    along, across = corners[:, 1] - corners[:, 0], corners[:, 3] - corners[:, 0]
+    along *= along_mm / np.linalg.norm(along, axis=1)[:, None]
+    across *= across_mm / np.linalg.norm(across, axis=1)[:, None]
+    ends, edges = np.array([-1.0, 1.0, 1.0, -1.0]), np.array([-1.0, -1.0, 1.0, 1.0])
+    moves = ends[None, :, None] * along[:, None, :] + edges[None, :, None] * across[:, None, :]
+    grown: Shapes = shapely.polygons(corners + moves)
+    return grown
 
 
 def _undominated(
