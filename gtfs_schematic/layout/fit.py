@@ -55,7 +55,7 @@ def wants_of(skeleton: Skeleton, sizes: Sizes, scale_mm: float, *, tight: bool) 
     lines = lines[owner]
     half = (lines * pitch - clearances.line_gap_mm) / 2.0
     half[walk[owner]] = clearances.line_width_mm / 4.0
-    jog = _jogs(skeleton)
+    jog = skeleton.jogs
     corner = _CORNER * (clearances.marker_mm + half)
     weight = 1.0 / np.sqrt(np.maximum(spans, 0.3))
     return Wants(
@@ -70,7 +70,7 @@ def wants_of(skeleton: Skeleton, sizes: Sizes, scale_mm: float, *, tight: bool) 
         room=2.0 * clearances.line_gap_mm + 0.5
         if tight
         else clearances.label_height_mm + clearances.line_width_mm,
-        jogs=np.where(jog, 0.4 * lines, 0.0),
+        jogs=np.where(jog, 3.0 * lines, 0.0),
         spread=2.0 if tight else 0.0,
     )
 
@@ -148,12 +148,3 @@ def _spans(skeleton: Skeleton, fidelity: float) -> NDArray[np.float64]:
     blend = (true / max(spacing, 1e-9)) ** fidelity * graph.segment_shares ** (1.0 - fidelity)
     owner = np.repeat(np.arange(len(graph.pieces)), [len(p.parts) for p in graph.pieces])
     return np.asarray(np.bincount(owner, weights=blend, minlength=len(graph.pieces)))
-
-
-def _jogs(skeleton: Skeleton) -> NDArray[np.bool_]:
-    """Inner segments between two of one direction: without length they would be no bend."""
-    jog = np.zeros(len(skeleton.segments), dtype=bool)
-    for course in skeleton.courses:
-        for before, k, after in zip(course, course[1:], course[2:], strict=False):
-            jog[k] = skeleton.directions[before] == skeleton.directions[after]
-    return jog

@@ -50,14 +50,21 @@ class Separations:
 
 
 def near_pairs(
-    points: NDArray[np.float64], segments: NDArray[np.int64], distance: float
+    skeleton: Skeleton, points: NDArray[np.float64], distance: float
 ) -> NDArray[np.int64]:
-    """Pairs (i < j) of segments without a common node nearer than `distance`, shape (n, 2)."""
+    """Pairs (i < j) of segments nearer than `distance` that must stay apart, shape (n, 2).
+
+    Segments with a common node need not, nor those that would be one without the jog between.
+    """
+    segments = skeleton.segments
     lines = shapely.linestrings(points[segments])
     pairs = shapely.STRtree(lines).query(lines, predicate="dwithin", distance=distance).T
     pairs = pairs[pairs[:, 0] < pairs[:, 1]]
     a, b = segments[pairs[:, 0]], segments[pairs[:, 1]]
     apart = (a[:, :, None] != b[:, None, :]).all(axis=(1, 2))
+    # The segments of a piece are numbered in a row, so the jog stands between their numbers.
+    jog = skeleton.jogs[np.minimum(pairs[:, 0] + 1, len(segments) - 1)]
+    apart &= ~(jog & (pairs[:, 1] == pairs[:, 0] + 2))
     pairs = pairs[apart]
     return np.asarray(pairs[np.lexsort((pairs[:, 1], pairs[:, 0]))], dtype=np.int64)
 

@@ -88,7 +88,7 @@ def settle(
     """
     if pairs is None:
         lengths = np.hypot(*np.diff(skeleton.points[skeleton.segments], axis=1)[:, 0].T)
-        pairs = near_pairs(skeleton.points, skeleton.segments, 2.0 * float(np.median(lengths)))
+        pairs = near_pairs(skeleton, skeleton.points, 2.0 * float(np.median(lengths)))
     apart = separate(skeleton, pairs)
     for _ in range(_MOST_REPAIRS):
         points = _solve(skeleton, wants, apart, box)
@@ -108,7 +108,7 @@ def _too_near(
 ) -> NDArray[np.int64]:
     """Pairs that came too near and are not among the `known` ones."""
     half = wants.half_width
-    pairs = near_pairs(points, skeleton.segments, 2.0 * float(half.max()) + wants.clear)
+    pairs = near_pairs(skeleton, points, 2.0 * float(half.max()) + wants.clear)
     lines = shapely.linestrings(points[skeleton.segments])
     gaps = shapely.distance(lines[pairs[:, 0]], lines[pairs[:, 1]])
     pairs = pairs[gaps < half[pairs[:, 0]] + half[pairs[:, 1]] + wants.clear - _SLACK]

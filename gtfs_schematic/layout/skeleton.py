@@ -5,6 +5,7 @@ from __future__ import annotations
 import itertools
 import math
 from dataclasses import dataclass
+from functools import cached_property
 
 import numpy as np
 from numpy.typing import NDArray
@@ -40,6 +41,18 @@ class Skeleton:
         for p, course in enumerate(self.courses):
             owner[list(course)] = p
         return owner
+
+    @cached_property
+    def jogs(self) -> NDArray[np.bool_]:
+        """Which segments lie between two of one direction of their piece, shape (m,).
+
+        Without length such a segment would be no bend at all.
+        """
+        jog = np.zeros(len(self.segments), dtype=bool)
+        for course in self.courses:
+            for before, k, after in zip(course, course[1:], course[2:], strict=False):
+                jog[k] = self.directions[before] == self.directions[after]
+        return jog
 
     def polyline(self, piece: int) -> list[int]:
         """Nodes of a piece in order."""
