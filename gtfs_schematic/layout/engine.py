@@ -10,6 +10,7 @@ stations back.
 from __future__ import annotations
 
 import dataclasses
+import math
 from collections.abc import Sequence
 from dataclasses import dataclass
 
@@ -192,11 +193,11 @@ def _on_sheet(
     box, scale = _inner(frame), spacing
     skeleton = dataclasses.replace(skeleton, points=points)
     for _ in range(_FILLINGS):
-        width, height = np.ptp(points, axis=0)
-        grow = min(box[0] / max(width, 1e-9), box[1] / max(height, 1e-9))
-        if grow < _FULL or scale >= _LOOSEST * spacing:
+        # What has no more room in one direction still grows in the other.
+        spare = np.maximum(1.0, np.asarray(box) / np.maximum(np.ptp(points, axis=0), 1e-9))
+        if spare.max() < _FULL or scale >= _LOOSEST * spacing:
             break
-        scale = min(scale * grow * 0.98, _LOOSEST * spacing)
+        scale = min(scale * 0.98 * math.sqrt(spare.prod()), _LOOSEST * spacing)
         skeleton, points, pairs = _settled(skeleton, sizes, scale, box, pairs)
     return skeleton, points, frame
 

@@ -10,6 +10,9 @@ from gtfs_schematic.layout.router import BLOCKED, DX, DY
 from gtfs_schematic.progress import Progress
 
 _MARGIN = 2.0
+_LONGEST_ROW = 16
+_FURTHEST_ALIGNMENT = 6
+"""Spacings by which a row may be moved at once to stand in line with a neighbour."""
 
 
 def improve(board: Board, sweeps: int, progress: Progress) -> None:
@@ -23,10 +26,11 @@ def improve(board: Board, sweeps: int, progress: Progress) -> None:
         reaches = (4, 2, 1) if sweep % 2 == 0 else (3, 1)
         for v in range(board.n):
             for reach in reaches:
-                gain += _move(board, [v], max(1, reach * board.unit // 4))
+                gain += _move(board, [v], _around(max(1, reach * board.unit // 4)))
         for row in _rows(board):
             for reach in (2, 1):
-                gain += _move(board, row, max(1, reach * board.unit // 4))
+                gain += _move(board, row, _around(max(1, reach * board.unit // 4)))
+            gain += _move(board, row, _aligning(board, row))
         progress.step()
         if gain == 0:
             break
@@ -49,8 +53,13 @@ def _reroute(board: Board, p: int) -> int:
     return 0
 
 
-def _move(board: Board, block: list[int], step: int) -> int:
-    """Move a block of vertices by `step` in the best of eight directions; returns the gain."""
+def _around(step: int) -> list[tuple[int, int]]:
+    """Shifts by `step` in the eight directions."""
+    return [(step * int(dx), step * int(dy)) for dx, dy in zip(DX, DY, strict=True)]
+
+
+def _move(board: Board, block: list[int], shifts: list[tuple[int, int]]) -> int:
+    """Move a block of vertices by the best of the shifts; returns the gain."""
     pieces = sorted({end // 2 for v in block for end in board.graph.rotation[v]})
     if not pieces:
         return 0
@@ -61,8 +70,8 @@ def _move(board: Board, block: list[int], step: int) -> int:
     best_shift = 0
     for v in block:
         board.take(v)
-    for d in range(8):
-        shift = step * (int(DY[d]) * board.width + int(DX[d]))
+    for dx, dy in shifts:
+        shift = dy * board.width + dx
         found = _try(board, places, shift, pieces, best_cost)
         if found is None:
             continue
@@ -89,7 +98,9 @@ def _try(
     for v, node in places.items():
         there = node + shift
         x = there % board.width
-        if abs(x - node % board.width) > 8 * board.unit or not board.acceptable(there):
+        # A shift past the side of the lattice comes out far away on another row.
+        wrapped = abs(x - node % board.width) > board.width // 2
+        if wrapped or not board.acceptable(there):
             break
         board.put(v, there)
         put.append(v)
@@ -130,25 +141,25 @@ def _rows(board: Board) -> list[list[int]]:
     for p, path in enumerate(board.paths):
         if path is None or not board.graph.pieces[p].lines:
             continue
-        steps = np.diff(np.column_stack([path % board.width, path // board.width]), axis=0)
+        steps = np.diff(board.xy(path), axis=0)
         if (steps == steps[0]).all():
             follow[2 * p], follow[2 * p + 1] = 2 * p + 1, 2 * p
     rows: set[tuple[int, ...]] = set()
-    for end in follow:
+    for end in sorted(follow):
         row = _run(board, follow, end)
-        if 2 <= len(row) <= 12:
-            rows.add(tuple(sorted(set(row))))
+        if 2 <= len(row) <= _LONGEST_ROW:
+            rows.add(tuple(row) if row[0] < row[-1] else tuple(reversed(row)))
     return [list(row) for row in sorted(rows)]
 
 
 def _run(board: Board, follow: dict[int, int], end: int) -> list[int]:
-    """Vertices met when walking straight on from a piece end, through both directions."""
+    """Vertices met when walking straight on from a piece end."""
     row = [board.position[end][0]]
-    while end in follow and len(row) < 13:
+    while end in follow and len(row) <= _LONGEST_ROW:
         far = follow[end]
         row.append(board.position[far][0])
         onward = [other for other, _, _ in board.turns[far] if _straight(board, far, other)]
-        if not onward:
+        if not onward or row[-1] in row[:-1]:
             break
         end = onward[0]
     return row
@@ -156,3 +167,26 @@ def _run(board: Board, follow: dict[int, int], end: int) -> list[int]:
 
 def _straight(board: Board, a: int, b: int) -> bool:
     return abs(board.ports[a] - board.ports[b]) == 4
+
+
+def _aligning(board: Board, row: list[int]) -> list[tuple[int, int]]:
+    """Shifts that put a row into line with a vertex to which its lines run on."""
+    places = board.xy(board.place[[row[0], row[-1]]]).astype(int).tolist()
+    (ax, ay), (bx, by) = places
+    ux, uy = np.sign(bx - ax), np.sign(by - ay)
+    shifts: set[tuple[int, int]] = set()
+    for v in (row[0], row[-1]):
+        for end in board.graph.rotation[v]:
+            p = end // 2
+            a, b = board.graph.pieces[p].ends
+            other = b if end % 2 == 0 else a
+            if other in row or not board.graph.pieces[p].lines:
+                continue
+            x, y = (int(c) for c in board.xy(board.place[[other]])[0])
+            # How far the other vertex is off the row's straight line, across it.
+            off = int(ux * (y - ay) - uy * (x - ax))
+            if off and abs(off) <= _FURTHEST_ALIGNMENT * board.unit:
+                options = [(0, off * ux)] if ux else []
+                options += [(-off * uy, 0)] if uy else []
+                shifts.update((int(dx), int(dy)) for dx, dy in options)
+    return sorted(shifts)
