@@ -84,7 +84,7 @@ def _fetch(requirement: str, inside: str, target: Path) -> None:
         folder = Path(name)
         # Source of this package only: what builds it may come as wheels, which saves minutes.
         command = [sys.executable, "-m", "pip", "download", "--quiet", "--no-deps"]
-        command += ["--no-binary", requirement.split("==")[0], "--dest", name, requirement]
+        command += ["--no-binary", requirement.partition("==")[0], "--dest", name, requirement]
         subprocess.run(command, check=True, capture_output=True, text=True, timeout=_PATIENCE_S)
         with tarfile.open(_only(folder)) as archive:
             top = archive.getnames()[0].split("/")[0]
