@@ -76,10 +76,15 @@ def check_target(folder: Path, *, overwrite: bool) -> None:
     Raises
     ------
     UsageError
-        If it is a file, or a folder that is not empty and not an edition, or an edition that
-        may not be overwritten.
+        If it cannot be made, or is a file, or a folder that is not empty and not an edition, or
+        an edition that may not be overwritten.
     """
-    if not folder.exists():
+    above = next(part for part in (folder.absolute(), *folder.absolute().parents) if part.exists())
+    if above != folder.absolute():
+        if not (above.is_dir() and os.access(above, os.W_OK)):
+            raise UsageError(
+                f"{folder}: cannot be made in {above}. Choose another folder with --out."
+            )
         return
     if not folder.is_dir():
         raise UsageError(f"{folder}: a file stands there. Choose another folder with --out.")

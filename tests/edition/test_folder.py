@@ -8,7 +8,7 @@ from pathlib import Path
 
 import pytest
 
-from gtfs_schematic.edition.folder import FILES, load_edition, write_folder
+from gtfs_schematic.edition.folder import FILES, check_target, load_edition, write_folder
 from gtfs_schematic.edition.model import Edition, EditionFeed, EditionStation
 from gtfs_schematic.edition.save import to_json
 from gtfs_schematic.errors import EditionError, UsageError
@@ -90,6 +90,12 @@ def test_a_file_is_never_replaced(tmp_path):
     with pytest.raises(UsageError, match="a file stands there"):
         write_folder(target, CONTENT, overwrite=True)
     assert target.read_text() == "mine"
+
+
+def test_a_folder_below_a_file_is_refused_before_any_work(tmp_path):
+    (tmp_path / "file").write_text("mine")
+    with pytest.raises(UsageError, match=r"cannot be made in .*file\."):
+        check_target(tmp_path / "file" / "a" / "b", overwrite=True)
 
 
 def test_a_failed_write_leaves_the_old_edition(tmp_path, monkeypatch):
