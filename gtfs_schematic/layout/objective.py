@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
-from functools import lru_cache
+from functools import cache
 
 import numpy as np
 from numpy.typing import NDArray
@@ -55,7 +55,7 @@ def port_bearing_costs(bearing: float, weights: Weights) -> NDArray[np.int64]:
     return costs
 
 
-@lru_cache(maxsize=None)
+@cache
 def turn_costs(port: int, lines: int, weights: Weights) -> NDArray[np.int64]:
     """Cost of `lines` lines that pass a vertex from `port` to each of the eight; read-only."""
     costs = np.empty(8, dtype=np.int64)
