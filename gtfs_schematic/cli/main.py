@@ -64,23 +64,30 @@ def run(arguments: Sequence[str]) -> int:
     except SchematicError as error:
         click.echo(f"Error: {error}", err=True)
         return error.exit_code
-    except (click.Abort, KeyboardInterrupt):
-        click.echo("Stopped; nothing was written.", err=True)
-        return _INTERRUPTED
     except BrokenPipeError:
         # The reader went away, as `head` does: be quiet, also when Python closes the stream.
         os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
         return 0
-    except Exception as error:  # noqa: BLE001 - the last resort, so that nobody meets a traceback
-        if os.environ.get(_TRACEBACK):
-            traceback.print_exc()
-        click.echo(
-            f"Error: a defect of this program ({type(error).__name__}: {error}). Please report it "
-            f"with the feed and what {_TRACEBACK}=1 shows.",
-            err=True,
-        )
-        return 1
+    except (Exception, KeyboardInterrupt) as error:  # noqa: BLE001 - the last resort, see `_broken`
+        return _broken(error)
     return code if isinstance(code, int) else 0
+
+
+def _broken(error: BaseException) -> int:
+    """Say in one sentence that the user, or a defect, stopped the program."""
+    # Ctrl-C within compiled code comes out wrapped in another error.
+    causes = (error, error.__cause__, error.__context__)
+    if any(isinstance(cause, KeyboardInterrupt | click.Abort) for cause in causes):
+        click.echo("Stopped; nothing was written.", err=True)
+        return _INTERRUPTED
+    if os.environ.get(_TRACEBACK):
+        traceback.print_exception(error)
+    click.echo(
+        f"Error: a defect of this program ({type(error).__name__}: {error}). Please report it "
+        f"with the feed and what {_TRACEBACK}=1 shows.",
+        err=True,
+    )
+    return 1
 
 
 def main() -> None:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import contextlib
 from pathlib import Path
 
 import click
@@ -35,4 +36,6 @@ def review(edition: Path, port: int) -> None:
     with serving(page, port) as server:
         click.echo(f"http://127.0.0.1:{server.server_port}/")
         click.echo("Ctrl-C ends it.", err=True)
-        server.serve_forever()
+        # Ctrl-C is how a look at a page ends, so it is no failure.
+        with contextlib.suppress(KeyboardInterrupt):
+            server.serve_forever()

@@ -6,6 +6,7 @@ import csv
 import io
 import json
 import re
+import signal
 import subprocess
 import sys
 import time
@@ -272,6 +273,33 @@ def test_a_defect_is_reported_without_a_traceback(edition, capsys, monkeypatch):
     monkeypatch.setenv("GTFS_SCHEMATIC_TRACEBACK", "1")
     assert run(["drift", str(edition)]) == 1
     assert "Traceback" in capsys.readouterr().err
+
+
+def test_ctrl_c_is_no_defect(edition, capsys, monkeypatch):
+    """Also where compiled code wraps it in another error."""
+
+    def stopped(_: object) -> None:
+        raise KeyboardInterrupt
+
+    def wrapped(_: object) -> None:
+        raise SystemError("wrapped") from KeyboardInterrupt()
+
+    for interrupted in (stopped, wrapped):
+        monkeypatch.setattr("gtfs_schematic.drift.measure.measure_edition", interrupted)
+        assert run(["drift", str(edition)]) == 130
+        assert capsys.readouterr().err.strip() == "Stopped; nothing was written."
+
+
+def test_review_says_where_until_ctrl_c(edition):
+    command = [sys.executable, "-m", "gtfs_schematic", "review", str(edition)]
+    with subprocess.Popen(
+        command, stdout=subprocess.PIPE, stderr=subprocess.PIPE, text=True
+    ) as process:
+        address = process.stdout.readline()
+        process.stderr.readline()
+        process.send_signal(signal.SIGINT)
+        assert process.wait(timeout=20) == 0
+    assert re.fullmatch(r"http://127\.0\.0\.1:\d+/\n", address)
 
 
 def test_an_edition_with_one_place_is_exit_code_3(tmp_path, capsys):
