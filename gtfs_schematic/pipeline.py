@@ -208,9 +208,7 @@ def _labelled(
     best: LabelledLayout | None = None
     for _ in range(1 + ROUNDS):
         try:
-            layout = fit_sheet(
-                placement, clearances, frames, requests=requests, progress=progress
-            )
+            layout = fit_sheet(placement, clearances, frames, requests=requests, progress=progress)
         except LayoutError:
             # More room was asked for than the sheet has: the drawing without it still stands.
             if best is None:

@@ -168,7 +168,7 @@ class Rounds:
             raise LayoutError("no room")
         return self.result.layout
 
-    def place(self, *_: object, **__: object) -> LabelledLayout:
+    def place_labels(self, *_: object, **__: object) -> LabelledLayout:
         """Leave as many names out as the list says."""
         missing = self.unplaced[len(self.asked) - 1]
         ids = tuple(station.id for station in self.result.network.stations[:missing])
@@ -197,7 +197,7 @@ def test_room_is_asked_for_while_it_helps(unplaced, left, rounds, result, monkey
     monkeypatch.setattr(pipeline, "place", lambda *_, **__: None)
     monkeypatch.setattr(pipeline, "fit_sheet", stand_in.fit_sheet)
     monkeypatch.setattr(pipeline, "bundle", lambda *_, **__: result.bundled)
-    monkeypatch.setattr(pipeline, "place_labels", stand_in.place)
+    monkeypatch.setattr(pipeline, "place_labels", stand_in.place_labels)
     monkeypatch.setattr(pipeline, "room_requests", stand_in.wishes)
     for room in ("layout", "bundles", "labels"):
         monkeypatch.setattr(f"gtfs_schematic.{room}.check.faults", lambda *_: ())
