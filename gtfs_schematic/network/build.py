@@ -10,11 +10,11 @@ from gtfs_schematic.errors import FeedError
 from gtfs_schematic.feed.model import LeftOut, Route, Timetable
 from gtfs_schematic.geometry import distance
 from gtfs_schematic.network.alongside import passed_alongside
-from gtfs_schematic.network.describe import color_findings, described_lines
+from gtfs_schematic.network.describe import color_findings, described_lines, merge_findings
 from gtfs_schematic.network.kinds import kinds_of
+from gtfs_schematic.network.likeness import sites_of
 from gtfs_schematic.network.lines import route_groups
 from gtfs_schematic.network.links import (
-    WAYS,
     Expansion,
     expresses,
     links_of,
@@ -30,9 +30,10 @@ from gtfs_schematic.network.patterns import (
     without_rare,
 )
 from gtfs_schematic.network.smooth import corridors_of
-from gtfs_schematic.network.stations import Sites, sites_of
+from gtfs_schematic.network.stations import Sites
 from gtfs_schematic.network.tracks import Track, sections_by_pair, track_of
 from gtfs_schematic.network.transfers import footways_of, merge_by_transfer, walks_between
+from gtfs_schematic.network.ways import way_of_mode
 from gtfs_schematic.progress import Progress, Silent
 
 _SILENT = Silent()
@@ -87,7 +88,7 @@ def build_network(
     ways = _ways(chosen, expansion)
     links = links_of({line: [course for _, course in pairs] for line, pairs in ways.items()})
     drawn = {station for link in links for station in (link.start, link.end)}
-    footways, far_walks = footways_of(timetable, sites)
+    footways, far_walks = footways_of(timetable, sites, settings)
     walks = walks_between(footways, drawn, {frozenset((k.start, k.end)) for k in links})
     stations = _stations(sites, links, walks, ways)
     lines = described_lines(timetable, chosen.groups, ways, _runs(chosen, expansion))
@@ -105,7 +106,7 @@ def build_network(
         walks=walks,
         lines=lines,
         corridors=corridors_of(stations, links),
-        findings=(*timetable.findings, *color_findings(lines)),
+        findings=(*timetable.findings, *color_findings(lines), *merge_findings(stations)),
         left_out=tuple(
             sorted({*timetable.left_out, *left_out}, key=lambda o: (o.kind, o.id, o.reason))
         ),
@@ -114,8 +115,8 @@ def build_network(
 
 def _sites(timetable: Timetable, settings: NetworkSettings) -> Sites:
     sites = sites_of(timetable, settings)
-    footways, _ = footways_of(timetable, sites)
-    return merge_by_transfer(sites, footways, settings)
+    footways, _ = footways_of(timetable, sites, settings)
+    return merge_by_transfer(sites, footways, settings).with_short_names()
 
 
 def _choose(timetable: Timetable, sites: Sites, settings: NetworkSettings) -> _Chosen:
@@ -152,9 +153,7 @@ def _expand(
 ) -> Expansion:
     at = {site_id: site.at for site_id, site in sites.sites.items()}
     tracks = _tracks(timetable, sites, chosen)
-    way_of = {
-        line_id: WAYS.get(group[0].mode, group[0].mode) for line_id, group in chosen.groups.items()
-    }
+    way_of = {line_id: way_of_mode(group[0].mode) for line_id, group in chosen.groups.items()}
     steps = steps_of(tracks, sections_by_pair(tracks), way_of)
     over = expresses(steps, at, settings)
     return Expansion(over | passed_alongside(tracks, way_of, at, over, settings))
@@ -227,6 +226,7 @@ def _stations(
             lines=tuple(sorted(calls[site.id])),
             boarding=site.boarding,
             merge_reason=site.merge_reason,
+            merge_confidence=site.merge_confidence,
         )
         for site, (lon, lat) in zip((sites.sites[s] for s in ids), degrees, strict=True)
     )

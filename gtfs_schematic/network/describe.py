@@ -3,15 +3,17 @@
 from __future__ import annotations
 
 from collections import defaultdict
-from collections.abc import Mapping, Sequence
+from collections.abc import Iterable, Mapping, Sequence
 
 from gtfs_schematic.feed.model import Finding, Pattern, Route, Timetable
 from gtfs_schematic.network.colors import contrast, generated_colors, is_usable, text_color_on
 from gtfs_schematic.network.lines import name_of
-from gtfs_schematic.network.model import Line
+from gtfs_schematic.network.model import Line, Station
 from gtfs_schematic.network.patterns import Ids, one_way_links
 from gtfs_schematic.network.service import service_of
 
+_DOUBTFUL = 0.75
+"""Merges that are less sure than this are listed for a person to look at."""
 _VISIBLE = 3.0
 """Least contrast of graphics that matter with the paper (WCAG 2.2, 1.4.11)."""
 
@@ -92,6 +94,22 @@ def color_findings(lines: Sequence[Line]) -> tuple[Finding, ...]:
                 Finding("warning", "routes.txt", message, field="route_color", value=line.color)
             )
     return tuple(findings)
+
+
+def merge_findings(stations: Iterable[Station]) -> tuple[Finding, ...]:
+    """Name the stations of which it is doubtful that riders take them for one place."""
+    return tuple(
+        Finding(
+            "info",
+            "stops.txt",
+            f"station {station.name} may be several places (confidence "
+            f"{station.merge_confidence:.2f}): {station.merge_reason}",
+            field="stop_name",
+            value=station.id,
+        )
+        for station in stations
+        if station.merge_confidence < _DOUBTFUL
+    )
 
 
 def _main_route(group: Sequence[Route], patterns: Mapping[str, Sequence[Pattern]]) -> Route:

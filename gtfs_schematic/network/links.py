@@ -19,14 +19,6 @@ from gtfs_schematic.network.transfers import escaped
 Pair = tuple[str, str]
 """Two station ids, the lesser first."""
 
-WAYS: Mapping[str, str] = {
-    "tram": "street",
-    "bus": "street",
-    "trolleybus": "street",
-    "cable": "street",
-}
-"""Modes that may share a way; every other mode has one of its own."""
-
 _NEAR_TRACK = 2.0
 """A station that a fast train passes lies within this many `alongside_m` of its shape: a merged
 station's place may be off its tracks by as much again as a kerbside stop."""

@@ -26,6 +26,9 @@ class NetworkSettings(BaseModel):
     distance under any names, metres."""
     merge_group_m: float = Field(default=90.0, ge=0.0)
     """Stations joined by transfers merge into one if all lie within this distance, metres."""
+    merge_hub_m: float = Field(default=60.0, ge=0.0)
+    """Differently named stops of buses and trams whose lines meet merge within this distance
+    if no trip calls at one right after the other, metres."""
     min_pattern_share: float = Field(default=0.04, ge=0.0, le=1.0)
     """Patterns with a smaller share of their line's trips are left out, and listed."""
     express_detour: float = Field(default=1.25, ge=1.0)
@@ -53,6 +56,9 @@ class Station:
     """Ids of the lines that call here; a line that only passes is not among them."""
     boarding: Boarding
     merge_reason: str = ""
+    """Which stops were made one and why; empty if the feed says so itself."""
+    merge_confidence: float = 1.0
+    """How sure the least sure of the merges is, 0 … 1."""
 
 
 @dataclass(frozen=True, slots=True)

@@ -3,19 +3,15 @@
 from __future__ import annotations
 
 import itertools
-from collections import defaultdict
+from collections import Counter, defaultdict
 from collections.abc import Callable, Iterable, Mapping, Sequence
 from dataclasses import dataclass, replace
-
-import numpy as np
-from scipy.spatial import cKDTree
 
 from gtfs_schematic.feed.model import Boarding, LeftOut, Stop, Timetable
 from gtfs_schematic.geometry import Point, distance
 from gtfs_schematic.network.ground import Ground, ground_about
-from gtfs_schematic.network.kerbs import facing_pairs
 from gtfs_schematic.network.model import NetworkSettings
-from gtfs_schematic.network.naming import loose_key, name_key
+from gtfs_schematic.network.naming import name_key
 
 
 @dataclass(frozen=True, slots=True)
@@ -33,6 +29,10 @@ class Site:
     calls: int
     """Departures and arrivals of the service date, to tell which of several names is known best."""
     merge_reason: str = ""
+    merge_confidence: float = 1.0
+    """How sure the least sure merge was, 0 … 1."""
+    short_name: str = ""
+    """What is left of the name without the endings that told its parts apart; "" if nothing is."""
 
     @property
     def boarding(self) -> Boarding:
@@ -51,79 +51,82 @@ class Sites:
     left_out: tuple[LeftOut, ...] = ()
 
     def merged(
-        self, clusters: Iterable[Sequence[str]], reason: Callable[[Sequence[Site]], str]
+        self, clusters: Iterable[Sequence[str]], verdict: Callable[[Sequence[Site]], Verdict]
     ) -> Sites:
         """Give the sites with each cluster of site ids made one, and why."""
         sites = dict(self.sites)
         site_of = dict(self.site_of)
         for cluster in clusters:
             members = [self.sites[site_id] for site_id in cluster]
-            whole = _merge(members, reason(members))
+            whole = _merge(members, verdict(members))
             for site_id in cluster:
                 del sites[site_id]
             sites[whole.id] = whole
             site_of.update((stop_id, whole.id) for stop_id in whole.stop_ids)
         return replace(self, sites=dict(sorted(sites.items())), site_of=site_of)
 
+    def with_short_names(self) -> Sites:
+        """Use the short names of merged sites wherever no other site could be meant by them."""
+        known = {
+            key: (name_key(site.name), name_key(site.short_name))
+            for key, site in self.sites.items()
+        }
+        begun: Counter[str] = Counter()
+        for names in known.values():
+            words = [name.split() for name in names]
+            begun.update({" ".join(w[: n + 1]) for w in words for n in range(len(w))})
+        sites = {
+            key: replace(site, name=site.short_name) if begun[known[key][1]] == 1 else site
+            for key, site in self.sites.items()
+        }
+        return replace(self, sites=sites)
 
-def sites_of(timetable: Timetable, settings: NetworkSettings) -> Sites:
-    """Gather the stops that are called at into sites by parent station, then by name.
+
+@dataclass(frozen=True, slots=True)
+class Verdict:
+    """Why some sites are one, how sure that is (0 … 1), and what all of them are called."""
+
+    reason: str
+    confidence: float
+    short_name: str = ""
+
+
+def sites_by_parent(timetable: Timetable, settings: NetworkSettings) -> Sites:
+    """Gather the stops that are called at into sites by parent station.
 
     1. Platforms go to the station on top of their chain of parents.
     2. Places without coordinates, and outliers, are left out and named.
-    3. Sites of the same name merge within `merge_name_m` if one of them has no parent. The two
-       kerbs of a street often differ by a direction or a pole code; then they merge unless a
-       trip calls at one right after the other. Stops that face each other (kerbs.py) merge under
-       any name.
-    4. Where the feed says of both that they are stations of their own, they merge within
-       `merge_group_m`, and only if the feed has no transfers: if it has, those decide.
     """
-    sites = _near_sites(_sites_by_parent(timetable), settings)
-    follows = _followers(timetable, sites.site_of)
-    places = {site.id: site.at for site in sites.sites.values()}
-    facing = facing_pairs(timetable, places, sites.site_of, settings.merge_kerbs_m)
-
-    def same(a: Site, b: Site) -> bool:
-        apart = distance(a.at, b.at)
-        alike = name_key(a.name) == name_key(b.name)
-        if a.has_parent and b.has_parent:
-            return alike and apart <= settings.merge_group_m and not timetable.transfers
-        if a.has_parent or b.has_parent:
-            return alike and apart <= settings.merge_name_m
-        pair = frozenset((a.id, b.id))
-        kerbs = loose_key(a.name) == loose_key(b.name) != "" and pair not in follows
-        return pair in facing or ((alike or kerbs) and apart <= settings.merge_name_m)
-
-    radius = max(settings.merge_name_m, settings.merge_kerbs_m, settings.merge_group_m)
-    clusters = join_close(sites.sites, _pairs_within(sites.sites, radius), same)
-    return sites.merged(clusters, _why)
-
-
-def _why(members: Sequence[Site]) -> str:
-    if len({name_key(site.name) for site in members}) == 1:
-        return "same name, close together"
-    if len({loose_key(site.name) for site in members}) == 1:
-        return "same name but for the side of the street"
-    return "across the street from each other"
+    return _near_sites(_sites_by_parent(timetable), settings)
 
 
 def join_close(
     sites: Mapping[str, Site],
     pairs: Iterable[tuple[str, str]],
-    same: Callable[[Site, Site], bool],
+    same: Callable[[Site, Site], float],
     *,
     most: int = 1000,
+    surest_first: bool = False,
 ) -> list[tuple[str, ...]]:
     """Join sites, nearest pairs first, into clusters of which all pairs are the same.
 
     Clusters hold at most `most` sites. That *all* pairs must agree keeps a long row of stops
-    from growing into one.
+    from growing into one. `same` says how surely two sites are one, 0 that they are not;
+    `surest_first` joins in that order, and by distance only where it is equal.
     """
     cluster_of: dict[str, tuple[str, ...]] = {
         site_id: (site_id,) for pair in pairs for site_id in pair
     }
-    ranked = sorted((distance(sites[a].at, sites[b].at), a, b) for a, b in pairs)
-    for _, a, b in ranked:
+    ranked = sorted(
+        (
+            -same(sites[a], sites[b]) if surest_first else 0.0,
+            distance(sites[a].at, sites[b].at),
+            a,
+            b,
+        )
+        for a, b in pairs
+    )
+    for _, _, a, b in ranked:
         one, other = cluster_of[a], cluster_of[b]
         if one == other or len(one) + len(other) > most:
             continue
@@ -205,25 +208,7 @@ def _near_sites(sites: Sites, settings: NetworkSettings) -> Sites:
     )
 
 
-def _followers(timetable: Timetable, site_of: Mapping[str, str]) -> set[frozenset[str]]:
-    """Pairs of sites at which some trip calls one right after the other."""
-    return {
-        frozenset((site_of[a], site_of[b]))
-        for pattern in timetable.patterns
-        for a, b in itertools.pairwise(pattern.stop_ids)
-        if a in site_of and b in site_of
-    }
-
-
-def _pairs_within(sites: Mapping[str, Site], radius: float) -> list[tuple[str, str]]:
-    ids = sorted(sites)
-    if len(ids) < 2:
-        return []
-    tree = cKDTree(np.array([sites[site_id].at for site_id in ids]))
-    return sorted((ids[i], ids[j]) for i, j in tree.query_pairs(radius))
-
-
-def _merge(members: Sequence[Site], reason: str) -> Site:
+def _merge(members: Sequence[Site], verdict: Verdict) -> Site:
     """Make one site of several.
 
     Its id is the least of those with parents, else the least; its place that of the only one
@@ -233,7 +218,7 @@ def _merge(members: Sequence[Site], reason: str) -> Site:
     located = stations if len(stations) == 1 else members
     known = min(members, key=lambda site: (-site.calls, site.id))
     names = sorted({site.name for site in members} - {known.name})
-    note = f"{reason}: {', '.join(sorted(site.id for site in members))}"
+    note = f"{verdict.reason}: {', '.join(sorted(site.id for site in members))}"
     if names:
         note += f" (also named {', '.join(names)})"
     reasons = sorted({site.merge_reason for site in members} - {""})
@@ -250,4 +235,6 @@ def _merge(members: Sequence[Site], reason: str) -> Site:
         boardings=tuple(b for site in members for b in site.boardings),
         calls=sum(site.calls for site in members),
         merge_reason="; ".join([*reasons, note]),
+        merge_confidence=min(verdict.confidence, *(site.merge_confidence for site in members)),
+        short_name=verdict.short_name or known.short_name,
     )

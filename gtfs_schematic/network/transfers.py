@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
-from collections.abc import Collection, Iterable
+import itertools
+from collections import defaultdict
+from collections.abc import Collection, Iterable, Sequence
 from dataclasses import dataclass
 
 import networkx as nx
@@ -11,7 +13,7 @@ from gtfs_schematic.feed.model import LeftOut, Timetable
 from gtfs_schematic.geometry import distance
 from gtfs_schematic.network.model import NetworkSettings, Walk
 from gtfs_schematic.network.naming import name_key
-from gtfs_schematic.network.stations import Site, Sites, join_close
+from gtfs_schematic.network.stations import Site, Sites, Verdict, join_close
 
 _ON_FOOT = frozenset([0, 1, 2])
 """Transfer types that a rider walks; 3 is impossible, 4 and 5 stay in the vehicle."""
@@ -20,6 +22,10 @@ _FARTHEST_M = 2000.0
 _FEW = 3
 """A complex of more stations is drawn as several joined by walks: one point could not hold all
 its lines."""
+_SURE = 0.95
+"""The feed itself says that one walks here, if not that riders call it one station."""
+_INFERRED = 0.7
+"""Two railways of one name may be two stations on parallel streets."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -30,12 +36,20 @@ class Footway:
     end: str
     length_m: float
     time_s: int | None
+    inferred: bool = False
+    """Whether the feed does not say so, but two stations have one name."""
 
 
 def footways_of(
-    timetable: Timetable, sites: Sites
+    timetable: Timetable, sites: Sites, settings: NetworkSettings
 ) -> tuple[tuple[Footway, ...], tuple[LeftOut, ...]]:
-    """Gather transfers on foot between different sites, and list those that are too long."""
+    """Gather transfers on foot between different sites, and list those that are too long.
+
+    A feed without any transfers has not thought of them: then stations of the same name no
+    further apart than `merge_group_m` are taken to be joined on foot.
+    """
+    if not timetable.transfers:
+        return _inferred(sites, settings), ()
     times: dict[tuple[str, str], list[int]] = {}
     for transfer in timetable.transfers:
         ends = (sites.site_of.get(transfer.from_stop_id), sites.site_of.get(transfer.to_stop_id))
@@ -56,8 +70,21 @@ def footways_of(
     return tuple(footways), tuple(left_out)
 
 
+def _inferred(sites: Sites, settings: NetworkSettings) -> tuple[Footway, ...]:
+    named: dict[str, list[Site]] = defaultdict(list)
+    for site in sites.sites.values():
+        named[name_key(site.name)].append(site)
+    footways = [
+        Footway(min(a.id, b.id), max(a.id, b.id), length, None, inferred=True)
+        for group in named.values()
+        for a, b in itertools.combinations(group, 2)
+        if (length := distance(a.at, b.at)) <= settings.merge_group_m
+    ]
+    return tuple(sorted(footways, key=lambda way: (way.start, way.end)))
+
+
 def merge_by_transfer(
-    sites: Sites, footways: Iterable[Footway], settings: NetworkSettings
+    sites: Sites, footways: Sequence[Footway], settings: NetworkSettings
 ) -> Sites:
     """Merge sites of one interchange that are close (all pairs) and few.
 
@@ -67,8 +94,16 @@ def merge_by_transfer(
     clusters: list[tuple[str, ...]] = []
     for group in sorted(sorted(part) for part in nx.connected_components(graph)):
         pairs = [(a, b) for i, a in enumerate(group) for b in group[i + 1 :]]
-        clusters += join_close(sites.sites, pairs, lambda a, b: _close(a, b, settings), most=_FEW)
-    return sites.merged(clusters, lambda _: "joined by transfers, close together")
+        clusters += join_close(
+            sites.sites, pairs, lambda a, b: float(_close(a, b, settings)), most=_FEW
+        )
+    guessed = any(way.inferred for way in footways)
+    verdict = (
+        Verdict("stations of one name, close together", _INFERRED)
+        if guessed
+        else Verdict("joined by transfers, close together", _SURE)
+    )
+    return sites.merged(clusters, lambda _: verdict)
 
 
 def walks_between(

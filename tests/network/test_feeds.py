@@ -44,7 +44,8 @@ def test_two_metro_lines_are_one_tree(nyc_subway_feed):
 
 def test_kerbs_of_a_bus_network_are_one_station(cairns_feed):
     timetable = read_feed([cairns_feed], FeedSettings())
-    apart = build_network(timetable, NetworkSettings(merge_name_m=0.0, merge_kerbs_m=0.0))
+    nothing = NetworkSettings(merge_name_m=0.0, merge_kerbs_m=0.0, merge_hub_m=0.0)
+    apart = build_network(timetable, nothing)
     network = build_network(timetable, NetworkSettings())
     one_way = sum(len(line.one_way_links) for line in network.lines)
     before = sum(len(line.one_way_links) for line in apart.lines)

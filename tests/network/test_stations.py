@@ -2,9 +2,17 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+from typing import TYPE_CHECKING
+
 import pytest
 
+from gtfs_schematic.network.build import build_network
+from gtfs_schematic.network.model import NetworkSettings
 from gtfs_schematic.network.naming import loose_key, name_key, natural_key
+
+if TYPE_CHECKING:
+    from conftest import Town
 
 
 def test_platforms_become_their_top_parent(town):
@@ -123,6 +131,83 @@ def test_pole_codes_merge_unless_called_at_in_a_row(town):
     )
     assert len(written.run("9", "A b1 D").network().stations) == 3
     assert len(written.run("9", "A b2 b1 D").network().stations) == 4
+
+
+def test_namesakes_of_two_railways_are_joined_on_foot_or_not_at_all(town):
+    def written(gap_m: float) -> Town:
+        return (
+            town.stop("S", 0, name="Quarry")
+            .stop("T", gap_m, name="Quarry")
+            .stops({"A": (-900, 0), "B": (900, 900), "C": (1500, 900)})
+            .both("red", "A S")
+            .both("blue", "T B C")
+        )
+
+    near = written(60).network()
+    assert near.station["S"].stop_ids == ("S", "T")
+    assert near.station["S"].merge_confidence < 0.75
+    assert any("Quarry" in f.message and f.value == "S" for f in near.findings)
+    assert len(written(130).network().stations) == 5
+    # Two lines of the street that both stop at the Quarry stop at one place.
+    in_street = written(130).route("x", mode="bus")
+    buses = replace(
+        in_street.timetable,
+        routes=tuple(replace(r, mode="bus") for r in in_street.timetable.routes),
+    )
+    assert len(build_network(buses, NetworkSettings()).stations) == 4
+
+
+def _hub(town: Town, **told: object) -> Town:
+    """Two poles 45 m apart at a corner, where lines 1 and 2 stop; they also meet at M."""
+    return (
+        town.stops({"A": (-900, 0), "C": (0, 900), "M": (900, 900)})
+        .stop("p", 0, 0, name="Harbour Street", **told)
+        .stop("q", 27, 36, name="Fish Market")
+        .route("1", mode="bus")
+        .route("2", mode="bus")
+        .both("1", "A p M")
+        .both("2", "C q M")
+    )
+
+
+def test_poles_at_a_corner_are_one_hub_if_their_lines_meet(town):
+    network = _hub(town).network()
+    station = network.station["p"]
+    assert station.stop_ids == ("p", "q")
+    assert "45 m apart" in station.merge_reason
+    assert station.merge_confidence < 0.75
+    assert [f.value for f in network.findings if f.file == "stops.txt"] == ["p"]
+    assert len(_hub(town).network(merge_hub_m=40.0).stations) == 5
+
+
+def test_poles_of_lines_that_never_meet_are_no_hub(town):
+    network = (
+        town.stops({"A": (-900, 0), "C": (0, 900), "M": (900, 900), "N": (900, -900)})
+        .stop("p", 0, 0, name="Harbour Street")
+        .stop("q", 27, 36, name="Fish Market")
+        .route("1", mode="bus")
+        .route("2", mode="bus")
+        .both("1", "A p M")
+        .both("2", "C q N")
+        .network()
+    )
+    assert len(network.stations) == 6
+
+
+def test_what_the_feed_calls_a_station_is_no_pole_of_a_hub(town):
+    network = _hub(town.stop("P", 0, name="Harbour", location_type=1), parent_id="P").network()
+    assert len(network.stations) == 5
+
+
+def test_parts_of_a_stop_lose_their_endings_on_the_diagram(town):
+    names = {"b1": (600, 10, "Mill Lane outbound"), "b2": (600, -10, "Mill Lane inbound")}
+    written = town.row(["A", "C", "D"], gap_m=1200)
+    for stop_id, (x, y, name) in names.items():
+        written = written.stop(stop_id, x, y, name=name)
+    run = written.run("9", "A b1 C D").run("9", "D C b2 A")
+    assert run.network().station["b1"].name == "Mill Lane"
+    taken = written.stop("d", 2400, 500, name="Mill Lane").run("9", "A b1 C d").run("9", "d C b2 A")
+    assert taken.network().station["b1"].name == "Mill Lane outbound"
 
 
 def test_two_stations_of_one_name_merge_only_if_no_transfer_could_have_said_so(town):
