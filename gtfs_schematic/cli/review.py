@@ -33,9 +33,8 @@ def review(edition: Path, port: int) -> None:
     from gtfs_schematic.review.serve import serving
 
     page = page_of_folder(edition)
-    with serving(page, port) as server:
+    # Ctrl-C is how a look at a page ends, so it is no failure.
+    with contextlib.suppress(KeyboardInterrupt), serving(page, port) as server:
         click.echo(f"http://127.0.0.1:{server.server_port}/")
         click.echo("Ctrl-C ends it.", err=True)
-        # Ctrl-C is how a look at a page ends, so it is no failure.
-        with contextlib.suppress(KeyboardInterrupt):
-            server.serve_forever()
+        server.serve_forever()
