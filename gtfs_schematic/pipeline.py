@@ -54,7 +54,7 @@ from gtfs_schematic.network.build import build_network
 from gtfs_schematic.network.model import Network
 from gtfs_schematic.progress import Progress, Silent
 
-ROUNDS = 3
+ROUNDS = 6
 """How often the layout may be asked for more room before names are left without a place."""
 
 MM_PER_PT = 25.4 / 72.0
@@ -201,7 +201,7 @@ def clearances_of(network: Network, bundles: BundleSettings, labels: LabelSettin
 def _labelled(
     network: Network, settings: Settings, frames: tuple[SheetFrame, ...], progress: Progress
 ) -> LabelledLayout:
-    """Lay out, bundle and label; again with more room as long as that places more names."""
+    """Lay out, bundle and label; again with more room until every name has a place."""
     clearances = clearances_of(network, settings.bundles, settings.labels)
     placement = place(network, settings.layout, progress=progress)
     requests: tuple[RoomRequest, ...] = ()
@@ -222,15 +222,14 @@ def _labelled(
         labelled = place_labels(bundled, settings.labels, progress=progress)
         _must_be_sound("labels", labels_check.faults(labelled))
 
-        if best is not None and len(labelled.unplaced) >= len(best.unplaced):
-            return best
-        best = labelled
+        if best is None or len(labelled.unplaced) < len(best.unplaced):
+            best = labelled
         if not labelled.unplaced:
-            return labelled
+            return best
         names = "name" if len(labelled.unplaced) == 1 else "names"
         progress.note(f"{len(labelled.unplaced)} {names} found no place; asking for more room")
         requests = _joined(requests, room_requests(labelled))
-    return labelled
+    return best
 
 
 def _joined(old: tuple[RoomRequest, ...], new: tuple[RoomRequest, ...]) -> tuple[RoomRequest, ...]:

@@ -42,7 +42,7 @@ _LEFT_CORNERS: tuple[tuple[Side, Side], ...] = (
     ("SW", "S"),
 )
 _ALIGNS: tuple[Align, ...] = ("left", "center", "right")
-_LATTICE = tuple(i / 12.0 for i in range(-12, 13))
+_LATTICE = tuple(i / 18.0 for i in range(-18, 19))
 _ASTRAY = 4.0
 """The slide that a place off the usual ones counts as."""
 _ABOVE_BELOW: tuple[Side, ...] = ("N", "S")

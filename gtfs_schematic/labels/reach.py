@@ -43,5 +43,5 @@ FAR = Reach(
     kept=12,
 )
 """For labels in the way of one that finds no place."""
-ANYWHERE = replace(FAR, step_mm=0.1, around_mm=7.0, kept=30)
+ANYWHERE = replace(FAR, step_mm=0.1, around_mm=14.0, kept=30)
 """For a label that finds no place."""

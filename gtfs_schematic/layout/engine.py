@@ -45,7 +45,7 @@ _UNITS = (6, 9, 13, 20, 30, 45)
 """Lattice steps in a spacing, tried in turn; six let all anchors keep three steps' distance."""
 _ROOM = 1.1
 """Share by which a sheet should exceed the least size of the drawing, for labels and air."""
-_LOOSEST = 2.2
+_LOOSEST = 3.0
 """A station spacing grows to at most so many times the least, however large the sheet."""
 _NO_LENGTH_MM = 0.02
 _FILLINGS = 3

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Mapping
 from dataclasses import dataclass
 
@@ -16,6 +17,10 @@ from gtfs_schematic.network.model import Network
 
 _WALK_SHARE = 0.75
 """Length of a walk in shares of a station spacing: short, so that it reads as one place."""
+
+_BROKEN_SHARE = 0.7
+"""Share of its width that a name takes when it may be broken into rows."""
+_WIDEST_ROOM_MM = 25.0
 
 _CORNER = 0.85
 """Length that two 45-degree corners of one radius take of the segment between them:
@@ -67,12 +72,29 @@ def wants_of(skeleton: Skeleton, sizes: Sizes, scale_mm: float, *, tight: bool) 
         anchor_weight=0.02 if tight else 0.05 + 0.5 * sizes.settings.fidelity**2,
         half_width=half,
         clear=2.0 * clearances.line_gap_mm + 0.5,
-        room=2.0 * clearances.line_gap_mm + 0.5
-        if tight
-        else clearances.label_height_mm + clearances.line_width_mm,
+        room=np.zeros((len(owner), 8)) if tight else _label_room(skeleton, clearances),
         jogs=np.where(jog, 3.0 * lines, 0.0),
         spread=2.0 if tight else 0.0,
     )
+
+
+def _label_room(skeleton: Skeleton, clearances: Clearances) -> NDArray[np.float64]:
+    """Say how much room names want beside each segment along each of the eight axes, millimetres.
+
+    Names are level: sideways they take their width, less what a break into rows saves; up and
+    down their height; aslant a part of both. Shape (m, 8).
+    """
+    graph = skeleton.graph
+    height = clearances.label_height_mm
+    widths = np.zeros(len(graph.pieces))
+    for p, piece in enumerate(graph.pieces):
+        names = [*piece.stations, *(graph.station_of[v] for v in piece.ends)]
+        known = [clearances.label_width_mm.get(name or "", 0.0) for name in names]
+        widths[p] = min(_BROKEN_SHARE * float(np.median(known)), _WIDEST_ROOM_MM)
+    width = widths[skeleton.piece_of]
+    aslant = (width + height) / math.sqrt(2.0) / 2.0
+    upright = np.full(len(width), 1.5 * height)
+    return np.stack([width, aslant, upright, aslant] * 2, axis=1)
 
 
 def link_least(

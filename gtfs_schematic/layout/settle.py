@@ -48,8 +48,8 @@ class Wants:
     """Half the width of what is drawn along each segment, shape (m,)."""
     clear: float
     """Least distance between what is drawn along two segments."""
-    room: float
-    """Wanted distance between them."""
+    room: NDArray[np.float64]
+    """Wanted distance between them along each of the eight axes, shape (m, 8)."""
     spread: float
     """Weight of the drawing's width and height."""
     jogs: NDArray[np.float64]
@@ -256,7 +256,10 @@ def _keep_apart(
         (columns.y[j], normal[:, 1]),
     ]
     most.add(terms, -(gap + wants.clear))
-    most.add([*terms, (columns.lack, np.full(len(gap), -1.0))], -(gap + wants.room))
+    # Of two that face each other one can bear its names on the other side: the lesser wish holds.
+    room = np.minimum(wants.room[apart.first, apart.axis], wants.room[apart.second, apart.axis])
+    wish = gap + np.maximum(wants.clear, room)
+    most.add([*terms, (columns.lack, np.full(len(gap), -1.0))], -wish)
 
 
 def _cost(runs: _Runs, columns: _Columns, wants: Wants) -> NDArray[np.float64]:
