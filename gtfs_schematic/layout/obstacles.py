@@ -1,0 +1,132 @@
+"""What a new course meets on the drawing that stands, and which of it it may cross."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass
+
+import numpy as np
+import shapely
+from numpy.typing import NDArray
+
+from gtfs_schematic.geometry import Point
+from gtfs_schematic.layout.detour import Course
+from gtfs_schematic.layout.model import Clearances, SheetFrame
+from gtfs_schematic.layout.places import point_of
+
+_TOUCH_M = 30.0
+"""Distance on the ground below which a crossing and a near miss are not told apart, metres."""
+
+
+@dataclass(frozen=True)
+class Edge:
+    """A link or walk of the changed network."""
+
+    id: str
+    start: str
+    end: str
+    lines: int
+
+
+@dataclass(frozen=True)
+class Chain:
+    """Edges without a path, through stations without a place that nothing else meets."""
+
+    stations: tuple[str, ...]
+    edges: tuple[Edge, ...]
+
+
+@dataclass(frozen=True)
+class Obstacles:
+    """What a new course meets: placed edges and stations, and which of them it may cross."""
+
+    frame: SheetFrame
+    lines: NDArray[np.object_]
+    half: NDArray[np.float64]
+    shared: NDArray[np.bool_]
+    """Edges that end at an end of the new course."""
+    must: NDArray[np.bool_]
+    """Edges that the course crosses on the ground."""
+    may: NDArray[np.bool_]
+    """Edges that it may cross or not: on the ground they nearly touch."""
+    markers: NDArray[np.object_]
+    own: NDArray[np.bool_]
+    width: float
+    clear: float
+    marker: float
+
+    @staticmethod
+    def of(
+        chain: Chain,
+        placed: Sequence[tuple[Edge, tuple[Point, ...]]],
+        at: Mapping[str, Point],
+        ground: Mapping[str, Point],
+        limits: tuple[Clearances, SheetFrame],
+    ) -> Obstacles:
+        """Gather what stands in the way of a chain.
+
+        `placed` are the edges that have their path, `at` the places of stations in millimetres,
+        `ground` those in local metres.
+        """
+        clearances, frame = limits
+        edges = [edge for edge, _ in placed]
+        lines = np.array([shapely.LineString(path) for _, path in placed], dtype=object)
+        ends = {chain.stations[0], chain.stations[-1]}
+        shared = np.array([bool({e.start, e.end} & ends) for e in edges], dtype=bool)
+        course = shapely.LineString([ground[s] for s in chain.stations])
+        courses = np.array(
+            [shapely.LineString([ground[e.start], ground[e.end]]) for e in edges],
+            dtype=object,
+        )
+        crosses = np.asarray(shapely.crosses(courses, course), dtype=bool) & ~shared
+        stations = sorted(at)
+        points = np.array([ground[s] for s in chain.stations])
+        tips = [
+            min(
+                float(shapely.distance(shapely.points(ground[s]), course)) for s in (e.start, e.end)
+            )
+            for e in edges
+        ]
+        reach = shapely.distance(shapely.points(points)[:, None], courses[None, :]).min(axis=0)
+        unsure = (np.minimum(np.array(tips), reach) < _TOUCH_M) & ~shared
+        return Obstacles(
+            frame,
+            lines,
+            np.array([_half(clearances, e.lines) for e in edges]),
+            shared,
+            crosses & ~unsure,
+            unsure,
+            shapely.points([at[s] for s in stations]),
+            np.array([s in ends for s in stations], dtype=bool),
+            max(_half(clearances, e.lines) for e in chain.edges),
+            2.0 * clearances.line_gap_mm,
+            clearances.marker_mm / 2.0,
+        )
+
+    def allow(self, course: Course) -> bool:
+        """Whether a course keeps every guarantee."""
+        line = shapely.LineString([point_of(corner) for corner in course.corners])
+        frame = self.frame
+        low_x, low_y, high_x, high_y = line.bounds
+        inside = low_x >= frame.left_mm and high_x <= frame.right_mm
+        if not (inside and low_y >= frame.top_mm and high_y <= frame.bottom_mm and line.is_simple):
+            return False
+        near = shapely.distance(self.markers, line) < self.marker + self.width + self.clear
+        if (near & ~self.own).any():
+            return False
+        crossing = np.asarray(shapely.crosses(self.lines, line), dtype=bool)
+        touching = np.asarray(shapely.intersects(self.lines, line), dtype=bool)
+        if (self.must & ~crossing).any() or (crossing & ~(self.must | self.may)).any():
+            return False
+        for other in self.lines[touching]:
+            if other.intersection(line).geom_type != "Point":
+                return False
+        tight = shapely.distance(self.lines, line) < self.half + self.width + self.clear
+        return not (tight & ~crossing & ~self.shared).any()
+
+
+def _half(clearances: Clearances, lines: int) -> float:
+    if lines == 0:
+        return clearances.line_width_mm / 4.0
+    pitch = clearances.line_width_mm + clearances.line_gap_mm
+    return (lines * pitch - clearances.line_gap_mm) / 2.0
