@@ -13,6 +13,7 @@ from pydantic_core import ErrorDetails
 
 from gtfs_schematic.bundles.model import BundleSettings
 from gtfs_schematic.drawing.model import DrawingSettings, SheetSettings
+from gtfs_schematic.drift.model import DriftSettings
 from gtfs_schematic.errors import UsageError
 from gtfs_schematic.feed.model import FeedSettings
 from gtfs_schematic.labels.model import LabelSettings
@@ -32,6 +33,7 @@ class Settings(BaseModel):
     labels: LabelSettings = LabelSettings()
     drawing: DrawingSettings = DrawingSettings()
     sheet: SheetSettings = SheetSettings()
+    drift: DriftSettings = DriftSettings()
 
 
 def settings_from_toml(data: bytes, name: str) -> Settings:

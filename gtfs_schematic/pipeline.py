@@ -33,6 +33,7 @@ from gtfs_schematic.drift.model import DriftReport
 from gtfs_schematic.drift.page import to_html
 from gtfs_schematic.drift.report import to_csv
 from gtfs_schematic.drift.report import to_json as drift_to_json
+from gtfs_schematic.drift.timing import timing_of
 from gtfs_schematic.edition import check as edition_check
 from gtfs_schematic.edition.make import edition_of
 from gtfs_schematic.edition.model import Edition
@@ -111,9 +112,10 @@ def draw(
     _must_be_sound("drawing", drawing_check.faults(drawing, network, unnamed=labelled.unplaced))
 
     progress.phase("measuring the drift")
-    edition = edition_of(labelled, sheet_title(network, settings.drawing))
+    timing = timing_of(timetable, network)
+    edition = edition_of(labelled, sheet_title(network, settings.drawing), timing)
     _must_be_sound("edition", edition_check.faults(edition))
-    drift = measure_edition(edition)
+    drift = measure_edition(edition, settings.drift)
     _must_be_sound("drift", drift_check.faults(drift))
 
     bundled = labelled.bundled

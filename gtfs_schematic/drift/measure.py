@@ -4,23 +4,22 @@ from __future__ import annotations
 
 import math
 from collections.abc import Sequence
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
 
+from gtfs_schematic.drift.competing import competing_routes
 from gtfs_schematic.drift.fit import centred, free_fit, north_up_fit
 from gtfs_schematic.drift.ground import local_metres
-from gtfs_schematic.drift.model import (
-    DriftReport,
-    DriftSummary,
-    Fit,
-    LinkDrift,
-    PlacedDiagram,
-    PlacedLink,
-    PlacedStation,
-    StationDrift,
-)
-from gtfs_schematic.drift.pairs import distance_correlation, order_flips
+from gtfs_schematic.drift.journeys import measure_journeys
+from gtfs_schematic.drift.links import ends_of, links_drift
+from gtfs_schematic.drift.lookalikes import Places, false_neighbors, hidden_walks
+from gtfs_schematic.drift.model import DriftReport, DriftSettings, Fit, StationDrift
+from gtfs_schematic.drift.placed import Diagram, PlacedLink, PlacedStation
+from gtfs_schematic.drift.rides import typical_length
+from gtfs_schematic.drift.summary import summary_of
+from gtfs_schematic.drift.warp import AffineField, local_scales, warp_of
 from gtfs_schematic.errors import EditionError
 
 Plane = NDArray[np.complex128]
@@ -28,12 +27,44 @@ Plane = NDArray[np.complex128]
 _SAME_PLACE = 1e-9
 
 
-def measure_edition(edition: PlacedDiagram) -> DriftReport:
-    """Measure an edition, or anything else that holds placed stations and links."""
-    return measure(edition.stations, edition.links)
+def measure_edition(edition: Diagram, settings: DriftSettings | None = None) -> DriftReport:
+    """Measure an edition, or any other whole diagram, and whom it misleads.
+
+    Parameters
+    ----------
+    edition
+        Stations, links, walks and lines; journeys are measured if it holds a timetable.
+    settings
+        Thresholds; None for the defaults.
+
+    Raises
+    ------
+    EditionError
+        As `measure` does.
+    """
+    settings = settings or DriftSettings()
+    report = measure(edition.stations, edition.links, settings)
+    known = [link for link in report.links if link.length_ratio is not None]
+    if not known:
+        return report
+    ground, sheet = _places(edition.stations)
+    scale = float(np.median([link.drawn_length_mm / link.true_length_m for link in known]))
+    places = Places(ground, sheet, scale)
+    return replace(
+        report,
+        typical_link_mm=typical_length(edition.links),
+        false_neighbors=false_neighbors(edition, places, settings),
+        hidden_walks=hidden_walks(edition, places, settings),
+        competing=competing_routes(edition, places, settings),
+        journeys=measure_journeys(edition, settings),
+    )
 
 
-def measure(stations: Sequence[PlacedStation], links: Sequence[PlacedLink]) -> DriftReport:
+def measure(
+    stations: Sequence[PlacedStation],
+    links: Sequence[PlacedLink],
+    settings: DriftSettings | None = None,
+) -> DriftReport:
     """Measure displacement, bearings, lengths and order of a diagram against the ground.
 
     Parameters
@@ -42,97 +73,87 @@ def measure(stations: Sequence[PlacedStation], links: Sequence[PlacedLink]) -> D
         Every drawn station; degrees (WGS 84) and sheet millimetres, y down.
     links
         Every drawn link, by station ids.
+    settings
+        Thresholds; None for the defaults.
 
     Raises
     ------
     EditionError
         If all stations share one place on the ground or on the sheet: nothing can be compared.
     """
-    ground = local_metres([(station.lon, station.lat) for station in stations])
-    sheet = np.array([complex(station.x_mm, -station.y_mm) for station in stations])
+    settings = settings or DriftSettings()
+    ground, sheet = _places(stations)
     for points, where in ((ground, "on the ground"), (sheet, "on the sheet")):
         if len(points) == 0 or float(np.abs(points - points[0]).max()) < _SAME_PLACE:
             raise EditionError(
                 f"The drift cannot be measured: no two stations have different places {where}. "
                 "Draw at least two stations, and check their coordinates."
             )
-    north_up, free = north_up_fit(ground, sheet), free_fit(ground, sheet)
-    span = (float(np.ptp(ground.real)), float(np.ptp(ground.imag)))
-    diagonal = math.hypot(*span)
-    moved = _stations(stations, ground, sheet, north_up, diagonal)
-    place = {station.id: i for i, station in enumerate(stations)}
-    ends = np.array([(place[k.start], place[k.end]) for k in links], dtype=np.int64).reshape(-1, 2)
-    true, drawn = ground[ends[:, 1]] - ground[ends[:, 0]], sheet[ends[:, 1]] - sheet[ends[:, 0]]
-    changed = _links(links, true, drawn)
-    summary = _summary(moved, changed, (order_flips(ground, sheet), ground, sheet))
-    return DriftReport(north_up, free, diagonal, moved, changed, summary)
+    shift = _Shift(ground, sheet, north_up_fit(ground, sheet))
+    field = AffineField(ground, sheet)
+    moved = _stations(stations, shift, field)
+    changed = links_drift(links, *(ends_of(stations, links, at) for at in (ground, sheet)))
+    return DriftReport(
+        north_up=shift.fit,
+        free=free_fit(ground, sheet),
+        diagonal_m=shift.diagonal_m,
+        stations=moved,
+        links=changed,
+        summary=summary_of(moved, changed, ground, sheet, settings),
+        warp=warp_of(field, shift.scale),
+        typical_link_mm=float(np.median([k.drawn_length_mm for k in changed])) if changed else 0.0,
+    )
+
+
+def _places(stations: Sequence[PlacedStation]) -> tuple[Plane, Plane]:
+    """Give true places in local metres and drawn ones in millimetres, both y up."""
+    ground = local_metres([(station.lon, station.lat) for station in stations])
+    sheet = np.array([complex(s.x_mm, -s.y_mm) for s in stations], dtype=np.complex128)
+    return ground, sheet
+
+
+@dataclass(frozen=True, slots=True)
+class _Shift:
+    """True and drawn places, y up, and the fit that lays one on the other."""
+
+    ground: Plane
+    sheet: Plane
+    fit: Fit
+
+    @property
+    def scale(self) -> float:
+        """Sheet units per metre; without any north-up likeness the drawing's own size counts."""
+        scale = self.fit.scale_mm_per_km / 1000.0
+        if scale > 0.0:
+            return scale
+        z, w = centred(self.ground), centred(self.sheet)
+        return float(np.sqrt(np.sum(np.abs(w) ** 2) / np.sum(np.abs(z) ** 2)))
+
+    @property
+    def diagonal_m(self) -> float:
+        """Diagonal of the bounding box on the ground, metres."""
+        return math.hypot(float(np.ptp(self.ground.real)), float(np.ptp(self.ground.imag)))
 
 
 def _stations(
-    stations: Sequence[PlacedStation], ground: Plane, sheet: Plane, fit: Fit, diagonal: float
+    stations: Sequence[PlacedStation], shift: _Shift, field: AffineField
 ) -> tuple[StationDrift, ...]:
-    """Measure each station; a drawing without north-up likeness is measured at its own size."""
-    z, w = centred(ground), centred(sheet)
-    scale = fit.scale_mm_per_km / 1000.0
-    if scale == 0.0:
-        scale = float(np.sqrt(np.sum(np.abs(w) ** 2) / np.sum(np.abs(z) ** 2)))
-    shift = w / scale - z
-    true_mm = sheet.mean() + scale * z
+    """Measure each station's displacement w / s − z, both centred, and the map round it."""
+    z, w = centred(shift.ground), centred(shift.sheet)
+    moved = w / shift.scale - z
+    true_mm = shift.sheet.mean() + shift.scale * z
+    size, turn = local_scales(field)
     return tuple(
         StationDrift(
             station_id=station.id,
             name=station.name,
-            displacement_m=abs(shift[i]),
-            direction_deg=math.degrees(math.atan2(shift[i].real, shift[i].imag)) % 360.0,
-            displacement_share=abs(shift[i]) / diagonal,
+            displacement_m=float(abs(moved[i])),
+            direction_deg=math.degrees(math.atan2(moved[i].real, moved[i].imag)) % 360.0,
+            displacement_share=float(abs(moved[i])) / shift.diagonal_m,
             drawn_mm=(station.x_mm, station.y_mm),
             true_mm=(float(true_mm[i].real), float(-true_mm[i].imag)),
+            local_scale=float(size[i]),
+            local_rotation_deg=float(turn[i]),
         )
         for i, station in enumerate(stations)
-    )
-
-
-def _links(links: Sequence[PlacedLink], true: Plane, drawn: Plane) -> tuple[LinkDrift, ...]:
-    usable = (np.abs(true) > _SAME_PLACE) & (np.abs(drawn) > _SAME_PLACE)
-    ratio = np.ones(len(links))
-    ratio[usable] = np.abs(drawn[usable]) / np.abs(true[usable])
-    typical = float(np.median(ratio[usable])) if usable.any() else 1.0
-    # The conjugate quotient turns clockwise, as bearings do.
-    change = -np.degrees(np.angle(drawn * np.conj(true)))
-    change[change <= -180.0] = 180.0
-    return tuple(
-        LinkDrift(
-            link_id=link.id,
-            true_length_m=float(abs(true[i])),
-            drawn_length_mm=float(abs(drawn[i])),
-            bearing_change_deg=float(change[i]) if usable[i] else None,
-            length_ratio=float(ratio[i] / typical) if usable[i] else None,
-        )
-        for i, link in enumerate(links)
-    )
-
-
-def _summary(
-    stations: tuple[StationDrift, ...],
-    links: tuple[LinkDrift, ...],
-    pairs: tuple[float, Plane, Plane],
-) -> DriftSummary:
-    share = np.array([station.displacement_share for station in stations])
-    known = [link for link in links if link.bearing_change_deg is not None]
-    change = np.abs([link.bearing_change_deg or 0.0 for link in known])
-    weight = np.array([link.true_length_m for link in known])
-    ratio = np.array([link.length_ratio or 1.0 for link in known])
-    whole = float(weight.sum()) or 1.0
-    flips, ground, sheet = pairs
-    return DriftSummary(
-        displacement_median_share=float(np.median(share)),
-        displacement_max_share=float(share.max()),
-        bearing_mean_deg=float((change * weight).sum() / whole),
-        bearing_p95_deg=float(np.percentile(change, 95.0)) if known else 0.0,
-        bearing_over_22_5=float(weight[change > 22.5].sum() / whole),
-        bearing_over_45=float(weight[change > 45.0].sum() / whole),
-        bearing_over_90=float(weight[change > 90.0].sum() / whole),
-        log_length_sd=float(np.log(ratio).std()) if known else 0.0,
-        order_flips=flips,
-        distance_correlation=distance_correlation(ground, sheet),
     )

@@ -33,6 +33,7 @@ def faults(edition: Edition) -> tuple[str, ...]:
     for line in edition.lines:
         for itinerary in line.itineraries:
             found += _unknown(f"line {line.id}", "station", itinerary, stations)
+    found += _mistimed(edition)
     for joined in paths:
         missing = _unknown(f"link {joined.id}", "station", (joined.start, joined.end), stations)
         found += missing
@@ -40,6 +41,20 @@ def faults(edition: Edition) -> tuple[str, ...]:
             ends = [(stations[end].x_mm, stations[end].y_mm) for end in (joined.start, joined.end)]
             found += _loose(joined, ends)
     return tuple(found)
+
+
+def _mistimed(edition: Edition) -> list[str]:
+    """Fault patterns of unknown lines or stations, or with impossible times."""
+    found = []
+    for i, pattern in enumerate(edition.patterns):
+        where = f"pattern {i}"
+        found += _unknown(where, "line", [pattern.line], (line.id for line in edition.lines))
+        found += _unknown(where, "station", pattern.stations, (s.id for s in edition.stations))
+        if len(pattern.times_s) != len(pattern.stations):
+            found.append(f"{where}: not one time per station")
+        if list(pattern.times_s) != sorted(pattern.times_s):
+            found.append(f"{where}: its times run backwards")
+    return found
 
 
 def _loose(joined: EditionLink | EditionWalk, ends: list[tuple[float, float]]) -> list[str]:

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterable, Sequence
 
+from gtfs_schematic.drift.timing import Timing
 from gtfs_schematic.edition.model import (
     Edition,
     EditionFeed,
@@ -21,7 +22,7 @@ _PLACES_MM = 4
 _PLACES_DEGREES = 7
 
 
-def edition_of(labelled: LabelledLayout, title: str) -> Edition:
+def edition_of(labelled: LabelledLayout, title: str, timing: Timing | None = None) -> Edition:
     """Make the edition that a labelled layout shows.
 
     Parameters
@@ -30,6 +31,8 @@ def edition_of(labelled: LabelledLayout, title: str) -> Edition:
         The finished layout; sheet millimetres, y down.
     title
         Title of the edition, as on the sheet.
+    timing
+        When its lines run, so that journeys can be measured from the edition alone.
 
     Returns
     -------
@@ -37,6 +40,7 @@ def edition_of(labelled: LabelledLayout, title: str) -> Edition:
         Sheet places to a tenth of a micrometre and degrees to a centimetre, so that what is
         written is what was measured.
     """
+    timing = timing or Timing()
     bundled = labelled.bundled
     layout = bundled.layout
     network = layout.network
@@ -45,7 +49,7 @@ def edition_of(labelled: LabelledLayout, title: str) -> Edition:
         feed=_feed(network.info),
         width_mm=layout.sheet.width_mm,
         height_mm=layout.sheet.height_mm,
-        stations=_stations(labelled),
+        stations=_stations(labelled, timing),
         links=tuple(
             EditionLink(k.id, k.start, k.end, bundled.orders[k.id], _path(layout.paths[k.id]))
             for k in network.links
@@ -57,6 +61,7 @@ def edition_of(labelled: LabelledLayout, title: str) -> Edition:
         left_out=tuple((item.kind, item.id, item.reason) for item in network.left_out),
         findings=tuple(sentence(finding) for finding in network.findings),
         walks=_walks(layout),
+        patterns=timing.patterns,
     )
 
 
@@ -87,7 +92,7 @@ def _feed(info: FeedInfo) -> EditionFeed:
     )
 
 
-def _stations(labelled: LabelledLayout) -> tuple[EditionStation, ...]:
+def _stations(labelled: LabelledLayout, timing: Timing) -> tuple[EditionStation, ...]:
     layout = labelled.bundled.layout
     return tuple(
         EditionStation(
@@ -102,6 +107,7 @@ def _stations(labelled: LabelledLayout) -> tuple[EditionStation, ...]:
             lines=station.lines,
             group=station.group,
             label_side=labelled.labels[station.id].side if station.id in labelled.labels else "",
+            change_s=timing.change_s.get(station.id),
         )
         for station in layout.network.stations
     )

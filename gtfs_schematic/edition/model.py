@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
+from gtfs_schematic.drift.placed import TimedPattern
 from gtfs_schematic.geometry import Point
 from gtfs_schematic.network.model import StationKind
 
@@ -36,6 +37,8 @@ class EditionStation:
     group: str
     label_side: str = ""
     """Compass side of the marker on which the name stands; empty if it found no place."""
+    change_s: int | None = None
+    """Seconds that the feed gives for a change within the station."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -87,3 +90,5 @@ class Edition:
     """(kind, id, reason) of everything in the feed that the diagram does not show."""
     findings: tuple[str, ...] = ()
     walks: tuple[EditionWalk, ...] = ()
+    patterns: tuple[TimedPattern, ...] = ()
+    """When the lines run on the service date; empty in editions that do not say."""

@@ -9,6 +9,7 @@ from typing import Annotated, Any, Literal, NoReturn
 
 from pydantic import BaseModel, ConfigDict, Field, ValidationError
 
+from gtfs_schematic.drift.placed import TimedPattern
 from gtfs_schematic.edition.check import faults
 from gtfs_schematic.edition.model import (
     Edition,
@@ -21,6 +22,7 @@ from gtfs_schematic.edition.model import (
 from gtfs_schematic.errors import EditionError
 
 Row = dict[str, Any]
+_Row = EditionFeed | EditionStation | EditionLine | EditionLink | EditionWalk | TimedPattern
 
 FORMAT = "gtfs-schematic/edition"
 VERSION = 1
@@ -66,6 +68,7 @@ class _Station(_Part):
     lines: list[str]
     group: str
     label_side: str = ""
+    change_s: Annotated[int, Field(ge=0)] | None = None
 
 
 class _Link(_Part):
@@ -93,6 +96,13 @@ class _Line(_Part):
     itineraries: list[list[str]]
 
 
+class _Pattern(_Part):
+    line: str
+    stations: list[str] = Field(min_length=2)
+    times_s: list[int]
+    departures_s: list[int] = Field(min_length=1)
+
+
 class _LeftOut(_Part):
     kind: str
     id: str
@@ -109,6 +119,7 @@ class _Document(_Part):
     links: list[_Link]
     lines: list[_Line]
     walks: list[_Walk] = []
+    patterns: list[_Pattern] = []
     left_out: list[_LeftOut] = []
     findings: list[str] = []
 
@@ -137,6 +148,7 @@ def to_json(edition: Edition) -> bytes:
         "links": [_plain(link) for link in edition.links],
         "walks": [_plain(walk) for walk in edition.walks],
         "lines": [_plain(line) for line in edition.lines],
+        "patterns": [_plain(pattern) for pattern in edition.patterns],
         "left_out": [{"kind": k, "id": i, "reason": r} for k, i, r in edition.left_out],
         "findings": list(edition.findings),
     }
@@ -197,6 +209,7 @@ def _edition(document: _Document) -> Edition:
         left_out=tuple((part.kind, part.id, part.reason) for part in document.left_out),
         findings=tuple(document.findings),
         walks=tuple(EditionWalk(**_frozen(part)) for part in document.walks),
+        patterns=tuple(TimedPattern(**_frozen(part)) for part in document.patterns),
     )
 
 
@@ -214,7 +227,7 @@ def _tuples(value: Any) -> Any:  # noqa: ANN401 - JSON holds any of its kinds
     return tuple(_tuples(item) for item in value) if isinstance(value, list | tuple) else value
 
 
-def _plain(value: EditionFeed | EditionStation | EditionLine | EditionLink | EditionWalk) -> Row:
+def _plain(value: _Row) -> Row:
     """Give a part's fields by name, `start` and `end` as "from" and "to"."""
     return {_NAMES.get(part.name, part.name): getattr(value, part.name) for part in fields(value)}
 
