@@ -154,9 +154,10 @@ def _expand(
     at = {site_id: site.at for site_id, site in sites.sites.items()}
     tracks = _tracks(timetable, sites, chosen)
     way_of = {line_id: way_of_mode(group[0].mode) for line_id, group in chosen.groups.items()}
-    steps = steps_of(tracks, sections_by_pair(tracks), way_of)
-    over = expresses(steps, at, settings)
-    return Expansion(over | passed_alongside(tracks, way_of, at, over, settings))
+    sections = sections_by_pair(tracks)
+    over = expresses(steps_of(tracks, sections, way_of), at, settings)
+    courses = {pair: course for pair, (course, _) in sections.items()}
+    return Expansion(over | passed_alongside(tracks, courses, way_of, at, over, settings))
 
 
 def _tracks(timetable: Timetable, sites: Sites, chosen: _Chosen) -> tuple[Track, ...]:

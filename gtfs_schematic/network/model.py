@@ -34,7 +34,11 @@ class NetworkSettings(BaseModel):
     express_detour: float = Field(default=1.25, ge=1.0)
     """A local track at most this many times longer than the express link carries the express."""
     alongside_m: float = Field(default=60.0, ge=0.0)
-    """A stop this near the course of another line, which runs along it, lies on its course."""
+    """Two courses no further apart than this may be one way, metres."""
+    alongside_deg: float = Field(default=35.0, ge=0.0, le=90.0)
+    """Greatest angle between two courses on one way, either way round, degrees."""
+    alongside_min_m: float = Field(default=300.0, ge=0.0)
+    """Courses must stay together for this long to be one way, metres."""
     outlier_km: float = Field(default=300.0, gt=0.0)
     """A stop further than this from the network's median stop is an outlier and not drawn."""
 
