@@ -32,11 +32,18 @@ Example:
     metavar="FILE",
     help="Also write the network as GeoJSON, to look at on a map.",
 )
+@click.option(
+    "--graphml",
+    type=click.Path(path_type=Path),
+    metavar="FILE",
+    help="Also write the network as GraphML, for programs that study graphs.",
+)
 @click.option("--all", "everything", is_flag=True, help="List everything left out and found.")
 @options.quiet
 def inspect(
     feeds: tuple[Path, ...],
     geojson: Path | None,
+    graphml: Path | None,
     **given: Any,  # noqa: ANN401 - the options of the registry
 ) -> None:
     """Show what is in FEED, what is wrong with it, and what a diagram of it would hold.
@@ -44,13 +51,15 @@ def inspect(
     FEED is a GTFS zip file or a folder; several are taken as one network.
     """
     settings = options.settings_from(given)
-    from gtfs_schematic.network.export import to_geojson
+    from gtfs_schematic.network.export import to_geojson, to_graphml
     from gtfs_schematic.pipeline import inspect as read
 
     with listening(quiet=given["quiet"]) as progress:
         _, network = read(feeds, settings, progress=progress)
     if geojson is not None:
         options.write_file(geojson, to_geojson(network))
+    if graphml is not None:
+        options.write_file(graphml, to_graphml(network))
     if given["as_json"]:
         click.echo(to_json(network))
     else:
@@ -74,6 +83,15 @@ def to_json(network: Network) -> bytes:
                 "mode": line.mode,
                 "route_ids": list(line.route_ids),
                 "trips": line.trips,
+                "service": line.service,
+                "first_departure_s": line.first_departure_s,
+                "last_departure_s": line.last_departure_s,
+                "headway_s": line.headway_s,
+                "periods": [asdict(period) for period in line.periods],
+                "part_service": [
+                    {"from": start, "to": end, "service": service}
+                    for start, end, service in line.part_service
+                ],
             }
             for line in network.lines
         ],
@@ -110,7 +128,26 @@ def _line(line: Line, network: Network) -> str:
     ends = [network.station[key].name for key in (longest[0], longest[-1])] if longest else []
     course = f": {' – '.join(dict.fromkeys(ends))}" if ends else ""
     stations = len({key for itinerary in line.itineraries for key in itinerary})
+    span = f"{_clock(line.first_departure_s)} to {_clock(line.last_departure_s)}"
+    every = f", every {_minutes(line.headway_s)}" if line.headway_s is not None else ""
     return (
         f"{line.name} ({line.mode}){course}, {words.count(stations, 'station')}, "
-        f"{words.count(line.trips, 'trip')}"
+        f"{words.count(line.trips, 'trip')}, {span}{every}{_headways(line)}"
     )
+
+
+def _headways(line: Line) -> str:
+    """Write headways by period where they are not all the same."""
+    known = [(p.period, p.headway_s) for p in line.periods if p.headway_s is not None]
+    if len({headway for _, headway in known}) < 2:
+        return ""
+    return f" ({', '.join(f'{period} {_minutes(headway)}' for period, headway in known)})"
+
+
+def _clock(seconds: int) -> str:
+    """Write a time of the service day; 25:10 is ten past one of the next morning."""
+    return f"{seconds // 3600:02d}:{seconds % 3600 // 60:02d}"
+
+
+def _minutes(seconds: int) -> str:
+    return f"{seconds / 60:.0f} min" if seconds >= 60 else f"{seconds} s"

@@ -10,7 +10,13 @@ from gtfs_schematic.errors import FeedError
 from gtfs_schematic.feed.model import LeftOut, Route, Timetable
 from gtfs_schematic.geometry import distance
 from gtfs_schematic.network.alongside import passed_alongside
-from gtfs_schematic.network.describe import color_findings, described_lines, merge_findings
+from gtfs_schematic.network.describe import (
+    Known,
+    Run,
+    color_findings,
+    described_lines,
+    merge_findings,
+)
 from gtfs_schematic.network.kinds import kinds_of
 from gtfs_schematic.network.likeness import sites_of
 from gtfs_schematic.network.lines import route_groups
@@ -27,6 +33,7 @@ from gtfs_schematic.network.patterns import (
     callings_of,
     itineraries_of,
     shows,
+    united,
     without_rare,
 )
 from gtfs_schematic.network.smooth import corridors_of
@@ -91,7 +98,8 @@ def build_network(
     footways, far_walks = footways_of(timetable, sites, settings)
     walks = walks_between(footways, drawn, {frozenset((k.start, k.end)) for k in links})
     stations = _stations(sites, links, walks, ways)
-    lines = described_lines(timetable, chosen.groups, ways, _runs(chosen, expansion))
+    known = Known(timetable, chosen.groups, sites.site_of)
+    lines = described_lines(known, ways, _runs(chosen, expansion))
     undrawn = tuple(
         LeftOut("station", site_id, "only patterns that are left out call here")
         for site_id in sites.sites
@@ -121,10 +129,14 @@ def _sites(timetable: Timetable, settings: NetworkSettings) -> Sites:
 
 def _choose(timetable: Timetable, sites: Sites, settings: NetworkSettings) -> _Chosen:
     routes = sorted(timetable.routes, key=lambda route: route.id)
-    groups = {
-        group[0].id: group for group in route_groups(routes, timetable.patterns, sites.site_of)
-    }
-    line_of = {route.id: line_id for line_id, group in groups.items() for route in group}
+    named, groups = (
+        {
+            group[0].id: group
+            for group in route_groups(routes, timetable.patterns, sites.site_of, by)
+        }
+        for by in ("route", settings.group_lines)
+    )
+    line_of = {route.id: line_id for line_id, group in named.items() for route in group}
     by_line: dict[str, list[Calling]] = defaultdict(list)
     for calling in callings_of(timetable.patterns, line_of, sites.site_of):
         by_line[calling.line_id].append(calling)
@@ -145,7 +157,9 @@ def _choose(timetable: Timetable, sites: Sites, settings: NetworkSettings) -> _C
         some, rare = without_rare(by_line[line_id], settings.min_pattern_share, same_way)
         kept.extend(some)
         left_out.extend(rare)
-    return _Chosen(groups, tuple(kept), tuple(left_out))
+    # A pattern is rare among the trips of its own name, not among those of a whole trunk.
+    trunk_of = {route.id: line_id for line_id, group in groups.items() for route in group}
+    return _Chosen(groups, united(kept, trunk_of), tuple(left_out))
 
 
 def _expand(
@@ -187,11 +201,12 @@ def _ways(chosen: _Chosen, expansion: Expansion) -> dict[str, tuple[tuple[Ids, I
     }
 
 
-def _runs(chosen: _Chosen, expansion: Expansion) -> dict[str, list[Ids]]:
+def _runs(chosen: _Chosen, expansion: Expansion) -> dict[str, list[Run]]:
     """Per line the courses of all kept patterns, in the direction in which they are run."""
-    runs: dict[str, list[Ids]] = defaultdict(list)
+    runs: dict[str, list[Run]] = defaultdict(list)
     for calling in chosen.callings:
-        runs[calling.line_id].append(expansion.course(calling.stations))
+        course = expansion.course(calling.stations)
+        runs[calling.line_id].append((course, calling.departures_s))
     return runs
 
 

@@ -1,16 +1,21 @@
-"""Write a network as GeoJSON, for looking at it over a map."""
+"""Write a network as GeoJSON, for looking at it over a map, and as GraphML, for graph programs."""
 
 from __future__ import annotations
 
+import io
 import json
+import re
 
 import geopandas as gpd
+import networkx as nx
 import shapely
+from pyproj import Geod
 
-from gtfs_schematic.network.model import Network
+from gtfs_schematic.network.model import Link, Network, Walk
 
 _DEGREES = 1e-6
 """Six decimals, about 10 cm on the ground: finer than any feed's stops."""
+_NO_CHAR = re.compile("[^\t\n\r\x20-\ud7ff\ue000-\ufffd\U00010000-\U0010ffff]")
 
 
 def to_geojson(network: Network) -> bytes:
@@ -27,6 +32,53 @@ def to_geojson(network: Network) -> bytes:
     ]
     collection = {"type": "FeatureCollection", "features": features}
     return (json.dumps(collection, ensure_ascii=False, separators=(",", ":")) + "\n").encode()
+
+
+def to_graphml(network: Network) -> bytes:
+    """Give the network as a graph of stations, joined by links and walks (GraphML, 2002).
+
+    Nodes have lon and lat in degrees (WGS 84); every edge has the attribute `layer`: "link" or
+    "walk", and its length on the ground. Same network, same bytes.
+    """
+    graph = nx.Graph()
+    geod = Geod(ellps="WGS84")
+    for station in network.stations:
+        graph.add_node(
+            _xml(station.id),
+            name=_xml(station.name),
+            lon=station.lon,
+            lat=station.lat,
+            kind=station.kind,
+            group=_xml(station.group),
+            lines=_names(network, station.lines),
+            stop_ids=_xml(" ".join(station.stop_ids)),
+        )
+    edges: tuple[Link | Walk, ...] = (*network.links, *network.walks)
+    for edge in edges:
+        ends = [network.station[edge.start], network.station[edge.end]]
+        length = geod.line_length([s.lon for s in ends], [s.lat for s in ends])
+        lines: tuple[str, ...] = edge.lines if isinstance(edge, Link) else ()
+        graph.add_edge(
+            _xml(edge.start),
+            _xml(edge.end),
+            id=_xml(edge.id),
+            layer="link" if lines else "walk",
+            lines=_names(network, lines),
+            color=network.line[lines[0]].color if lines else "",
+            length_m=round(length, 1),
+        )
+    stream = io.BytesIO()
+    nx.write_graphml_xml(graph, stream, encoding="utf-8", prettyprint=True)
+    return stream.getvalue()
+
+
+def _names(network: Network, lines: tuple[str, ...]) -> str:
+    return _xml(" ".join(network.line[line_id].name for line_id in lines))
+
+
+def _xml(text: str) -> str:
+    """Replace what XML 1.0 (production 2, Char) does not allow in a document."""
+    return _NO_CHAR.sub("\N{REPLACEMENT CHARACTER}", text)
 
 
 def stations_layer(network: Network) -> gpd.GeoDataFrame:

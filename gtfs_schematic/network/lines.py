@@ -9,6 +9,7 @@ from collections.abc import Iterable, Mapping, Sequence
 import networkx as nx
 
 from gtfs_schematic.feed.model import Pattern, Route
+from gtfs_schematic.network.model import LineGrouping
 from gtfs_schematic.network.naming import natural_key
 from gtfs_schematic.network.patterns import Ids, collapsed
 
@@ -20,7 +21,10 @@ _DIRECTION = re.compile(
 
 
 def route_groups(
-    routes: Sequence[Route], patterns: Iterable[Pattern], site_of: Mapping[str, str]
+    routes: Sequence[Route],
+    patterns: Iterable[Pattern],
+    site_of: Mapping[str, str],
+    grouping: LineGrouping = "route",
 ) -> tuple[tuple[Route, ...], ...]:
     """Gather the routes of every line, sorted by the line's id: its least route id.
 
@@ -28,6 +32,8 @@ def route_groups(
        on opposite ends of a city may share a letter without being one line.
     2. Routes that are each run in one direction, one the mirror image of the other, are one line
        if agency, mode and color agree and the names do not speak against it.
+    3. If lines are grouped by color or by network: routes of one agency and mode that share it
+       and meet are one line.
     """
     runs = _runs_by_route(patterns, site_of)
     known = {route.id: route for route in routes if route.id in runs}
@@ -39,7 +45,11 @@ def route_groups(
         if route.short_name:
             named[route.agency_id, route.mode, route.short_name].append(route.id)
         colored[route.agency_id, route.mode, route.color or ""].append(route.id)
-    for ids in named.values():
+    trunks: dict[tuple[str, str, str], list[str]] = defaultdict(list)
+    for route in known.values():
+        if (trunk := _trunk(route, grouping)) is not None:
+            trunks[route.agency_id, route.mode, trunk].append(route.id)
+    for ids in (*named.values(), *trunks.values()):
         called = {i: {station for run in runs[i] for station in run} for i in ids}
         graph.add_edges_from((a, b) for a, b in _pairs(ids) if called[a] & called[b])
     single = {route_id for route_id in known if not _runs_both_ways(runs[route_id])}
@@ -51,6 +61,16 @@ def route_groups(
         )
     groups = sorted(sorted(part) for part in nx.connected_components(graph))
     return tuple(tuple(known[route_id] for route_id in group) for group in groups)
+
+
+def _trunk(route: Route, grouping: LineGrouping) -> str | None:
+    """Give what routes must share to be grouped; None if this one stays as it is."""
+    if grouping == "color":
+        return route.color
+    if grouping == "network":
+        # A timetable whose routes do not tell their network has no networks.
+        return getattr(route, "network_id", None) or None
+    return None
 
 
 def name_of(routes: Sequence[Route]) -> str:

@@ -12,6 +12,8 @@ from gtfs_schematic.feed.model import Boarding, FeedInfo, Finding, LeftOut
 
 StationKind = Literal["stop", "interchange", "terminus"]
 ServicePattern = Literal["all-day", "peak", "night", "some-days"]
+LineGrouping = Literal["route", "color", "network"]
+Period = Literal["early", "morning peak", "midday", "afternoon peak", "evening", "night"]
 
 
 class NetworkSettings(BaseModel):
@@ -39,6 +41,9 @@ class NetworkSettings(BaseModel):
     """Greatest angle between two courses on one way, either way round, degrees."""
     alongside_min_m: float = Field(default=300.0, ge=0.0)
     """Courses must stay together for this long to be one way, metres."""
+    group_lines: LineGrouping = "route"
+    """What makes several routes one line: their name ("route"), or also their color (trunk lines),
+    or the network that the feed puts them in."""
     outlier_km: float = Field(default=300.0, gt=0.0)
     """A stop further than this from the network's median stop is an outlier and not drawn."""
 
@@ -63,6 +68,18 @@ class Station:
     """Which stops were made one and why; empty if the feed says so itself."""
     merge_confidence: float = 1.0
     """How sure the least sure of the merges is, 0 … 1."""
+
+
+@dataclass(frozen=True, slots=True)
+class PeriodService:
+    """How often a line runs in one part of the day."""
+
+    period: Period
+    trips: int
+    """Trips that start in the period, both directions."""
+    headway_s: int | None
+    """Median time between departures of the busier direction at its first stop, seconds; None if
+    fewer than two depart in the period."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -91,6 +108,11 @@ class Line:
     """Median time between departures of the busier direction at its first stop, seconds."""
     one_way_links: tuple[tuple[str, str], ...] = ()
     """(from, to) of links that the line runs in this direction only."""
+    periods: tuple[PeriodService, ...] = ()
+    """The parts of the day in which it runs, in the order of the day."""
+    part_service: tuple[tuple[str, str, ServicePattern], ...] = ()
+    """(start, end, service) of links on which the line runs in the peak or at night only, though
+    elsewhere it runs more."""
     sort_order: int | None = None
     """The feed's wish for the line's place in keys and bundles, smaller first."""
 

@@ -5,7 +5,7 @@ from __future__ import annotations
 import itertools
 from collections import defaultdict
 from collections.abc import Callable, Iterable, Mapping, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from gtfs_schematic.feed.model import LeftOut, Pattern
 
@@ -22,7 +22,13 @@ class Calling:
     stop_ids: Ids
     """The stop at each of the stations, for cutting the shape."""
     shape_id: str | None
-    trips: int
+    departures_s: tuple[int, ...]
+    """First departures of all trips, seconds after noon minus 12 h, sorted."""
+
+    @property
+    def trips(self) -> int:
+        """Count of trips."""
+        return len(self.departures_s)
 
 
 def collapsed(ids: Iterable[str]) -> Ids:
@@ -58,9 +64,30 @@ def callings_of(
                 (s for s in shaped.stop_ids if s in site_of), key=lambda s: site_of[s]
             )
         )
-        trips = sum(len(p.departures_s) for p in group)
-        callings.append(Calling(line_id, stations, stops, shaped.shape_id, trips))
+        departures = tuple(sorted(t for p in group for t in p.departures_s))
+        callings.append(Calling(line_id, stations, stops, shaped.shape_id, departures))
     return tuple(callings)
+
+
+def united(callings: Iterable[Calling], line_of: Mapping[str, str]) -> tuple[Calling, ...]:
+    """Give callings to wider lines, and unite those of a line that then agree.
+
+    Parameters
+    ----------
+    callings
+        Of all lines.
+    line_of
+        Per line id the id of the line that it becomes a part of.
+    """
+    found: dict[tuple[str, Ids], list[Calling]] = defaultdict(list)
+    for calling in callings:
+        found[line_of[calling.line_id], calling.stations].append(calling)
+    whole = []
+    for (line_id, _), parts in sorted(found.items()):
+        best = max(parts, key=lambda c: (c.shape_id is not None, c.trips))
+        departures = tuple(sorted(t for part in parts for t in part.departures_s))
+        whole.append(replace(best, line_id=line_id, departures_s=departures))
+    return tuple(whole)
 
 
 def without_rare(

@@ -1,4 +1,4 @@
-"""The GeoJSON of a network is what RFC 7946 asks for."""
+"""Networks are written as RFC 7946 and GraphML ask for, and read back by others."""
 
 from __future__ import annotations
 
@@ -6,9 +6,10 @@ import io
 import json
 
 import geopandas as gpd
+import networkx as nx
 import pytest
 
-from gtfs_schematic.network.export import links_layer, stations_layer, to_geojson
+from gtfs_schematic.network.export import links_layer, stations_layer, to_geojson, to_graphml
 
 
 def test_the_file_is_a_feature_collection_of_all_layers(busy_town):
@@ -58,3 +59,23 @@ def test_layers_know_their_reference_system(busy_town):
     network = busy_town.network()
     for layer in (links_layer(network), stations_layer(network)):
         assert layer.crs.to_epsg() == 4326
+
+
+def test_graphml_reads_back_as_the_same_graph(busy_town):
+    network = busy_town.network()
+    graph = nx.read_graphml(io.BytesIO(to_graphml(network)))
+    assert set(graph.nodes) == set(network.station)
+    for layer, edges in (("link", network.links), ("walk", network.walks)):
+        read = {frozenset((a, b)) for a, b, found in graph.edges(data="layer") if found == layer}
+        assert read == {frozenset((edge.start, edge.end)) for edge in edges}
+    assert graph.nodes["A"]["name"] == network.station["A"].name
+    # Stops of the row are 600 m apart on the flat ground of the test.
+    assert graph.edges["B", "C"]["length_m"] == pytest.approx(600.0, rel=0.01)
+    assert set(graph.edges["B", "C"]["lines"].split()) >= {"red", "blue", "fast"}
+    assert to_graphml(network) == to_graphml(busy_town.network())
+
+
+def test_graphml_survives_what_xml_forbids(town):
+    network = town.stop("A", 0, name="A\x0b<&>\ufffe").stop("B", 600).both("r", "A B").network()
+    graph = nx.read_graphml(io.BytesIO(to_graphml(network)))
+    assert graph.nodes["A"]["name"] == "A\N{REPLACEMENT CHARACTER}<&>\N{REPLACEMENT CHARACTER}"

@@ -2,7 +2,12 @@
 
 from __future__ import annotations
 
+from typing import TYPE_CHECKING
+
 import pytest
+
+if TYPE_CHECKING:
+    from conftest import Town
 
 
 def test_routes_of_one_short_name_that_meet_are_one_line(town):
@@ -99,3 +104,43 @@ def test_names_fall_back_to_what_there_is(town):
 def test_the_feeds_order_is_kept(town):
     network = town.row("AB").route("r", sort_order=7).both("r", "A B").network()
     assert network.lines[0].sort_order == 7
+
+
+def _trunk(town: Town) -> Town:
+    """Two branches of a trunk in one color, a third line that meets them, one far away."""
+    told = {"color": "#AA0000"}
+    return (
+        town.row("ABCDE")
+        .stops({"X": (1800, 900), "Y": (9000, 9000), "Z": (9900, 9000)})
+        .route("1", **told)
+        .route("2", **told)
+        .route("3", color="#00AA00")
+        .route("4", **told)
+        .both("1", "A B C D")
+        .both("2", "A B C X")
+        .both("3", "C E")
+        .both("4", "Y Z")
+    )
+
+
+def test_trunks_are_grouped_by_color_if_wished(town):
+    written = _trunk(town)
+    assert len(written.network().lines) == 4
+    lines = {line.id: line for line in written.network(group_lines="color").lines}
+    # The fourth has the color but meets none of the others.
+    assert set(lines) == {"1", "3", "4"}
+    assert lines["1"].route_ids == ("1", "2")
+    assert lines["1"].name == "1 / 2"
+    assert set(lines["1"].itineraries) == {("A", "B", "C", "D"), ("A", "B", "C", "X")}
+    assert lines["1"].trips == 160
+
+
+def test_a_branch_is_not_rare_among_the_trips_of_its_trunk(town):
+    written = _trunk(town).both("1", "A B C D", trips=2000)
+    line = written.network(group_lines="color").line["1"]
+    assert any("X" in itinerary for itinerary in line.itineraries)
+
+
+def test_networks_group_nothing_where_the_feed_has_none(town):
+    written = _trunk(town)
+    assert written.network(group_lines="network") == written.network()

@@ -68,3 +68,47 @@ def test_days_reach_the_line(town):
     network = replace(written, timetable=replace(written.timetable, operating_days=days)).network()
     assert network.line["x"].service == "some-days"
     assert network.line["y"].service == "all-day"
+
+
+def test_headways_by_period():
+    """A clock-face timetable: every 10 minutes in the peaks, every 30 between, none at night."""
+    peak = [*range(7 * HOUR, 9 * HOUR, 600), *range(15 * HOUR, 19 * HOUR, 600)]
+    between = range(9 * HOUR, 15 * HOUR, 1800)
+    service = service_of([_pattern([*peak, *between])], WEEK, WEEK)
+    found = {p.period: (p.trips, p.headway_s) for p in service.periods}
+    assert found == {
+        "morning peak": (12, 600),
+        "midday": (12, 1800),
+        "afternoon peak": (24, 600),
+    }
+    assert sum(p.trips for p in service.periods) == service.trips
+
+
+def test_platforms_of_a_terminus_count_together():
+    one = _pattern(range(7 * HOUR, 9 * HOUR, 1200), ("A1", "B"))
+    other = _pattern(range(7 * HOUR + 600, 9 * HOUR, 1200), ("A2", "B"))
+    apart = service_of([one, other], WEEK, WEEK)
+    assert apart.headway_s == 1200
+    assert service_of([one, other], WEEK, WEEK, {"A1": "A", "A2": "A"}).headway_s == 600
+
+
+def test_small_hours_belong_to_the_night_before():
+    service = service_of([_pattern([23 * HOUR, 24 * HOUR, 25 * HOUR])], WEEK, WEEK)
+    early = service_of([_pattern([23 * HOUR, 0, HOUR])], WEEK, WEEK)
+    for found in (service, early):
+        assert [(p.period, p.headway_s) for p in found.periods] == [("night", HOUR)]
+
+
+def test_an_extension_at_peak_only_is_told_by_its_links(town):
+    network = (
+        town.row("ABCD")
+        .run("red", "A B C", trips=40)
+        .run("red", "C B A", trips=40)
+        .run("red", "A B C D", trips=6)
+        .network()
+    )
+    line = network.line["red"]
+    assert line.itineraries == (("A", "B", "C", "D"),)
+    # Six trips from 6:00 on, every 25 minutes: all before 10:00.
+    assert line.part_service == (("C", "D", "peak"),)
+    assert line.service == "all-day"
