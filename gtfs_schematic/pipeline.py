@@ -22,6 +22,7 @@ from gtfs_schematic.config import Settings
 from gtfs_schematic.drawing import check as drawing_check
 from gtfs_schematic.drawing.compose import compose
 from gtfs_schematic.drawing.model import Drawing
+from gtfs_schematic.drawing.palette import recolored
 from gtfs_schematic.drawing.pdf import to_pdf
 from gtfs_schematic.drawing.sheet import candidate_frames
 from gtfs_schematic.drawing.svg import to_svg
@@ -152,7 +153,7 @@ def inspect(
 
     network = build_network(timetable, settings.network, progress=progress)
     _must_be_sound("network", network_check.faults(network))
-    return timetable, network
+    return timetable, recolored(network, settings.drawing)
 
 
 def files_of(result: Result, limits: Sequence[Limit] = ()) -> dict[str, bytes]:

@@ -68,6 +68,9 @@ class DrawingSettings(BaseModel):
     """Credit and licence line that the feed's publisher asks for."""
     background: str = Field(default="#FFFFFF", pattern=r"^#[0-9A-Fa-f]{6}$")
     ink: str = Field(default="#1B1F24", pattern=r"^#[0-9A-Fa-f]{6}$")
+    colors: Literal["auto", "feed", "distinct"] = "auto"
+    """"feed" keeps the feed's colours, "distinct" gives every line its own, "auto" replaces
+    those that more than half of the lines share or that look like another."""
     show_step_free: bool = False
     """Mark step-free stations; off by default, since a feed's flags need a person's check."""
 
