@@ -28,7 +28,7 @@ from gtfs_schematic.drawing.sheet import candidate_frames
 from gtfs_schematic.drawing.svg import to_svg
 from gtfs_schematic.drawing.words import sheet_title
 from gtfs_schematic.drift import check as drift_check
-from gtfs_schematic.drift.limits import Limit, judge
+from gtfs_schematic.drift.limits import Limit, judge, limits_of
 from gtfs_schematic.drift.measure import measure_edition
 from gtfs_schematic.drift.model import DriftReport
 from gtfs_schematic.drift.page import to_html
@@ -156,7 +156,7 @@ def inspect(
     return timetable, recolored(network, settings.drawing)
 
 
-def files_of(result: Result, limits: Sequence[Limit] = ()) -> dict[str, bytes]:
+def files_of(result: Result, limits: Sequence[Limit] | None = None) -> dict[str, bytes]:
     """Give the files of an edition by name: the same result always gives the same bytes.
 
     Parameters
@@ -164,9 +164,12 @@ def files_of(result: Result, limits: Sequence[Limit] = ()) -> dict[str, bytes]:
     result
         What was drawn.
     limits
-        Limits on drift; what became of them stands in the drift report.
+        Limits on drift, None for those of the settings; what became of them stands in the
+        drift report.
     """
     svg = to_svg(result.drawing)
+    if limits is None:
+        limits = limits_of(result.settings.drift)
     judged = judge(result.drift, limits)
     return {
         "diagram.svg": svg,
@@ -174,7 +177,9 @@ def files_of(result: Result, limits: Sequence[Limit] = ()) -> dict[str, bytes]:
         "edition.json": edition_to_json(result.edition),
         "drift.json": drift_to_json(result.drift, judged),
         "drift.csv": to_csv(result.drift),
-        "drift.html": to_html(result.drift, svg, title=result.edition.title, limits=judged),
+        "drift.html": to_html(
+            result.drift, result.edition, title=result.edition.title, limits=judged
+        ),
     }
 
 

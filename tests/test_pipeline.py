@@ -107,7 +107,7 @@ def test_every_stop_of_the_feed_is_drawn_or_left_out(result):
 
 
 def test_limits_go_into_the_drift_files(result):
-    files = pipeline.files_of(result, [parse_limit("residual<1e-6"), parse_limit("residual<=1")])
+    files = pipeline.files_of(result, [parse_limit("residual=1e-6"), parse_limit("residual=1")])
     assert [each["exceeded"] for each in json.loads(files["drift.json"])["limits"]] == [True, False]
     assert b"exceeded" in files["drift.html"]
 

@@ -58,10 +58,10 @@ def draw(
     FEED is a GTFS zip file or a folder; several are drawn as one network.
     """
     settings = options.settings_from(given)
-    from gtfs_schematic.drift.limits import judge, parse_limit
+    from gtfs_schematic.drift.limits import judge, limits_of
     from gtfs_schematic.edition.folder import check_target, write_folder
 
-    limits = [parse_limit(text) for text in given["limits"]]
+    limits = limits_of(settings.drift, given["limits"])
     check_target(out, overwrite=given["overwrite"])
     from gtfs_schematic.pipeline import draw as run
     from gtfs_schematic.pipeline import files_of

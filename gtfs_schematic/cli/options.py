@@ -39,20 +39,22 @@ limit = click.option(
     "--limit",
     "limits",
     multiple=True,
-    metavar="MEASURE<VALUE",
-    help="Exit with 4 if the drift exceeds this, such as 'residual<0.1' (quote it); repeatable.",
+    metavar="NAME=VALUE",
+    help="Exit with 4 if the drift exceeds this, such as displacement-p95=8%; repeatable.",
+)
+
+config = click.option(
+    "--config",
+    type=click.Path(path_type=Path),
+    metavar="FILE",
+    help="Settings as TOML; configs/standard.toml explains them all.",
 )
 
 _FEED_OPTIONS = (
     click.option("--date", metavar="DATE", help="Service date: YYYY-MM-DD, or busiest."),
     click.option("--mode", multiple=True, metavar="MODE", help="Keep this mode only; repeatable."),
     click.option("--language", metavar="TAG", help="Second language for names, as a BCP 47 tag."),
-    click.option(
-        "--config",
-        type=click.Path(path_type=Path),
-        metavar="FILE",
-        help="Settings as TOML; configs/standard.toml explains them all.",
-    ),
+    config,
 )
 _DRAW_OPTIONS = (
     click.option("--sheet", metavar="SIZE", help="A4, A3 … 4A0, auto, or millimetres: 420x297."),

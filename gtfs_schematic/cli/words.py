@@ -93,13 +93,43 @@ def drift(report: DriftReport) -> list[str]:
         f"{100 * figures.bearing_over_45:.1f} % of the length turned by more than 45°, "
         f"{100 * figures.bearing_over_90:.1f} % by more than 90°"
     )
-    return [likeness, displacement, bearings]
+    return [likeness, displacement, bearings, *misled(report)]
+
+
+def misled(report: DriftReport) -> list[str]:
+    """Say whom a diagram misleads."""
+    pairs = (
+        f"  pairs: {count(len(report.false_neighbors), 'false neighbor')}, "
+        f"{count(len(report.hidden_walks), 'hidden walk')}, "
+        f"{count(len(report.competing), 'pair')} of competing routes compared wrongly"
+    )
+    if report.journeys is None:
+        return [pairs, "  journeys: not measured, since the edition holds no timetable"]
+    over = dict(report.journeys.over)[1.15]
+    journeys = (
+        f"  journeys: {100 * over:.1f} % of {report.journeys.pairs:,} take over 15 % longer by the "
+        f"way that looks shortest, the worst {100 * (report.journeys.largest - 1):.0f} %"
+    )
+    return [pairs, journeys]
+
+
+def side_by_side(report: DriftReport, other: DriftReport) -> list[str]:
+    """List every figure of two drawings."""
+    from gtfs_schematic.drift.figure import written
+    from gtfs_schematic.drift.figures import FIGURES
+
+    rows = [
+        (figure.name, *(written(figure, figure.read(each)) for each in (report, other)))
+        for figure in FIGURES
+    ]
+    head = ("Side by side", "that drawing", "this edition")
+    return [f"{name:<28}{one:>16}{two:>16}" for name, one, two in (head, *rows)]
 
 
 def limits(results: Iterable[LimitResult]) -> list[str]:
     """Say which limits are kept and which are exceeded."""
     return [
         f"Limit {result.limit}: {'EXCEEDED' if result.exceeded else 'kept'} "
-        f"(measured {result.measured:.4g})"
+        f"(measured {result.written})"
         for result in results
     ]

@@ -1,4 +1,4 @@
-"""Small charts as inline SVG: a histogram, and arrows over a diagram."""
+"""Small charts as inline SVG."""
 
 from __future__ import annotations
 
@@ -8,10 +8,7 @@ from html import escape
 
 import numpy as np
 
-from gtfs_schematic.drift.model import DriftReport
-
 _WIDTH, _HEIGHT, _FOOT = 360.0, 150.0, 34.0
-_LEAST_ARROW_MM = 0.8
 
 
 def histogram(values: Sequence[float], edges: Sequence[float], title: str, unit: str) -> str:
@@ -48,35 +45,4 @@ def histogram(values: Sequence[float], edges: Sequence[float], title: str, unit:
             f'<text x="{middle:.1f}" y="{_HEIGHT - _FOOT + 13:.1f}">{name}</text>'
         )
     parts.append(f'<text x="{_WIDTH / 2:g}" y="{_HEIGHT - 4:g}">{escape(unit)}</text></svg>')
-    return "".join(parts)
-
-
-def arrows(report: DriftReport, view_box: str) -> str:
-    """Draw an arrow from where each station would lie to scale to where it is drawn.
-
-    Parameters
-    ----------
-    report
-        Places in sheet millimetres, y down.
-    view_box
-        The diagram's own ``viewBox``, so that both lie on each other.
-    """
-    parts = [f'<svg class="arrows" viewBox="{escape(view_box)}" aria-hidden="true">']
-    for station in report.stations:
-        (x, y), (u, v) = station.true_mm, station.drawn_mm
-        length = math.hypot(u - x, v - y)
-        if length < _LEAST_ARROW_MM:
-            continue
-        head = min(2.2, 0.4 * length)
-        along = ((u - x) / length, (v - y) / length)
-        base = (u - head * along[0], v - head * along[1])
-        side = (-along[1] * head * 0.4, along[0] * head * 0.4)
-        parts.append(
-            f"<g><title>{escape(station.name)}: {station.displacement_m:.0f} m</title>"
-            f'<circle cx="{x:.2f}" cy="{y:.2f}" r="0.7"/>'
-            f'<path d="M{x:.2f} {y:.2f}L{base[0]:.2f} {base[1]:.2f}"/>'
-            f'<path class="head" d="M{u:.2f} {v:.2f}L{base[0] + side[0]:.2f} '
-            f'{base[1] + side[1]:.2f}L{base[0] - side[0]:.2f} {base[1] - side[1]:.2f}Z"/></g>'
-        )
-    parts.append("</svg>")
     return "".join(parts)

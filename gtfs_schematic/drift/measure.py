@@ -101,6 +101,7 @@ def measure(
         links=changed,
         summary=summary_of(moved, changed, ground, sheet, settings),
         warp=warp_of(field, shift.scale),
+        settings=settings,
         typical_link_mm=float(np.median([k.drawn_length_mm for k in changed])) if changed else 0.0,
     )
 

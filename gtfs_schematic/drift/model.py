@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
 from pydantic import BaseModel, ConfigDict, Field
 
@@ -258,5 +258,7 @@ class DriftReport:
     false_neighbors: tuple[MisleadingPair, ...] = ()
     hidden_walks: tuple[MisleadingPair, ...] = ()
     competing: tuple[CompetingRoutes, ...] = ()
+    settings: DriftSettings = field(default_factory=DriftSettings)
+    """What the lists of pairs and the journeys were measured with."""
     journeys: Journeys | None = None
     """None if the diagram knows no timetable."""

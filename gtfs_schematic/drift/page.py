@@ -2,167 +2,251 @@
 
 from __future__ import annotations
 
-import re
+import importlib.resources
+import itertools
+import json
 from collections.abc import Sequence
+from dataclasses import dataclass
 from html import escape
 
-from gtfs_schematic.drift.chart import arrows, histogram
+from gtfs_schematic.drift.chart import histogram
+from gtfs_schematic.drift.figure import Figure, written
+from gtfs_schematic.drift.figures import FIGURES
 from gtfs_schematic.drift.limits import LimitResult
 from gtfs_schematic.drift.model import CAUTION, DriftReport
-from gtfs_schematic.errors import EditionError
+from gtfs_schematic.drift.picture import SCALE_EDGES, SHARE_EDGES, TURN_EDGES, picture
+from gtfs_schematic.drift.placed import Diagram
+from gtfs_schematic.drift.tables import tables
+from gtfs_schematic.drift.verdict import verdict_of
 
-_STYLE = """
-body{font:16px/1.45 system-ui,sans-serif;margin:0 auto;padding:1.2rem;max-width:76rem;
-color:#1b1f24;background:#fff}
-table{border-collapse:collapse;margin:.6rem 0}
-th,td{text-align:left;padding:.25rem .8rem .25rem 0;border-bottom:1px solid #c9ced6}
-td.n,th.n{text-align:right;font-variant-numeric:tabular-nums}
-.caution{border-left:.3rem solid #a3470b;padding:.2rem .8rem;background:#fdf3ec}
-.over{color:#9c1c1c;font-weight:600}
-.charts{display:flex;flex-wrap:wrap;gap:1.5rem}
-.charts figure{margin:0;flex:1 1 20rem}
-.chart{width:100%;max-width:34rem;height:auto}
-.chart rect{fill:#3d5a80}
-.chart text{font:11px system-ui,sans-serif;text-anchor:middle;fill:#1b1f24}
-.sheet{position:relative;border:1px solid #c9ced6}
-.sheet>svg{display:block;width:100%;height:auto}
-.sheet>svg.arrows{position:absolute;inset:0;overflow:visible}
-.arrows path{stroke:#c2185b;stroke-width:.5;fill:none}
-.arrows .head{fill:#c2185b;stroke:none}
-.arrows circle{fill:#fff;stroke:#c2185b;stroke-width:.35}
-#show:not(:checked)~.sheet .arrows{display:none}
-details{margin:.8rem 0}
-"""
+_SHARE_BOUNDS = (0, 1, 2, 4, 6, 8, 12, 16, 24)
+_BEARING_BOUNDS = (0, 5, 10, 15, 22.5, 45, 90)
+_RATIO_BOUNDS = (0, 0.25, 0.5, 0.8, 1.25, 2, 4)
 
-_SHARE_EDGES = (0, 1, 2, 4, 6, 8, 12, 16, 24)
-_BEARING_EDGES = (0, 5, 10, 15, 22.5, 45, 90)
+_TOP = ("displacement-p95", "bearing-over-45", "octant-agreement", "planning-error-over-1.15")
+
+
+@dataclass(frozen=True, slots=True)
+class Beside:
+    """Another drawing of the same network, to be told side by side."""
+
+    title: str
+    report: DriftReport
+    diagram: Diagram
 
 
 def to_html(
-    report: DriftReport, svg: bytes, *, title: str, limits: Sequence[LimitResult] = ()
+    report: DriftReport,
+    diagram: Diagram,
+    *,
+    title: str,
+    limits: Sequence[LimitResult] = (),
+    beside: Beside | None = None,
 ) -> bytes:
-    """Write the page: figures, charts, tables, and the diagram with displacement arrows.
+    """Write the page: a verdict, the network that moves, tables, charts and definitions.
 
     Parameters
     ----------
     report
         What was measured.
-    svg
-        The diagram; its ``viewBox`` is in sheet millimetres.
+    diagram
+        Of what; for the courses of links.
     title
-        Title of the edition.
+        Title of the diagram.
     limits
         What became of the limits that the user set.
-
-    Raises
-    ------
-    EditionError
-        If `svg` is no SVG with a ``viewBox``.
+    beside
+        Another drawing to compare with.
     """
-    text = svg.decode("utf-8")
-    start = text.find("<svg")
-    box = re.search(r'viewBox="([^"]+)"', text)
-    if start < 0 or box is None:
-        raise EditionError("diagram.svg: no <svg> element with a viewBox. Draw the edition again.")
-    share = [100.0 * station.displacement_share for station in report.stations]
-    change = [abs(k.bearing_change_deg) for k in report.links if k.bearing_change_deg is not None]
     name = escape(title)
+    svg, data = picture(report, diagram, label=f"The network of {title} as drawn")
+    # A script ends at "</", wherever it stands.
+    places = json.dumps(data, ensure_ascii=False, separators=(",", ":")).replace("</", "<\\/")
     body = f"""<!DOCTYPE html>
 <html lang="en"><head><meta charset="utf-8">
 <meta name="viewport" content="width=device-width,initial-scale=1">
-<title>Drift of {name}</title><style>{_STYLE}</style></head><body>
-<h1>Drift of {name}</h1>
-<p>How far and how the diagram departs from geography.</p>
-<p class="caution">{escape(CAUTION)}</p>
-{_limits(limits)}{_fits(report)}{_summary(report)}
-<h2>Spread</h2><div class="charts">
-<figure>{histogram(share, _SHARE_EDGES, "Stations by displacement", "% of the diagonal")}
-<figcaption>Stations by displacement</figcaption></figure>
-<figure>{histogram(change, _BEARING_EDGES, "Links by bearing change", "degrees")}
-<figcaption>Links by change of bearing</figcaption></figure></div>
-<h2>On the diagram</h2>
-<p>Each arrow leads from where the station would lie on a true map of the same size to where it
-is drawn.</p>
-<input type="checkbox" id="show" checked> <label for="show">Show the arrows</label>
-<div class="sheet">{text[start:].strip()}{arrows(report, box.group(1))}</div>
-{_stations(report)}{_links(report)}
-</body></html>
+<title>Drift of {name}</title><link rel="icon" href="data:,">
+<style>{_resource("page.css")}</style></head><body>
+<header><h1>Drift of {name}</h1>
+<p class="soft">How far the diagram departs from the ground, and whom it misleads.</p></header>
+<main>{_key_figures(report)}{_verdict(report)}{_limits(limits)}
+<div class="board"><section class="stage" aria-label="Picture">{_stage(svg)}</section>
+<section aria-label="Tables"><h2>Look closer</h2>
+<p class="soft">Choose a name to mark it on the picture; choose it again, or press Escape, to
+clear. Heads of columns sort.</p>{tables(report, diagram)}</section></div>
+{_charts(report)}{_other(beside)}{_figures(report, title, beside)}
+<p class="caution">{escape(CAUTION)}</p></main>
+<script type="application/json" id="data">{places}</script>
+<script>{_resource("page.js")}</script></body></html>
 """
     return body.encode()
+
+
+def _resource(name: str) -> str:
+    return (importlib.resources.files(__package__) / name).read_text("utf-8")
+
+
+def _named(name: str) -> Figure:
+    return next(figure for figure in FIGURES if figure.name == name)
+
+
+def _key_figures(report: DriftReport) -> str:
+    cells = "".join(
+        f"<div><dt>{escape(_named(name).label)}</dt>"
+        f"<dd>{written(_named(name), _named(name).read(report))}</dd></div>"
+        for name in _TOP
+    )
+    scale = (
+        "<div><dt>Scale, north up</dt>"
+        f"<dd>{report.north_up.scale_mm_per_km:.3g} mm per km</dd></div>"
+    )
+    return f'<dl class="key-figures">{cells}{scale}</dl>'
+
+
+def _verdict(report: DriftReport) -> str:
+    verdict = verdict_of(report)
+    parts = (
+        ("good", "What holds", verdict.good),
+        ("bad", "What to look at", verdict.bad),
+    )
+    sections = (
+        f'<section class="{kind}"><h2>{head}</h2>'
+        f"<ul>{''.join(f'<li>{escape(text)}</li>' for text in texts)}</ul></section>"
+        for kind, head, texts in parts
+        if texts
+    )
+    return f'<div class="verdict">{"".join(sections)}</div>'
 
 
 def _limits(limits: Sequence[LimitResult]) -> str:
     if not limits:
         return ""
     rows = "".join(
-        f"<tr><td>{escape(str(result.limit))}</td><td class=n>{result.measured:.4g}</td>"
+        f"<tr><td>{escape(result.limit.figure.label)}</td><td><code>{escape(str(result.limit))}"
+        f'</code></td><td class="n">{result.written}</td>'
         f"<td{' class=over>exceeded' if result.exceeded else '>kept'}</td></tr>"
         for result in limits
     )
-    return _table("Limits", ("Limit", "Measured", "Result"), rows)
+    head = "".join(f'<th scope="col">{cell}</th>' for cell in ("Measure", "Limit"))
+    return (
+        f'<section><h2>Limits</h2><table class="limits"><thead><tr>{head}'
+        f'<th scope="col" class="n">Measured</th><th scope="col">Result</th></tr></thead>'
+        f"<tbody>{rows}</tbody></table></section>"
+    )
 
 
-def _fits(report: DriftReport) -> str:
+def _stage(svg: str) -> str:
+    hues = (("d", "displacement"), ("t", "turn"), ("s", "scale"))
+    radios = "".join(
+        f'<label><input type="radio" name="hue" value="{key}"{" checked" if key == "d" else ""}> '
+        f"{word}</label>"
+        for key, word in hues
+    )
+    boxes = "".join(
+        f'<label><input type="checkbox" data-toggles="{key}" checked> {word}</label>'
+        for key, word in (("arrows", "arrows"), ("grid", "grid"))
+    )
+    return f"""<figure id="figure" data-hue="d"><div class="controls">
+<div class="slide"><label for="move">Ground</label>
+<input type="range" id="move" min="0" max="100" step="1" value="100"
+ aria-label="From the ground to the diagram"><span aria-hidden="true">Diagram</span></div>
+<fieldset><legend>Color shows</legend>{radios}</fieldset>
+<fieldset><legend>Show</legend>{boxes}</fieldset></div>
+{svg}{_legends()}<p class="said soft" id="said" aria-live="polite">Each arrow leads from where a
+true map of the same size has a station to where it is drawn; the grid is square on the ground.
+</p></figure>"""
+
+
+def _legends() -> str:
+    shares = [f"{100 * edge:g} %" for edge in SHARE_EDGES]
+    turns = [f"{abs(edge):g}°" for edge in TURN_EDGES]
+    scales = [f"{edge:g}" for edge in SCALE_EDGES]
+    return "".join(
+        f'<ul class="legend {key}" aria-label="{label}">'
+        + "".join(
+            f'<li><i style="background:var(--{hue}{i})"></i>{text}</li>'
+            for i, text in enumerate(texts)
+        )
+        + "</ul>"
+        for key, hue, label, texts in (
+            (
+                "d",
+                "d",
+                "Displacement, share of the diagonal",
+                (
+                    f"under {shares[0]} of the diagonal",
+                    *(f"{a} to {b}" for a, b in itertools.pairwise(shares)),
+                    f"over {shares[-1]}",
+                ),
+            ),
+            (
+                "t",
+                "v",
+                "Turn",
+                (
+                    f"over {turns[0]} left",
+                    f"over {turns[1]} left",
+                    "about true",
+                    f"over {turns[2]} right",
+                    f"over {turns[3]} right",
+                ),
+            ),
+            (
+                "s",
+                "v",
+                "Scale against the typical one",
+                (
+                    f"under {scales[0]} of the typical scale",
+                    f"{scales[0]} to {scales[1]}",
+                    "about typical",
+                    f"{scales[2]} to {scales[3]}",
+                    f"over {scales[3]}",
+                ),
+            ),
+        )
+    )
+
+
+def _charts(report: DriftReport) -> str:
+    share = [100.0 * station.displacement_share for station in report.stations]
+    change = [abs(k.bearing_change_deg) for k in report.links if k.bearing_change_deg is not None]
+    ratio = [k.length_ratio for k in report.links if k.length_ratio is not None]
+    charts = (
+        (share, _SHARE_BOUNDS, "Stations by displacement", "% of the diagonal"),
+        (change, _BEARING_BOUNDS, "Links by turn", "degrees, either way"),
+        (ratio, _RATIO_BOUNDS, "Links by length ratio", "drawn over true, 1 is typical"),
+    )
+    figures = "".join(
+        f"<figure><h3>{title}</h3>{histogram(values, bounds, title, unit)}</figure>"
+        for values, bounds, title, unit in charts
+    )
+    return f'<section class="charts" aria-label="Charts">{figures}</section>'
+
+
+def _other(beside: Beside | None) -> str:
+    if beside is None:
+        return ""
+    label = f"The network of {beside.title} as drawn"
+    svg, _ = picture(beside.report, beside.diagram, label=label)
+    still = svg.replace('class="net"', 'class="net still"', 1)
+    return (
+        f"<section><h2>Beside it: {escape(beside.title)}</h2>"
+        f'<figure class="sheet-other" data-hue="d">{still}</figure></section>'
+    )
+
+
+def _figures(report: DriftReport, title: str, beside: Beside | None) -> str:
+    other = f'<th scope="col" class="n">{escape(beside.title)}</th>' if beside else ""
     rows = "".join(
-        f"<tr><td>{name}</td><td class=n>{fit.scale_mm_per_km:.2f}</td>"
-        f"<td class=n>{fit.rotation_deg:.1f}</td><td class=n>{fit.residual:.4f}</td></tr>"
-        for name, fit in (("North kept up", report.north_up), ("Free", report.free))
+        f"<tr><td>{escape(figure.label)}<br><code>{figure.name}</code></td>"
+        f'<td class="n">{written(figure, figure.read(report))}</td>'
+        + (f'<td class="n">{written(figure, figure.read(beside.report))}</td>' if beside else "")
+        + f"<td>{escape(figure.meaning)}</td></tr>"
+        for figure in FIGURES
     )
-    head = ("Best fit", "Scale, mm per km", "Turn, degrees", "Residual (0 true to scale)")
-    return _table("Likeness to a true map", head, rows)
-
-
-def _summary(report: DriftReport) -> str:
-    figures = report.summary
-    lines = (
-        ("Median displacement", f"{100 * figures.displacement_median_share:.1f} % of the diagonal"),
-        ("Largest displacement", f"{100 * figures.displacement_max_share:.1f} % of the diagonal"),
-        ("Diagonal of the network", f"{report.diagonal_m / 1000:.1f} km"),
-        ("Mean change of bearing, by length", f"{figures.bearing_mean_deg:.1f}°"),
-        ("95 % of links change by less than", f"{figures.bearing_p95_deg:.1f}°"),
-        ("Length that turns by more than 45°", f"{100 * figures.bearing_over_45:.1f} %"),
-        ("Length that turns by more than 90°", f"{100 * figures.bearing_over_90:.1f} %"),
-        ("Unevenness of scale (s.d. of log length ratio)", f"{figures.log_length_sd:.2f}"),
-        ("Pairs in turned-round order", f"{100 * figures.order_flips:.1f} %"),
-        ("Correlation of true and drawn distance", f"{figures.distance_correlation:.2f}"),
-    )
-    rows = "".join(f"<tr><td>{name}</td><td class=n>{value}</td></tr>" for name, value in lines)
-    return _table("In a few figures", ("Measure", "Value"), rows)
-
-
-def _stations(report: DriftReport) -> str:
-    ranked = sorted(report.stations, key=lambda s: (-s.displacement_m, s.station_id))
-    rows = "".join(
-        f"<tr><td>{escape(s.name)}</td><td>{escape(s.station_id)}</td>"
-        f"<td class=n>{s.displacement_m:.0f}</td><td class=n>{s.direction_deg:.0f}</td>"
-        f"<td class=n>{100 * s.displacement_share:.1f}</td></tr>"
-        for s in ranked
-    )
-    head = ("Station", "Id", "Displacement, m", "Towards, degrees", "% of diagonal")
-    return f"<details><summary>All stations, farthest first</summary>{_rows(head, rows)}</details>"
-
-
-def _links(report: DriftReport) -> str:
-    ranked = sorted(report.links, key=lambda k: (-abs(k.bearing_change_deg or 0.0), k.link_id))
-    rows = "".join(
-        f"<tr><td>{escape(k.link_id)}</td><td class=n>{k.true_length_m:.0f}</td>"
-        f"<td class=n>{k.drawn_length_mm:.1f}</td>"
-        f"<td class=n>{_known(k.bearing_change_deg, 1)}</td>"
-        f"<td class=n>{_known(k.length_ratio, 2)}</td></tr>"
-        for k in ranked
-    )
-    head = ("Link", "True, m", "Drawn, mm", "Turn, degrees", "Length ratio")
-    return f"<details><summary>All links, most turned first</summary>{_rows(head, rows)}</details>"
-
-
-def _known(value: float | None, digits: int) -> str:
-    return "–" if value is None else f"{value:.{digits}f}"
-
-
-def _table(title: str, head: Sequence[str], rows: str) -> str:
-    return f"<h2>{title}</h2>{_rows(head, rows)}"
-
-
-def _rows(head: Sequence[str], rows: str) -> str:
-    cells = "".join(f'<th scope="col">{escape(cell)}</th>' for cell in head)
-    return f"<table><thead><tr>{cells}</tr></thead><tbody>{rows}</tbody></table>"
+    head = escape(title) if beside else "Value"
+    return f"""<section class="figures"><h2>Every figure and what it means</h2>
+<p class="soft">The names in code are those of limits and of <code>drift.json</code>. The network's
+diagonal is {report.diagonal_m / 1000.0:.1f} km.</p>
+<table><thead><tr><th scope="col">Measure</th><th scope="col" class="n">{head}</th>{other}
+<th scope="col">Meaning</th></tr></thead><tbody>{rows}</tbody></table></section>"""

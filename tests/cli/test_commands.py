@@ -96,7 +96,7 @@ def test_drift_speaks(edition, capsys):
 
 
 def test_drift_as_json_from_the_file_itself(edition, capsys):
-    assert run(["drift", str(edition / "edition.json"), "--json", "--limit", "residual<1"]) == 0
+    assert run(["drift", str(edition / "edition.json"), "--json", "--limit", "residual=1"]) == 0
     document = json.loads(capsys.readouterr().out)
     assert [row["id"] for row in document["stations"]] == ["a", "b", "c"]
     assert document["limits"][0]["exceeded"] is False
@@ -109,11 +109,12 @@ def test_drift_as_csv(edition, capsysbinary):
 
 
 def test_an_exceeded_limit_is_exit_code_4(edition, capsys):
-    assert run(["drift", str(edition), "--limit", "bearing<180", "--limit", "residual<1e-9"]) == 4
+    limits = ["--limit", "bearing-max=180", "--limit", "residual=1e-9"]
+    assert run(["drift", str(edition), *limits]) == 4
     out = capsys.readouterr().out
-    assert "Limit bearing<180: kept" in out
-    assert "Limit residual<1e-09: EXCEEDED" in out
-    assert run(["drift", str(edition), "--json", "--limit", "residual<1e-9"]) == 4
+    assert "Limit bearing-max=180: kept" in out
+    assert "Limit residual=1e-09: EXCEEDED" in out
+    assert run(["drift", str(edition), "--json", "--limit", "residual=1e-9"]) == 4
     assert "EXCEEDED" in capsys.readouterr().err
 
 
@@ -127,7 +128,7 @@ def test_an_exceeded_limit_is_exit_code_4(edition, capsys):
         (["draw", "x.zip", "--out", "o", "--sheet", "A9"], 2, "sheet.size = 'A9'"),
         (["draw", "x.zip", "--out", "o", "--fidelity", "2"], 2, "layout.fidelity = 2"),
         (["draw", "x.zip", "--out", "o", "--effort", "huge"], 2, "layout.effort = 'huge'"),
-        (["draw", "x.zip", "--out", "o", "--limit", "residul<1"], 2, "Did you mean residual"),
+        (["draw", "x.zip", "--out", "o", "--limit", "residul=1"], 2, "Did you mean residual"),
         (["draw", "x.zip", "--out", "o", "--config", "no.toml"], 2, "no.toml: cannot read"),
         (["drift", "nowhere"], 3, "nowhere: cannot read the edition"),
         (["drift", "nowhere", "--limit", "x"], 2, "not of the form"),
@@ -261,7 +262,7 @@ def test_demo_writes_the_feeds_once(capsys, tmp_path):
 
 
 def test_a_defect_is_reported_without_a_traceback(edition, capsys, monkeypatch):
-    def broken(_: object) -> None:
+    def broken(*_: object) -> None:
         raise ZeroDivisionError("oops")
 
     monkeypatch.setattr("gtfs_schematic.drift.measure.measure_edition", broken)
@@ -278,10 +279,10 @@ def test_a_defect_is_reported_without_a_traceback(edition, capsys, monkeypatch):
 def test_ctrl_c_is_no_defect(edition, capsys, monkeypatch):
     """Also where compiled code wraps it in another error."""
 
-    def stopped(_: object) -> None:
+    def stopped(*_: object) -> None:
         raise KeyboardInterrupt
 
-    def wrapped(_: object) -> None:
+    def wrapped(*_: object) -> None:
         raise SystemError("wrapped") from KeyboardInterrupt()
 
     for interrupted in (stopped, wrapped):

@@ -1,0 +1,114 @@
+"""Small diagrams that know a timetable, for tests of the drift."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from gtfs_schematic.drift.placed import TimedPattern
+from gtfs_schematic.geometry import Point
+
+METRES_PER_DEGREE = 111_319.49
+"""Along the equator of WGS 84: 2π · 6378137 m / 360."""
+
+
+@dataclass(frozen=True)
+class Stop:
+    """A drawn station on the equator: x, y in metres north-east of (0, 0)."""
+
+    id: str
+    x_m: float
+    y_m: float
+    x_mm: float
+    y_mm: float
+    group: str = ""
+    change_s: int | None = None
+
+    @property
+    def name(self) -> str:
+        """Name of the station."""
+        return f"Stop {self.id.upper()}"
+
+    @property
+    def stop_ids(self) -> tuple[str, ...]:
+        """Two platforms."""
+        return (f"{self.id}1", f"{self.id}2")
+
+    @property
+    def lon(self) -> float:
+        """Degrees east."""
+        return self.x_m / METRES_PER_DEGREE
+
+    @property
+    def lat(self) -> float:
+        """Degrees north."""
+        return self.y_m / METRES_PER_DEGREE
+
+
+@dataclass(frozen=True)
+class Rail:
+    """A drawn link."""
+
+    id: str
+    start: str
+    end: str
+    lines: tuple[str, ...]
+    path_mm: tuple[Point, ...]
+    time_s: int | None = None
+
+
+@dataclass(frozen=True)
+class Named:
+    """A line."""
+
+    id: str
+    name: str
+    color: str = "#AA0000"
+
+
+@dataclass(frozen=True)
+class Drawn:
+    """A whole diagram."""
+
+    stations: tuple[Stop, ...]
+    links: tuple[Rail, ...]
+    walks: tuple[Rail, ...]
+    lines: tuple[Named, ...]
+    patterns: tuple[TimedPattern, ...] = ()
+
+
+def rail(key: str, a: Stop, b: Stop, *lines: str, time_s: int | None = None) -> Rail:
+    """Join two stops by a straight link."""
+    ends = ((a.x_mm, a.y_mm), (b.x_mm, b.y_mm))
+    return Rail(key, a.id, b.id, lines, ends, time_s)
+
+
+def two_ways() -> Drawn:
+    """Draw a slow line short and a fast one long, from A to D; the worked example of a test.
+
+    Line 1 runs A B D, line 2 A C D; a walk joins D and E, which line 3 joins with F.
+    """
+    a, b = Stop("a", 0, 0, 0, 0, "a"), Stop("b", 1000, 900, 10, -10, "b")
+    c = Stop("c", 1000, -900, 10, 30, "c")
+    d = Stop("d", 2000, 0, 20, 0, "d", change_s=60)
+    e, f = Stop("e", 2100, 0, 25, 0, "d"), Stop("f", 3000, 0, 35, 0, "f")
+    hour = tuple(range(8 * 3600, 12 * 3600, 600))
+    return Drawn(
+        stations=(a, b, c, d, e, f),
+        links=(
+            rail("ab", a, b, "1"),
+            rail("bd", b, d, "1"),
+            rail("ac", a, c, "2"),
+            rail("cd", c, d, "2"),
+            rail("ef", e, f, "3"),
+        ),
+        walks=(rail("de", d, e, time_s=90),),
+        lines=(Named("1", "1"), Named("2", "2"), Named("3", "3")),
+        patterns=(
+            TimedPattern("1", ("a", "b", "d"), (0, 500, 1000), hour),
+            TimedPattern("1", ("d", "b", "a"), (0, 500, 1000), hour),
+            TimedPattern("2", ("a", "c", "d"), (0, 200, 400), hour),
+            TimedPattern("2", ("d", "c", "a"), (0, 200, 400), hour),
+            TimedPattern("3", ("e", "f"), (0, 100), hour[::2]),
+            TimedPattern("3", ("f", "e"), (0, 100), hour[::2]),
+        ),
+    )
