@@ -6,6 +6,7 @@ import itertools
 from collections import defaultdict
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
+from typing import TypedDict
 
 import networkx as nx
 import shapely
@@ -22,6 +23,17 @@ Pair = tuple[str, str]
 _NEAR_TRACK = 2.0
 """A station that a fast train passes lies within this many `alongside_m` of its shape: a merged
 station's place may be off its tracks by as much again as a kerbside stop."""
+_PART_WAY = 1.03
+"""A step that leaves a track part-way may be so many times as long over it as straight: with a bend
+of 28° at its middle it is (1 / cos 14°)."""
+
+
+class Edge(TypedDict):
+    """What the graph of steps knows of two stations that follow each other."""
+
+    length: float
+    lines: set[str]
+    ways: set[str]
 
 
 @dataclass(frozen=True, slots=True)
@@ -111,7 +123,9 @@ def expresses(
     - where the step has a shape: every station on it lies near the shape;
     - where it has none, and off the street also where no station lies near: one line of the
       same kind calls all along it. A fast railway may take a short cut of its own; on the
-      street a shape elsewhere means another street.
+      street a shape elsewhere means another street;
+    - where it has none, off the street: the step leaves such a track part-way, past two of its
+      stations at least, and the track up to there and the rest, straight, are hardly longer.
     """
     graph = nx.Graph()
     dots = {station: shapely.points(place) for station, place in sorted(at.items())}
@@ -120,13 +134,17 @@ def expresses(
         way = _way_near_shape(step, graph, dots, settings) if step.shaped else None
         if way is None and not (step.shaped and "street" in step.ways):
             way = _way_of_one_line(step, graph, settings)
+        if way is None and not step.shaped and "street" not in step.ways:
+            way = _way_part_way(step, graph, at)
         if way is None:
-            a, b = step.pair
-            graph.add_edge(a, b, length=distance(at[a], at[b]), lines=set(), ways=set())
             way = step.pair
         else:
             over[step.pair] = way
         for a, b in itertools.pairwise(way):
+            if (min(a, b), max(a, b)) in over:
+                continue
+            if not graph.has_edge(a, b):
+                graph.add_edge(a, b, length=distance(at[a], at[b]), lines=set(), ways=set())
             graph.edges[a, b]["lines"] |= step.lines
             graph.edges[a, b]["ways"] |= step.ways
     return over
@@ -146,11 +164,11 @@ def _way_near_shape(
     radius = _NEAR_TRACK * settings.alongside_m
     near: dict[str, bool] = {a: True, b: True}
 
-    def cost(_u: str, v: str, edge: Mapping[str, object]) -> float | None:
+    def cost(_u: str, v: str, edge: Edge) -> float | None:
         if v not in near:
             near[v] = bool(shapely.dwithin(course, dots[v], radius))
-        usable = near[v] and not step.ways.isdisjoint(edge["ways"])  # type: ignore[arg-type]
-        return float(edge["length"]) if usable else None  # type: ignore[arg-type]
+        usable = near[v] and not step.ways.isdisjoint(edge["ways"])
+        return edge["length"] if usable else None
 
     return _shortest(graph, step, cost, settings.express_detour * step.length)
 
@@ -166,15 +184,40 @@ def _way_of_one_line(step: Step, graph: nx.Graph, settings: NetworkSettings) -> 
     ways = []
     for line in lines:
 
-        def cost(_u: str, _v: str, edge: Mapping[str, object], line: str = line) -> float | None:
-            usable = line in edge["lines"] and not step.ways.isdisjoint(edge["ways"])  # type: ignore[operator,arg-type]
-            return float(edge["length"]) if usable else None  # type: ignore[arg-type]
+        def cost(_u: str, _v: str, edge: Edge, line: str = line) -> float | None:
+            usable = line in edge["lines"] and not step.ways.isdisjoint(edge["ways"])
+            return edge["length"] if usable else None
 
         way = _shortest(graph, step, cost, settings.express_detour * step.length)
         if way is not None:
             ways.append(way)
     # Most stations first: the most local of the local tracks.
     return min(ways, key=lambda way: (-len(way), way), default=None)
+
+
+def _way_part_way(step: Step, graph: nx.Graph, at: Mapping[str, Point]) -> Ids | None:
+    """Follow the track of one line from either end as far as it leads towards the other."""
+    ways: list[tuple[float, Ids]] = []
+    for a, b in (step.pair, step.pair[::-1]):
+        if a not in graph:
+            continue
+        limit = _PART_WAY * distance(at[a], at[b])
+        for line in sorted({line for _, _, ids in graph.edges(a, data="lines") for line in ids}):
+
+            def cost(_u: str, v: str, edge: Edge, line: str = line, b: str = b) -> float | None:
+                usable = line in edge["lines"] and not step.ways.isdisjoint(edge["ways"])
+                return edge["length"] if usable and v != b else None
+
+            lengths, paths = nx.single_source_dijkstra(graph, a, cutoff=limit, weight=cost)
+            ways += [
+                (length, (*paths[c], b))
+                for c, length in lengths.items()
+                if len(paths[c]) > 2 and length + distance(at[c], at[b]) <= limit
+            ]
+    if not ways:
+        return None
+    _, way = min(ways, key=lambda found: (-found[0], found[1]))
+    return way if way[0] == step.pair[0] else way[::-1]
 
 
 def _shortest(graph: nx.Graph, step: Step, cost: object, limit: float) -> Ids | None:

@@ -2,7 +2,10 @@
 
 from __future__ import annotations
 
+import math
 from typing import TYPE_CHECKING
+
+import pytest
 
 from gtfs_schematic.network.model import Network
 
@@ -199,3 +202,110 @@ def test_ids_with_the_joining_mark_stay_apart(town):
     places = {"a~b": (0, 0), "c": (600, 0), "a": (0, 900), "b~c": (600, 900)}
     network = town.stops(places).both("x", ["a~b", "c"]).both("y", ["a", "b~c"]).network()
     assert len({link.id for link in network.links}) == 2
+
+
+def test_an_express_without_a_shape_leaves_the_local_track_where_it_leads_away(town):
+    def written(y: float) -> Network:
+        return (
+            town.row("ABCDEF")
+            .stop("Z", 6000, y)
+            .both("local", "A B C D E F")
+            .both("fast", "A Z")
+            .network()
+        )
+
+    near = written(400)
+    assert _course(near, "fast") == "A B C D E F Z"
+    assert near.line["fast"].itineraries == (("A", "Z"),)
+    # At 45 degrees the local track leads elsewhere from the first station on.
+    assert _course(written(6000), "fast") == "A Z"
+
+
+def test_what_only_begins_beside_the_local_track_is_no_express_of_it(town):
+    network = (
+        town.row("ABC").stop("Z", 3000, -1500).both("local", "A B C").both("fast", "A Z").network()
+    )
+    assert _course(network, "fast") == "A Z"
+
+
+def _streets(town: Town, lean: tuple[float, float], **settings: float) -> Network:
+    """Line a along a street; line b crosses or follows it, with a stop where they meet."""
+    dx, dy = lean
+    written = town.stops({"A1": (-900, 0), "A2": (900, 0), "B0": (0, 0)})
+    written = written.stops({"B1": (-900 * dx, -900 * dy), "B2": (900 * dx, 900 * dy)})
+    return (
+        written.route("a", mode="bus")
+        .route("b", mode="bus")
+        .shape("sa", [(-900, 0), (900, 0)])
+        .shape("sb", [(-900 * dx, -900 * dy), (900 * dx, 900 * dy)])
+        .run("a", "A1 A2", shape="sa")
+        .run("b", "B1 B0 B2", shape="sb")
+        .network(**settings)
+    )
+
+
+@pytest.mark.parametrize("alongside_m", [30.0, 60.0, 200.0])
+@pytest.mark.parametrize("alongside_min_m", [0.0, 300.0])
+def test_perpendicular_streets_never_merge(town, alongside_m, alongside_min_m):
+    network = _streets(town, (0.0, 1.0), alongside_m=alongside_m, alongside_min_m=alongside_min_m)
+    assert _course(network, "a") == "A1 A2"
+
+
+def test_the_angle_decides_between_crossing_and_running_along(town):
+    # At 10 degrees two streets stay within 60 m of each other for 2 · 60 / sin 10° = 691 m.
+    lean = (math.cos(math.radians(10.0)), math.sin(math.radians(10.0)))
+    assert _course(_streets(town, lean), "a") == "A1 B0 A2"
+    assert _course(_streets(town, lean, alongside_deg=5.0), "a") == "A1 A2"
+    assert _course(_streets(town, lean, alongside_min_m=800.0), "a") == "A1 A2"
+
+
+def test_opposite_one_way_streets_are_one_bundle_if_close(town):
+    def written(gap: float) -> Network:
+        return (
+            town.stops({"A": (-900, 0), "Z": (1900, 0)})
+            .stops({"e1": (0, 0), "e2": (1000, 0), "w1": (400, gap), "w2": (1400, gap)})
+            .route("9", mode="bus")
+            .shape("out", [(-900, 0), (1900, 0)])
+            .shape("back", [(1900, 0), (1800, gap), (-800, gap), (-900, 0)])
+            .run("9", "A e1 e2 Z", shape="out")
+            .run("9", "Z w2 w1 A", shape="back")
+            .network()
+        )
+
+    close = written(50)
+    assert set(_course(close, "9").split()) == {"A", "e1", "w1", "e2", "w2", "Z"}
+    assert len(close.links) == 5
+    assert not close.line["9"].one_way_links
+    assert len(written(200).links) == 6
+
+
+def test_a_dual_carriageway_is_one_street_for_all_who_use_it(town):
+    """Stops of one line 64 m off the other carriageway, and a third line beyond that one."""
+    network = (
+        town.stops({"A": (0, 0), "Z": (3000, 0), "s": (1500, 64)})
+        .stops({"B": (0, 60), "Y": (3000, 60), "C": (0, 0.5), "X": (3000, -20)})
+        .route("1", mode="bus")
+        .route("2", mode="bus")
+        .shape("s1", [(0, 0), (3000, 0)])
+        .shape("s2", [(0, 58), (3000, 58)])
+        .run("1", "A Z", shape="s1")
+        .run("2", "B s Y", shape="s2")
+        .network(merge_hub_m=0.0)
+    )
+    assert _course(network, "1") == "A s Z"
+
+
+def test_a_stop_of_the_way_back_is_passed_at_the_end_of_a_spur(town):
+    """The bus turns back at T and calls at different stops on the way; both ways are one street."""
+    network = (
+        town.stops({"A": (0, 0), "p": (500, 0), "T": (1000, 0), "q": (300, 0), "B": (-800, 500)})
+        .stops({"C": (-800, 0)})
+        .route("1", mode="bus")
+        .route("2", mode="bus")
+        .run("1", "A p T q B")
+        .run("2", "C q p T")
+        .network()
+    )
+    assert ("T", "p") in {(a, b) for a, b in _pairs(network)} | {(b, a) for a, b in _pairs(network)}
+    assert ("T", "q") not in {(max(p), min(p)) for p in _pairs(network)}
+    assert ("T", "q") not in _pairs(network)
