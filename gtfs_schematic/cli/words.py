@@ -79,9 +79,10 @@ def drift(report: DriftReport) -> list[str]:
     """Say how far a diagram departs from the ground."""
     figures = report.summary
     worst = max(report.stations, key=lambda s: (s.displacement_m, s.station_id))
+    turn = round(report.free.rotation_deg, 1) + 0.0  # no negative zero
     likeness = (
         f"Drift: residual {report.north_up.residual:.3f} with north up, "
-        f"{report.free.residual:.3f} turned by {report.free.rotation_deg:.1f}° (0 is to scale)"
+        f"{report.free.residual:.3f} turned by {turn:.1f}° (0 is to scale)"
     )
     displacement = (
         f"  displacement: median {100 * figures.displacement_median_share:.1f} %, largest "

@@ -59,6 +59,8 @@ def to_html(
         Another drawing to compare with.
     """
     name = escape(title)
+    # A table of places does not say its unit.
+    unit = "units" if beside else "mm"
     svg, data = picture(report, diagram, label=f"The network of {title} as drawn")
     # A script ends at "</", wherever it stands.
     places = json.dumps(data, ensure_ascii=False, separators=(",", ":")).replace("</", "<\\/")
@@ -69,12 +71,12 @@ def to_html(
 <style>{_resource("page.css")}</style></head><body>
 <header><h1>Drift of {name}</h1>
 <p class="soft">How far the diagram departs from the ground, and whom it misleads.</p></header>
-<main>{_key_figures(report)}{_verdict(report)}{_limits(limits)}
+<main>{_key_figures(report, unit)}{_verdict(report)}{_limits(limits)}
 <div class="board"><section class="stage" aria-label="Picture">{_stage(svg)}</section>
 <section aria-label="Tables"><h2>Look closer</h2>
 <p class="soft">Choose a name to mark it on the picture; choose it again, or press Escape, to
-clear. Heads of columns sort.</p>{tables(report, diagram)}</section></div>
-{_charts(report)}{_other(beside)}{_figures(report, title, beside)}
+clear. Heads of columns sort.</p>{tables(report, diagram, unit)}</section></div>
+{_charts(report)}{_other(beside)}{_figures(report, beside)}
 <p class="caution">{escape(CAUTION)}</p></main>
 <script type="application/json" id="data">{places}</script>
 <script>{_resource("page.js")}</script></body></html>
@@ -90,7 +92,7 @@ def _named(name: str) -> Figure:
     return next(figure for figure in FIGURES if figure.name == name)
 
 
-def _key_figures(report: DriftReport) -> str:
+def _key_figures(report: DriftReport, unit: str) -> str:
     cells = "".join(
         f"<div><dt>{escape(_named(name).label)}</dt>"
         f"<dd>{written(_named(name), _named(name).read(report))}</dd></div>"
@@ -98,7 +100,7 @@ def _key_figures(report: DriftReport) -> str:
     )
     scale = (
         "<div><dt>Scale, north up</dt>"
-        f"<dd>{report.north_up.scale_mm_per_km:.3g} mm per km</dd></div>"
+        f"<dd>{report.north_up.scale_mm_per_km:.3g} {unit} per km</dd></div>"
     )
     return f'<dl class="key-figures">{cells}{scale}</dl>'
 
@@ -129,7 +131,7 @@ def _limits(limits: Sequence[LimitResult]) -> str:
     )
     head = "".join(f'<th scope="col">{cell}</th>' for cell in ("Measure", "Limit"))
     return (
-        f'<section><h2>Limits</h2><table class="limits"><thead><tr>{head}'
+        f'<section class="wide"><h2>Limits</h2><table class="limits"><thead><tr>{head}'
         f'<th scope="col" class="n">Measured</th><th scope="col">Result</th></tr></thead>'
         f"<tbody>{rows}</tbody></table></section>"
     )
@@ -235,8 +237,8 @@ def _other(beside: Beside | None) -> str:
     )
 
 
-def _figures(report: DriftReport, title: str, beside: Beside | None) -> str:
-    other = f'<th scope="col" class="n">{escape(beside.title)}</th>' if beside else ""
+def _figures(report: DriftReport, beside: Beside | None) -> str:
+    other = '<th scope="col" class="n">Beside it</th>' if beside else ""
     rows = "".join(
         f"<tr><td>{escape(figure.label)}<br><code>{figure.name}</code></td>"
         f'<td class="n">{written(figure, figure.read(report))}</td>'
@@ -244,9 +246,9 @@ def _figures(report: DriftReport, title: str, beside: Beside | None) -> str:
         + f"<td>{escape(figure.meaning)}</td></tr>"
         for figure in FIGURES
     )
-    head = escape(title) if beside else "Value"
+    head = "This drawing" if beside else "Value"
     return f"""<section class="figures"><h2>Every figure and what it means</h2>
 <p class="soft">The names in code are those of limits and of <code>drift.json</code>. The network's
 diagonal is {report.diagonal_m / 1000.0:.1f} km.</p>
-<table><thead><tr><th scope="col">Measure</th><th scope="col" class="n">{head}</th>{other}
-<th scope="col">Meaning</th></tr></thead><tbody>{rows}</tbody></table></section>"""
+<div class="wide"><table><thead><tr><th scope="col">Measure</th>
+<th scope="col" class="n">{head}</th>{other}<th scope="col">Meaning</th></tr></thead><tbody>{rows}</tbody></table></div></section>"""

@@ -118,6 +118,8 @@ def class_of(value: float | None, edges: Sequence[float]) -> int:
 
 def _frame(report: DriftReport, diagram: Diagram) -> _Frame:
     points = [p for s in report.stations for p in (s.true_mm, s.drawn_mm)]
+    grid = zip(report.warp.near, report.warp.true_mm, report.warp.drawn_mm, strict=True)
+    points += [p for near, *ends in grid if near for p in ends]
     points += [p for link in diagram.links for p in link.path_mm]
     points += [p for walk in diagram.walks for p in walk.path_mm]
     left, top = min(x for x, _ in points), min(y for _, y in points)

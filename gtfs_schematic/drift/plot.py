@@ -37,7 +37,7 @@ def to_svg(report: DriftReport, diagram: Diagram, *, title: str) -> bytes:
     width, height, radius = (float(value) for value in head.groups())
     whole = _HEAD + height + _FOOT
     inner = net[head.end() : -len("</svg>")]
-    told = "   ".join(
+    told = " · ".join(
         f"{FIGURE[name].label}: {written(FIGURE[name], FIGURE[name].read(report))}"
         for name in _TOLD
         if FIGURE[name].read(report) is not None

@@ -22,8 +22,8 @@ from gtfs_schematic.drift.verdict import kilometres, names_of, wind
 Names = Mapping[str, str]
 
 
-def tables(report: DriftReport, diagram: Diagram) -> str:
-    """Write all tables, those that mislead riders first."""
+def tables(report: DriftReport, diagram: Diagram, unit: str) -> str:
+    """Write all tables, those that mislead riders first; `unit` is that of drawn lengths."""
     names = names_of(report)
     lines = {line.id: line.name for line in diagram.lines}
     return "".join(
@@ -33,7 +33,7 @@ def tables(report: DriftReport, diagram: Diagram) -> str:
             _hidden_walks(report, names),
             _competing(report.competing, names),
             _stations(report.stations),
-            _links(report.links, diagram, names, lines),
+            _links(report.links, diagram, names, unit),
         )
     )
 
@@ -75,7 +75,8 @@ def _stations(stations: Sequence[StationDrift]) -> str:
     return table("stations", "Stations", columns, rows, about=about)
 
 
-def _links(links: Sequence[LinkDrift], diagram: Diagram, names: Names, lines: Names) -> str:
+def _links(links: Sequence[LinkDrift], diagram: Diagram, names: Names, unit: str) -> str:
+    lines = {line.id: line.name for line in diagram.lines}
     carried = {link.id: link.lines for link in diagram.links}
     ranked = sorted(links, key=lambda k: (-abs(k.bearing_change_deg or 0.0), k.link_id))
     rows = [
@@ -104,7 +105,7 @@ def _links(links: Sequence[LinkDrift], diagram: Diagram, names: Names, lines: Na
         Column("Turn, °", numbers=True, falling=True),
         Column("Length ratio", numbers=True, falling=True),
         Column("True, m", numbers=True, falling=True),
-        Column("Drawn, mm", numbers=True, falling=True),
+        Column(f"Drawn, {unit}", numbers=True, falling=True),
     )
     about = (
         "Turn: drawn against true bearing, clockwise. Length ratio: drawn over true length, "
