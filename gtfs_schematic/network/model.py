@@ -28,7 +28,7 @@ class NetworkSettings(BaseModel):
     distance under any names, metres."""
     merge_group_m: float = Field(default=90.0, ge=0.0)
     """Stations joined by transfers merge into one if all lie within this distance, metres."""
-    merge_hub_m: float = Field(default=60.0, ge=0.0)
+    merge_hub_m: float = Field(default=70.0, ge=0.0)
     """Differently named stops of buses and trams whose lines meet merge within this distance
     if no trip calls at one right after the other, metres."""
     min_pattern_share: float = Field(default=0.04, ge=0.0, le=1.0)
