@@ -37,7 +37,10 @@ def local_metres(lonlat: Sequence[tuple[float, float]]) -> NDArray[np.complex128
     mean = (float(x.mean()), float(y.mean()), float(np.sin(lat).mean()))
     centre_lon = math.degrees(math.atan2(mean[1], mean[0]))
     centre_lat = math.degrees(math.atan2(mean[2], math.hypot(mean[0], mean[1])))
-    crs = f"+proj=aeqd +lat_0={centre_lat:.9f} +lon_0={centre_lon:.9f} +datum=WGS84 +units=m"
-    transformer = Transformer.from_crs("EPSG:4326", crs, always_xy=True)
+    # A pipeline, since building coordinate systems takes longer than all of the measuring.
+    transformer = Transformer.from_pipeline(
+        "+proj=pipeline +step +proj=unitconvert +xy_in=deg +xy_out=rad "
+        f"+step +proj=aeqd +lat_0={centre_lat:.9f} +lon_0={centre_lon:.9f} +ellps=WGS84"
+    )
     east, north = transformer.transform(np.degrees(lon), np.degrees(lat))
     return np.asarray(east + 1j * north, dtype=np.complex128)

@@ -251,4 +251,5 @@ def _figures(report: DriftReport, beside: Beside | None) -> str:
 <p class="soft">The names in code are those of limits and of <code>drift.json</code>. The network's
 diagonal is {report.diagonal_m / 1000.0:.1f} km.</p>
 <div class="wide"><table><thead><tr><th scope="col">Measure</th>
-<th scope="col" class="n">{head}</th>{other}<th scope="col">Meaning</th></tr></thead><tbody>{rows}</tbody></table></div></section>"""
+<th scope="col" class="n">{head}</th>{other}<th scope="col">Meaning</th></tr></thead><tbody>
+{rows}</tbody></table></div></section>"""

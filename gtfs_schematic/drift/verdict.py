@@ -136,25 +136,28 @@ def _lengths(report: DriftReport) -> Said:
 
 
 def _pairs(report: DriftReport) -> Said:
-    kinds = (
-        (report.false_neighbors, "look like neighbors and are not"),
-        (report.hidden_walks, "are a short walk apart and do not look it"),
-    )
-    for pairs, text in kinds:
-        if pairs:
-            yield (
-                False,
-                f"{_count(len(pairs), 'pair')} of stations {text}: {_first(report, pairs)}.",
-            )
-        else:
-            yield True, f"No stations {text}."
+    false, hidden = report.false_neighbors, report.hidden_walks
+    if false:
+        one = len(false) == 1
+        text = "looks like neighbors and is not" if one else "look like neighbors and are not"
+        yield False, _told(report, false, text)
+    else:
+        yield True, "No stations look like neighbors without being it."
+    if hidden:
+        one = len(hidden) == 1
+        text = "is a short walk apart and does not" if one else "are a short walk apart and do not"
+        yield False, _told(report, hidden, f"{text} look it")
+    else:
+        yield True, "No stations that are a short walk apart look far apart."
 
 
-def _first(report: DriftReport, pairs: tuple[MisleadingPair, ...]) -> str:
+def _told(report: DriftReport, pairs: tuple[MisleadingPair, ...], text: str) -> str:
     names, pair = names_of(report), pairs[0]
+    first = "" if len(pairs) == 1 else "first "
     return (
-        f"first of all {names[pair.start]} and {names[pair.end]}, "
-        f"{kilometres(pair.true_m)} apart and drawn {pair.drawn_links:.1f} typical links apart"
+        f"{_count(len(pairs), 'pair')} of stations {text}: {first}{names[pair.start]} and "
+        f"{names[pair.end]}, {kilometres(pair.true_m)} apart and drawn {pair.drawn_links:.1f} "
+        "typical links apart."
     )
 
 

@@ -8,7 +8,7 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 from pyproj import Geod
 from scipy.spatial import procrustes
@@ -240,6 +240,7 @@ def test_nothing_to_compare_is_an_error_with_advice(places):
         measure(places, [])
 
 
+@settings(max_examples=30)
 @given(st.permutations(range(12)))
 def test_order_of_stations_does_not_matter(order):
     places = [replace(p, x_mm=p.x_mm + 3 * i % 7) for i, p in enumerate(grid_places())]
