@@ -28,11 +28,13 @@ def faults(network: Network) -> tuple[str, ...]:
     4. Corridors hold every link exactly once, carry its lines, run only through stations of
        degree two without a walk, and could not be longer.
     5. Groups are what the walks join, named by their least station.
-    6. Lines have colors, trips and times in order.
+    6. Lines have colors, trips and times in order; the trips of their periods add up.
+    7. Links of part service carry the line; merges say why, and how surely.
     """
     return (
         *_ids(network),
         *_stations(network),
+        *_merges(network),
         *_links(network),
         *(fault for line in network.lines for fault in _courses(network, line)),
         *_coverage(network),
@@ -83,6 +85,14 @@ def _stations(network: Network) -> Iterator[str]:
     )
 
 
+def _merges(network: Network) -> Iterator[str]:
+    for station in network.stations:
+        if not 0.0 < station.merge_confidence <= 1.0:
+            yield f"station {station.id}: confidence {station.merge_confidence} is not in (0, 1]"
+        if station.merge_confidence < 1.0 and not station.merge_reason:
+            yield f"station {station.id}: merged without a reason"
+
+
 def _links(network: Network) -> Iterator[str]:
     pairs: Counter[frozenset[str]] = Counter()
     edges: tuple[Link | Walk, ...] = (*network.links, *network.walks)
@@ -130,6 +140,11 @@ def _courses(network: Network, line: Line) -> Iterator[str]:
         f"{where}: one-way step {a} to {b} is not on its course"
         for a, b in line.one_way_links
         if (a, b) not in steps
+    )
+    yield from (
+        f"{where}: part service from {a} to {b}, where it does not run"
+        for a, b, _ in line.part_service
+        if (a, b) not in steps or not a < b
     )
 
 
@@ -212,5 +227,7 @@ def _line(line: Line) -> Iterator[str]:
         yield f"{where}: no name or no routes"
     if line.trips < 1 or line.first_departure_s > line.last_departure_s:
         yield f"{where}: {line.trips} trips from {line.first_departure_s} s on"
+    if line.periods and sum(period.trips for period in line.periods) != line.trips:
+        yield f"{where}: the trips of its periods are not {line.trips} together"
     if line.headway_s is not None and line.headway_s <= 0:
         yield f"{where}: headway {line.headway_s} s"

@@ -2,8 +2,12 @@
 
 from __future__ import annotations
 
+import importlib.util
+import sys
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
+from pathlib import Path
+from types import ModuleType
 
 import numpy as np
 import pytest
@@ -111,6 +115,21 @@ class Town:
 
     def _with(self, **parts: object) -> Town:
         return Town(replace(self.timetable, **parts))
+
+
+@pytest.fixture(scope="session")
+def script():
+    """Give a function that imports a script of the benchmarks by name."""
+
+    def load(name: str) -> ModuleType:
+        path = Path(__file__).parents[1] / "benchmarks" / f"{name}.py"
+        spec = importlib.util.spec_from_file_location(name, path)
+        module = importlib.util.module_from_spec(spec)
+        sys.modules[name] = module  # dataclasses look their module up there
+        spec.loader.exec_module(module)
+        return module
+
+    return load
 
 
 @pytest.fixture(scope="session")

@@ -55,6 +55,12 @@ _SPOILED = {
     "two colors": lambda n: replace(n, lines=_first(n.lines, color="red")),
     "no routes": lambda n: replace(n, lines=_first(n.lines, route_ids=())),
     "0 trips": lambda n: replace(n, lines=_first(n.lines, trips=0)),
+    "its periods": lambda n: replace(n, lines=_first(n.lines, trips=n.lines[0].trips + 1)),
+    "part service": lambda n: replace(n, lines=_first(n.lines, part_service=(("D", "A", "peak"),))),
+    "not in (0, 1]": lambda n: replace(n, stations=_first(n.stations, merge_confidence=1.5)),
+    "without a reason": lambda n: replace(
+        n, stations=_first(n.stations, merge_confidence=0.5, merge_reason="")
+    ),
     "headway": lambda n: replace(n, lines=_first(n.lines, headway_s=0)),
 }
 

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections import Counter
+from dataclasses import replace
 from pathlib import Path
 
 import networkx as nx
@@ -12,7 +13,7 @@ from gtfs_schematic.feed.model import FeedSettings
 from gtfs_schematic.feed.read import read_feed
 from gtfs_schematic.network.build import build_network
 from gtfs_schematic.network.check import faults
-from gtfs_schematic.network.model import Network, NetworkSettings
+from gtfs_schematic.network.model import Link, Network, NetworkSettings
 from gtfs_schematic.network.smooth import unfold
 
 DATA = Path(__file__).parents[2] / "data"
@@ -40,6 +41,19 @@ def test_two_metro_lines_are_one_tree(nyc_subway_feed):
     graph = nx.Graph([(link.start, link.end) for link in network.links])
     # The express runs over the local track, so that nothing closes a circle.
     assert nx.is_tree(graph)
+
+
+def test_no_link_is_a_chord_beside_the_local_track(script, nyc_subway_feed):
+    expresses = script("expresses")
+    timetable = read_feed([nyc_subway_feed], FeedSettings())
+    network = build_network(timetable, NetworkSettings())
+    assert not [s for s in expresses.suspects(timetable, network) if s.is_chord]
+    # A chord that is put in by hand is found.
+    a, b, c = network.lines[0].courses[0][3:6]
+    chord = Link("chord", min(a, c), max(a, c), network.link_between[frozenset((a, b))].lines)
+    spoiled = replace(network, links=(*network.links, chord))
+    found = [s for s in expresses.suspects(timetable, spoiled) if s.is_chord]
+    assert [(s.link.id, set(s.way)) for s in found] == [("chord", {a, b, c})]
 
 
 def test_kerbs_of_a_bus_network_are_one_station(cairns_feed):
@@ -103,5 +117,8 @@ def test_demo_services(demo):
     services = {line.name: line.service for line in demo.lines}
     assert services["N1"] == "night"
     assert services["8"] == "some-days"
+    part = {line.name: line.part_service for line in demo.lines if line.part_service}
+    assert list(part) == ["4"]
+    assert {service for _, _, service in part["4"]} == {"peak"}
     assert services["1"] == "all-day"
     assert [line.name for line in demo.lines if not line.color_from_feed] == ["8"]

@@ -2,10 +2,7 @@
 
 from __future__ import annotations
 
-import importlib.util
 import itertools
-import sys
-from pathlib import Path
 
 import pytest
 from hypothesis import given
@@ -16,7 +13,6 @@ from gtfs_schematic.feed.read import read_feed
 from gtfs_schematic.network.suffixes import Called, Endings, learned_endings, shared_name
 
 BASES = ("Oulm", "Vendrick Locks", "Tamselby", "Am Wehr")
-SCRIPT = Path(__file__).parents[1] / "benchmarks" / "station_recovery.py"
 
 
 def _learned(endings, gap_m=30.0, *, follows=False, one_line=True, bases=BASES) -> Endings:
@@ -86,16 +82,12 @@ def test_a_shared_name_begins_the_first_name(names):
     assert names[0].startswith(shared)
 
 
-def test_parents_of_a_real_feed_are_recovered_from_names_and_places(nyc_subway_feed):
+def test_parents_of_a_real_feed_are_recovered_from_names_and_places(script, nyc_subway_feed):
     """The truth is the feed's own parent_station."""
-    spec = importlib.util.spec_from_file_location("station_recovery", SCRIPT)
-    script = importlib.util.module_from_spec(spec)
-    sys.modules[spec.name] = script
-    spec.loader.exec_module(script)
     timetable = read_feed([nyc_subway_feed], FeedSettings())
     parents = {s.parent_id for s in timetable.stops} - {None}
     assert len(parents) > 80
-    for score in script.recovery(timetable):
+    for score in script("station_recovery").recovery(timetable):
         assert score.f1 >= 0.99
     platforms = [s for s in timetable.stops if s.parent_id]
     assert sum(a.parent_id == b.parent_id for a, b in itertools.combinations(platforms, 2)) > 80
