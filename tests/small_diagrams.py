@@ -7,8 +7,10 @@ from dataclasses import dataclass
 from gtfs_schematic.drift.placed import TimedPattern
 from gtfs_schematic.geometry import Point
 
-METRES_PER_DEGREE = 111_319.49
-"""Along the equator of WGS 84: 2π · 6378137 m / 360."""
+METRES_EAST = 111_319.49
+"""Of a degree along the equator of WGS 84: 2π · 6378137 m / 360."""
+METRES_NORTH = 110_574.28
+"""Of a degree along a meridian where it meets the equator: 2π · 6335439 m / 360."""
 
 
 @dataclass(frozen=True)
@@ -36,12 +38,12 @@ class Stop:
     @property
     def lon(self) -> float:
         """Degrees east."""
-        return self.x_m / METRES_PER_DEGREE
+        return self.x_m / METRES_EAST
 
     @property
     def lat(self) -> float:
         """Degrees north."""
-        return self.y_m / METRES_PER_DEGREE
+        return self.y_m / METRES_NORTH
 
 
 @dataclass(frozen=True)
