@@ -84,13 +84,13 @@ def greedy(problem: Problem, sweeps: int = 6) -> Choice:
     for _ in range(sweeps):
         before = tuple(choice)
         for station in order:
-            choice[station] = _cheapest(problem, choice, station)
+            choice[station] = cheapest(problem, choice, station)
         if tuple(choice) == before:
             break
     return tuple(choice)
 
 
-def _cheapest(problem: Problem, choice: Sequence[int | None], station: int) -> int | None:
+def cheapest(problem: Problem, choice: Sequence[int | None], station: int) -> int | None:
     """Give the candidate of one station that costs least beside the others' present ones."""
     best, best_cost = None, UNPLACED
     for candidate in problem.groups[station]:

@@ -12,6 +12,7 @@ from numpy.typing import NDArray
 
 from gtfs_schematic.bundles.model import BundledLayout, Stretch
 from gtfs_schematic.geometry import Point, distance, unit_vector
+from gtfs_schematic.labels.blocking import Blocks, blocks_of, least_free_push
 from gtfs_schematic.labels.model import LabelSettings
 from gtfs_schematic.layout.model import SheetFrame
 
@@ -36,35 +37,17 @@ class Obstacles:
     piece_lines: tuple[str, ...]
     """The line id of every piece."""
     piece_tree: shapely.STRtree
-    walk_tree: shapely.STRtree
     stations: tuple[str, ...]
     """Ids of the stations, in the order of `markers`."""
     markers: Shapes
     marker_tree: shapely.STRtree
-    cores: tuple[tuple[float, shapely.STRtree], ...]
-    """Per marker radius the hulls of the points that such markers cover."""
+    blocks: Blocks
+    """All of these, each with the distance that labels keep from it."""
 
-    def blocked(self, boxes: Shapes) -> NDArray[np.bool_]:
-        """Tell for each box whether it leaves the frame or comes too near to a drawn thing."""
-        bounds = shapely.bounds(boxes)
-        frame = self.frame
-        found: NDArray[np.bool_] = (
-            (bounds[:, 0] < frame.left_mm)
-            | (bounds[:, 1] < frame.top_mm)
-            | (bounds[:, 2] > frame.right_mm)
-            | (bounds[:, 3] > frame.bottom_mm)
-        )
-        reaches = (
-            (self.piece_tree, self.half_width + self.clearance),
-            (self.walk_tree, WALK_WIDTH_MM / 2.0 + self.clearance),
-            *((tree, radius + self.clearance) for radius, tree in self.cores),
-        )
-        for tree, reach in reaches:
-            if len(tree.geometries):
-                open_ones = np.flatnonzero(~found)
-                hits = tree.query(boxes[open_ones], predicate="dwithin", distance=reach)
-                found[open_ones[np.unique(hits[0])]] = True
-        return found
+    def blocked(self, corners: NDArray[np.float64]) -> NDArray[np.bool_]:
+        """Tell for each box, shape (N, 4, 2), whether it is not free."""
+        still = np.zeros((len(corners), 2))
+        return ~np.isfinite(least_free_push(corners, still, self.blocks, step_mm=1.0, steps=0))
 
 
 def obstacles_of(bundled: BundledLayout, settings: LabelSettings) -> Obstacles:
@@ -84,9 +67,16 @@ def obstacles_of(bundled: BundledLayout, settings: LabelSettings) -> Obstacles:
     markers = [marker_outline(bundled, settings, station_id) for station_id in stations]
     radii = [marker_radius(bundled, settings, station_id) for station_id in stations]
     hulls = [shapely.MultiPoint(span_points(bundled, key)).convex_hull for key in stations]
-    cores = tuple(
-        (radius, shapely.STRtree([h for h, r in zip(hulls, radii, strict=True) if r == radius]))
-        for radius in sorted(set(radii))
+    half = bundled.settings.line_width_mm / 2.0
+    shapes = [
+        *((piece, half) for piece in pieces),
+        *((walk, WALK_WIDTH_MM / 2.0) for walk in walks),
+        *zip(hulls, radii, strict=True),
+    ]
+    sheet = bundled.layout.sheet
+    blocks = blocks_of(
+        [(shape, reach + settings.clearance_mm) for shape, reach in shapes],
+        (sheet.left_mm, sheet.top_mm, sheet.right_mm, sheet.bottom_mm),
     )
     piece_array, marker_array = np.array(pieces, dtype=object), np.array(markers, dtype=object)
     return Obstacles(
@@ -96,11 +86,10 @@ def obstacles_of(bundled: BundledLayout, settings: LabelSettings) -> Obstacles:
         pieces=piece_array,
         piece_lines=tuple(piece_lines),
         piece_tree=shapely.STRtree(piece_array),
-        walk_tree=shapely.STRtree(np.array(walks, dtype=object)),
         stations=stations,
         markers=marker_array,
         marker_tree=shapely.STRtree(marker_array),
-        cores=cores,
+        blocks=blocks,
     )
 
 

@@ -6,6 +6,7 @@ from collections.abc import Sequence
 
 from gtfs_schematic.bundles.model import BundledLayout
 from gtfs_schematic.labels.choice import Choice, Problem, greedy, solve
+from gtfs_schematic.labels.mend import mended
 from gtfs_schematic.labels.model import Label, LabelledLayout, LabelSettings
 from gtfs_schematic.labels.neighbors import Neighbors, neighbors_of
 from gtfs_schematic.labels.obstacles import Obstacles, obstacles_of
@@ -18,8 +19,8 @@ _SILENT = Silent()
 _ROW_SPACE_MM = 0.7
 """What two names above each other are kept apart more, so that they do not read as one; given up
 where a name finds no place."""
-_WORK = 3.0
-"""Limit of each solve in CP-SAT's deterministic seconds."""
+_WORK = (1.0, 2.0)
+"""Limits of the first and the second solve in CP-SAT's deterministic seconds."""
 
 
 def place_labels(
@@ -39,7 +40,7 @@ def place_labels(
     progress.step()
     groups = [entries[site.station_id] for site in sites]
     problem, listed = state_problem(groups, neighbors, (settings.clearance_mm, _ROW_SPACE_MM))
-    choice = solve(problem, greedy(problem), work=_WORK)
+    choice = solve(problem, mended(problem, greedy(problem)), work=_WORK[0])
     progress.step()
     chosen = _chosen(sites, choice, listed)
     if len(chosen) < len(sites):
@@ -68,7 +69,7 @@ def _widen(
 ) -> dict[str, Entry]:
     """Choose again round the stations without a label, with more places for them and theirs.
 
-    The labels in the way of any of their places, and the neighbours of these, may change too.
+    The labels in the way of any of their places may change too.
     """
     obstacles, neighbors, settings = surroundings
     lost = [i for i, site in enumerate(sites) if site.station_id not in chosen]
@@ -87,7 +88,10 @@ def _widen(
     start: Choice = tuple(
         number[id(chosen[site.station_id])] if site.station_id in chosen else None for site in sites
     )
-    return _chosen(sites, solve(problem, start, _around(problem, wide), work=_WORK), listed)
+    better = mended(problem, start)
+    changed = {i for i, (old, new) in enumerate(zip(start, better, strict=True)) if old != new}
+    free = {*wide, *changed}
+    return _chosen(sites, solve(problem, better, free, work=_WORK[1]), listed)
 
 
 def _around(problem: Problem, stations: Sequence[int]) -> set[int]:

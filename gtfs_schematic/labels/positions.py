@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import itertools
 import math
 from collections.abc import Callable, Iterator
 from dataclasses import dataclass, replace
@@ -19,7 +18,7 @@ from gtfs_schematic.labels.blocks import (
 from gtfs_schematic.labels.breaks import break_name
 from gtfs_schematic.labels.model import LabelSettings, Side
 from gtfs_schematic.labels.reach import NEAR, Reach
-from gtfs_schematic.labels.site import OCTANTS, Site, octant, side_vector
+from gtfs_schematic.labels.site import OCTANTS, Site, side_vector
 
 TILT_DEG = -45.0
 """The one angle of tilted labels: reading upwards to the right."""
@@ -41,10 +40,6 @@ _LEFT_CORNERS: tuple[tuple[Side, Side], ...] = (
     ("NW", "N"),
     ("SW", "S"),
 )
-_ALIGNS: tuple[Align, ...] = ("left", "center", "right")
-_LATTICE = tuple(i / 18.0 for i in range(-18, 19))
-_ASTRAY = 4.0
-"""The slide that a place off the usual ones counts as."""
 _ABOVE_BELOW: tuple[Side, ...] = ("N", "S")
 _TILTS: tuple[tuple[Side, Side, Align], ...] = (("NE", "N", "left"), ("SW", "S", "right"))
 """(side, push, alignment): begun above the marker, or ended below it."""
@@ -116,7 +111,7 @@ class _Spot:
 def positions(site: Site, settings: LabelSettings, reach: Reach = NEAR) -> Iterator[Candidate]:
     """Give every position of a station's name: sides, rows, alignments, slides, tilts."""
     for scale in reach.scales:
-        for wording in _wordings(site, settings, reach, scale):
+        for wording in wordings(site, settings, reach, scale):
             rows = len(wording.rows)
             bare = bool(site.badges) and wording.badge_place == "none"
             gap = settings.clearance_mm + reach.gap_mm
@@ -132,11 +127,9 @@ def positions(site: Site, settings: LabelSettings, reach: Reach = NEAR) -> Itera
                     )  # fmt: skip
             if rows <= 2 and wording.badge_place != "beneath":
                 yield from _tilted(site, wording, gap, scale, bare=bare)
-            if reach.around_mm > 0.0:
-                yield from _anywhere(site, wording, reach.around_mm, scale, bare=bare)
 
 
-def _wordings(site: Site, settings: LabelSettings, reach: Reach, scale: float) -> Iterator[Wording]:
+def wordings(site: Site, settings: LabelSettings, reach: Reach, scale: float) -> Iterator[Wording]:
     """Give the ways to break a name and to place its badges."""
     places: tuple[BadgePlace, ...] = ("none",)
     if site.badges:
@@ -216,28 +209,6 @@ def _centered_spots(
         for slide in slides:
             x = px - block.width / 2.0 + slide * block.width
             yield _Spot(side, x, y, side, slide)
-
-
-def _anywhere(
-    site: Site, wording: Wording, around: float, scale: float, *, bare: bool
-) -> Iterator[Candidate]:
-    """Give a lattice of places, not pushed, whose box reaches to within a distance."""
-    px, py = site.at
-    for align in _ALIGNS:
-        block = set_block(wording, align)
-        height = block.ink_bottom - block.ink_top
-        for row, column in itertools.product(_LATTICE, repeat=2):
-            x = px + column * (block.width / 2.0 + around) - block.width / 2.0
-            y = py + row * (height / 2.0 + around) - height / 2.0 - block.ink_top
-            middle = (x + block.width / 2.0, y + (block.ink_top + block.ink_bottom) / 2.0)
-            side = OCTANTS[octant(site.at, middle)]
-            ahead = (middle[0] - px) * (1.0 if align == "left" else -1.0)
-            if (align == "center") != (side in _ABOVE_BELOW) or (align != "center" and ahead < 0.0):
-                continue
-            yield Candidate(
-                site, block, side, (x, y), (x, y), (0.0, 0.0),
-                0.0, len(wording.rows), _ASTRAY, scale, bare,
-            )  # fmt: skip
 
 
 _SPOTS: dict[Align, Callable[[Site, Block, float, tuple[float, ...]], Iterator[_Spot]]] = {
