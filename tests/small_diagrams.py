@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import itertools
 from dataclasses import dataclass
 
 from gtfs_schematic.drift.placed import TimedPattern
@@ -114,3 +115,23 @@ def two_ways() -> Drawn:
             TimedPattern("3", ("f", "e"), (0, 100), hour[::2]),
         ),
     )
+
+
+def comb(b_mm: float = 60.0, gap_m: float = 4000.0) -> Drawn:
+    """Draw two rows of stations a kilometre apart, the second row `gap_m` north of the first.
+
+    Drawn at 10 mm a link, and the second row `b_mm` above the first.
+    """
+    one = [Stop(f"a{i}", 1000 * i, 0, 10 * i, 0, f"a{i}") for i in range(5)]
+    two = [Stop(f"b{i}", 1000 * i, gap_m, 10 * i, -b_mm, f"b{i}") for i in range(5)]
+    rails = [
+        rail(f"{p.id}{q.id}", p, q, p.id[0])
+        for row in (one, two)
+        for p, q in itertools.pairwise(row)
+    ]
+    hour = tuple(range(30000, 33600, 600))
+    patterns = (
+        TimedPattern("a", tuple(s.id for s in one), (0, 60, 120, 180, 240), hour),
+        TimedPattern("b", tuple(s.id for s in two), (0, 60, 120, 180, 240), hour[:2]),
+    )
+    return Drawn((*one, *two), tuple(rails), (), (Named("a", "A"), Named("b", "B")), patterns)

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import itertools
 from dataclasses import replace
 
 import pytest
@@ -11,31 +10,10 @@ from small_diagrams import Drawn, Named, Stop, rail
 
 from gtfs_schematic.drift.measure import measure_edition
 from gtfs_schematic.drift.model import DriftSettings
-from gtfs_schematic.drift.placed import TimedPattern
-
-
-def comb(b_mm: float = 60.0, gap_m: float = 4000.0) -> Drawn:
-    """Draw two rows of stations a kilometre apart, the second row `gap_m` north of the first.
-
-    Drawn at 10 mm a link, and the second row `b_mm` above the first.
-    """
-    one = [Stop(f"a{i}", 1000 * i, 0, 10 * i, 0, f"a{i}") for i in range(5)]
-    two = [Stop(f"b{i}", 1000 * i, gap_m, 10 * i, -b_mm, f"b{i}") for i in range(5)]
-    rails = [
-        rail(f"{p.id}{q.id}", p, q, p.id[0])
-        for row in (one, two)
-        for p, q in itertools.pairwise(row)
-    ]
-    hour = tuple(range(30000, 33600, 600))
-    patterns = (
-        TimedPattern("a", tuple(s.id for s in one), (0, 60, 120, 180, 240), hour),
-        TimedPattern("b", tuple(s.id for s in two), (0, 60, 120, 180, 240), hour[:2]),
-    )
-    return Drawn((*one, *two), tuple(rails), (), (Named("a", "A"), Named("b", "B")), patterns)
 
 
 def test_rows_that_are_drawn_near_and_lie_far_are_false_neighbors():
-    found = measure_edition(comb(b_mm=9.0)).false_neighbors
+    found = measure_edition(small_diagrams.comb(b_mm=9.0)).false_neighbors
     assert {(p.start, p.end) for p in found} == {(f"a{i}", f"b{i}") for i in range(5)}
     assert all(p.true_m == pytest.approx(4000, rel=0.01) for p in found)
     assert all(p.drawn_mm == pytest.approx(9) for p in found)
@@ -49,11 +27,11 @@ def test_rows_that_are_drawn_near_and_lie_far_are_false_neighbors():
     [(9.0, 5), (10.0, 5), (10.5, 0), (40.0, 0)],
 )
 def test_false_neighbors_look_a_typical_link_apart_at_most(b_mm, told):
-    assert len(measure_edition(comb(b_mm=b_mm)).false_neighbors) == told
+    assert len(measure_edition(small_diagrams.comb(b_mm=b_mm)).false_neighbors) == told
 
 
 def test_false_neighbors_that_a_link_or_walk_joins_are_told_by_the_diagram():
-    diagram = comb(b_mm=9.0)
+    diagram = small_diagrams.comb(b_mm=9.0)
     joined = rail("x", diagram.stations[0], diagram.stations[5], time_s=600)
     for part in ("links", "walks"):
         more = replace(diagram, **{part: (*getattr(diagram, part), joined)})
@@ -63,21 +41,21 @@ def test_false_neighbors_that_a_link_or_walk_joins_are_told_by_the_diagram():
 
 
 def test_thresholds_move():
-    diagram = comb(b_mm=9.0)
+    diagram = small_diagrams.comb(b_mm=9.0)
     assert measure_edition(diagram, DriftSettings(false_far_m=5000)).false_neighbors == ()
     assert measure_edition(diagram, DriftSettings(misleading_factor=9)).false_neighbors == ()
 
 
 def test_rows_that_are_near_and_drawn_far_hide_walks():
-    found = measure_edition(comb(b_mm=60.0, gap_m=300.0)).hidden_walks
+    found = measure_edition(small_diagrams.comb(b_mm=60.0, gap_m=300.0)).hidden_walks
     assert {(p.start, p.end) for p in found} == {(f"a{i}", f"b{i}") for i in range(5)}
     assert all(p.drawn_links == pytest.approx(6) for p in found)
-    assert measure_edition(comb(b_mm=5.0, gap_m=300.0)).hidden_walks == ()
-    assert measure_edition(comb(b_mm=60.0, gap_m=600.0)).hidden_walks == ()
+    assert measure_edition(small_diagrams.comb(b_mm=5.0, gap_m=300.0)).hidden_walks == ()
+    assert measure_edition(small_diagrams.comb(b_mm=60.0, gap_m=600.0)).hidden_walks == ()
 
 
 def test_walks_that_are_drawn_are_not_hidden():
-    diagram = comb(b_mm=60.0, gap_m=300.0)
+    diagram = small_diagrams.comb(b_mm=60.0, gap_m=300.0)
     walk = rail("w", diagram.stations[0], diagram.stations[5], time_s=300)
     pairs = {
         (p.start, p.end) for p in measure_edition(replace(diagram, walks=(walk,))).hidden_walks
@@ -87,7 +65,7 @@ def test_walks_that_are_drawn_are_not_hidden():
 
 
 def test_without_a_timetable_departures_are_unknown():
-    found = measure_edition(replace(comb(b_mm=9.0), patterns=())).false_neighbors
+    found = measure_edition(replace(small_diagrams.comb(b_mm=9.0), patterns=())).false_neighbors
     assert [p.departures for p in found] == [None] * 5
 
 
