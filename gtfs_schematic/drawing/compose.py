@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from gtfs_schematic.drawing.furniture import key_group, notes_group, title_group
-from gtfs_schematic.drawing.lines import line_groups, walk_groups
+from gtfs_schematic.drawing.lines import line_groups, name_groups, walk_groups
 from gtfs_schematic.drawing.model import Drawing, DrawingSettings, Group
 from gtfs_schematic.drawing.page import plan_of_frame
 from gtfs_schematic.drawing.stations import marker_look, station_groups
@@ -39,6 +39,7 @@ def compose(labelled: LabelledLayout, settings: DrawingSettings) -> Drawing:
             title_group(page, settings),
             Group("walks", tuple(walk_groups(layout, settings))),
             Group("lines", tuple(line_groups(bundled, styles, settings.background))),
+            Group("line-names", tuple(name_groups(labelled, styles, settings.background))),
             Group("stations", tuple(station_groups(labelled, styles, settings))),
             key_group(page, network, settings, marker_look(labelled, settings)),
             notes_group(page, settings),

@@ -3,21 +3,25 @@
 from __future__ import annotations
 
 from collections.abc import Iterator, Mapping
+from dataclasses import replace
 
 from gtfs_schematic.bundles.model import BundledLayout, Corner
 from gtfs_schematic.drawing.course import on_line, straight_middle
 from gtfs_schematic.drawing.markers import chevron, walk_shapes
-from gtfs_schematic.drawing.model import DrawingSettings, Group, PathShape
-from gtfs_schematic.drawing.paths import rounded
+from gtfs_schematic.drawing.model import DrawingSettings, Group, PathShape, TextShape
+from gtfs_schematic.drawing.paths import rounded, turned
 from gtfs_schematic.drawing.style import (
     WALK_WIDTH_MM,
     LineStyle,
+    badge_tile,
     line_stroke,
     quiet,
     under_strokes,
     weight,
 )
 from gtfs_schematic.drawing.words import line_course, walk_title
+from gtfs_schematic.labels import fonts
+from gtfs_schematic.labels.model import LabelledLayout
 from gtfs_schematic.layout.model import Layout
 from gtfs_schematic.network.model import Line
 
@@ -63,6 +67,35 @@ def line_groups(
         marks = tuple(_direction_marks(bundled, line, style.width * full))
         if marks:
             yield Group("direction", marks, data={"for-line": line.id})
+
+
+def name_groups(
+    labelled: LabelledLayout, styles: Mapping[str, LineStyle], background: str
+) -> Iterator[Group]:
+    """Give the names that stand on the lines along their runs, each edged in the paper's colour."""
+    network = labelled.bundled.layout.network
+    edge = max(0.15, 0.8 * labelled.bundled.settings.line_gap_mm)
+    for badge in labelled.run_badges:
+        (x, y), w, h = badge.at_mm, badge.width_mm / 2.0, badge.height_mm / 2.0
+        tile = badge_tile((x - w, y - h, x + w, y + h), styles[badge.line_id])
+        d = turned(tile.d, badge.angle_deg, badge.at_mm)
+        cap = fonts.metrics(bold=True).cap_height * badge.size_mm
+        width = fonts.text_width_mm(badge.text, badge.size_mm, bold=True)
+        text = TextShape(
+            text=badge.text,
+            x=x - width / 2.0,
+            y=y + cap / 2.0,
+            size=badge.size_mm,
+            fill=network.line[badge.line_id].text_color,
+            width=width,
+            bold=True,
+            angle_deg=badge.angle_deg,
+            pivot=badge.at_mm,
+            css_class="badge-name",
+        )
+        halo = PathShape(d, stroke=background, stroke_width=edge)
+        shapes = (halo, replace(tile, d=d), text)
+        yield Group("badge", shapes, data={"for-line": badge.line_id})
 
 
 def _direction_marks(bundled: BundledLayout, line: Line, width: float) -> Iterator[PathShape]:

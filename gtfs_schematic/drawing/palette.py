@@ -28,8 +28,8 @@ _CHROMA = (28.0, 88.0)
 """Between grey and garish, in CIELAB."""
 _LEAST_LIGHTNESS = 28.0
 """Darker ones pass for black, CIELAB."""
-_SHELF = 8
-"""Palettes come in multiples of so many: a line more rarely changes the colours of the others."""
+_SHELVES = (4, 8)
+"""Palettes hold 4 colours, or a multiple of 8: a line more rarely changes those of the others."""
 
 
 def recolored(network: Network, settings: DrawingSettings) -> Network:
@@ -105,7 +105,8 @@ def _given(keys: Sequence[str], kept: Sequence[str], background: str) -> dict[st
     """Give each key a colour; which one follows from the key, so that it mostly keeps it."""
     if not keys:
         return {}
-    free = list(_palette(_SHELF * math.ceil(len(keys) / _SHELF), kept, background))
+    shelf = _SHELVES[0] if len(keys) <= _SHELVES[0] else _SHELVES[1]
+    free = list(_palette(shelf * math.ceil(len(keys) / shelf), kept, background))
     given = {}
     for key in keys:
         given[key] = min(free, key=lambda color: _digest(key, color))

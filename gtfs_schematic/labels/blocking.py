@@ -53,9 +53,8 @@ def blocks_of(
     if not len(segments):
         none = np.empty(0, dtype=np.int64)
         return Blocks(room, segments, np.zeros(2), 0, 0, np.zeros(1, dtype=np.int64), none)
-    reach = segments[:, 4:5]
-    low = np.minimum(segments[:, :2], segments[:, 2:4]) - reach
-    high = np.maximum(segments[:, :2], segments[:, 2:4]) + reach
+    low = np.minimum(segments[:, :2], segments[:, 2:4]) - segments[:, 4:5]
+    high = np.maximum(segments[:, :2], segments[:, 2:4]) + segments[:, 4:5]
     origin = low.min(axis=0)
     first = np.floor((low - origin) / _CELL_MM).astype(np.int64)
     last = np.floor((high - origin) / _CELL_MM).astype(np.int64)

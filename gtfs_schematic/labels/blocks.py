@@ -150,17 +150,27 @@ def _widest(lines: Sequence[TextLine]) -> float:
     return max(line.width_mm for line in lines)
 
 
+def badge_height(size: float) -> float:
+    """Give the height of a badge for its type size, millimetres."""
+    return (metrics(bold=True).cap_height + 2.0 * _BADGE_PAD_Y) * size
+
+
+def badge_width(text: str, size: float) -> float:
+    """Give the width of a badge, at least its height."""
+    return max(badge_height(size), text_width_mm(text, size, bold=True) + 2.0 * _BADGE_PAD_X * size)
+
+
 def _badge_rows(wording: Wording) -> list[list[Badge]]:
     """Set the badges in rows, each row starting at x = 0, y = 0."""
     size = wording.badge_size_mm
     cap = metrics(bold=True).cap_height * size
-    height = cap + 2.0 * _BADGE_PAD_Y * size
+    height = badge_height(size)
     limit = max(_BADGE_ROW_MM, text_width_mm(wording.rows[0], wording.size_mm, bold=wording.bold))
     rows: list[list[Badge]] = [[]]
     x = 0.0
     for line_id, text in wording.badges:
         text_width = text_width_mm(text, size, bold=True)
-        width = max(height, text_width + 2.0 * _BADGE_PAD_X * size)
+        width = badge_width(text, size)
         full = len(rows[-1]) == _BADGES_PER_ROW and wording.badge_place != "after"
         if rows[-1] and (full or x + width > limit) and wording.badge_place != "after":
             rows.append([])

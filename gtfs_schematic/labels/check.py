@@ -25,6 +25,7 @@ def faults(labelled: LabelledLayout) -> tuple[str, ...]:
     1. Every station has a label or is listed without one, not both, and says its name.
     2. Rows and badges lie within the label's outline, and the outline within the frame.
     3. No two labels, no label and marker, line or walk are nearer than the clearance.
+    4. Names along lines lie on their own line and cover no label, marker, walk or other line.
     """
     found = [
         *_completeness(labelled),
@@ -32,6 +33,7 @@ def faults(labelled: LabelledLayout) -> tuple[str, ...]:
             _within(labelled, labelled.labels[station_id]) for station_id in sorted(labelled.labels)
         ),
         *_nearness(labelled),
+        *_along(labelled),
     ]
     return tuple(sorted(found))
 
@@ -97,6 +99,33 @@ def _nearness(labelled: LabelledLayout) -> Iterator[str]:
         for i in sorted(tree.query(shape, predicate="dwithin", distance=least).tolist()):
             if _too_near(boxes[i], shape, least):
                 yield f"The label of station {ids[i]} comes too near to {name}."
+
+
+def _along(labelled: LabelledLayout) -> Iterator[str]:
+    """Give the faults against rule 4."""
+    badges = labelled.run_badges
+    boxes = []
+    for badge in badges:
+        (x, y), w, h = badge.at_mm, badge.width_mm / 2.0, badge.height_mm / 2.0
+        box = affinity.rotate(shapely.box(x - w, y - h, x + w, y + h), badge.angle_deg)
+        boxes.append(box.buffer(-TOLERANCE_MM))
+    tree = shapely.STRtree(boxes)
+    on_line: set[int] = set()
+    for name, shape in (*_drawn(labelled), *_outlines(labelled)):
+        for i in sorted(tree.query(shape, predicate="intersects").tolist()):
+            if name == f"line {badges[i].line_id}":
+                on_line |= {i} if shape.covers(shapely.Point(badges[i].at_mm)) else set()
+            elif shape.intersection(boxes[i]).area > TOLERANCE_MM * badges[i].width_mm:
+                yield f"The name along line {badges[i].line_id} covers {name}."
+    for i in sorted(set(range(len(badges))) - on_line):
+        yield f"The name along line {badges[i].line_id} at {badges[i].at_mm} lies off it."
+
+
+def _outlines(labelled: LabelledLayout) -> Iterator[tuple[str, shapely.Geometry]]:
+    """Give the name and the outline of every label."""
+    for station_id in sorted(labelled.labels):
+        outline = shapely.Polygon(labelled.labels[station_id].outline_mm)
+        yield f"the label of station {station_id}", outline
 
 
 def _too_near(first: shapely.Geometry, second: shapely.Geometry, least: float) -> bool:

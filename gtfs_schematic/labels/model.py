@@ -34,6 +34,8 @@ class LabelSettings(BaseModel):
     """The same for interchanges and termini."""
     line_badges: bool = True
     """Whether a line's name stands in a small badge at its termini's names."""
+    line_names_every_mm: float = Field(default=90.0, ge=0.0)
+    """Along a line its name stands on it about this often, millimetres; 0 for never."""
     sides: dict[str, Side] = Field(default_factory=dict)
     """Per station id the side that a person asks for; kept wherever it is free."""
 
@@ -87,6 +89,22 @@ class Label:
 
 
 @dataclass(frozen=True, slots=True)
+class RunBadge:
+    """A line's name on the line itself, along a run; rotated by `angle_deg` about its middle."""
+
+    line_id: str
+    text: str
+    at_mm: Point
+    """The middle of the box, millimetres."""
+    width_mm: float
+    height_mm: float
+    size_mm: float
+    """Type size; the text is bold and stands in the middle of the box."""
+    angle_deg: float
+    """Clockwise; text reads from the left, or upwards."""
+
+
+@dataclass(frozen=True, slots=True)
 class LabelledLayout:
     """A bundled layout with its labels."""
 
@@ -95,3 +113,5 @@ class LabelledLayout:
     labels: Mapping[str, Label]
     unplaced: tuple[str, ...]
     """Ids of stations whose label found no free place; empty in a good drawing."""
+    run_badges: tuple[RunBadge, ...] = ()
+    """Names of lines along their runs, in the order of lines and their stretches."""

@@ -37,6 +37,7 @@ class Obstacles:
     piece_lines: tuple[str, ...]
     """The line id of every piece."""
     piece_tree: shapely.STRtree
+    walk_tree: shapely.STRtree
     stations: tuple[str, ...]
     """Ids of the stations, in the order of `markers`."""
     markers: Shapes
@@ -86,6 +87,7 @@ def obstacles_of(bundled: BundledLayout, settings: LabelSettings) -> Obstacles:
         pieces=piece_array,
         piece_lines=tuple(piece_lines),
         piece_tree=shapely.STRtree(piece_array),
+        walk_tree=shapely.STRtree(np.array(walks, dtype=object)),
         stations=stations,
         markers=marker_array,
         marker_tree=shapely.STRtree(marker_array),

@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 
 from gtfs_schematic.bundles.model import BundledLayout
+from gtfs_schematic.labels.along import run_badges
 from gtfs_schematic.labels.choice import Choice, Problem, greedy, solve
 from gtfs_schematic.labels.mend import mended
 from gtfs_schematic.labels.model import Label, LabelledLayout, LabelSettings
@@ -46,11 +47,13 @@ def place_labels(
     if len(chosen) < len(sites):
         chosen = _widen(sites, entries, chosen, (obstacles, neighbors, settings))
     progress.step()
+    labels = {station_id: _label(chosen[station_id]) for station_id in sorted(chosen)}
     return LabelledLayout(
         bundled=bundled,
         settings=settings,
-        labels={station_id: _label(chosen[station_id]) for station_id in sorted(chosen)},
+        labels=labels,
         unplaced=tuple(site.station_id for site in sites if site.station_id not in chosen),
+        run_badges=run_badges(bundled, settings, obstacles, tuple(labels.values())),
     )
 
 

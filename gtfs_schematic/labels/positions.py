@@ -22,7 +22,7 @@ from gtfs_schematic.labels.site import OCTANTS, Site, side_vector
 
 TILT_DEG = -45.0
 """The one angle of tilted labels: reading upwards to the right."""
-_BADGE_SIZE = 0.78
+BADGE_SIZE = 0.78
 """Type size of badges in sizes of stop names."""
 _AFTER_MOST = 3
 """How many badges may stand behind a name on its own row."""
@@ -146,7 +146,7 @@ def wordings(site: Site, settings: LabelSettings, reach: Reach, scale: float) ->
                 badges=site.badges,
                 bold=site.bold,
                 size_mm=scale * type_size_mm(settings, bold=site.bold),
-                badge_size_mm=_BADGE_SIZE * type_size_mm(settings, bold=False),
+                badge_size_mm=BADGE_SIZE * type_size_mm(settings, bold=False),
                 badge_place=place,
                 leading=settings.leading,
             )
