@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Mapping
 from dataclasses import dataclass, field
 
-from pydantic import BaseModel, ConfigDict, Field
+from pydantic import BaseModel, ConfigDict, Field, field_validator
 
 from gtfs_schematic.geometry import Point
 
@@ -59,6 +59,19 @@ class DriftSettings(BaseModel):
     """How many of the worst pairs and journeys are spelled out."""
     limits: Mapping[str, float | str] = Field(default_factory=dict)
     """What measures must not exceed (or fall below), by their names in `drift.limits`."""
+
+    @field_validator("limits", mode="before")
+    @classmethod
+    def _joined(cls, limits: object) -> object:
+        """Let names with a dot stand bare in TOML, which reads a dot as a table in a table."""
+        if not isinstance(limits, Mapping):
+            return limits
+        joined: dict[str, object] = {}
+        for name, value in limits.items():
+            parts = value if isinstance(value, Mapping) else {"": value}
+            for rest, each in parts.items():
+                joined[f"{name}.{rest}" if rest else str(name)] = each
+        return joined
 
 
 @dataclass(frozen=True, slots=True)

@@ -12,6 +12,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
+from gtfs_schematic.drift.placed import TimedPattern
 from gtfs_schematic.edition.check import faults
 from gtfs_schematic.edition.model import (
     Edition,
@@ -53,6 +54,7 @@ def editions(draw: st.DrawFn) -> Edition:
             lines=draw(some_lines),
             group=draw(st.sampled_from(station_ids)),
             label_side=draw(st.sampled_from(["", "E", "NW"])),
+            change_s=draw(st.none() | st.integers(0, 999)),
         )
         for key in station_ids
     )
@@ -79,9 +81,21 @@ def editions(draw: st.DrawFn) -> Edition:
     feed = EditionFeed(sha, draw(texts), draw(texts), draw(dates), draw(dates), draw(dates))
     left_out = tuple(draw(st.lists(st.tuples(texts, texts, texts), max_size=3)))
     findings = tuple(draw(st.lists(texts, max_size=3)))
-    return Edition(
-        draw(texts), feed, WIDTH, HEIGHT, stations, links, lines, left_out, findings, walks
+    timed = tuple(
+        timed_pattern(draw, line_ids, station_ids) for _ in range(draw(st.integers(0, 2)))
     )
+    return Edition(
+        draw(texts), feed, WIDTH, HEIGHT, stations, links, lines, left_out, findings, walks, timed
+    )
+
+
+def timed_pattern(draw, line_ids, station_ids):
+    calls = draw(st.lists(st.sampled_from(station_ids), min_size=2, max_size=4))
+    seconds = st.integers(0, 9999)
+    times = draw(st.lists(seconds, min_size=len(calls), max_size=len(calls)).map(sorted))
+    departures = draw(st.lists(seconds, min_size=1, max_size=3).map(sorted))
+    line = draw(st.sampled_from(line_ids))
+    return TimedPattern(line, tuple(calls), tuple(times), tuple(departures))
 
 
 def drawn_path(draw, stations):
@@ -113,6 +127,7 @@ EXAMPLE = Edition(
     stations=(station("a", 10.0, 10.0), station("b", 30.0, 10.0)),
     links=(EditionLink("a-b", "a", "b", ("1",), ((10.0, 10.0), (30.0, 10.0))),),
     lines=(EditionLine("1", "1", "#AA0000", "#FFFFFF", ("r1",), (("a", "b"),)),),
+    patterns=(TimedPattern("1", ("a", "b"), (0, 120), (28800, 29400)),),
 )
 
 
@@ -177,6 +192,15 @@ def test_unknown_fields_are_let_by():
     assert from_json(json.dumps(document).encode()) == EXAMPLE
 
 
+def test_an_edition_that_knows_no_timetable_is_read():
+    """Fields that came later may be missing."""
+    document = json.loads(to_json(EXAMPLE))
+    del document["patterns"]
+    for row in document["stations"]:
+        del row["change_s"]
+    assert from_json(json.dumps(document).encode()) == replace(EXAMPLE, patterns=())
+
+
 def changed(path: str, value: object) -> bytes:
     document = json.loads(to_json(EXAMPLE))
     *way, last = [int(part) if part.isdigit() else part for part in path.split("/")]
@@ -215,6 +239,13 @@ def changed(path: str, value: object) -> bytes:
         (changed("links/0/lines", ["2"]), "link a-b: line 2 is unknown"),
         (changed("links/0/path_mm", [[1, 1]]), "links.0.path_mm: "),
         (changed("links/0/path_mm/0", [1, 1, 1]), "links.0.path_mm.0"),
+        (changed("stations/0/change_s", -1), "stations.0.change_s: "),
+        (changed("patterns/0/line", "2"), "pattern 0: line 2 is unknown"),
+        (changed("patterns/0/stations", ["a", "z"]), "pattern 0: station z is unknown"),
+        (changed("patterns/0/stations", ["a"]), "patterns.0.stations: "),
+        (changed("patterns/0/times_s", [0]), "pattern 0: not one time per station"),
+        (changed("patterns/0/times_s", [60, 0]), "pattern 0: its times run backwards"),
+        (changed("patterns/0/departures_s", []), "patterns.0.departures_s: "),
     ],
 )
 def test_what_cannot_be_read_is_named(data, message):
@@ -230,7 +261,7 @@ def test_infinity_hidden_in_an_exponent_is_refused():
 
 
 def test_an_edition_at_fault_is_not_written():
-    broken = replace(EXAMPLE, lines=())
+    broken = replace(EXAMPLE, lines=(), patterns=())
     assert faults(broken) == (
         "station a: line 1 is unknown",
         "station b: line 1 is unknown",
