@@ -21,9 +21,11 @@ from gtfs_schematic.bundles.model import BundledLayout, BundleSettings
 from gtfs_schematic.config import Settings
 from gtfs_schematic.drawing import check as drawing_check
 from gtfs_schematic.drawing.compose import compose
+from gtfs_schematic.drawing.listing import to_text
 from gtfs_schematic.drawing.model import Drawing
 from gtfs_schematic.drawing.palette import recolored
 from gtfs_schematic.drawing.pdf import to_pdf
+from gtfs_schematic.drawing.png import to_png
 from gtfs_schematic.drawing.sheet import candidate_frames
 from gtfs_schematic.drawing.svg import to_svg
 from gtfs_schematic.drawing.words import sheet_title
@@ -39,7 +41,7 @@ from gtfs_schematic.edition import check as edition_check
 from gtfs_schematic.edition.make import edition_of
 from gtfs_schematic.edition.model import Edition
 from gtfs_schematic.edition.save import to_json as edition_to_json
-from gtfs_schematic.errors import InternalFaultError, LayoutError
+from gtfs_schematic.errors import InternalFaultError
 from gtfs_schematic.feed import check as feed_check
 from gtfs_schematic.feed.model import Timetable
 from gtfs_schematic.feed.read import read_feed
@@ -49,15 +51,21 @@ from gtfs_schematic.labels.model import LabelledLayout, LabelSettings
 from gtfs_schematic.labels.place import place_labels
 from gtfs_schematic.labels.room import room_requests
 from gtfs_schematic.layout import check as layout_check
-from gtfs_schematic.layout.engine import fit_sheet, place
+from gtfs_schematic.layout.engine import Placement, fit_sheet, place
 from gtfs_schematic.layout.model import Clearances, Layout, RoomRequest, SheetFrame
 from gtfs_schematic.network import check as network_check
 from gtfs_schematic.network.build import build_network
 from gtfs_schematic.network.model import Network
 from gtfs_schematic.progress import Progress, Silent
 
-ROUNDS = 6
-"""How often the layout may be asked for more room before names are left without a place."""
+ROUNDS = 4
+"""How often the layout may be asked for more room before a larger sheet is tried."""
+
+PATIENCE = 2
+"""After how many rounds that place no more names no further room is asked for."""
+
+LARGER_SHEETS = 1
+"""How many larger sheets are tried before names are left without a place."""
 
 MM_PER_PT = 25.4 / 72.0
 
@@ -171,9 +179,12 @@ def files_of(result: Result, limits: Sequence[Limit] | None = None) -> dict[str,
     if limits is None:
         limits = limits_of(result.settings.drift)
     judged = judge(result.drift, limits)
-    return {
+    dpi = result.settings.sheet.png_dpi
+    image = {"diagram.png": to_png(result.drawing, dpi=dpi)} if dpi else {}
+    return image | {
         "diagram.svg": svg,
         "diagram.pdf": to_pdf(result.drawing),
+        "diagram.txt": to_text(result.network, result.settings.drawing),
         "edition.json": edition_to_json(result.edition),
         "drift.json": drift_to_json(result.drift, judged),
         "drift.csv": to_csv(result.drift),
@@ -209,19 +220,33 @@ def clearances_of(network: Network, bundles: BundleSettings, labels: LabelSettin
 def _labelled(
     network: Network, settings: Settings, frames: tuple[SheetFrame, ...], progress: Progress
 ) -> LabelledLayout:
-    """Lay out, bundle and label; again with more room until every name has a place."""
-    clearances = clearances_of(network, settings.bundles, settings.labels)
+    """Lay out, bundle and label; on a larger sheet where names find no place on a smaller."""
     placement = place(network, settings.layout, progress=progress)
+    best = _labelled_on_sheet(placement, settings, frames, progress)
+    for _ in range(LARGER_SHEETS):
+        area = _area(best.bundled.layout.sheet)
+        larger = tuple(frame for frame in frames if _area(frame) > area)
+        if not best.unplaced or not larger:
+            break
+        progress.note(f"{_names(best)} found no place; trying a larger sheet")
+        labelled = _labelled_on_sheet(placement, settings, larger, progress)
+        best = min(best, labelled, key=_unplaced)
+    return best
+
+
+def _labelled_on_sheet(
+    placement: Placement, settings: Settings, frames: tuple[SheetFrame, ...], progress: Progress
+) -> LabelledLayout:
+    """Settle, bundle and label on the first sheet that holds the drawing.
+
+    Again with more room where names found no place, until all have one, room no longer helps, or
+    the rounds are over.
+    """
+    clearances = clearances_of(placement.network, settings.bundles, settings.labels)
     requests: tuple[RoomRequest, ...] = ()
-    best: LabelledLayout | None = None
+    tries: list[LabelledLayout] = []
     for _ in range(1 + ROUNDS):
-        try:
-            layout = fit_sheet(placement, clearances, frames, requests=requests, progress=progress)
-        except LayoutError:
-            # More room was asked for than the sheet has: the drawing without it still stands.
-            if best is None:
-                raise
-            return best
+        layout = fit_sheet(placement, clearances, frames, requests=requests, progress=progress)
         _must_be_sound("layout", layout_check.faults(layout, clearances))
 
         bundled = bundle(layout, settings.bundles, progress=progress)
@@ -230,14 +255,27 @@ def _labelled(
         labelled = place_labels(bundled, settings.labels, progress=progress)
         _must_be_sound("labels", labels_check.faults(labelled))
 
-        if best is None or len(labelled.unplaced) < len(best.unplaced):
-            best = labelled
-        if not labelled.unplaced:
-            return best
-        names = "name" if len(labelled.unplaced) == 1 else "names"
-        progress.note(f"{len(labelled.unplaced)} {names} found no place; asking for more room")
+        tries.append(labelled)
+        helped = min(map(_unplaced, tries[-PATIENCE:])) < min(
+            map(_unplaced, tries[:-PATIENCE]), default=len(labelled.labels) + 1
+        )
+        if not labelled.unplaced or not helped:
+            break
+        progress.note(f"{_names(labelled)} found no place; asking for more room")
         requests = _joined(requests, room_requests(labelled))
-    return best
+    return min(tries, key=_unplaced)
+
+
+def _unplaced(labelled: LabelledLayout) -> int:
+    return len(labelled.unplaced)
+
+
+def _names(labelled: LabelledLayout) -> str:
+    return f"{len(labelled.unplaced)} {'name' if len(labelled.unplaced) == 1 else 'names'}"
+
+
+def _area(frame: SheetFrame) -> float:
+    return frame.width_mm * frame.height_mm
 
 
 def _joined(old: tuple[RoomRequest, ...], new: tuple[RoomRequest, ...]) -> tuple[RoomRequest, ...]:

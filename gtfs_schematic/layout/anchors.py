@@ -51,7 +51,7 @@ def anchor_points(graph: PlaneGraph, fidelity: float) -> NDArray[np.float64]:
     vectors = _wanted_vectors(graph, ground, lengths, fidelity)
     targets = _targets(graph, ground, lengths, vectors, fidelity)
     moved = _guarded_move(graph, ground, targets)
-    return spread(moved, graph.segments, vectors, _LEAST_CLEARANCE)
+    return np.round(spread(moved, graph.segments, vectors, _LEAST_CLEARANCE), 6)
 
 
 def _in_spacings(
@@ -62,7 +62,7 @@ def _in_spacings(
     lengths = np.hypot(*(graph.points[a] - graph.points[b]).T)
     spacing = float(np.median(lengths / graph.segment_shares)) if len(lengths) else 1.0
     ground = (graph.points - graph.points.mean(axis=0)) / max(spacing, 1e-9)
-    return ground, np.maximum(lengths / max(spacing, 1e-9), 1e-6)
+    return np.round(ground, 9), np.round(np.maximum(lengths / max(spacing, 1e-9), 1e-6), 9)
 
 
 def _wanted_vectors(
@@ -74,7 +74,8 @@ def _wanted_vectors(
     """Vector that each segment should have: true bearing, a blend of true and even length."""
     a, b = graph.segments.T
     wanted = lengths**fidelity * graph.segment_shares ** (1.0 - fidelity)
-    return np.asarray((ground[b] - ground[a]) / lengths[:, None] * wanted[:, None])
+    vectors = (ground[b] - ground[a]) / lengths[:, None] * wanted[:, None]
+    return np.asarray(np.round(vectors, 9))
 
 
 def _targets(
@@ -97,7 +98,7 @@ def _targets(
     scale = float(np.sum(wanted * lengths) / np.sum(lengths * lengths)) if m else 1.0
     normal = (difference.T @ difference + pull * sp.identity(n)).tocsc()
     right = difference.T @ (vectors * weights[:, None]) + pull * scale * ground
-    return np.asarray(spsolve(normal, right)).reshape(n, 2)
+    return np.round(np.asarray(spsolve(normal, right)).reshape(n, 2), 6)
 
 
 def _guarded_move(
@@ -110,7 +111,7 @@ def _guarded_move(
         return points
     # Start at the targets' scale, so that the first steps are not all spent on shrinking.
     points = points * (np.ptp(targets, axis=0).max() / max(np.ptp(points, axis=0).max(), 1e-9))
-    points += targets.mean(axis=0) - points.mean(axis=0)
+    points = np.round(points + targets.mean(axis=0) - points.mean(axis=0), 9)
     for _ in range(_STEPS):
         radii = free_radii(points, segments)
         # Thin gaps shrink ever more slowly, so that many steps do not grind them to nothing.
@@ -119,5 +120,5 @@ def _guarded_move(
         move = 0.2 * (targets - points) + 0.6 * push
         length = np.hypot(move[:, 0], move[:, 1])
         factor = np.minimum(1.0, radii / np.maximum(length, 1e-12))
-        points = points + move * factor[:, None]
+        points = np.round(points + move * factor[:, None], 9)
     return points

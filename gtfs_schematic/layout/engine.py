@@ -21,7 +21,7 @@ from gtfs_schematic.errors import LayoutError
 from gtfs_schematic.layout.anchors import anchor_points
 from gtfs_schematic.layout.board import Board
 from gtfs_schematic.layout.embed import check_degrees, embed
-from gtfs_schematic.layout.fit import Sizes, link_least, part_wants, wants_of
+from gtfs_schematic.layout.fit import Sizes, link_least, link_wishes, part_wants, wants_of
 from gtfs_schematic.layout.improve import improve
 from gtfs_schematic.layout.model import (
     Clearances,
@@ -34,7 +34,7 @@ from gtfs_schematic.layout.objective import Weights
 from gtfs_schematic.layout.planarise import planarise
 from gtfs_schematic.layout.plane import PlaneGraph
 from gtfs_schematic.layout.restore import restore
-from gtfs_schematic.layout.settle import settle
+from gtfs_schematic.layout.settle import NoRoomError, settle
 from gtfs_schematic.layout.skeleton import Skeleton, build, skeleton_of
 from gtfs_schematic.layout.snap import UNITS_PER_MM, snap
 from gtfs_schematic.network.model import Network
@@ -129,8 +129,7 @@ def fit_sheet(
     frames
         Sheets in rising size.
     requests
-        Wishes of later stages for longer links; they may take up the air that is left on the
-        sheet, but lead to a larger sheet only where they cannot be met without.
+        Wishes of later stages for longer links, met as far as the sheet allows.
     progress
         Told what is going on.
 
@@ -146,10 +145,19 @@ def fit_sheet(
     """
     progress.phase("settling lengths")
     network = placement.network
-    least = link_least(network, clearances, requests)
-    sizes = Sizes(placement.settings, clearances, placement.anchors, least)
-    room = 1.0 if requests else _ROOM
-    skeleton, points, frame = _on_sheet(placement.skeleton, sizes, frames, room)
+    sizes = Sizes(
+        placement.settings,
+        clearances,
+        placement.anchors,
+        link_least(network, clearances),
+        link_wishes(network, requests),
+    )
+    try:
+        skeleton, points, frame = _on_sheet(placement.skeleton, sizes, frames)
+    except NoRoomError:
+        # The wishes bind more than the sheet can give; without them it holds the drawing.
+        sizes = dataclasses.replace(sizes, link_wishes={})
+        skeleton, points, frame = _on_sheet(placement.skeleton, sizes, frames)
     places = _on_paper(snap(skeleton, points), frame)
     return restore(network, skeleton, places, frame, part_wants(skeleton.graph, sizes))
 
@@ -173,13 +181,13 @@ def _board(graph: PlaneGraph, anchors: NDArray[np.float64], progress: Progress) 
 
 
 def _on_sheet(
-    skeleton: Skeleton, sizes: Sizes, frames: Sequence[SheetFrame], room: float
+    skeleton: Skeleton, sizes: Sizes, frames: Sequence[SheetFrame]
 ) -> tuple[Skeleton, NDArray[np.float64], SheetFrame]:
-    """Choose the sheet by the least size with `room` around, then fill it."""
+    """Choose the sheet by the least size with some air, then fill it."""
     spacing = sizes.clearances.spacing_mm
     skeleton, points, pairs = _settled(skeleton, sizes, spacing, None)
     width, height = np.ptp(points, axis=0)
-    fits = [f for f in frames if _inner(f)[0] >= width * room and _inner(f)[1] >= height * room]
+    fits = [f for f in frames if _inner(f)[0] >= width * _ROOM and _inner(f)[1] >= height * _ROOM]
     fits = fits or [f for f in frames if _inner(f)[0] >= width and _inner(f)[1] >= height]
     if not fits:
         largest = frames[-1]

@@ -10,13 +10,19 @@ import numpy as np
 from numpy.typing import NDArray
 
 from gtfs_schematic.layout.model import Clearances, LayoutSettings, RoomRequest
-from gtfs_schematic.layout.plane import PlaneGraph
+from gtfs_schematic.layout.plane import Part, PlaneGraph
 from gtfs_schematic.layout.settle import Wants
 from gtfs_schematic.layout.skeleton import Skeleton
 from gtfs_schematic.network.model import Network
 
 _WALK_SHARE = 0.75
 """Length of a walk in shares of a station spacing: short, so that it reads as one place."""
+
+_MOST_WISHED_MM = 14.0
+"""Length up to which a wish binds, millimetres; beyond, it is weighed against the others."""
+
+_WISH_WEIGHT = 3.0
+"""How much more a length counts that a name asked for."""
 
 _BROKEN_SHARE = 0.7
 """Share of its width that a name takes when it may be broken into rows."""
@@ -37,6 +43,8 @@ class Sizes:
     """Anchors of the vertices in station spacings, y north, shape (n, 2)."""
     link_least: Mapping[str, float]
     """Least length of each link and walk, millimetres."""
+    link_wishes: Mapping[str, float]
+    """Length that names want of some links, millimetres."""
 
 
 def wants_of(skeleton: Skeleton, sizes: Sizes, scale_mm: float, *, tight: bool) -> Wants:
@@ -55,19 +63,29 @@ def wants_of(skeleton: Skeleton, sizes: Sizes, scale_mm: float, *, tight: bool) 
     least = np.maximum(least, _between_ends(graph, clearances))
     goal = _spans(skeleton, sizes.settings.fidelity) * scale_mm
     goal[walk] = np.maximum(least[walk], _WALK_SHARE * scale_mm)
+    if not tight:
+        least = np.maximum(least, _wished_least(graph, sizes))
+    wish = np.array(
+        [
+            sum(p.share * sizes.link_wishes.get(p.owner, 0.0) for p in piece.parts)
+            for piece in graph.pieces
+        ]
+    )
+    asked = wish > goal
+    goal = np.maximum(goal, wish)
     spans = np.array([piece.spans for piece in graph.pieces])
     owner = skeleton.piece_of
     lines = lines[owner]
     half = (lines * pitch - clearances.line_gap_mm) / 2.0
     half[walk[owner]] = clearances.line_width_mm / 4.0
     jog = skeleton.jogs
-    corner = _CORNER * (clearances.marker_mm + half)
+    shortest: NDArray[np.float64] = np.where(jog, 0.0, _CORNER * (clearances.marker_mm + half))
     weight = 1.0 / np.sqrt(np.maximum(spans, 0.3))
     return Wants(
-        least=np.where(jog, 0.0, corner),
-        piece_least=least,
-        piece_goal=least if tight else np.maximum(goal, least),
-        piece_weight=np.where(walk, 2.0, 1.0) * weight,
+        least=np.round(shortest, 6),
+        piece_least=np.round(least, 6),
+        piece_goal=np.round(least if tight else np.maximum(goal, least), 6),
+        piece_weight=np.where(walk, 2.0, np.where(asked, _WISH_WEIGHT, 1.0)) * weight,
         anchors=sizes.anchors * scale_mm,
         anchor_weight=0.02 if tight else 0.05 + 0.5 * sizes.settings.fidelity**2,
         half_width=half,
@@ -97,22 +115,22 @@ def _label_room(skeleton: Skeleton, clearances: Clearances) -> NDArray[np.float6
     return np.stack([width, aslant, upright, aslant] * 2, axis=1)
 
 
-def link_least(
-    network: Network, clearances: Clearances, requests: tuple[RoomRequest, ...]
-) -> dict[str, float]:
-    """Give every link and walk its least length, millimetres.
+def link_least(network: Network, clearances: Clearances) -> dict[str, float]:
+    """Give every link and walk its least length: the spacing, or a share of it; millimetres."""
+    least = {link.id: clearances.spacing_mm for link in network.links}
+    least |= {walk.id: _WALK_SHARE * clearances.spacing_mm for walk in network.walks}
+    return least
 
-    It is the spacing, more where a station asks for room, and a share of it for a walk.
-    """
+
+def link_wishes(network: Network, requests: tuple[RoomRequest, ...]) -> dict[str, float]:
+    """Give every link at whose end a name wants room the length that was asked for."""
     asked: dict[str, float] = {}
     for request in requests:
         asked[request.station_id] = max(asked.get(request.station_id, 0.0), request.length_mm)
-    least = {
-        link.id: max(clearances.spacing_mm, asked.get(link.start, 0.0), asked.get(link.end, 0.0))
-        for link in network.links
+    wishes = {
+        link.id: max(asked.get(link.start, 0.0), asked.get(link.end, 0.0)) for link in network.links
     }
-    least |= {walk.id: _WALK_SHARE * clearances.spacing_mm for walk in network.walks}
-    return least
+    return {key: length for key, length in wishes.items() if length > 0.0}
 
 
 def _between_ends(graph: PlaneGraph, clearances: Clearances) -> NDArray[np.float64]:
@@ -152,13 +170,26 @@ def part_wants(graph: PlaneGraph, sizes: Sizes) -> tuple[NDArray[np.float64], ..
     for piece in graph.pieces:
         stop = start + len(piece.parts)
         shares = np.array([part.share for part in piece.parts])
-        least = np.array([part.share * sizes.link_least[part.owner] for part in piece.parts])
+        least = np.array([_part_least(part, sizes) for part in piece.parts])
         run = true[start:stop]
         run = run / max(float(run.sum()), 1e-9)
         blend = run**power * (shares / shares.sum()) ** (1.0 - power)
         wants.append(np.column_stack([blend, least]))
         start = stop
     return tuple(wants)
+
+
+def _wished_least(graph: PlaneGraph, sizes: Sizes) -> NDArray[np.float64]:
+    """Least length of each piece with what names wish, as far as a wish binds; millimetres."""
+    return np.array(
+        [sum(_part_least(part, sizes) for part in piece.parts) for piece in graph.pieces]
+    )
+
+
+def _part_least(part: Part, sizes: Sizes) -> float:
+    """Least length of a part when its piece is shared out; names' wishes go first."""
+    wish = sizes.link_wishes.get(part.owner, 0.0)
+    return part.share * max(sizes.link_least[part.owner], min(wish, _MOST_WISHED_MM))
 
 
 def _spans(skeleton: Skeleton, fidelity: float) -> NDArray[np.float64]:

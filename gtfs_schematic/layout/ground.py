@@ -29,4 +29,4 @@ def project(lonlat: Sequence[tuple[float, float]]) -> NDArray[np.float64]:
     crs = f"+proj=aeqd +lat_0={lat:.9f} +lon_0={lon:.9f} +datum=WGS84 +units=m +no_defs"
     to_metres = Transformer.from_crs("EPSG:4326", crs, always_xy=True)
     x, y = to_metres.transform(places[:, 0], places[:, 1])
-    return np.column_stack([x, y])
+    return np.round(np.column_stack([x, y]), 4)

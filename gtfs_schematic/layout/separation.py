@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 
 from gtfs_schematic.layout.skeleton import STEP, Skeleton
 
-_NORMALS = STEP / np.hypot(STEP[:, :1], STEP[:, 1:])
+_NORMALS = np.round(STEP / np.hypot(STEP[:, :1], STEP[:, 1:]), 12)
 
 
 @dataclass(frozen=True)

@@ -17,16 +17,25 @@ import shapely
 from numpy.typing import NDArray
 from scipy.optimize import linprog
 
-from gtfs_schematic.errors import InternalFaultError
+from gtfs_schematic.errors import InternalFaultError, LayoutError
 from gtfs_schematic.layout.rows import Rows
 from gtfs_schematic.layout.separation import Separations, near_pairs, separate
 from gtfs_schematic.layout.skeleton import STEP, Skeleton
 
 _MOST_REPAIRS = 20
+_INFEASIBLE = 2
+"""Status by which `linprog` says that no solution exists."""
+_GRADES = ((0.15, 0.4), (0.2, 1.0), (0.3, 2.0), (np.inf, 4.0))
+"""Shares of the wanted length that may be missing or too much, each at its own price: rising
+prices spread what must give way over many pieces, instead of squeezing a few to the least."""
 _LACK_WEIGHT = 0.6
 """Price of a millimetre lacking to the wanted room, against one of wanted length."""
 _SLACK = 1e-4
 """Distance by which a solution may miss a clearance, millimetres."""
+
+
+class NoRoomError(LayoutError):
+    """The least lengths do not fit the box."""
 
 
 @dataclass(frozen=True)
@@ -83,8 +92,8 @@ def settle(
 
     Raises
     ------
-    InternalFaultError
-        If the box is too small (the caller has asked for the size first) or no end is found.
+    NoRoomError
+        If the box is too small.
     """
     if pairs is None:
         lengths = np.hypot(*np.diff(skeleton.points[skeleton.segments], axis=1)[:, 0].T)
@@ -130,6 +139,8 @@ def _solve(
         most.add([(nodes, 1.0), (np.full(len(nodes), columns.extent[axis]), -1.0)], 0.0)
     bounds = np.zeros((columns.count, 2))
     bounds[:, 1] = np.inf
+    for grade, (share, _) in zip(columns.slack, _GRADES, strict=True):
+        bounds[grade, 1] = share * wants.piece_goal
     if box is not None:
         bounds[columns.extent, 1] = box
     blocks, rights = _piece_lengths(runs, columns, wants)
@@ -144,9 +155,12 @@ def _solve(
         bounds=bounds,
         method="highs-ipm",
     )
+    if solution.status == _INFEASIBLE:
+        raise NoRoomError("The drawing does not fit its box.")
     if not solution.success:
         raise InternalFaultError(f"Settling the lengths failed: {solution.message}")
-    return np.column_stack([solution.x[columns.x], solution.x[columns.y]])
+    # Rounded, so that the last bits of different processors decide nothing further on.
+    return np.round(np.column_stack([solution.x[columns.x], solution.x[columns.y]]), 6)
 
 
 @dataclass(frozen=True)
@@ -180,7 +194,7 @@ class _Columns:
     x: NDArray[np.int64]
     y: NDArray[np.int64]
     slack: NDArray[np.int64]
-    """Per piece, how far its length is from the wanted one."""
+    """Per grade and piece, a part of how far the length is from the wanted one."""
     away: NDArray[np.int64]
     """Per vertex and axis, how far it is from its anchor, shape (2, n)."""
     lack: NDArray[np.int64]
@@ -192,11 +206,11 @@ class _Columns:
     @staticmethod
     def of(skeleton: Skeleton, pairs: int) -> _Columns:
         k, n, p = len(skeleton.points), skeleton.graph.n_vertices, len(skeleton.courses)
-        ends = np.cumsum([0, k, k, p, 2 * n, pairs, 2])
+        ends = np.cumsum([0, k, k, len(_GRADES) * p, 2 * n, pairs, 2])
         x, y, slack, away, lack, extent = (
             np.arange(a, b) for a, b in itertools.pairwise(ends.tolist())
         )
-        return _Columns(x, y, slack, away.reshape(2, n), lack, extent, int(ends[-1]))
+        return _Columns(x, y, slack.reshape(-1, p), away.reshape(2, n), lack, extent, int(ends[-1]))
 
     def along(self, runs: _Runs, nodes: NDArray[np.int64]) -> NDArray[np.int64]:
         """Give the column that measures each segment at one of its ends."""
@@ -222,13 +236,14 @@ def _piece_lengths(
     runs: _Runs, columns: _Columns, wants: Wants
 ) -> tuple[list[sp.csr_matrix], list[NDArray[np.float64]]]:
     """Give matrix blocks and right-hand sides for least and wanted lengths of whole pieces."""
-    pieces = len(columns.slack)
+    grades, pieces = columns.slack.shape
     shape = (pieces, columns.count)
     a, b = columns.along(runs, runs.start), columns.along(runs, runs.end)
     value = runs.forward * runs.stretch
     entries = (np.concatenate([runs.piece, runs.piece]), np.concatenate([b, a]))
     length = sp.csr_matrix((np.concatenate([value, -value]), entries), shape=shape)
-    slack = sp.csr_matrix((np.ones(pieces), (np.arange(pieces), columns.slack)), shape=shape)
+    rows = np.tile(np.arange(pieces), grades)
+    slack = sp.csr_matrix((np.ones(len(rows)), (rows, columns.slack.ravel())), shape=shape)
     return (
         [-length, length - slack, -length - slack],
         [-wants.piece_least, wants.piece_goal, -wants.piece_goal],
@@ -264,7 +279,8 @@ def _keep_apart(
 
 def _cost(runs: _Runs, columns: _Columns, wants: Wants) -> NDArray[np.float64]:
     cost = np.zeros(columns.count)
-    cost[columns.slack] = wants.piece_weight
+    for grade, (_, price) in zip(columns.slack, _GRADES, strict=True):
+        cost[grade] = price * wants.piece_weight
     cost[columns.away] = wants.anchor_weight
     cost[columns.lack] = _LACK_WEIGHT
     cost[columns.extent] = wants.spread
