@@ -10,7 +10,9 @@ from typing import Literal
 from gtfs_schematic.drawing.model import DrawingSettings
 from gtfs_schematic.drawing.style import LEADING, TypeScale, dashed_services, weight
 from gtfs_schematic.drawing.words import (
+    MODE_NAMES,
     SERVICE_NOTES,
+    how_often,
     line_course,
     line_title,
     natural,
@@ -32,19 +34,6 @@ SIGNS = {
     "step-free": "Step-free according to the feed",
 }
 """Every sign that a sheet may need, in the order of the key."""
-_MODE_HEADINGS = {
-    "metro": "Metro",
-    "rail": "Rail",
-    "monorail": "Monorail",
-    "tram": "Tram",
-    "cable": "Cable tram",
-    "funicular": "Funicular",
-    "aerial": "Aerial lift",
-    "bus": "Bus",
-    "trolleybus": "Trolleybus",
-    "ferry": "Ferry",
-    "other": "Other lines",
-}
 _MOST_TEXT = 16.0
 """Widest text of a row before it wraps, in type sizes."""
 _MOST_NAME = 5.5
@@ -113,8 +102,8 @@ def key_rows(network: Network, settings: DrawingSettings, type_: TypeScale) -> t
     modes = list(dict.fromkeys(line.mode for line in lines))
     rows = []
     for mode in modes:
-        rows.append(_heading(_MODE_HEADINGS.get(mode, mode) if len(modes) > 1 else "Lines", type_))
-        rows += [_line_row(line, network, type_) for line in lines if line.mode == mode]
+        rows.append(_heading(MODE_NAMES.get(mode, mode) if len(modes) > 1 else "Lines", type_))
+        rows += [_line_row(line, network, settings, type_) for line in lines if line.mode == mode]
     signs = used_signs(network, settings)
     if signs:
         rows.append(_heading("Signs", type_))
@@ -171,12 +160,14 @@ def _heading(text: str, type_: TypeScale) -> KeyRow:
     return KeyRow("heading", text, "", text, (), 2.0 * type_.body)
 
 
-def _line_row(line: Line, network: Network, type_: TypeScale) -> KeyRow:
+def _line_row(line: Line, network: Network, settings: DrawingSettings, type_: TypeScale) -> KeyRow:
     in_badge = badge_fits(line.name)
     title = line_title(line, network)
     if not in_badge and title == line.name:
         title = line_course(line, network)
-    text = wrap(sentence((title, SERVICE_NOTES[line.service])), _MOST_TEXT * type_.body, type_.body)
+    often = how_often(line) if settings.show_headways else ""
+    words = sentence((title, SERVICE_NOTES[line.service], often))
+    text = wrap(words, _MOST_TEXT * type_.body, type_.body)
     count = len(text) + (0 if in_badge else 1)
     return KeyRow(
         kind="line",

@@ -35,6 +35,8 @@ class SheetSettings(BaseModel):
     """"auto" follows the network, or the order in which width and height are given."""
     margin_mm: float = Field(default=10.0, ge=0.0)
     """White margin on all sides, millimetres."""
+    png_dpi: float = Field(default=0.0, ge=0.0, le=2400.0)
+    """Resolution of a PNG image beside the PDF, pixels to the inch; 0 for none."""
 
     @field_validator("size")
     @classmethod
@@ -71,6 +73,8 @@ class DrawingSettings(BaseModel):
     colors: Literal["auto", "feed", "distinct"] = "auto"
     """"feed" keeps the feed's colours, "distinct" gives every line its own, "auto" replaces
     those that more than half of the lines share or that look like another."""
+    show_headways: bool = True
+    """Tell in the key how often each line runs by day on the service date."""
     show_step_free: bool = False
     """Mark step-free stations; off by default, since a feed's flags need a person's check."""
 

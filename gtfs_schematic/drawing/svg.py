@@ -12,6 +12,8 @@ from gtfs_schematic.labels import fonts
 
 _NOT_XML = re.compile("[^\t\n\r\x20-\ud7ff\ue000-\ufffd\U00010000-\U0010ffff]")
 """Characters that XML 1.0 forbids even when escaped."""
+_STEERS = re.compile("[\u061c\u200e\u200f\u202a-\u202e\u2066-\u2069]")
+"""Marks that turn the direction of text (Unicode Standard Annex 9): in a name they do harm only."""
 
 
 def to_svg(drawing: Drawing) -> bytes:
@@ -107,4 +109,4 @@ def _text(text: str) -> str:
 
 
 def _clean(text: str) -> str:
-    return _NOT_XML.sub("\ufffd", text)
+    return _NOT_XML.sub("\ufffd", _STEERS.sub("", text))

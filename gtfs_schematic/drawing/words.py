@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import datetime as dt
 import math
 import re
 from collections.abc import Sequence
@@ -27,6 +28,20 @@ SERVICE_NOTES: dict[ServicePattern, str] = {
     "night": "nights only",
     "some-days": "not every day",
 }
+MODE_NAMES = {
+    "metro": "Metro",
+    "rail": "Rail",
+    "monorail": "Monorail",
+    "tram": "Tram",
+    "cable": "Cable tram",
+    "funicular": "Funicular",
+    "aerial": "Aerial lift",
+    "bus": "Bus",
+    "trolleybus": "Trolleybus",
+    "ferry": "Ferry",
+    "other": "Other lines",
+}
+_DAYS = ("Monday", "Tuesday", "Wednesday", "Thursday", "Friday", "Saturday", "Sunday")
 _WORDS = re.compile(r"\S+(?:\s[–—/·-](?=\s|$))*")
 """Words, a dash or stroke between blanks staying with the word before it."""
 _NATURAL = re.compile(r"(\d+)")
@@ -113,10 +128,38 @@ def subtitle(network: Network) -> str:
     )
     parts = (
         validity(network),
-        f"Service of {info.service_date}" if info.service_date else "",
+        f"Service of {_dated(info.service_date)}" if info.service_date else "",
         f"Data: {source}" if source else "",
     )
     return "  ·  ".join(part for part in parts if part)
+
+
+def _dated(date: str) -> str:
+    """Give a date with its day of the week."""
+    try:
+        return f"{_DAYS[dt.date.fromisoformat(date).weekday()]} {date}"
+    except ValueError:
+        return date
+
+
+def how_often(line: Line) -> str:
+    """Give the time between departures, at midday if there are any; "" if unknown."""
+    midday = [part.headway_s for part in line.periods if part.period == "midday"]
+    headway = (midday[0] if midday else None) or line.headway_s
+    return f"every {max(1, round(headway / 60.0))} min" if headway else ""
+
+
+def hours(line: Line) -> str:
+    """Give the first and the last departure on the service date."""
+    first, last = _clock(line.first_departure_s), _clock(line.last_departure_s)
+    return f"departures from {first} to {last}"
+
+
+def _clock(seconds: int) -> str:
+    """Give a time of the clock; what lies past midnight is said to."""
+    days, rest = divmod(seconds, 86400)
+    text = f"{rest // 3600:02d}:{rest % 3600 // 60:02d}"
+    return f"{text} on the next day" if days > 0 else text
 
 
 def credits_line(network: Network, settings: DrawingSettings) -> str:
@@ -173,8 +216,12 @@ def station_title(station: Station, network: Network) -> str:
 def walk_title(walk: Walk, network: Network) -> str:
     """Give the text alternative of a walk, with its time in whole minutes, never too short."""
     ends = f"{_name(network, walk.start)} – {_name(network, walk.end)}"
-    time = "" if walk.time_s is None else f", {math.ceil(walk.time_s / 60)} min"
-    return f"Walk {ends}{time}"
+    return f"Walk {ends}{walk_time(walk.time_s)}"
+
+
+def walk_time(time_s: int | None) -> str:
+    """Give the time of a walk behind a comma, in whole minutes, never too short."""
+    return "" if time_s is None else f", {math.ceil(time_s / 60)} min"
 
 
 def description(network: Network) -> str:

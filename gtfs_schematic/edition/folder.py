@@ -20,12 +20,16 @@ EDITION_FILE = "edition.json"
 FILES = (
     "diagram.svg",
     "diagram.pdf",
+    "diagram.txt",
     EDITION_FILE,
     "drift.json",
     "drift.csv",
     "drift.html",
 )
-"""What an edition's folder holds, and nothing else."""
+"""What an edition's folder holds."""
+
+FILES_IF_WANTED = ("diagram.png",)
+"""What it may hold beside, and nothing else."""
 
 
 def write_folder(folder: StrPath, files: Mapping[str, bytes], *, overwrite: bool = False) -> None:
@@ -91,7 +95,7 @@ def check_target(folder: Path, *, overwrite: bool) -> None:
     names = sorted(entry.name for entry in folder.iterdir())
     if not names:
         return
-    strange = [name for name in names if name not in FILES]
+    strange = [name for name in names if name not in FILES + FILES_IF_WANTED]
     if strange or EDITION_FILE not in names or not _is_edition(folder):
         found = f"it holds {strange[0]!r}" if strange else f"it holds no readable {EDITION_FILE}"
         raise UsageError(

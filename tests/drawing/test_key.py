@@ -63,9 +63,9 @@ def test_lines_stand_by_mode_and_natural_name_with_their_service():
         "Metro", "U1", "Bus", "9", "10", "Ferry", "Uferschnellverbindung",
     ]  # fmt: skip
     notes = {row.name or row.bold_text: " ".join(row.text) for row in rows if row.kind == "line"}
-    assert notes["10"].endswith("nights only")
-    assert notes["U1"].endswith("peak hours only")
-    assert notes["9"] == "Line 2"
+    assert notes["10"].endswith("nights only, every 10 min")
+    assert notes["U1"].endswith("peak hours only, every 10 min")
+    assert notes["9"] == "Line 2, every 10 min"
 
 
 def test_the_key_explains_the_signs_in_use_and_no_others():
