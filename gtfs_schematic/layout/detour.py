@@ -24,7 +24,7 @@ STEPS: tuple[Place, ...] = (
 
 _BEND = (0.0, 1.0, 2.4)
 """Price of a turn by 0, 45 and 90 degrees, in station spacings of needless length."""
-_SAMPLES = 14
+_SAMPLES = 20
 
 
 @dataclass(frozen=True, slots=True)
@@ -75,16 +75,21 @@ def courses_onward(
 ) -> list[Course]:
     """Give courses of about a length from a fixed place to wherever, cheapest first."""
     found: list[Course] = []
-    for share in (1.0, 0.85, 1.2, 0.7):
+    for share, first in itertools.product((1.0, 0.85, 1.2, 0.7, 1.5), leaving):
         total = round(length_mm * share * UNITS_PER_MM)
-        for first in leaving:
-            corners = (start, _advance(start, first, total))
-            found.append(Course(corners, abs(1.0 - share) + _cost(corners, spacing_mm)))
-            for turn, part in itertools.product((-2, -1, 1, 2), (0.3, 0.5, 0.7)):
-                corner = _advance(start, first, round(total * part))
-                after = _advance(corner, (first + turn) % 8, total - round(total * part))
-                bent = (start, corner, after)
-                found.append(Course(bent, abs(1.0 - share) + _cost(bent, spacing_mm)))
+        odd = abs(1.0 - share)
+        corners = (start, _advance(start, first, total))
+        found.append(Course(corners, odd + _cost(corners, spacing_mm)))
+        for turn, part in itertools.product((-2, -1, 1, 2), (0.15, 0.3, 0.5, 0.7, 0.85)):
+            corner = _advance(start, first, round(total * part))
+            second = (first + turn) % 8
+            bent = (start, corner, _advance(corner, second, total - round(total * part)))
+            found.append(Course(bent, odd + _cost(bent, spacing_mm)))
+            for onward in (-1, 1):
+                middle = _advance(corner, second, round(total * (1.0 - part) / 2.0))
+                last = (second + onward) % 8
+                twice = (start, corner, middle, _advance(middle, last, round(total / 3.0)))
+                found.append(Course(twice, odd + _cost(twice, spacing_mm)))
     return sorted(found, key=lambda course: (round(course.cost, 6), course.corners))
 
 

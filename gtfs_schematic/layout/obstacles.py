@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import itertools
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 
@@ -49,6 +50,8 @@ class Obstacles:
     """Edges that the course crosses on the ground."""
     may: NDArray[np.bool_]
     """Edges that it may cross or not: on the ground they nearly touch."""
+    where: NDArray[np.int64]
+    """Per edge that must be crossed the number of the chain's edge that crosses it."""
     markers: NDArray[np.object_]
     own: NDArray[np.bool_]
     width: float
@@ -96,6 +99,7 @@ class Obstacles:
             shared,
             crosses & ~unsure,
             unsure,
+            _crossed_by(chain, courses, ground),
             shapely.points([at[s] for s in stations]),
             np.array([s in ends for s in stations], dtype=bool),
             max(_half(clearances, e.lines) for e in chain.edges),
@@ -103,8 +107,37 @@ class Obstacles:
             clearances.marker_mm / 2.0,
         )
 
+    def stations_along(self, path: tuple[Point, ...], count: int) -> list[float] | None:
+        """Share a path out among `count` edges, each of which crosses what it must.
+
+        Gives the lengths along the path at which the chain's stations stand, ends included,
+        millimetres; None if the path crosses what it must not, or in the wrong order.
+        """
+        line = shapely.LineString(path)
+        crossing = np.asarray(shapely.crosses(self.lines, line), dtype=bool)
+        if (self.must & ~crossing).any() or (crossing & ~(self.must | self.may)).any():
+            return None
+        low, high = np.zeros(count + 1), np.full(count + 1, line.length)
+        number = np.arange(count + 1)
+        margin = self.marker + self.width
+        for k in np.flatnonzero(self.must):
+            meeting = self.lines[k].intersection(line)
+            if meeting.geom_type != "Point":
+                return None
+            t, e = float(line.project(meeting)), int(self.where[k])
+            room = margin + float(self.half[k])
+            low = np.where(number > e, np.maximum(low, t + room), low)
+            high = np.where(number <= e, np.minimum(high, t - room), high)
+        even = np.linspace(0.0, line.length, count + 1)
+        stops = np.clip(even, low, high)
+        stops[0], stops[-1] = 0.0, line.length
+        gaps = np.diff(stops)
+        if (low[1:-1] > high[1:-1]).any() or (gaps < 2.0 * self.marker + self.clear).any():
+            return None
+        return [float(stop) for stop in stops]
+
     def allow(self, course: Course) -> bool:
-        """Whether a course keeps every guarantee."""
+        """Whether a course keeps the sheet, its distances, and its own shape."""
         line = shapely.LineString([point_of(corner) for corner in course.corners])
         frame = self.frame
         low_x, low_y, high_x, high_y = line.bounds
@@ -116,13 +149,23 @@ class Obstacles:
             return False
         crossing = np.asarray(shapely.crosses(self.lines, line), dtype=bool)
         touching = np.asarray(shapely.intersects(self.lines, line), dtype=bool)
-        if (self.must & ~crossing).any() or (crossing & ~(self.must | self.may)).any():
-            return False
         for other in self.lines[touching]:
             if other.intersection(line).geom_type != "Point":
                 return False
         tight = shapely.distance(self.lines, line) < self.half + self.width + self.clear
         return not (tight & ~crossing & ~self.shared).any()
+
+
+def _crossed_by(
+    chain: Chain, courses: NDArray[np.object_], ground: Mapping[str, Point]
+) -> NDArray[np.int64]:
+    """Give the number of the chain's first edge that crosses each course on the ground."""
+    where = np.zeros(len(courses), dtype=np.int64)
+    steps = list(itertools.pairwise(chain.stations))
+    for e, (a, b) in reversed(list(enumerate(steps))):
+        crosses = shapely.crosses(courses, shapely.LineString([ground[a], ground[b]]))
+        where[np.asarray(crosses, dtype=bool)] = e
+    return where
 
 
 def _half(clearances: Clearances, lines: int) -> float:

@@ -22,6 +22,7 @@ from gtfs_schematic.layout.ground import project
 from gtfs_schematic.layout.model import Clearances, Crossing, Layout, SheetFrame
 from gtfs_schematic.layout.obstacles import Chain, Edge, Obstacles
 from gtfs_schematic.layout.places import at_length, place_of, point_of, without_straights
+from gtfs_schematic.layout.snap import UNITS_PER_MM
 from gtfs_schematic.network.model import Network
 from gtfs_schematic.progress import Progress, Silent
 
@@ -113,14 +114,19 @@ class _Draft:
                 old[a][b], old[b][a] = path, path[::-1]
         gone = set(old) - set(self.at)
         for edge in self.edges.values():
-            way = _old_way(old, gone, edge.start, edge.end)
-            if way is not None:
-                self.path[edge.id] = way
+            if edge.end in old.get(edge.start, {}):
+                self.path[edge.id] = old[edge.start][edge.end]
+        drawn = {frozenset((e.start, e.end)) for e in self.edges.values()}
         for chain in self.chains():
             a, b = chain.stations[0], chain.stations[-1]
-            drawn = {frozenset((e.start, e.end)) for e in self.edges.values()}
-            if a in self.at and b in old.get(a, {}) and frozenset((a, b)) not in drawn:
-                self._set(chain, old[a][b])
+            way = None
+            if len(chain.edges) == 1 or frozenset((a, b)) not in drawn:
+                way = _old_way(old, gone, a, b)
+            if way is not None:
+                # A course that the ground no longer bears out must be laid anew.
+                stops = self._obstacles(chain).stations_along(way, len(chain.edges))
+                if stops is not None:
+                    self._set(chain, way, stops)
 
     def chains(self) -> list[Chain]:
         """Group the edges without a path into chains between fixed or branching stations."""
@@ -183,14 +189,23 @@ class _Draft:
         else:
             courses = courses_onward(start, leaving, len(chain.edges) * spacing, spacing)
         ranked = sorted(courses, key=lambda c: (self._rank(c, expected, spacing), c.corners))
-        placed = [(e, self.path[e.id]) for e in self.edges.values() if e.id in self.path]
-        limits = (self.clearances, self.frame)
-        obstacles = Obstacles.of(chain, placed, self.at, self.ground, limits)
+        obstacles = self._obstacles(chain)
         for course in ranked:
-            if obstacles.allow(course):
-                self._set(chain, tuple(point_of(corner) for corner in course.corners))
+            path = tuple(point_of(corner) for corner in course.corners)
+            stops = obstacles.stations_along(path, len(chain.edges))
+            if stops is not None and obstacles.allow(course):
+                self._set(chain, path, stops)
                 return True
         return False
+
+    def _obstacles(self, chain: Chain) -> Obstacles:
+        own = {edge.id for edge in chain.edges}
+        placed = [
+            (e, self.path[e.id])
+            for e in self.edges.values()
+            if e.id in self.path and e.id not in own
+        ]
+        return Obstacles.of(chain, placed, self.at, self.ground, (self.clearances, self.frame))
 
     def _rank(self, course: Course, expected: shapely.LineString, spacing: float) -> float:
         """Cost of a course with its distance from where the ground wants it."""
@@ -199,12 +214,11 @@ class _Draft:
         end = math.dist(point_of(course.corners[-1]), expected.coords[-1])
         return round(course.cost + (away + end) / spacing * 0.5, 6)
 
-    def _set(self, chain: Chain, path: tuple[Point, ...]) -> None:
-        """Put the chain's stations evenly on a path, and give each edge its share."""
+    def _set(self, chain: Chain, path: tuple[Point, ...], along: list[float]) -> None:
+        """Put the chain's stations on a path at lengths along it, and give each edge its share."""
         corners = [place_of(point) for point in path]
         lengths = [math.dist(a, b) for a, b in itertools.pairwise(corners)]
-        total, count = sum(lengths), len(chain.edges)
-        stops = [at_length(corners, lengths, total * i / count) for i in range(count + 1)]
+        stops = [at_length(corners, lengths, length * UNITS_PER_MM) for length in along]
         for i, edge in enumerate(chain.edges):
             (begin, k), (finish, m) = stops[i], stops[i + 1]
             run = [begin, *corners[k + 1 : m + 1], finish]
