@@ -183,7 +183,7 @@ def files_of(result: Result, limits: Sequence[Limit] | None = None) -> dict[str,
     image = {"diagram.png": to_png(result.drawing, dpi=dpi)} if dpi else {}
     return image | {
         "diagram.svg": svg,
-        "diagram.pdf": to_pdf(result.drawing),
+        "diagram.pdf": to_pdf(result.drawing, bleed_mm=result.settings.sheet.bleed_mm),
         "diagram.txt": to_text(result.network, result.settings.drawing),
         "edition.json": edition_to_json(result.edition),
         "drift.json": drift_to_json(result.drift, judged),

@@ -18,14 +18,18 @@ from gtfs_schematic.drawing.sheet import candidate_frames
 from gtfs_schematic.geometry import Point
 from gtfs_schematic.labels import fonts
 from gtfs_schematic.labels.model import Label, LabelledLayout, LabelSettings, TextLine
-from gtfs_schematic.layout.model import Layout
+from gtfs_schematic.layout.model import Layout, SheetFrame
 
 SETTINGS = DrawingSettings(attribution="Fahrplandaten: Verkehrsbund Auenland-Mitte, frei nutzbar.")
 
 
 def on_page(layout: Layout, size: str = "A3") -> Layout:
     """Move a hand-made layout into the frame of a real page."""
-    frame = candidate_frames(layout.network, SheetSettings(size=size), SETTINGS)[0]
+    return in_frame(layout, candidate_frames(layout.network, SheetSettings(size=size), SETTINGS)[0])
+
+
+def in_frame(layout: Layout, frame: SheetFrame) -> Layout:
+    """Move a hand-made layout into the middle of a frame."""
     xs = [x for x, _ in layout.positions.values()]
     ys = [y for _, y in layout.positions.values()]
     dx = (frame.left_mm + frame.right_mm - min(xs) - max(xs)) / 2.0

@@ -15,14 +15,23 @@ _TAGS = {
     "key-heading": "H2",
     "sheet-subtitle": "P",
     "key-row": "P",
+    "index-row": "P",
     "station": "P",
     "note": "P",
 }
 """Structure types of ISO 32000 for the groups that hold words, by class."""
 
 
-def paint(context: Any, drawing: Drawing, *, tagged: bool) -> None:  # noqa: ANN401 - untyped library
+def paint(
+    context: Any,  # noqa: ANN401 - untyped library
+    drawing: Drawing,
+    *,
+    tagged: bool,
+    bleed_mm: float = 0.0,
+) -> None:
     """Paint a drawing on a context whose unit is the millimetre, y down.
+
+    The background reaches `bleed_mm` beyond the sheet on all sides.
 
     `tagged` adds the structure that lets a reading aid find heading, key, stations and notes.
     """
@@ -34,7 +43,13 @@ def paint(context: Any, drawing: Drawing, *, tagged: bool) -> None:  # noqa: ANN
     context.set_font_options(options)
     context.set_line_join(module.LINE_JOIN_ROUND)
     context.set_source_rgb(*_rgb(drawing.background))
-    context.paint()
+    context.rectangle(
+        -bleed_mm,
+        -bleed_mm,
+        drawing.width_mm + 2.0 * bleed_mm,
+        drawing.height_mm + 2.0 * bleed_mm,
+    )
+    context.fill()
     if tagged:
         context.tag_begin("Document")
     for group in drawing.groups:

@@ -5,11 +5,13 @@ from __future__ import annotations
 from gtfs_schematic.drawing.furniture import key_group, notes_group, title_group
 from gtfs_schematic.drawing.lines import line_groups, name_groups, walk_groups
 from gtfs_schematic.drawing.model import Drawing, DrawingSettings, Group
-from gtfs_schematic.drawing.page import plan_of_frame
+from gtfs_schematic.drawing.page import Page, plan_of_frame
+from gtfs_schematic.drawing.register import grid_group, reference, register_group
 from gtfs_schematic.drawing.stations import marker_look, station_groups
 from gtfs_schematic.drawing.style import line_styles
 from gtfs_schematic.drawing.words import description, sheet_title
 from gtfs_schematic.labels.model import LabelledLayout
+from gtfs_schematic.layout.model import Layout
 
 
 def compose(labelled: LabelledLayout, settings: DrawingSettings) -> Drawing:
@@ -37,11 +39,26 @@ def compose(labelled: LabelledLayout, settings: DrawingSettings) -> Drawing:
         background=settings.background,
         groups=(
             title_group(page, settings),
+            *_grid(page, settings),
             Group("walks", tuple(walk_groups(layout, settings))),
             Group("lines", tuple(line_groups(bundled, styles, settings.background))),
             Group("line-names", tuple(name_groups(labelled, styles, settings.background))),
             Group("stations", tuple(station_groups(labelled, styles, settings))),
             key_group(page, network, settings, marker_look(labelled, settings)),
+            *_register(page, layout, settings),
             notes_group(page, settings),
         ),
     )
+
+
+def _grid(page: Page, settings: DrawingSettings) -> tuple[Group, ...]:
+    """Give the grid if there is an index."""
+    return (grid_group(page.frame, page.type, settings),) if page.register else ()
+
+
+def _register(page: Page, layout: Layout, settings: DrawingSettings) -> tuple[Group, ...]:
+    """Give the index if one is wanted."""
+    if page.register is None:
+        return ()
+    places = {key: reference(at, page.frame, page.type) for key, at in layout.positions.items()}
+    return (register_group(page.register, page.register_at, places, page.type, settings.ink),)

@@ -20,12 +20,16 @@ from gtfs_schematic.drawing.style import (
     weight,
 )
 from gtfs_schematic.drawing.words import line_course, walk_title
+from gtfs_schematic.geometry import Point, distance
 from gtfs_schematic.labels import fonts
 from gtfs_schematic.labels.model import LabelledLayout
 from gtfs_schematic.layout.model import Layout
 from gtfs_schematic.network.model import Line
 
 _WALK_CORNER_MM = 2.0
+_ARROWS_MM = 30.0
+"""Arrowheads of one line in one direction keep this apart."""
+_SAME_WAY = 0.7
 
 
 def walk_groups(layout: Layout, settings: DrawingSettings) -> Iterator[Group]:
@@ -99,8 +103,9 @@ def name_groups(
 
 
 def _direction_marks(bundled: BundledLayout, line: Line, width: float) -> Iterator[PathShape]:
-    """Give an arrowhead on every link that a line runs in one direction only."""
+    """Give arrowheads where a line runs in one direction only, not too near to each other."""
     layout = bundled.layout
+    drawn: list[tuple[Point, Point]] = []
     for start, end in line.one_way_links:
         link = layout.network.link_between.get(frozenset((start, end)))
         if link is None or link.id not in layout.paths:
@@ -109,8 +114,16 @@ def _direction_marks(bundled: BundledLayout, line: Line, width: float) -> Iterat
         found = on_line(
             bundled, line.id, *straight_middle(path if link.start == start else path[::-1])
         )
-        if found is not None:
-            yield chevron(*found, 0.34 * width, line.text_color)
+        if found is None or any(_repeats(found, other) for other in drawn):
+            continue
+        drawn.append(found)
+        yield chevron(*found, 0.34 * width, line.text_color)
+
+
+def _repeats(one: tuple[Point, Point], other: tuple[Point, Point]) -> bool:
+    """Tell whether an arrowhead would say again what one near by says already."""
+    same_way = one[1][0] * other[1][0] + one[1][1] * other[1][1] > _SAME_WAY
+    return same_way and distance(one[0], other[0]) < _ARROWS_MM
 
 
 def _paint_order(line: Line) -> tuple[int, int, str]:

@@ -13,6 +13,7 @@ from gtfs_schematic.drawing.model import DrawingSettings
 from gtfs_schematic.drawing.words import (
     MODE_NAMES,
     SERVICE_NOTES,
+    alphabetical,
     hours,
     how_often,
     line_title,
@@ -56,7 +57,7 @@ class _Book:
             yield from self._line(line)
         yield ""
         yield "STATIONS"
-        for station in sorted(network.stations, key=lambda s: (natural(s.name), s.id)):
+        for station in sorted(network.stations, key=lambda s: (alphabetical(s.name), s.id)):
             yield self._station(station)
         yield ""
         yield "NOTES"
@@ -105,7 +106,8 @@ class _Book:
 
     def _walks(self, station_id: str) -> list[tuple[str, int | None]]:
         return sorted(
-            self.walks.get(station_id, ()), key=lambda walk: (natural(self._name(walk[0])), walk[0])
+            self.walks.get(station_id, ()),
+            key=lambda walk: (alphabetical(self._name(walk[0])), walk[0]),
         )
 
     def _name(self, station_id: str) -> str:

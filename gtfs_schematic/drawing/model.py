@@ -33,10 +33,20 @@ class SheetSettings(BaseModel):
     """"auto", a size of ISO 216 from A5 to A0, 2A0, 4A0, or width and height in mm: "420x297"."""
     orientation: Literal["auto", "portrait", "landscape"] = "auto"
     """"auto" follows the network, or the order in which width and height are given."""
-    margin_mm: float = Field(default=10.0, ge=0.0)
-    """White margin on all sides, millimetres."""
+    margin_mm: float | Literal["auto"] = "auto"
+    """White margin on all sides, millimetres; "auto" is 10 on A4 and grows with the sheet."""
+    bleed_mm: float = Field(default=0.0, ge=0.0, le=20.0)
+    """How far the PDF's background reaches beyond the sheet's edge, with crop marks; 0 for none."""
     png_dpi: float = Field(default=0.0, ge=0.0, le=2400.0)
     """Resolution of a PNG image beside the PDF, pixels to the inch; 0 for none."""
+
+    @field_validator("margin_mm")
+    @classmethod
+    def _not_negative(cls, margin: float | str) -> float | str:
+        """Refuse a margin outside of the sheet."""
+        if not isinstance(margin, str) and margin < 0.0:
+            raise ValueError('the margin must be "auto", 0 or more millimetres')
+        return margin
 
     @field_validator("size")
     @classmethod
@@ -73,6 +83,10 @@ class DrawingSettings(BaseModel):
     colors: Literal["auto", "feed", "distinct"] = "auto"
     """"feed" keeps the feed's colours, "distinct" gives every line its own, "auto" replaces
     those that more than half of the lines share or that look like another."""
+    body_size_pt: float = Field(default=8.0, gt=0.0)
+    """Type size of key and notes on A4, points; it and the title's grow with the sheet."""
+    index: bool = False
+    """List all stations with the square of a grid in which each stands."""
     show_headways: bool = True
     """Tell in the key how often each line runs by day on the service date."""
     show_step_free: bool = False

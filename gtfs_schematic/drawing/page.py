@@ -7,6 +7,7 @@ from typing import Literal
 
 from gtfs_schematic.drawing.key import Key, key_below, key_beside
 from gtfs_schematic.drawing.model import DrawingSettings
+from gtfs_schematic.drawing.register import Register, register_of
 from gtfs_schematic.drawing.style import LEADING, TypeScale, type_scale
 from gtfs_schematic.drawing.words import notes, sheet_title, subtitle, wrap
 from gtfs_schematic.geometry import Point
@@ -41,6 +42,8 @@ class Page:
     notes: tuple[TextBlock, ...]
     rule_y: float
     """Height of the hairline above the notes."""
+    register: Register | None = None
+    register_at: Point = (0.0, 0.0)
 
 
 def plan_page(
@@ -57,7 +60,7 @@ def plan_page(
     """
     width, height = size_mm
     inner = width - 2.0 * margin_mm
-    type_ = type_scale(width, height)
+    type_ = type_scale(width, height, settings.body_size_pt)
     title = wrap(sheet_title(network, settings), inner, type_.title, bold=True)
     under = wrap(subtitle(network), inner, type_.subtitle)
     title_y = margin_mm + 0.8 * type_.title
@@ -66,6 +69,11 @@ def plan_page(
     blocks, rule_y = _notes(network, settings, type_, (width, height), margin_mm)
     bottom = rule_y - 1.5 * type_.body
     gap = 2.5 * type_.body
+    register = register_of(network, type_, inner) if settings.index else None
+    if register:
+        top += 0.6 * type_.body
+        bottom -= register.height + 0.5 * gap
+    register_at = (margin_mm, bottom + 0.5 * gap)
     right = width - margin_mm
     if place == "beside":
         key = key_beside(network, settings, type_, bottom - top)
@@ -84,6 +92,8 @@ def plan_page(
         key_at=key_at,
         notes=blocks,
         rule_y=rule_y,
+        register=register,
+        register_at=register_at,
     )
 
 

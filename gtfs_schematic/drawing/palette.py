@@ -11,7 +11,13 @@ from dataclasses import replace
 
 import numpy as np
 
-from gtfs_schematic.drawing.contrast import GRAPHIC_MINIMUM, TEXT_MINIMUM, contrast_ratio
+from gtfs_schematic.drawing.contrast import (
+    GRAPHIC_MINIMUM,
+    TEXT_MINIMUM,
+    contrast_ratio,
+    mix,
+    relative_luminance,
+)
 from gtfs_schematic.drawing.difference import VISIONS, Floats, differences, seen
 from gtfs_schematic.drawing.model import DrawingSettings
 from gtfs_schematic.feed.model import Finding
@@ -40,13 +46,14 @@ def recolored(network: Network, settings: DrawingSettings) -> Network:
        that have it. Lines of the very same colour are the operator's family and stay one.
     3. With ``colors = "distinct"`` every line has a colour of its own, also as simulated for
        colour-vision deficiency as far as that goes; with "feed" 1 and 2 are left out.
-    4. Names of lines that cannot be read on them become black or white (WCAG 2.2, 1.4.3).
+    4. On dark paper, colours that would not show (WCAG 2.2, 1.4.11) are mixed with the ink.
+    5. Names of lines that cannot be read on them become black or white (WCAG 2.2, 1.4.3).
     """
     wanted = {} if settings.colors == "feed" else _replaced(network, settings)
     findings = list(_told(network, wanted))
     lines = []
     for line in network.lines:
-        color = wanted.get(line.id, line.color)
+        color = _showing(wanted.get(line.id, line.color), settings)
         ratio = contrast_ratio(line.text_color, color)
         text = line.text_color if ratio >= TEXT_MINIMUM else _readable_on(color)
         if text != line.text_color and color == line.color:
@@ -59,6 +66,19 @@ def recolored(network: Network, settings: DrawingSettings) -> Network:
         lines.append(replace(line, color=color, text_color=text, color_from_feed=own))
     findings += _alike_in_simulation(lines)
     return replace(network, lines=tuple(lines), findings=(*network.findings, *findings))
+
+
+def _showing(color: str, settings: DrawingSettings) -> str:
+    """Give a colour with as much ink as makes it show on dark paper.
+
+    On light paper a pale line keeps its colour, which riders know, and gets an edge instead.
+    """
+    if relative_luminance(settings.background) > relative_luminance(settings.ink):
+        return color
+    lighter = (mix(color, settings.ink, twentieths / 20.0) for twentieths in range(20))
+    return next(
+        (c for c in lighter if contrast_ratio(c, settings.background) >= GRAPHIC_MINIMUM), color
+    )
 
 
 def _replaced(network: Network, settings: DrawingSettings) -> dict[str, str]:

@@ -6,11 +6,14 @@ import math
 
 from gtfs_schematic.drawing.model import SHEET_SIZES, DrawingSettings, SheetSettings
 from gtfs_schematic.drawing.page import Place, plan_page
+from gtfs_schematic.drawing.style import type_scale
 from gtfs_schematic.errors import UsageError
 from gtfs_schematic.layout.model import SheetFrame
 from gtfs_schematic.network.model import Network
 
 _AUTO = ("A4", "A3", "A2", "A1", "A0", "2A0", "4A0")
+_MARGIN_MM = 10.0
+"""White margin on A4; it grows with the type."""
 _SQUARE = 1.2
 """Networks no more oblong than this may stand on a sheet of either orientation."""
 _LEAST_SHARE = 0.3
@@ -81,7 +84,8 @@ def _usable_frames(
 ) -> list[SheetFrame]:
     """Give the frames of a page that are large enough to hold a network, the likelier first."""
     shape = _extent(network)
-    frames = [plan_page(network, drawing, size, sheet.margin_mm, place).frame for place in _PLACES]
+    margin = _MARGIN_MM * type_scale(*size).scale if sheet.margin_mm == "auto" else sheet.margin_mm
+    frames = [plan_page(network, drawing, size, margin, place).frame for place in _PLACES]
     usable = [frame for frame in frames if min(_sides(frame)) >= _LEAST_SIDE_MM]
     return sorted(usable, key=lambda frame: -_scale(frame, shape))
 

@@ -31,6 +31,7 @@ _DASHES: dict[str, tuple[float, ...]] = {
 """In line widths, with butt ends."""
 _BEADS = (0.0, 1.5)
 EDGE_MM = 0.2
+_BODY_PT = 8.0
 WALK_WIDTH_MM = 1.3
 
 
@@ -171,13 +172,18 @@ class TypeScale:
     """How much larger than on A4 the body is."""
 
 
-def type_scale(width_mm: float, height_mm: float) -> TypeScale:
-    """Give the type sizes for a page; A4 has a short side of 210 mm."""
+def type_scale(width_mm: float, height_mm: float, body_pt: float = 8.0) -> TypeScale:
+    """Give the type sizes for a page; A4 has a short side of 210 mm.
+
+    `body_pt` is the body's size on A4; from 8 points on it grows with larger sheets, and one above
+    is large enough until that growth reaches it.
+    """
     share = min(width_mm, height_mm) / 210.0
     scale = max(1.0, math.sqrt(share))
+    body = max(body_pt, min(body_pt, _BODY_PT) * scale)
     return TypeScale(
-        title=max(14.0, 19.0 * share**0.75) * MM_PER_POINT,
-        subtitle=9.0 * scale * MM_PER_POINT,
-        body=8.0 * scale * MM_PER_POINT,
+        title=max(14.0, 19.0 * share**0.75, 1.5 * body) * MM_PER_POINT,
+        subtitle=1.125 * body * MM_PER_POINT,
+        body=body * MM_PER_POINT,
         scale=scale,
     )

@@ -5,6 +5,7 @@ from __future__ import annotations
 import datetime as dt
 import math
 import re
+import unicodedata
 from collections.abc import Sequence
 
 from gtfs_schematic.drawing.model import DrawingSettings, TextShape
@@ -98,6 +99,12 @@ def natural(text: str) -> tuple[tuple[int, int, str], ...]:
         for part in _NATURAL.split(text)
         if part
     )
+
+
+def alphabetical(text: str) -> tuple[tuple[tuple[int, int, str], ...], ...]:
+    """Give a sort key that puts a letter with a mark beside the one without."""
+    bare = "".join(c for c in unicodedata.normalize("NFKD", text) if not unicodedata.combining(c))
+    return natural(bare), natural(text)
 
 
 def sheet_title(network: Network, settings: DrawingSettings) -> str:

@@ -102,3 +102,12 @@ def test_colors_that_only_some_eyes_confuse_are_named():
 
 def test_more_lines_than_colors_still_get_one():
     assert len(recolored(network(*["#7BC142"] * 400), DrawingSettings()).lines) == 400
+
+
+def test_on_dark_paper_every_color_shows_and_on_light_paper_it_stays():
+    dark = DrawingSettings(background="#14181D", ink="#F1F3F5", colors="feed")
+    before = network("#23275F", "#C23A3A", "#FFE45C")
+    after = recolored(before, dark)
+    assert all(contrast_ratio(color, "#14181D") >= 3.0 for color in colors(after))
+    assert colors(after)[1:] == colors(before)[1:]
+    assert colors(recolored(before, DrawingSettings(colors="feed"))) == colors(before)

@@ -124,3 +124,33 @@ def test_text_stands_where_it_should():
     assert [p == pytest.approx((10.0, y), abs=0.01) for p, y in zip(places, (20, 30), strict=True)]
     assert places[0] == pytest.approx((10.0, 20.0), abs=0.01)
     assert places[1] == pytest.approx((10.0, 30.0), abs=0.01)
+
+
+def test_a_bleed_enlarges_the_page_round_the_sheet(drawing: Drawing):
+    page = pypdf.PdfReader(io.BytesIO(to_pdf(drawing, bleed_mm=3.0))).pages[0]
+    point = 72.0 / 25.4
+    trim, bleed, media = page.trimbox, page.bleedbox, page.mediabox
+    assert float(trim.width) == pytest.approx(drawing.width_mm * point, abs=0.01)
+    assert float(trim.height) == pytest.approx(drawing.height_mm * point, abs=0.01)
+    for near, far in (("left", "right"), ("bottom", "top")):
+        for inner, outer, least in ((trim, bleed, 3.0), (bleed, media, 4.0)):
+            assert float(getattr(inner, near)) - float(getattr(outer, near)) >= least * point - 0.01
+            assert float(getattr(outer, far)) - float(getattr(inner, far)) >= least * point - 0.01
+
+
+def test_crop_marks_are_drawn_outside_of_the_bleed_only(drawing: Drawing):
+    reader = pypdf.PdfReader(io.BytesIO(to_pdf(drawing, bleed_mm=3.0)))
+    page = reader.pages[0]
+    content = pypdf.generic.ContentStream(page.get_contents(), reader).operations
+    last = max(i for i, (_, operator) in enumerate(content) if operator == b"S")
+    marks = []
+    while content[last - 1][1] in (b"m", b"l"):
+        last -= 1
+        marks.append(tuple(map(float, content[last][0])))
+    assert len(marks) == 16  # two hairlines at each corner, each from here to there
+    # Cairo's unit is the point with y down from the upper edge of the page.
+    bleed, height = page.bleedbox, float(page.mediabox.height)
+    for x, y in marks:
+        level = height - y
+        inside = bleed.left + 0.01 < x < bleed.right - 0.01
+        assert not (inside and bleed.bottom + 0.01 < level < bleed.top - 0.01)
