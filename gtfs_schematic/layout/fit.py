@@ -160,7 +160,8 @@ def part_wants(graph: PlaneGraph, sizes: Sizes) -> tuple[NDArray[np.float64], ..
     Returns
     -------
     tuple
-        Per piece an array of shape (parts, 2): wanted share, least length in millimetres.
+        Per piece an array of shape (parts, 3): wanted share, least and wished length in
+        millimetres.
     """
     a, b = graph.segments.T
     true = np.hypot(*(graph.points[a] - graph.points[b]).T)
@@ -170,11 +171,12 @@ def part_wants(graph: PlaneGraph, sizes: Sizes) -> tuple[NDArray[np.float64], ..
     for piece in graph.pieces:
         stop = start + len(piece.parts)
         shares = np.array([part.share for part in piece.parts])
-        least = np.array([_part_least(part, sizes) for part in piece.parts])
+        least = np.array([part.share * sizes.link_least[part.owner] for part in piece.parts])
+        wish = np.array([part.share * sizes.link_wishes.get(part.owner, 0) for part in piece.parts])
         run = true[start:stop]
         run = run / max(float(run.sum()), 1e-9)
         blend = run**power * (shares / shares.sum()) ** (1.0 - power)
-        wants.append(np.column_stack([blend, least]))
+        wants.append(np.column_stack([blend, least, wish]))
         start = stop
     return tuple(wants)
 
