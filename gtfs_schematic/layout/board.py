@@ -9,9 +9,10 @@ import shapely
 from numpy.typing import NDArray
 
 from gtfs_schematic.layout import router
+from gtfs_schematic.layout.lattice import BLOCKED, DX, DY, FREE, Lattice, direction, mark
 from gtfs_schematic.layout.objective import Weights, port_bearing_costs, turn_costs
 from gtfs_schematic.layout.plane import PlaneGraph
-from gtfs_schematic.layout.router import BLOCKED, DX, DY, FREE, Lattice, Prices, Trip
+from gtfs_schematic.layout.router import Prices, Trip
 
 _MARGIN_SPACINGS = 5.0
 
@@ -112,15 +113,15 @@ class Board:
     def lay(self, p: int, path: NDArray[np.int64]) -> None:
         """Lay the path of piece `p`, from its first end to its second."""
         self.paths[p] = path
-        router.mark(path, self.n + p, self.lattice)
-        self.ports[2 * p] = router.direction(path[0], path[1], self.width)
-        self.ports[2 * p + 1] = router.direction(path[-1], path[-2], self.width)
+        mark(path, self.n + p, self.lattice)
+        self.ports[2 * p] = direction(path[0], path[1], self.width)
+        self.ports[2 * p + 1] = direction(path[-1], path[-2], self.width)
 
     def lift(self, p: int) -> NDArray[np.int64]:
         """Lift the path of piece `p` and give it back."""
         path = self.paths[p]
         assert path is not None  # noqa: S101 - callers lift only what is laid
-        router.mark(path, FREE, self.lattice)
+        mark(path, FREE, self.lattice)
         self.paths[p] = None
         self.ports[2 * p] = self.ports[2 * p + 1] = -1
         return path

@@ -7,10 +7,9 @@ import shapely
 from numpy.typing import NDArray
 
 from gtfs_schematic.errors import LayoutError
-from gtfs_schematic.layout import router
 from gtfs_schematic.layout.board import Board
+from gtfs_schematic.layout.lattice import BLOCKED, encloses
 from gtfs_schematic.layout.plane import PlaneGraph
-from gtfs_schematic.layout.router import BLOCKED
 
 _MARGINS = (1.0, 3.0, 8.0)
 _CLAIM_STEPS = 0.75
@@ -105,7 +104,7 @@ def _insert(board: Board, p: int, course: NDArray[np.float64]) -> bool:
         if cost >= BLOCKED or len(np.unique(path)) != len(path):
             continue
         ring = np.concatenate([board.xy(path), course[::-1]])
-        if not router.encloses(ring, vertices):
+        if not encloses(ring, vertices):
             board.lay(p, path)
             return True
     return False

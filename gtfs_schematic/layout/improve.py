@@ -4,9 +4,8 @@ from __future__ import annotations
 
 import numpy as np
 
-from gtfs_schematic.layout import router
 from gtfs_schematic.layout.board import Board
-from gtfs_schematic.layout.router import BLOCKED, DX, DY
+from gtfs_schematic.layout.lattice import BLOCKED, DX, DY, encloses
 from gtfs_schematic.progress import Progress
 
 _MARGIN = 2.0
@@ -130,7 +129,7 @@ def _sweeps_over(
     stay = board.xy(np.array([n for v, n in enumerate(board.place) if n >= 0 and v not in block]))
     for _, old, new in changes:
         ring = board.xy(np.concatenate([old, new[::-1]]))
-        if router.encloses(ring, stay):
+        if encloses(ring, stay):
             return True
     return False
 

@@ -8,7 +8,7 @@ from functools import cache
 import numpy as np
 from numpy.typing import NDArray
 
-from gtfs_schematic.layout.router import BLOCKED
+from gtfs_schematic.layout.lattice import BLOCKED
 
 
 @dataclass(frozen=True, slots=True)

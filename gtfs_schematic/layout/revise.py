@@ -23,6 +23,7 @@ from gtfs_schematic.layout.model import Clearances, Crossing, Layout, SheetFrame
 from gtfs_schematic.layout.obstacles import Chain, Edge, Obstacles
 from gtfs_schematic.layout.places import at_length, place_of, point_of, without_straights
 from gtfs_schematic.layout.snap import UNITS_PER_MM
+from gtfs_schematic.layout.ways import way_through, ways_of
 from gtfs_schematic.network.model import Network
 from gtfs_schematic.progress import Progress, Silent
 
@@ -106,12 +107,7 @@ class _Draft:
     def keep(self, positions: Mapping[str, Point], paths: Mapping[str, tuple[Point, ...]]) -> None:
         """Take over places and paths; join the paths of closed stations, divide for opened."""
         self.at = {s.id: positions[s.id] for s in self.network.stations if s.id in positions}
-        station_at = {point: station for station, point in sorted(positions.items())}
-        old: dict[str, dict[str, tuple[Point, ...]]] = defaultdict(dict)
-        for _, path in sorted(paths.items()):
-            a, b = station_at.get(path[0]), station_at.get(path[-1])
-            if a is not None and b is not None:
-                old[a][b], old[b][a] = path, path[::-1]
+        old = ways_of(positions, paths)
         gone = set(old) - set(self.at)
         for edge in self.edges.values():
             if edge.end in old.get(edge.start, {}):
@@ -121,7 +117,7 @@ class _Draft:
             a, b = chain.stations[0], chain.stations[-1]
             way = None
             if len(chain.edges) == 1 or frozenset((a, b)) not in drawn:
-                way = _old_way(old, gone, a, b)
+                way = way_through(old, gone, a, b)
             if way is not None:
                 # A course that the ground no longer bears out must be laid anew.
                 stops = self._obstacles(chain).stations_along(way, len(chain.edges))
@@ -312,24 +308,3 @@ class _Draft:
             {w.id: self.path[w.id] for w in self.network.walks},
             tuple(sorted(crossings, key=lambda c: (c.first, c.second, c.at_mm))),
         )
-
-
-def _old_way(
-    old: Mapping[str, Mapping[str, tuple[Point, ...]]], gone: set[str], start: str, end: str
-) -> tuple[Point, ...] | None:
-    """Path of the previous drawing between two stations through closed ones only."""
-    if end in old.get(start, {}):
-        return old[start][end]
-    ways: list[tuple[str, tuple[Point, ...]]] = [(start, ())]
-    seen = {start}
-    while ways:
-        here, way = ways.pop(0)
-        for there in sorted(old.get(here, {})):
-            onward = (*way, *old[here][there][bool(way) :])
-            if there == end:
-                places = without_straights([place_of(point) for point in onward])
-                return tuple(point_of(place) for place in places)
-            if there in gone and there not in seen:
-                seen.add(there)
-                ways.append((there, onward))
-    return None
