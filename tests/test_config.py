@@ -33,7 +33,8 @@ def test_every_config_in_the_repository_is_valid():
     files = sorted(STANDARD.parent.glob("*.toml"))
     assert STANDARD in files
     for file in files:
-        assert isinstance(settings_from_toml(file.read_bytes(), file.name), Settings)
+        settings = settings_from_toml(file.read_bytes(), file.name)
+        assert (settings == Settings()) == (file == STANDARD), file
 
 
 def test_what_a_file_leaves_out_keeps_its_default():

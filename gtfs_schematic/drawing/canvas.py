@@ -18,8 +18,9 @@ _TAGS = {
     "index-row": "P",
     "station": "P",
     "note": "P",
+    "lines": "Figure",
 }
-"""Structure types of ISO 32000 for the groups that hold words, by class."""
+"""Structure types of ISO 32000 for the groups that hold words, and for the diagram, by class."""
 
 
 def paint(

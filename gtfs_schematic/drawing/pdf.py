@@ -66,7 +66,7 @@ def _crop_marks(context: Any, drawing: Drawing, bleed_mm: float) -> None:  # noq
 
 
 def _finished(data: bytes, drawing: Drawing, bleed_mm: float) -> bytes:
-    """Add what cairo does not write: language, boxes, XMP, plain letters for ligatures."""
+    """Add what cairo does not write: language, boxes, XMP, text for ligatures and the diagram."""
     with pikepdf.open(io.BytesIO(data)) as pdf:
         page = pdf.pages[0]
         for box, beyond in _boxes(bleed_mm).items():
@@ -84,6 +84,9 @@ def _finished(data: bytes, drawing: Drawing, bleed_mm: float) -> bytes:
             metadata["dc:language"] = [drawing.lang]
             metadata["pdf:Producer"] = _PRODUCER
         _spell_ligatures(pdf)
+        for item in pdf.objects:
+            if isinstance(item, pikepdf.Dictionary) and item.get("/S") == "/Figure":
+                item.Alt = pikepdf.String(drawing.description)
         out = io.BytesIO()
         pdf.save(out, deterministic_id=True, compress_streams=True)
     return out.getvalue()

@@ -25,6 +25,7 @@ REGULAR_WEIGHT = 400.0
 BOLD_WEIGHT = 700.0
 
 _VARIABLE_FILE = fontpkg_noto_sans.ROOT / "files" / "NotoSans[wdth,wght].ttf"
+_REGULAR_TO_BOLD = ("Regular".encode("utf-16-be"), "Bold".encode("utf-16-be"))
 _NEUTRAL_SCRIPTS = frozenset({None, "Zyyy", "Zinh", "Zzzz"})
 
 
@@ -59,7 +60,29 @@ def font_data(*, bold: bool = False) -> bytes:
     for axis in face.axis_infos:
         value = weight if axis.tag == "wght" else axis.default_value
         wanted.pin_axis_location(face, axis.tag, value)
-    return bytes(hb.subset(face, wanted).blob.data)
+    data = bytes(hb.subset(face, wanted).blob.data)
+    return _named_bold(data) if bold else data
+
+
+def _named_bold(data: bytes) -> bytes:
+    """Say "Bold" where a font's names say "Regular": files that embed it take its name from there.
+
+    Names are written over in place (OpenType specification, "name" and table directory).
+    """
+    font = bytearray(data)
+    tables = {
+        bytes(font[at : at + 4]): int.from_bytes(font[at + 8 : at + 12], "big")
+        for at in range(12, 12 + 16 * int.from_bytes(font[4:6], "big"), 16)
+    }
+    table = tables[b"name"]
+    count, storage = (int.from_bytes(font[table + i : table + i + 2], "big") for i in (2, 4))
+    for record in range(table + 6, table + 6 + 12 * count, 12):
+        length, offset = (int.from_bytes(font[record + i : record + i + 2], "big") for i in (8, 10))
+        start = table + storage + offset
+        renamed = data[start : start + length].replace(*_REGULAR_TO_BOLD)
+        font[start : start + len(renamed)] = renamed
+        font[record + 8 : record + 10] = len(renamed).to_bytes(2, "big")
+    return bytes(font)
 
 
 def font_path(*, bold: bool = False) -> Path:

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import io
 import re
+from collections.abc import Iterator
 from typing import Any
 
 import pypdf
@@ -86,7 +87,7 @@ def test_the_structure_begins_with_the_title(reader: pypdf.PdfReader):
     kinds = [child.get_object()["/S"] for child in document["/K"]]
     assert document["/S"] == "/Document"
     assert kinds[0] == "/H1"
-    assert set(kinds) <= {"/H1", "/H2", "/P"}
+    assert set(kinds) <= {"/H1", "/H2", "/P", "/Figure"}
 
 
 def test_the_same_drawing_gives_the_same_bytes(drawing: Drawing):
@@ -124,6 +125,26 @@ def test_text_stands_where_it_should():
     assert [p == pytest.approx((10.0, y), abs=0.01) for p, y in zip(places, (20, 30), strict=True)]
     assert places[0] == pytest.approx((10.0, 20.0), abs=0.01)
     assert places[1] == pytest.approx((10.0, 30.0), abs=0.01)
+
+
+def test_the_diagram_has_its_alternative_text(reader: pypdf.PdfReader, drawing: Drawing):
+    def elements(item: Any) -> Iterator[Any]:  # noqa: ANN401 - pypdf's objects
+        item = item.get_object()
+        if isinstance(item, pypdf.generic.DictionaryObject):
+            yield item
+            kids = item.get("/K")
+            kids = kids if isinstance(kids, list) else [kids] if kids is not None else []
+            for kid in kids:
+                yield from elements(kid)
+
+    root = reader.trailer["/Root"]["/StructTreeRoot"]
+    figures = [item for item in elements(root) if item.get("/S") == "/Figure"]
+    assert [figure["/Alt"] for figure in figures] == [drawing.description]
+
+
+def test_both_weights_go_by_their_names(reader: pypdf.PdfReader):
+    names = {name.split("+")[1] for name, _ in embedded_fonts(reader.pages[0])}
+    assert names == {"NotoSans-Regular", "NotoSans-Bold"}
 
 
 def test_a_bleed_enlarges_the_page_round_the_sheet(drawing: Drawing):
