@@ -107,27 +107,28 @@ def _text(context: Any, shape: TextShape) -> None:  # noqa: ANN401
         context.translate(*shape.pivot)
         context.rotate(math.radians(shape.angle_deg))
         context.translate(-shape.pivot[0], -shape.pivot[1])
-    context.set_font_face(font_face(bold=shape.bold))
     context.set_font_size(shape.size)
     context.set_source_rgb(*_rgb(shape.fill))
-    shaped = fonts.shape(shape.text, bold=shape.bold)
-    glyphs, x = [], shape.x
-    for glyph in shaped:
-        glyphs.append(
-            (glyph.glyph_id, x + glyph.x_offset * shape.size, shape.y - glyph.y_offset * shape.size)
-        )
-        x += glyph.x_advance * shape.size
-    context.show_text_glyphs(shape.text, glyphs, _clusters(shape.text, shaped), 0)
+    x = shape.x
+    for run in fonts.shaped(shape.text, bold=shape.bold):
+        glyphs = []
+        for glyph in run.glyphs:
+            at = (x + glyph.x_offset * shape.size, shape.y - glyph.y_offset * shape.size)
+            glyphs.append((glyph.glyph_id, *at))
+            x += glyph.x_advance * shape.size
+        context.set_font_face(font_face(run.font, bold=shape.bold))
+        backward = cairo().TEXT_CLUSTER_FLAG_BACKWARD if run.rtl else 0
+        context.show_text_glyphs(run.text, glyphs, _clusters(run), backward)
     context.restore()
 
 
-def _clusters(text: str, shaped: tuple[fonts.Glyph, ...]) -> list[tuple[int, int]]:
-    """Give cairo's clusters: bytes of text and count of glyphs that belong together."""
-    starts = sorted({glyph.cluster for glyph in shaped})
-    counts = [sum(glyph.cluster == start for glyph in shaped) for start in starts]
-    ends = [*starts[1:], len(text)]
+def _clusters(run: fonts.Shaped) -> list[tuple[int, int]]:
+    """Give cairo's clusters in the order of the text: bytes of it, and glyphs that go with them."""
+    starts = sorted({glyph.cluster for glyph in run.glyphs})
+    counts = [sum(glyph.cluster == start for glyph in run.glyphs) for start in starts]
+    ends = [*starts[1:], len(run.text)]
     return [
-        (len(text[start:end].encode()), count)
+        (len(run.text[start:end].encode()), count)
         for start, end, count in zip(starts, ends, counts, strict=True)
     ]
 

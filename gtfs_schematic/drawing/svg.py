@@ -9,6 +9,7 @@ from xml.sax.saxutils import escape, quoteattr
 from gtfs_schematic.drawing.model import Drawing, Group, PathShape, TextShape
 from gtfs_schematic.drawing.paths import number
 from gtfs_schematic.labels import fonts
+from gtfs_schematic.labels.scripts import is_rtl
 
 _NOT_XML = re.compile("[^\t\n\r\x20-\ud7ff\ue000-\ufffd\U00010000-\U0010ffff]")
 """Characters that XML 1.0 forbids even when escaped."""
@@ -34,7 +35,7 @@ def to_svg(drawing: Drawing) -> bytes:
             ("aria-labelledby", "diagram-title diagram-desc"),
             ("lang", drawing.lang),
             ("xml:lang", drawing.lang),
-            ("font-family", f"'{fonts.FAMILY}', sans-serif"),
+            ("font-family", ", ".join([*(f"'{name}'" for name in fonts.FAMILIES), "sans-serif"])),
             ("stroke-linejoin", "round"),
             ("style", "font-kerning: normal"),
         ]
@@ -92,6 +93,8 @@ def _run(shape: TextShape) -> str:
             ("textLength", number(shape.width)),
             ("lengthAdjust", "spacingAndGlyphs"),
         ]
+    if is_rtl(shape.text):  # its end is on the left, where x is
+        attributes += [("direction", "rtl"), ("text-anchor", "end")]
     if shape.angle_deg:
         turn = (shape.angle_deg, *shape.pivot)
         attributes.append(("transform", f"rotate({' '.join(map(number, turn))})"))

@@ -39,9 +39,9 @@ def cairo() -> Any:  # noqa: ANN401 - the library ships no types
     return cairocffi
 
 
-@lru_cache(maxsize=2)
-def font_face(*, bold: bool) -> Any:  # noqa: ANN401 - as above
-    """Give cairo's font face of one weight; it lives until the program ends.
+@lru_cache(maxsize=2 * len(fonts.FAMILIES))
+def font_face(font: int, *, bold: bool) -> Any:  # noqa: ANN401 - as above
+    """Give cairo's face of a font, by its index, in one weight; it lives until the program ends.
 
     Raises
     ------
@@ -49,13 +49,15 @@ def font_face(*, bold: bool) -> Any:  # noqa: ANN401 - as above
         If cairo is missing, or was built without FreeType.
     """
     library, freetype = _libraries()
-    data = fonts.font_data(bold=bold)
+    data = fonts.font_data(bold=bold, font=font)
     face = ctypes.c_void_p()
     fault = library.FT_New_Memory_Face(
         freetype, data, ctypes.c_long(len(data)), ctypes.c_long(0), ctypes.byref(face)
     )
     if fault:
-        raise SchematicError(f"FreeType cannot read the typeface {fonts.FAMILY} (code {fault}).")
+        raise SchematicError(
+            f"FreeType cannot read the typeface {fonts.FAMILIES[font]} (code {fault})."
+        )
     wrap = library.cairo_ft_font_face_create_for_ft_face
     wrap.restype = ctypes.c_void_p
     wrap.argtypes = [ctypes.c_void_p, ctypes.c_int]

@@ -1,8 +1,8 @@
 """The diagram's typeface, measured by shaping text with HarfBuzz.
 
 Kerning and the standard ligatures are on, here as in the exports: PDF takes the glyphs of
-`shape`, and SVG asks for ``font-kerning: normal``, so that what is measured is what is drawn.
-Right-to-left scripts are not in the typeface; `missing_characters` tells what is not.
+`shaped`, and SVG asks for ``font-kerning: normal``, so that what is measured is what is drawn.
+Scripts that the typeface lacks come from its sisters; `missing_characters` tells what none has.
 """
 
 from __future__ import annotations
@@ -17,16 +17,32 @@ from pathlib import Path
 from typing import Any
 
 import fontpkg_noto_sans
+import fontpkg_noto_sans_arabic
+import fontpkg_noto_sans_khmer
+import fontpkg_noto_sans_tamil
+import fontpkg_noto_sans_telugu
+import fontpkg_noto_sans_thai
 import uharfbuzz as hb
+
+from gtfs_schematic.labels.scripts import Run, runs_of
 
 FAMILY = "Noto Sans"
 """The CSS family name."""
 REGULAR_WEIGHT = 400.0
 BOLD_WEIGHT = 700.0
 
-_VARIABLE_FILE = fontpkg_noto_sans.ROOT / "files" / "NotoSans[wdth,wght].ttf"
+_FILES = (
+    (FAMILY, fontpkg_noto_sans.ROOT / "files" / "NotoSans[wdth,wght].ttf"),
+    ("Noto Sans Arabic", fontpkg_noto_sans_arabic.ROOT / "files" / "NotoSansArabic[wdth,wght].ttf"),
+    ("Noto Sans Khmer", fontpkg_noto_sans_khmer.ROOT / "files" / "NotoSansKhmer[wdth,wght].ttf"),
+    ("Noto Sans Tamil", fontpkg_noto_sans_tamil.ROOT / "files" / "NotoSansTamil[wdth,wght].ttf"),
+    ("Noto Sans Telugu", fontpkg_noto_sans_telugu.ROOT / "files" / "NotoSansTelugu[wdth,wght].ttf"),
+    ("Noto Sans Thai", fontpkg_noto_sans_thai.ROOT / "files" / "NotoSansThai[wdth,wght].ttf"),
+)
+"""The typeface, and its sisters in the order in which they are asked for what it lacks."""
+FAMILIES = tuple(family for family, _ in _FILES)
+"""CSS family names; a font is known by its index here."""
 _REGULAR_TO_BOLD = ("Regular".encode("utf-16-be"), "Bold".encode("utf-16-be"))
-_NEUTRAL_SCRIPTS = frozenset({None, "Zyyy", "Zinh", "Zzzz"})
 
 
 @dataclass(frozen=True, slots=True)
@@ -41,6 +57,17 @@ class Glyph:
 
 
 @dataclass(frozen=True, slots=True)
+class Shaped:
+    """A run of a text in one font, its glyphs from left to right."""
+
+    text: str
+    font: int
+    rtl: bool
+    glyphs: tuple[Glyph, ...]
+    """Their clusters are indexes into the run's own text."""
+
+
+@dataclass(frozen=True, slots=True)
 class Metrics:
     """Vertical measures of the typeface in em, all positive, from the baseline."""
 
@@ -50,10 +77,10 @@ class Metrics:
     x_height: float
 
 
-@lru_cache(maxsize=2)
-def font_data(*, bold: bool = False) -> bytes:
+@lru_cache(maxsize=2 * len(_FILES))
+def font_data(*, bold: bool = False, font: int = 0) -> bytes:
     """Give the TrueType file of one weight, cut from the variable font in memory."""
-    face = hb.Face(hb.Blob.from_file_path(str(_VARIABLE_FILE)))
+    face = hb.Face(hb.Blob.from_file_path(str(_FILES[font][1])))
     wanted = hb.SubsetInput()
     wanted.keep_everything()
     weight = BOLD_WEIGHT if bold else REGULAR_WEIGHT
@@ -85,18 +112,19 @@ def _named_bold(data: bytes) -> bytes:
     return bytes(font)
 
 
-def font_path(*, bold: bool = False) -> Path:
+def font_path(*, bold: bool = False, font: int = 0) -> Path:
     """Give a file that holds `font_data`; it lives in a temporary folder until the program ends."""
-    path = Path(_folder().name) / f"NotoSans-{'Bold' if bold else 'Regular'}.ttf"
+    name = FAMILIES[font].replace(" ", "")
+    path = Path(_folder().name) / f"{name}-{'Bold' if bold else 'Regular'}.ttf"
     if not path.exists():
-        path.write_bytes(font_data(bold=bold))
+        path.write_bytes(font_data(bold=bold, font=font))
     return path
 
 
 @lru_cache(maxsize=2)
 def metrics(*, bold: bool = False) -> Metrics:
     """Give the vertical measures of one weight."""
-    font, em = _font(bold=bold), _em(bold=bold)
+    font, em = _font(0, bold=bold), _em(0, bold=bold)
     extents = font.get_font_extents("ltr")
     return Metrics(
         ascent=extents.ascender / em,
@@ -107,59 +135,91 @@ def metrics(*, bold: bool = False) -> Metrics:
 
 
 @lru_cache(maxsize=65536)
-def shape(text: str, *, bold: bool = False) -> tuple[Glyph, ...]:
-    """Shape a text into glyphs from left to right.
+def shaped(text: str, *, bold: bool = False) -> tuple[Shaped, ...]:
+    """Shape a text into runs from left to right.
 
     Each run of one script is shaped on its own, since shaping rules belong to scripts.
     """
-    em = _em(bold=bold)
-    glyphs: list[Glyph] = []
-    for start, run in _script_runs(text):
-        buffer = hb.Buffer()
-        buffer.add_str(run)
-        buffer.guess_segment_properties()
-        hb.shape(_font(bold=bold), buffer, {"kern": True, "liga": True})
-        glyphs += [
-            Glyph(
-                glyph_id=info.codepoint,
-                x_advance=position.x_advance / em,
-                x_offset=position.x_offset / em,
-                y_offset=position.y_offset / em,
-                cluster=start + info.cluster,
-            )
-            for info, position in zip(buffer.glyph_infos, buffer.glyph_positions, strict=True)
-        ]
-    return tuple(glyphs)
+    found = []
+    for run in runs_of(text):
+        parts = [_glyphs(part, font, bold=bold) for font, part in _by_font(run, bold=bold)]
+        found += parts[::-1] if run.rtl else parts
+    return tuple(found)
+
+
+def _by_font(run: Run, *, bold: bool) -> Iterator[tuple[int, Run]]:
+    """Cut a run where another font must serve; marks and signs stay with what is before them."""
+    fonts: list[int] = []
+    for character in run.text:
+        before = fonts[-1] if fonts else 0
+        joins = not character.isalpha() and _has(before, character, bold=bold)
+        fonts.append(before if joins else _font_for(character, bold=bold))
+    start = 0
+    for font, members in itertools.groupby(fonts):
+        length = len(list(members))
+        yield font, Run(run.start + start, run.text[start : start + length], run.rtl)
+        start += length
+
+
+def _font_for(character: str, *, bold: bool) -> int:
+    """Give the first font that has a character, the typeface itself if none has."""
+    return next((i for i in range(len(_FILES)) if _has(i, character, bold=bold)), 0)
+
+
+@lru_cache(maxsize=65536)
+def _has(font: int, character: str, *, bold: bool) -> bool:
+    return bool(_font(font, bold=bold).get_nominal_glyph(ord(character)))
+
+
+def _glyphs(run: Run, font: int, *, bold: bool) -> Shaped:
+    em = _em(font, bold=bold)
+    buffer = hb.Buffer()
+    buffer.add_str(run.text)
+    buffer.guess_segment_properties()
+    buffer.direction = "rtl" if run.rtl else "ltr"
+    hb.shape(_font(font, bold=bold), buffer, {"kern": True, "liga": True})
+    glyphs = tuple(
+        Glyph(
+            glyph_id=info.codepoint,
+            x_advance=position.x_advance / em,
+            x_offset=position.x_offset / em,
+            y_offset=position.y_offset / em,
+            cluster=info.cluster,
+        )
+        for info, position in zip(buffer.glyph_infos, buffer.glyph_positions, strict=True)
+    )
+    return Shaped(run.text, font, run.rtl, glyphs)
 
 
 def text_width_mm(text: str, size_mm: float, *, bold: bool = False) -> float:
     """Give the advance width of a shaped text in millimetres, `size_mm` being the em size."""
-    return size_mm * sum(glyph.x_advance for glyph in shape(text, bold=bold))
+    return size_mm * sum(glyph.x_advance for run in shaped(text, bold=bold) for glyph in run.glyphs)
 
 
 @lru_cache(maxsize=65536)
 def ink_height(text: str, *, bold: bool = False) -> tuple[float, float]:
     """Give how far a text's ink reaches above and below the baseline, in em, at least 0."""
-    font, em = _font(bold=bold), _em(bold=bold)
     top = bottom = 0.0
-    for glyph in shape(text, bold=bold):
-        extents = font.get_glyph_extents(glyph.glyph_id)
-        if extents is None or extents.height == 0:
-            continue
-        glyph_top = extents.y_bearing / em + glyph.y_offset
-        top = max(top, glyph_top)
-        bottom = max(bottom, -(glyph_top + extents.height / em))
+    for run in shaped(text, bold=bold):
+        font, em = _font(run.font, bold=bold), _em(run.font, bold=bold)
+        for glyph in run.glyphs:
+            extents = font.get_glyph_extents(glyph.glyph_id)
+            if extents is None or extents.height == 0:
+                continue
+            glyph_top = extents.y_bearing / em + glyph.y_offset
+            top = max(top, glyph_top)
+            bottom = max(bottom, -(glyph_top + extents.height / em))
     return top, bottom
 
 
 def missing_characters(text: str, *, bold: bool = False) -> tuple[str, ...]:
-    """Give the characters of a text that the typeface lacks, sorted, without repeats."""
-    font = _font(bold=bold)
+    """Give the characters of a text that no font has, sorted, without repeats."""
     return tuple(
         sorted(
             character
             for character in set(text)
-            if not character.isspace() and not font.get_nominal_glyph(ord(character))
+            if not character.isspace()
+            and not any(_has(i, character, bold=bold) for i in range(len(_FILES)))
         )
     )
 
@@ -172,36 +232,13 @@ def _folder() -> tempfile.TemporaryDirectory[str]:
     return folder
 
 
-@lru_cache(maxsize=2)
-def _font(*, bold: bool) -> Any:  # noqa: ANN401 - the library ships no types
+@lru_cache(maxsize=2 * len(_FILES))
+def _font(font: int, *, bold: bool) -> Any:  # noqa: ANN401 - the library ships no types
     """Give the shaper's font of one weight."""
-    return hb.Font(hb.Face(font_data(bold=bold)))
+    return hb.Font(hb.Face(font_data(bold=bold, font=font)))
 
 
-@lru_cache(maxsize=2)
-def _em(*, bold: bool) -> float:
+@lru_cache(maxsize=2 * len(_FILES))
+def _em(font: int, *, bold: bool) -> float:
     """Give the font units per em."""
-    return float(_font(bold=bold).face.upem)
-
-
-@lru_cache(maxsize=4096)
-def _script(character: str) -> str | None:
-    """Give the script of a character as the shaper knows it, None if it serves any script."""
-    buffer = hb.Buffer()
-    buffer.add_str(character)
-    buffer.guess_segment_properties()
-    return None if buffer.script in _NEUTRAL_SCRIPTS else buffer.script
-
-
-def _script_runs(text: str) -> Iterator[tuple[int, str]]:
-    """Give (start, run) of the runs of one script; neutral characters join the run before."""
-    scripts: list[str | None] = []
-    current: str | None = next((s for s in map(_script, text) if s is not None), None)
-    for character in text:
-        current = _script(character) or current
-        scripts.append(current)
-    start = 0
-    for _, members in itertools.groupby(scripts):
-        length = len(list(members))
-        yield start, text[start : start + length]
-        start += length
+    return float(_font(font, bold=bold).face.upem)

@@ -5,6 +5,7 @@ from __future__ import annotations
 import io
 import os
 import shutil
+from dataclasses import replace
 from pathlib import Path
 from xml.etree import ElementTree as ET
 
@@ -29,7 +30,12 @@ NS = "{http://www.w3.org/2000/svg}"
 
 @pytest.fixture(scope="module")
 def drawing() -> Drawing:
-    layout = drawn_sheets.on_page(drawn_networks.ribbon(), "A4")
+    layout = drawn_networks.ribbon()
+    stations = layout.network.stations
+    names = ("محطة الرملة", "สถานีกลาง", "هلال 12 Port", "நகரம்", "Gare هلال")
+    renamed = (replace(s, name=name) for s, name in zip(stations, names, strict=False))
+    network = replace(layout.network, stations=(*renamed, *stations[len(names) :]))
+    layout = drawn_sheets.on_page(replace(layout, network=network), "A4")
     return compose(
         drawn_sheets.naive_labels(drawn_sheets.naive_bundle(layout)), drawn_sheets.SETTINGS
     )
@@ -46,8 +52,9 @@ def page(drawing: Drawing, tmp_path_factory):
         pytest.skip(reason)
     folder = tmp_path_factory.mktemp("page")
     faces = "".join(
-        f"@font-face {{ font-family: '{fonts.FAMILY}'; font-weight: {weight}; "
-        f"src: url('{fonts.font_path(bold=bold).as_uri()}'); }}"
+        f"@font-face {{ font-family: '{family}'; font-weight: {weight}; "
+        f"src: url('{fonts.font_path(bold=bold, font=i).as_uri()}'); }}"
+        for i, family in enumerate(fonts.FAMILIES)
         for weight, bold in ((400, False), (700, True))
     )
     svg = to_svg(drawing).decode().split("?>", 1)[1]

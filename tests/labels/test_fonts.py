@@ -21,6 +21,11 @@ def open_font(*, bold: bool) -> TTFont:
     return TTFont(io.BytesIO(fonts.font_data(bold=bold)))
 
 
+def glyphs(text: str) -> list[fonts.Glyph]:
+    """Give all glyphs of a text from left to right."""
+    return [glyph for run in fonts.shaped(text) for glyph in run.glyphs]
+
+
 def unkerned_advance(text: str, *, bold: bool) -> float:
     """Sum the advances of the horizontal metrics table, in em: no kerning, no ligatures."""
     font = open_font(bold=bold)
@@ -69,26 +74,52 @@ def test_ink_agrees_with_the_outlines(character: str):
 
 
 def test_names_beyond_latin_are_covered_and_others_reported():
-    for name in ("Żółta Góra", "Άγιος Ελευθέριος", "Щёлково", "हिन्दी"):
+    for name in (
+        "Żółta Góra",
+        "Άγιος Ελευθέριος",
+        "Щёлково",
+        "हिन्दी",
+        "محطة الرملة",
+        "สถานีกลาง",
+        "நகரம்",
+    ):
         assert fonts.missing_characters(name) == ()
-        assert all(glyph.glyph_id != 0 for glyph in fonts.shape(name))
+        assert all(glyph.glyph_id != 0 for glyph in glyphs(name))
     assert fonts.missing_characters("東 Port 京東") == ("京", "東")
-    assert fonts.shape("東")[0].glyph_id == 0
+    assert glyphs("東")[0].glyph_id == 0
 
 
 def test_devanagari_is_shaped_also_after_latin():
-    alone = [glyph.glyph_id for glyph in fonts.shape("हिन्दी")]
-    mixed = [glyph.glyph_id for glyph in fonts.shape("Hin हिन्दी")]
+    alone = [glyph.glyph_id for glyph in glyphs("हिन्दी")]
+    mixed = [glyph.glyph_id for glyph in glyphs("Hin हिन्दी")]
     assert len(alone) < len("हिन्दी")  # half forms join
     assert mixed[-len(alone) :] == alone
 
 
-@given(st.text(st.sampled_from("AVTofi żЯ-'1"), max_size=12))
+@given(st.text(st.sampled_from("AVTofi żЯ-'1بجไทยக"), max_size=12))
 def test_clusters_cover_the_text_in_order(text: str):
-    clusters = [glyph.cluster for glyph in fonts.shape(text)]
-    assert clusters == sorted(clusters)
-    assert set(clusters) <= set(range(len(text)))
-    assert not text or clusters[0] == 0
+    runs = fonts.shaped(text)
+    assert sorted("".join(run.text for run in runs)) == sorted(text)
+    for run in runs:
+        clusters = [glyph.cluster for glyph in run.glyphs]
+        assert clusters == sorted(clusters, reverse=run.rtl)
+        assert min(clusters) == 0
+        assert set(clusters) <= set(range(len(run.text)))
+
+
+def test_arabic_letters_join_and_run_from_the_right():
+    (run,) = fonts.shaped("بحر")
+    assert run.rtl
+    assert fonts.FAMILIES[run.font] == "Noto Sans Arabic"
+    apart = [fonts.shaped(letter)[0].glyphs[0].glyph_id for letter in "بحر"]
+    assert [glyph.glyph_id for glyph in run.glyphs][::-1] != apart  # initial, medial, final forms
+
+
+def test_a_mark_stays_with_its_letter():
+    for text in ("ก่อน", "محمّد"):
+        assert len({run.font for run in fonts.shaped(text)}) == 1
+    (thai,) = fonts.shaped("ก่")
+    assert [glyph.cluster for glyph in thai.glyphs] == [0, 0]
 
 
 def test_font_file_holds_the_measured_font():
