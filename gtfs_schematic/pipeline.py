@@ -247,7 +247,7 @@ def _labelled_on_sheet(
     tries: list[LabelledLayout] = []
     for _ in range(1 + ROUNDS):
         layout = fit_sheet(placement, clearances, frames, requests=requests, progress=progress)
-        _must_be_sound("layout", layout_check.faults(layout, clearances))
+        _must_be_sound("layout", layout_check.faults(layout, clearances, settings.layout.pins))
 
         bundled = bundle(layout, settings.bundles, progress=progress)
         _must_be_sound("bundles", bundles_check.faults(bundled))

@@ -4,7 +4,7 @@
 2. Every segment runs at an exact multiple of 45 degrees.
 3. Links and walks cross where they cross on the ground, and nowhere else.
 4. The cyclic order of links round every station is that of the ground.
-5. Clearances are kept, and everything lies on the sheet.
+5. Clearances and pins are kept, and everything lies on the sheet.
 
 On the ground, stations nearer than a few metres to a foreign link touch it as far as anyone can
 tell; where the order or a crossing hangs on less than that, both outcomes are right.
@@ -45,7 +45,9 @@ class _Edge:
     path: tuple[Point, ...]
 
 
-def faults(layout: Layout, clearances: Clearances) -> tuple[str, ...]:
+def faults(
+    layout: Layout, clearances: Clearances, pins: Mapping[str, Point] | None = None
+) -> tuple[str, ...]:
     """Name everything in which a layout breaks its guarantees; empty if all are kept.
 
     Parameters
@@ -54,6 +56,8 @@ def faults(layout: Layout, clearances: Clearances) -> tuple[str, ...]:
         Positions and paths in sheet millimetres, y down.
     clearances
         Widths and distances that were asked for, millimetres.
+    pins
+        Places that stations must keep, millimetres.
     """
     found = list(_missing(layout))
     if found:
@@ -65,6 +69,7 @@ def faults(layout: Layout, clearances: Clearances) -> tuple[str, ...]:
     found += _wrong_order(layout, edges, ground)
     found += _too_close(layout, edges, clearances)
     found += _off_sheet(layout, edges)
+    found += _off_pin(layout, pins or {})
     return tuple(found)
 
 
@@ -267,6 +272,14 @@ def _converge(ways: nx.Graph, a: _Edge, b: _Edge, wanted: float) -> bool:
         ways, {a.start, a.end, *ends}, cutoff=2.5 * wanted, weight="length"
     )
     return bool(({b.start, b.end} | others) & set(reached))
+
+
+def _off_pin(layout: Layout, pins: Mapping[str, Point]) -> list[str]:
+    return [
+        f"Station {station} is not at its pin."
+        for station, (x, y) in sorted(pins.items())
+        if math.dist(layout.positions.get(station, (math.inf, math.inf)), (x, y)) > 0.011
+    ]
 
 
 def _off_sheet(layout: Layout, edges: tuple[_Edge, ...]) -> list[str]:

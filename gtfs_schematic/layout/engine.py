@@ -21,7 +21,14 @@ from gtfs_schematic.errors import LayoutError
 from gtfs_schematic.layout.anchors import anchor_points
 from gtfs_schematic.layout.board import Board
 from gtfs_schematic.layout.embed import check_degrees, embed
-from gtfs_schematic.layout.fit import Sizes, link_least, link_wishes, part_wants, wants_of
+from gtfs_schematic.layout.fit import (
+    Sizes,
+    link_least,
+    link_wishes,
+    part_wants,
+    pins_in_frame,
+    wants_of,
+)
 from gtfs_schematic.layout.improve import improve
 from gtfs_schematic.layout.model import (
     Clearances,
@@ -97,12 +104,19 @@ def place(
     Raises
     ------
     LayoutError
-        If there is nothing to draw, or a station has more than eight neighbours.
+        If there is nothing to draw, a station has more than eight neighbours, or a pin names a
+        station that the network does not have.
     """
     if not network.links:
         raise LayoutError("The network has no links: there is nothing to draw.")
     progress.phase("placing on the ground")
-    graph = planarise(network)
+    strangers = sorted(set(settings.pins) - set(network.station))
+    if strangers:
+        raise LayoutError(
+            f"Pinned stations that the network does not have: {', '.join(strangers)}. Station ids "
+            "are those of edition.json."
+        )
+    graph = planarise(network, settings.pins)
     check_degrees(graph)
     anchors = anchor_points(graph, settings.fidelity)
     board = _board(graph, anchors, progress)
@@ -141,7 +155,7 @@ def fit_sheet(
     Raises
     ------
     LayoutError
-        If no sheet is large enough.
+        If no sheet is large enough, or pins collide.
     """
     progress.phase("settling lengths")
     network = placement.network
@@ -158,7 +172,8 @@ def fit_sheet(
         # The wishes bind more than the sheet can give; without them it holds the drawing.
         sizes = dataclasses.replace(sizes, link_wishes={})
         skeleton, points, frame = _on_sheet(placement.skeleton, sizes, frames)
-    places = _on_paper(snap(skeleton, points), frame)
+    pinned = pins_in_frame(skeleton.graph, sizes.settings, frame)
+    places = _on_paper(snap(skeleton, points, frozenset(pinned)), frame, centred=not pinned)
     return restore(network, skeleton, places, frame, part_wants(skeleton.graph, sizes))
 
 
@@ -199,11 +214,12 @@ def _on_sheet(
         )
     frame = _best_of_size(fits, width, height)
     box, scale = _inner(frame), spacing
+    sizes = dataclasses.replace(sizes, pinned=pins_in_frame(skeleton.graph, sizes.settings, frame))
     skeleton = dataclasses.replace(skeleton, points=points)
     for _ in range(_FILLINGS):
         # What has no more room in one direction still grows in the other.
         spare = np.maximum(1.0, np.asarray(box) / np.maximum(np.ptp(points, axis=0), 1e-9))
-        if spare.max() < _FULL or scale >= _LOOSEST * spacing:
+        if not sizes.pinned and (spare.max() < _FULL or scale >= _LOOSEST * spacing):
             break
         scale = min(scale * 0.98 * math.sqrt(spare.prod()), _LOOSEST * spacing)
         skeleton, points, pairs = _settled(skeleton, sizes, scale, box, pairs)
@@ -252,8 +268,11 @@ def _without(skeleton: Skeleton, points: NDArray[np.float64], gone: NDArray[np.b
     return build(skeleton.graph, points[: skeleton.graph.n_vertices], routes)
 
 
-def _on_paper(units: NDArray[np.int64], frame: SheetFrame) -> NDArray[np.int64]:
-    """Turn y down and centre the drawing in its frame."""
+def _on_paper(units: NDArray[np.int64], frame: SheetFrame, *, centred: bool) -> NDArray[np.int64]:
+    """Turn y down and put the drawing into its frame: centred, or as its pins have it."""
+    if not centred:
+        left, bottom = (round(side * UNITS_PER_MM) for side in (frame.left_mm, frame.bottom_mm))
+        return np.column_stack([units[:, 0] + left, bottom - units[:, 1]])
     low, high = units.min(axis=0), units.max(axis=0)
     centre = np.array([frame.left_mm + frame.right_mm, frame.top_mm + frame.bottom_mm]) / 2.0
     shift = np.rint(centre * UNITS_PER_MM).astype(np.int64)

@@ -4,12 +4,14 @@ from __future__ import annotations
 
 import math
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
 import numpy as np
 from numpy.typing import NDArray
 
-from gtfs_schematic.layout.model import Clearances, LayoutSettings, RoomRequest
+from gtfs_schematic.errors import LayoutError
+from gtfs_schematic.geometry import Point
+from gtfs_schematic.layout.model import Clearances, LayoutSettings, RoomRequest, SheetFrame
 from gtfs_schematic.layout.plane import Part, PlaneGraph
 from gtfs_schematic.layout.settle import Wants
 from gtfs_schematic.layout.skeleton import Skeleton
@@ -45,6 +47,8 @@ class Sizes:
     """Least length of each link and walk, millimetres."""
     link_wishes: Mapping[str, float]
     """Length that names want of some links, millimetres."""
+    pinned: Mapping[int, Point] = field(default_factory=dict)
+    """Per pinned vertex its place, millimetres from the frame's lower left corner, y north."""
 
 
 def wants_of(skeleton: Skeleton, sizes: Sizes, scale_mm: float, *, tight: bool) -> Wants:
@@ -91,9 +95,35 @@ def wants_of(skeleton: Skeleton, sizes: Sizes, scale_mm: float, *, tight: bool) 
         half_width=half,
         clear=2.0 * clearances.line_gap_mm + 0.5,
         room=np.zeros((len(owner), 8)) if tight else _label_room(skeleton, clearances),
+        pinned=sizes.pinned,
         jogs=np.where(jog, 3.0 * lines, 0.0),
         spread=2.0 if tight else 0.0,
     )
+
+
+def pins_in_frame(
+    graph: PlaneGraph, settings: LayoutSettings, frame: SheetFrame
+) -> dict[int, Point]:
+    """Give the pinned vertices' places from the frame's lower left corner, y north, millimetres.
+
+    Raises
+    ------
+    LayoutError
+        If a pin lies outside the frame.
+    """
+    pinned: dict[int, Point] = {}
+    for v, station in enumerate(graph.station_of):
+        if station is None or station not in settings.pins:
+            continue
+        x, y = settings.pins[station]
+        if not (frame.left_mm <= x <= frame.right_mm and frame.top_mm <= y <= frame.bottom_mm):
+            raise LayoutError(
+                f"The pin of station {station} at ({x:g}, {y:g}) mm lies outside the frame of the "
+                f"sheet: x {frame.left_mm:g} to {frame.right_mm:g} mm, y {frame.top_mm:g} to "
+                f"{frame.bottom_mm:g} mm. Move the pin or choose another sheet."
+            )
+        pinned[v] = (round(x - frame.left_mm, 2), round(frame.bottom_mm - y, 2))
+    return pinned
 
 
 def _label_room(skeleton: Skeleton, clearances: Clearances) -> NDArray[np.float64]:

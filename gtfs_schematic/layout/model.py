@@ -21,6 +21,8 @@ class LayoutSettings(BaseModel):
     """1 keeps geography to scale, 0 spaces stations evenly."""
     effort: Literal["quick", "standard", "thorough"] = "standard"
     """How much work the improvement may do: a fixed amount, never a time."""
+    pins: Mapping[str, tuple[float, float]] = Field(default_factory=dict)
+    """Places that stations must keep, by station id: millimetres from the left and the top."""
 
 
 @dataclass(frozen=True, slots=True)

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import math
 from collections import defaultdict
-from collections.abc import Iterator
+from collections.abc import Collection, Iterator
 
 import numpy as np
 import shapely
@@ -20,12 +20,12 @@ _LEAST_SHARE = 0.5
 """Share of a spacing that each part of a crossed link gets: crossings need room, too."""
 
 
-def planarise(network: Network) -> PlaneGraph:
+def planarise(network: Network, keep: Collection[str] = ()) -> PlaneGraph:
     """Draw the network with straight links on the ground and put vertices where they cross.
 
     Vertices are the stations at which corridors or walks end, and the crossings. A corridor
     that would join two vertices a second time, or a vertex to itself, keeps stations as
-    vertices until the graph is simple where it can be.
+    vertices until the graph is simple where it can be; so do the stations to `keep`.
     """
     ids = [station.id for station in network.stations]
     index = {station_id: i for i, station_id in enumerate(ids)}
@@ -38,6 +38,7 @@ def planarise(network: Network) -> PlaneGraph:
     cuts, extra = _crossings(points, edges)
     points = np.vstack([points, extra]) if len(extra) else points
     kept = {end for chain in chains for end in (chain.station_ids[0], chain.station_ids[-1])}
+    kept.update(keep)
     while True:
         pieces_raw = _split_chains(network, chains, kept, cuts, index)
         breakers = _loop_breakers(pieces_raw) - kept

@@ -9,7 +9,8 @@ but fixed by the drawing at hand.
 from __future__ import annotations
 
 import itertools
-from dataclasses import dataclass
+from collections.abc import Mapping
+from dataclasses import dataclass, replace
 
 import numpy as np
 import scipy.sparse as sp
@@ -18,6 +19,7 @@ from numpy.typing import NDArray
 from scipy.optimize import linprog
 
 from gtfs_schematic.errors import InternalFaultError, LayoutError
+from gtfs_schematic.geometry import Point
 from gtfs_schematic.layout.rows import Rows
 from gtfs_schematic.layout.separation import Separations, near_pairs, separate
 from gtfs_schematic.layout.skeleton import STEP, Skeleton
@@ -30,12 +32,18 @@ _GRADES = ((0.15, 0.4), (0.2, 1.0), (0.3, 2.0), (np.inf, 4.0))
 prices spread what must give way over many pieces, instead of squeezing a few to the least."""
 _LACK_WEIGHT = 0.6
 """Price of a millimetre lacking to the wanted room, against one of wanted length."""
+_PIN_WEIGHT = 1000.0
+_MISSED_MM = 0.01
 _SLACK = 1e-4
 """Distance by which a solution may miss a clearance, millimetres."""
 
 
 class NoRoomError(LayoutError):
     """The least lengths do not fit the box."""
+
+
+class PinsCollideError(LayoutError):
+    """Pins that cannot all be kept; the message names them."""
 
 
 @dataclass(frozen=True)
@@ -61,6 +69,8 @@ class Wants:
     """Wanted distance between them along each of the eight axes, shape (m, 8)."""
     spread: float
     """Weight of the drawing's width and height."""
+    pinned: Mapping[int, Point]
+    """Vertices whose place is fixed, millimetres."""
     jogs: NDArray[np.float64]
     """Weight of the length of each segment that is better gone, shape (m,)."""
 
@@ -94,6 +104,8 @@ def settle(
     ------
     NoRoomError
         If the box is too small.
+    PinsCollideError
+        If the pins cannot all be kept.
     """
     if pairs is None:
         lengths = np.hypot(*np.diff(skeleton.points[skeleton.segments], axis=1)[:, 0].T)
@@ -126,8 +138,14 @@ def _too_near(
 
 
 def _solve(
-    skeleton: Skeleton, wants: Wants, apart: Separations, box: tuple[float, float] | None
+    skeleton: Skeleton,
+    wants: Wants,
+    apart: Separations,
+    box: tuple[float, float] | None,
+    *,
+    loosened: bool = False,
 ) -> NDArray[np.float64]:
+    """Solve the programme; `loosened`, pins only draw their stations, but strongly."""
     runs = _Runs.of(skeleton)
     columns = _Columns.of(skeleton, len(apart.first))
     equal, most = Rows(), Rows()
@@ -143,11 +161,14 @@ def _solve(
         bounds[grade, 1] = share * wants.piece_goal
     if box is not None:
         bounds[columns.extent, 1] = box
+    for v, place in wants.pinned.items():
+        if not loosened:
+            bounds[[columns.x[v], columns.y[v]]] = np.array(place)[:, None]
     blocks, rights = _piece_lengths(runs, columns, wants)
     upper, right = most.matrix(columns.count)
     matrix, zero = equal.matrix(columns.count)
     solution = linprog(
-        _cost(runs, columns, wants),
+        _cost(runs, columns, wants, loosened=loosened),
         A_ub=sp.vstack([upper, *blocks], format="csc"),
         b_ub=np.concatenate([right, *rights]),
         A_eq=matrix,
@@ -156,6 +177,8 @@ def _solve(
         method="highs-ipm",
     )
     if solution.status == _INFEASIBLE:
+        if wants.pinned and not loosened:
+            raise PinsCollideError(_collisions(skeleton, wants, apart, box))
         raise NoRoomError("The drawing does not fit its box.")
     if not solution.success:
         raise InternalFaultError(f"Settling the lengths failed: {solution.message}")
@@ -277,11 +300,33 @@ def _keep_apart(
     most.add([*terms, (columns.lack, np.full(len(gap), -1.0))], -wish)
 
 
-def _cost(runs: _Runs, columns: _Columns, wants: Wants) -> NDArray[np.float64]:
+def _collisions(
+    skeleton: Skeleton, wants: Wants, apart: Separations, box: tuple[float, float] | None
+) -> str:
+    """Name the pins that cannot all be kept, and how far off the nearest drawing has them."""
+    anchors = wants.anchors.copy()
+    for v, place in wants.pinned.items():
+        anchors[v] = place
+    loose = _solve(skeleton, replace(wants, anchors=anchors), apart, box, loosened=True)
+    missed = [
+        f"{skeleton.graph.station_of[v]} ({np.hypot(*(loose[v] - place)):.1f} mm off)"
+        for v, place in sorted(wants.pinned.items())
+        if np.abs(loose[v] - place).max() > _MISSED_MM
+    ]
+    return (
+        "The pins cannot all be kept with every line at a multiple of 45 degrees and all distances "
+        f"kept. In the nearest drawing these are missed: {', '.join(missed)}. Move or drop them, "
+        "or choose a larger sheet."
+    )
+
+
+def _cost(runs: _Runs, columns: _Columns, wants: Wants, *, loosened: bool) -> NDArray[np.float64]:
     cost = np.zeros(columns.count)
     for grade, (_, price) in zip(columns.slack, _GRADES, strict=True):
         cost[grade] = price * wants.piece_weight
     cost[columns.away] = wants.anchor_weight
+    if loosened:
+        cost[columns.away[:, sorted(wants.pinned)]] = _PIN_WEIGHT
     cost[columns.lack] = _LACK_WEIGHT
     cost[columns.extent] = wants.spread
     np.add.at(cost, columns.along(runs, runs.end), wants.jogs * runs.forward)

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Collection
+
 import numpy as np
 from numpy.typing import NDArray
 from ortools.sat.python import cp_model
@@ -15,7 +17,9 @@ _SEED = 1
 _WORK = 60.0
 
 
-def snap(skeleton: Skeleton, points: NDArray[np.float64]) -> NDArray[np.int64]:
+def snap(
+    skeleton: Skeleton, points: NDArray[np.float64], fixed: Collection[int] = ()
+) -> NDArray[np.int64]:
     """Find the whole-number places near `points` for which every segment keeps its direction.
 
     Parameters
@@ -24,6 +28,8 @@ def snap(skeleton: Skeleton, points: NDArray[np.float64]) -> NDArray[np.int64]:
         Its segments' directions are kept exactly.
     points
         Settled places in millimetres, shape (k, 2).
+    fixed
+        Nodes that stay where rounding puts them.
 
     Returns
     -------
@@ -37,20 +43,23 @@ def snap(skeleton: Skeleton, points: NDArray[np.float64]) -> NDArray[np.int64]:
     """
     near = np.rint(points * UNITS_PER_MM).astype(np.int64)
     for window in _WINDOWS:
-        found = _search(skeleton, near, window)
+        found = _search(skeleton, near, window, fixed)
         if found is not None:
             return found
     raise InternalFaultError("No exact octilinear places were found near the settled ones.")
 
 
-def _search(skeleton: Skeleton, near: NDArray[np.int64], window: int) -> NDArray[np.int64] | None:
+def _search(
+    skeleton: Skeleton, near: NDArray[np.int64], window: int, fixed: Collection[int]
+) -> NDArray[np.int64] | None:
     model = cp_model.CpModel()
     places = [
         [
-            model.new_int_var(int(c) - window, int(c) + window, f"{axis}{i}")
+            model.new_int_var(int(c) - reach, int(c) + reach, f"{axis}{i}")
             for axis, c in enumerate(xy)
         ]
         for i, xy in enumerate(near)
+        for reach in [0 if i in fixed else window]
     ]
     for (a, b), direction in zip(skeleton.segments, skeleton.directions, strict=True):
         dx, dy = STEP[direction]
