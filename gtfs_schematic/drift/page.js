@@ -17,6 +17,9 @@
     course.set(part.ends.join("\n"), [i, false]);
     course.set([part.ends[1], part.ends[0]].join("\n"), [i, true]);
   });
+  const zoom = document.getElementById("zoom");
+  const whole = svg.getAttribute("viewBox").split(" ").map(Number);
+  const closest = 0.3;
   let share = 1;
   let shown = null;
 
@@ -54,22 +57,48 @@
     marks.replaceChildren();
     routes.replaceChildren();
     svg.classList.toggle("marked", shown !== null);
+    const size = frame();
     if (!shown) return;
     const paths = shown.ways.map(wayPath);
     paths.forEach((d) => make("path", {class: "way case", d}, routes));
     paths.forEach((d, i) => make("path", {class: "way " + ["seen", "fast"][i], d}, routes));
     shown.stations.forEach((id) => {
       const [x, y] = at(place.get(id));
-      make("circle", {class: "ring", cx: x.toFixed(1), cy: y.toFixed(1), r: 11}, marks);
+      make("circle", {class: "ring", cx: x.toFixed(1), cy: y.toFixed(1), r: 11 * size}, marks);
     });
     shown.stations.forEach((id, i) => {
       const [x, y] = at(place.get(id));
       const below = i > 0 && y >= at(place.get(shown.stations[0]))[1];
-      const right = x > svg.viewBox.baseVal.width * 0.7;
-      const text = make("text", {x: (x + (right ? -15 : 15)).toFixed(1), y: (y + (below ? 22 : -9)).toFixed(1)}, marks);
+      const box = svg.viewBox.baseVal;
+      const right = x > box.x + box.width * 0.7;
+      const text = make("text", {
+        x: (x + size * (right ? -15 : 15)).toFixed(1),
+        y: (y + size * (below ? 22 : -9)).toFixed(1),
+      }, marks);
       text.textContent = data.stations[place.get(id)].name;
       if (right) text.setAttribute("text-anchor", "end");
     });
+  }
+
+  // Shows all, or what is marked; gives how large marks must be to look the same.
+  function frame() {
+    let box = whole;
+    if (shown && zoom.checked) {
+      const points = [...shown.stations, ...shown.ways.flat()].map((id) => at(place.get(id)));
+      const [xs, ys] = [points.map((p) => p[0]), points.map((p) => p[1])];
+      const span = [Math.max(...xs) - Math.min(...xs), Math.max(...ys) - Math.min(...ys)];
+      const scale = Math.min(1, Math.max(closest, 1.5 * span[0] / whole[2], 1.5 * span[1] / whole[3]));
+      const size = [whole[2] * scale, whole[3] * scale];
+      const inside = (low, high, i) => Math.min(Math.max((low + high - size[i]) / 2, 0), whole[i + 2] - size[i]);
+      box = [
+        inside(Math.min(...xs), Math.max(...xs), 0),
+        inside(Math.min(...ys), Math.max(...ys), 1),
+        ...size,
+      ];
+    }
+    svg.setAttribute("viewBox", box.map((value) => value.toFixed(1)).join(" "));
+    svg.style.setProperty("--k", box[2] / whole[2]);
+    return box[2] / whole[2];
   }
 
   function wayPath(way) {
@@ -107,6 +136,7 @@
   }
 
   slider.addEventListener("input", move);
+  zoom.addEventListener("change", mark);
   document.querySelectorAll("[data-toggles]").forEach((box) => {
     const apply = () => svg.classList.toggle("no-" + box.dataset.toggles, !box.checked);
     box.addEventListener("change", apply);

@@ -23,6 +23,9 @@ _SHARE_BOUNDS = (0, 1, 2, 4, 6, 8, 12, 16, 24)
 _BEARING_BOUNDS = (0, 5, 10, 15, 22.5, 45, 90)
 _RATIO_BOUNDS = (0, 0.25, 0.5, 0.8, 1.25, 2, 4)
 
+_MANY = 150
+"""Of more stations than these, marks are hard to see without coming closer."""
+
 _TOP = ("displacement-p95", "bearing-over-45", "octant-agreement", "planning-error-over-1.15")
 
 
@@ -72,8 +75,8 @@ def to_html(
 <header><h1>Drift of {name}</h1>
 <p class="soft">How far the diagram departs from the ground, and whom it misleads.</p></header>
 <main>{_key_figures(report, unit)}{_verdict(report)}{_limits(limits)}
-<div class="board"><section class="stage" aria-label="Picture">{_stage(svg)}</section>
-<section aria-label="Tables"><h2>Look closer</h2>
+<div class="board"><section class="stage" aria-label="Picture">
+{_stage(svg, len(report.stations))}</section><section aria-label="Tables"><h2>Look closer</h2>
 <p class="soft">Choose a name to mark it on the picture; choose it again, or press Escape, to
 clear. Heads of columns sort.</p>{tables(report, diagram, unit)}</section></div>
 {_charts(report)}{_other(beside)}{_figures(report, beside)}
@@ -137,7 +140,8 @@ def _limits(limits: Sequence[LimitResult]) -> str:
     )
 
 
-def _stage(svg: str) -> str:
+def _stage(svg: str, stations: int) -> str:
+    close = " checked" if stations > _MANY else ""
     hues = (("d", "displacement"), ("t", "turn"), ("s", "scale"))
     radios = "".join(
         f'<label><input type="radio" name="hue" value="{key}"{" checked" if key == "d" else ""}> '
@@ -153,7 +157,8 @@ def _stage(svg: str) -> str:
 <input type="range" id="move" min="0" max="100" step="1" value="100"
  aria-label="From the ground to the diagram"><span aria-hidden="true">Diagram</span></div>
 <fieldset><legend>Color shows</legend>{radios}</fieldset>
-<fieldset><legend>Show</legend>{boxes}</fieldset></div>
+<fieldset><legend>Show</legend>{boxes}
+<label><input type="checkbox" id="zoom"{close}> marks close up</label></fieldset></div>
 {svg}{_legends()}<p class="said soft" id="said" aria-live="polite">Each arrow leads from where a
 true map of the same size has a station to where it is drawn; the grid is square on the ground.
 </p></figure>"""

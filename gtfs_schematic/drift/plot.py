@@ -79,7 +79,7 @@ def _style(radius: float) -> str:
     )
     return (
         f"path{{fill:none;stroke-linejoin:round;stroke-linecap:round}}text{{{_FONT};fill:#1b1f24}}"
-        ".head{font-size:24px;font-weight:bold}.told{font-size:13px}.entry{font-size:14px}"
+        ".head{font-size:24px;font-weight:bold}.told{font-size:11.5px}.entry{font-size:14px}"
         ".grid path{stroke:#cdd3da;stroke-width:.9}"
         f".courses path{{stroke-width:{0.95 * radius:.2f}px}}"
         ".courses .walk{stroke:#7b8490;stroke-width:1.6px;stroke-dasharray:4 3}"

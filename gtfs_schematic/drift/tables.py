@@ -222,18 +222,18 @@ def _competing(routes: Sequence[CompetingRoutes], names: Names) -> str:
                 f"{names[r.first[0]]} – {names[r.first[-1]]}",
                 (r.first[0], r.first[-1]),
                 (r.first, r.second),
-                say=f"{names[r.first[0]]} – {names[r.first[-1]]}: the way {_via(r.second, names)} "
+                say=f"{names[r.first[0]]} – {names[r.first[-1]]}: {_way(r.second, names)} "
                 f"is drawn {abs(100.0 * r.difference):.0f} % too "
-                f"{'long' if r.difference > 0.0 else 'short'} against the way "
-                f"{_via(r.first, names)}.",
+                f"{'long' if r.difference > 0.0 else 'short'} against "
+                f"{_way(r.first, names)}.",
             ),
             (
                 size(100.0 * r.difference, 0),
                 number(r.true_m[1] / r.true_m[0], 2),
                 number(r.drawn_mm[1] / r.drawn_mm[0], 2),
                 (
-                    f'<td class="ways">{escape(_via(r.first, names))}, or '
-                    f"{escape(_via(r.second, names))}</td>"
+                    f'<td class="ways">{escape(_way(r.first, names))}, or '
+                    f"{escape(_way(r.second, names))}</td>"
                 ),
             ),
         )
@@ -254,5 +254,5 @@ def _competing(routes: Sequence[CompetingRoutes], names: Names) -> str:
     return table("competing-routes", "Competing routes", columns, rows, about=about)
 
 
-def _via(way: Sequence[str], names: Names) -> str:
-    return f"via {names[way[len(way) // 2]]}" if len(way) > 2 else "direct"
+def _way(way: Sequence[str], names: Names) -> str:
+    return f"the way via {names[way[len(way) // 2]]}" if len(way) > 2 else "the direct way"

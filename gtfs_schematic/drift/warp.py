@@ -12,6 +12,7 @@ from gtfs_schematic.drift.model import Warp
 Plane = NDArray[np.complex128]
 Floats = NDArray[np.float64]
 
+_BLOCK = 256
 _CELLS = 28
 """Cells of the grid along the longer side of the network."""
 _NEAR = 8
@@ -54,6 +55,13 @@ class AffineField:
         tuple
             Matrices of shape (n, 2, 2), and images of shape (n,), both with y up.
         """
+        blocks = [self._at(places[i : i + _BLOCK]) for i in range(0, len(places), _BLOCK)]
+        return (
+            np.concatenate([local for local, _ in blocks]),
+            np.concatenate([images for _, images in blocks]),
+        )
+
+    def _at(self, places: Plane) -> tuple[Floats, Plane]:
         z = places[:, None] - self.ground[None, :]
         away = np.abs(z) ** 2
         # Far from every station the nearest ones still have weight.

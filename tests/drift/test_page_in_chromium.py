@@ -170,6 +170,24 @@ def test_a_journey_shows_both_ways(visit):
     assert "Looks shortest: line 1 to Stop D. Fastest: line 2 to Stop D." in said
 
 
+def test_marks_can_be_seen_close_up(visit):
+    page = visit("comb")
+    net = page.locator("svg.net")
+    whole = [float(value) for value in net.get_attribute("viewBox").split()]
+    page.get_by_text("Links (8)").click()
+    row = page.locator("#links").get_by_role("button", name="Stop B3 – Stop B4")
+    row.click()
+    page.get_by_role("checkbox", name="marks close up").check()
+    left, top, width, height = (float(value) for value in net.get_attribute("viewBox").split())
+    assert width < 0.5 * whole[2]
+    assert width / height == pytest.approx(whole[2] / whole[3], rel=0.01)
+    for x, y in places(page)[-2:]:
+        assert left < x < left + width
+        assert top < y < top + height
+    row.click()
+    assert [float(value) for value in net.get_attribute("viewBox").split()] == whole
+
+
 def test_a_station_on_the_picture_leads_to_its_row(visit):
     page = visit("comb")
     page.locator(".net .stations circle").nth(7).click()
