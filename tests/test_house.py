@@ -24,6 +24,9 @@ MODULES = sorted(PACKAGE.rglob("*.py"))
 PROJECT = tomllib.loads((ROOT / "pyproject.toml").read_text("utf-8"))
 RUNTIME = [Requirement(text) for text in PROJECT["project"]["dependencies"]]
 TEST = [Requirement(text) for text in PROJECT["project"]["optional-dependencies"]["test"]]
+BENCHMARK = [
+    Requirement(text) for text in PROJECT["project"]["optional-dependencies"]["benchmark"]
+]
 
 TOP_LEVEL = {
     "README.md",
@@ -111,10 +114,13 @@ def test_only_the_entry_points_know_the_command_line():
 def test_tests_import_only_what_is_declared():
     allowed = declared(RUNTIME) | declared(TEST) | set(sys.stdlib_module_names)
     own = {file.stem for file in (ROOT / "tests").glob("*.py")}
+    scripts = {file.stem for file in (ROOT / "tests" / "benchmarks").glob("*.py")}
     # packaging comes with pytest, which needs it.
     allowed |= own | {"gtfs_schematic", "packaging", "tests"}
     for file in sorted((ROOT / "tests").rglob("*.py")):
         foreign = {name.split(".")[0] for name in imported(file)} - allowed
+        if file.parent.name == "benchmarks":
+            foreign -= declared(BENCHMARK) | scripts
         assert not foreign, file
 
 
@@ -130,7 +136,7 @@ def test_every_dependency_has_a_floor_that_is_met(requirement):
 def test_every_dependency_earns_its_place_in_the_developers_page():
     text = (ROOT / "DEVELOPERS.md").read_text("utf-8")
     rows = dict(re.findall(r"^- `([^`]+)`: (.+)$", text, re.MULTILINE))
-    names = {requirement.name for requirement in RUNTIME + TEST}
+    names = {requirement.name for requirement in RUNTIME + TEST + BENCHMARK}
     assert names <= set(rows), names - set(rows)
 
 

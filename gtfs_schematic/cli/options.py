@@ -18,6 +18,10 @@ Command = TypeVar("Command", bound=Callable[..., Any])
 SETTINGS = {
     "date": "feed.date",
     "mode": "feed.modes",
+    "agency": "feed.agencies",
+    "route": "feed.routes",
+    "without_route": "feed.without_routes",
+    "min_trips": "feed.min_trips",
     "language": "feed.language",
     "sheet": "sheet.size",
     "orientation": "sheet.orientation",
@@ -51,8 +55,23 @@ config = click.option(
 )
 
 _FEED_OPTIONS = (
-    click.option("--date", metavar="DATE", help="Service date: YYYY-MM-DD, or busiest."),
+    click.option(
+        "--date",
+        metavar="DATE",
+        help="YYYY-MM-DD, a range YYYY-MM-DD/YYYY-MM-DD, typical-weekday (the default), saturday, "
+        "sunday, night, or busiest.",
+    ),
     click.option("--mode", multiple=True, metavar="MODE", help="Keep this mode only; repeatable."),
+    click.option(
+        "--agency", multiple=True, metavar="NAME", help="Keep this agency only; repeatable."
+    ),
+    click.option("--route", multiple=True, metavar="NAME", help="Keep this route only; repeatable."),
+    click.option(
+        "--without-route", multiple=True, metavar="NAME", help="Leave this route out; repeatable."
+    ),
+    click.option(
+        "--min-trips", type=int, metavar="N", help="Leave out lines with fewer trips on that date."
+    ),
     click.option("--language", metavar="TAG", help="Second language for names, as a BCP 47 tag."),
     config,
 )

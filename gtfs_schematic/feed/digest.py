@@ -6,10 +6,13 @@ import codecs
 import hashlib
 from dataclasses import dataclass
 
-from gtfs_schematic.feed.archive import FeedFiles
+import numpy as np
 
-_WIDTH = 32
-_MODULUS = 1 << (8 * _WIDTH)
+from gtfs_schematic.feed import kernels
+from gtfs_schematic.feed.archive import FeedFiles
+from gtfs_schematic.feed.blocks import whole_lines
+
+_MODULUS = 1 << 64
 
 
 @dataclass(frozen=True)
@@ -25,12 +28,13 @@ def fingerprint(files: FeedFiles) -> Fingerprint:
     """Hash the content of all text files of a feed, and find those that are not UTF-8.
 
     The hash is SHA-256 over, for every ``.txt`` and ``.geojson`` file in order of name: the
-    name, the first line, the number of lines, and the sum modulo 2^256 of the SHA-256 of every
-    other line. Byte order marks, line ends and blank lines do not count. So neither the packing
-    (time stamps, compression, order of files, nested folder) nor the order of rows matters, but
-    every changed, added, doubled or lost row does. A sum of hashes is the additive multiset hash
-    of Clarke, Devadas, van Dijk, Gassend & Suh (2003, "Incremental multiset hash functions",
-    ASIACRYPT); it tells editions apart and is no protection against forgery.
+    name, the first line, the number of lines, and two sums modulo 2^64 of 64-bit hashes of all
+    lines (`kernels.murmur`, with two seeds). Byte order marks, line ends and blank lines do not
+    count. So neither the packing (time stamps, compression, order of files, nested folder) nor
+    the order of rows matters, but every changed, added, doubled or lost row does. A sum of hashes
+    is the additive multiset hash of Clarke, Devadas, van Dijk, Gassend & Suh (2003, "Incremental
+    multiset hash functions", ASIACRYPT); with hashes of this kind it tells editions apart and is
+    no protection against forgery.
     """
     whole = hashlib.sha256()
     bad = set()
@@ -53,28 +57,26 @@ def joint_sha256(parts: list[str]) -> str:
 
 def _file_summary(files: FeedFiles, name: str) -> tuple[bytes, bool]:
     """Give what stands for one file in the hash, and whether the file is UTF-8."""
-    total = count = 0
+    first = second = count = 0
     header = b""
     valid = True
-    sha256, number = hashlib.sha256, int.from_bytes
-    with files.open(name) as lines:
-        for line in lines:
-            if not line.isascii() and valid:
-                valid = _is_utf8(line)
-            text = line.rstrip(b"\r\n")
-            if count == 0:
-                header = text = text.removeprefix(codecs.BOM_UTF8)
-            elif text:
-                total += number(sha256(text).digest())
-            if text:
-                count += 1
-    parts = (sha256(header).digest(), count.to_bytes(8), (total % _MODULUS).to_bytes(_WIDTH))
-    return b"".join(parts), valid
+    with files.open(name) as stream:
+        for number, piece in enumerate(whole_lines(stream)):
+            valid = valid and (piece.isascii() or _is_utf8(piece))
+            start = 0
+            if number == 0:
+                start = len(codecs.BOM_UTF8) if piece.startswith(codecs.BOM_UTF8) else 0
+                header = piece[start:].lstrip(b"\r\n").split(b"\n", 1)[0].rstrip(b"\r")
+            lines = np.frombuffer(piece, dtype=np.uint8)
+            one, two, more = kernels.hash_lines(lines, start, len(piece))
+            first, second, count = first + int(one), second + int(two), count + more
+    sums = (total % _MODULUS for total in (first, second, count))
+    return hashlib.sha256(header).digest() + b"".join(s.to_bytes(8) for s in sums), valid
 
 
-def _is_utf8(line: bytes) -> bool:
+def _is_utf8(lines: bytes) -> bool:
     try:
-        line.decode()
+        lines.decode()
     except UnicodeDecodeError:
         return False
     return True

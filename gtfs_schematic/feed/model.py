@@ -8,7 +8,7 @@ from typing import Literal
 
 import numpy as np
 from numpy.typing import NDArray
-from pydantic import BaseModel, ConfigDict
+from pydantic import BaseModel, ConfigDict, Field
 
 Severity = Literal["error", "warning", "info"]
 Boarding = Literal["unknown", "yes", "no"]
@@ -19,10 +19,21 @@ class FeedSettings(BaseModel):
 
     model_config = ConfigDict(frozen=True, extra="forbid")
 
-    date: str = "busiest"
-    """Service date as YYYY-MM-DD, or "busiest": the date with most trips."""
+    date: str = "typical-weekday"
+    """Which trips are drawn: "typical-weekday", "saturday", "sunday", "night", "busiest", a date as
+    YYYY-MM-DD, or a range as YYYY-MM-DD/YYYY-MM-DD; `dates.choose_dates` says what each means."""
+    today: str = ""
+    """Date as YYYY-MM-DD with which the feed's validity is compared; empty: it is not."""
     modes: tuple[str, ...] = ()
     """Modes to keep, by the names of `Mode`; empty keeps all but replacement services."""
+    agencies: tuple[str, ...] = ()
+    """Agencies to keep, by id or name; empty keeps all."""
+    routes: tuple[str, ...] = ()
+    """Routes to keep, by id, short or long name; empty keeps all."""
+    without_routes: tuple[str, ...] = ()
+    """Routes to leave out, likewise."""
+    min_trips: int = Field(default=0, ge=0)
+    """Routes of a line with fewer trips on the service date are left out, and listed."""
     language: str = ""
     """BCP 47 language whose translations become the second name; empty: none."""
 

@@ -2,24 +2,32 @@
 
 from __future__ import annotations
 
-from collections import Counter
-from collections.abc import Mapping, Sequence
-from dataclasses import dataclass
+from collections.abc import Mapping
+from dataclasses import dataclass, replace
 
+import numpy as np
+
+from gtfs_schematic.errors import FeedError
 from gtfs_schematic.feed.archive import FeedFiles
+from gtfs_schematic.feed.blocks import Masks
 from gtfs_schematic.feed.calendars import (
     Headway,
     find_unknown_services,
     read_calendars,
     read_headways,
 )
+from gtfs_schematic.feed.dates import EARLY, LATE
 from gtfs_schematic.feed.digest import fingerprint
+from gtfs_schematic.feed.filters import keep_routes
 from gtfs_schematic.feed.findings import Notebook
 from gtfs_schematic.feed.info import Imprint, read_imprint
+from gtfs_schematic.feed.kernels import Ints
 from gtfs_schematic.feed.model import Agency, FeedSettings, Route
-from gtfs_schematic.feed.routes import Trip, keep_modes, read_agencies, read_routes, read_trips
+from gtfs_schematic.feed.night import first_departures, starts_by_service
+from gtfs_schematic.feed.routes import read_agencies, read_routes
 from gtfs_schematic.feed.service import Validity, validity_of
-from gtfs_schematic.feed.tables import Tables, check_tables
+from gtfs_schematic.feed.tables import REQUIRED_COLUMNS, Tables, check_tables
+from gtfs_schematic.feed.trips import Trips, read_trips
 
 
 @dataclass(frozen=True)
@@ -30,13 +38,17 @@ class Plan:
     sha256: str
     imprint: Imprint
     agencies: Mapping[str, Agency]
+    all_routes: Mapping[str, Route]
     routes: Mapping[str, Route]
-    """Of the wanted modes."""
-    trips: Sequence[Trip]
-    """Of those routes, in order of id."""
-    trip_ids: frozenset[str]
+    """Those asked for."""
+    trips: Trips
     """Of all routes."""
-    headways: Mapping[str, tuple[Headway, ...]]
+    drawn: Masks
+    """Which trips are of the routes asked for."""
+    headways: Mapping[int, tuple[Headway, ...]]
+    """Per number of a trip."""
+    firsts: Ints | None
+    """Earliest departure of every trip, if they were asked for; seconds after noon minus 12 h."""
     validity: Validity
 
 
@@ -56,27 +68,56 @@ def plan_feed(files: FeedFiles, prefix: str, settings: FeedSettings) -> Plan:
     agencies = read_agencies(tables)
     routes = read_routes(tables, agencies)
     trips = read_trips(tables, routes)
-    kept = keep_modes(tables, routes, settings.modes)
-    headways = read_headways(tables, trips)
-    drawn = sorted((t for t in trips.values() if t.route_id in kept), key=lambda trip: trip.id)
-    counts: Counter[str] = Counter()
-    for trip in drawn:
-        counts[trip.service_id] += sum(len(r.departures) for r in headways.get(trip.id, ())) or 1
+    kept = keep_routes(notes, routes, agencies, settings)
+    headways = {
+        trips.ids.find_text(ident): rows for ident, rows in read_headways(tables, trips.ids).items()
+    }
+    drawn = trips.of_routes(kept)
+    counts = _trips_by_service(trips, drawn, headways)
     calendars, imprint = read_calendars(tables), read_imprint(tables)
-    find_unknown_services(tables, calendars, (trip.service_id for trip in trips.values()))
-    validity = validity_of(prefix + files.label, calendars, imprint, counts)
+    find_unknown_services(tables, calendars, trips.service_ids())
+    label = prefix + files.label
+    _check_any(label, kept, counts)
+    validity = validity_of(label, calendars, imprint, counts)
     _find_empty_validity(notes, validity, imprint)
+    firsts = None
+    if settings.date == "night":
+        firsts = first_departures(tables, trips)
+        early, late = (
+            starts_by_service(trips, drawn, firsts, headways, hours) for hours in (EARLY, LATE)
+        )
+        validity = replace(validity, early=early, late=late)
     return Plan(
         tables,
         content.sha256,
         imprint,
         agencies,
+        routes,
         kept,
+        trips,
         drawn,
-        frozenset(trips),
         headways,
+        firsts,
         validity,
     )
+
+
+def _trips_by_service(
+    trips: Trips, drawn: Masks, headways: Mapping[int, tuple[Headway, ...]]
+) -> dict[str, int]:
+    """Count the trips of every service, headway-based ones counted out."""
+    weights = drawn.astype(np.int64)
+    for trip, rows in headways.items():
+        weights[trip] *= sum(len(row.departures) for row in rows) or 1
+    sums = np.bincount(trips.service, weights, minlength=len(trips.services)).astype(np.int64)
+    return {trips.services[n]: int(sums[n]) for n in np.unique(trips.service[drawn]).tolist()}
+
+
+def _check_any(label: str, routes: Mapping[str, Route], counts: Mapping[str, int]) -> None:
+    if not routes:
+        raise FeedError(f"No route of {label} is left by the filters (modes, agencies, routes).")
+    if not counts:
+        raise FeedError(f"{label} has no trip on any of the routes asked for.")
 
 
 def _find_odd_files(tables: Tables) -> None:
@@ -86,8 +127,8 @@ def _find_odd_files(tables: Tables) -> None:
         notes.find("info", files.folder, fault)
     for folder in files.ignored_folders:
         notes.find("warning", folder, "a folder beside the feed looks like a feed; it is ignored")
-    for name in sorted(tables.not_utf8):
-        notes.find("warning", name, "the file is not all UTF-8; the columns that are used are")
+    for name in sorted(tables.not_utf8 - REQUIRED_COLUMNS.keys()):
+        notes.find("info", name, "the file is not UTF-8 text; it is not used")
 
 
 def _find_empty_validity(notes: Notebook, validity: Validity, imprint: Imprint) -> None:

@@ -11,21 +11,33 @@ what those need is added: stops (stops.py), transfers and shapes (ways.py), name
 from __future__ import annotations
 
 import datetime as dt
-from collections import Counter, defaultdict
+from collections import Counter
 from collections.abc import Iterator, Sequence
 from contextlib import ExitStack, contextmanager
 from pathlib import Path
 
+import numpy as np
+
 from gtfs_schematic.errors import FeedError, UsageError
 from gtfs_schematic.feed.archive import open_feed
-from gtfs_schematic.feed.calls import NOT_TODAY, read_calls
+from gtfs_schematic.feed.blocks import Masks
+from gtfs_schematic.feed.callrows import NOT_TODAY, Wanted
+from gtfs_schematic.feed.calls import read_calls
+from gtfs_schematic.feed.dates import Choice, choose_dates, with_expiry
+from gtfs_schematic.feed.filters import (
+    check_modes,
+    check_names,
+    names_of_agency,
+    names_of_route,
+    without_rare_routes,
+)
 from gtfs_schematic.feed.info import read_attributions, read_stop_names
+from gtfs_schematic.feed.interned import Interned
 from gtfs_schematic.feed.join import join_timetables
 from gtfs_schematic.feed.model import FeedInfo, FeedSettings, Pattern, Route, Timetable
-from gtfs_schematic.feed.modes import MODES, REPLACEMENT
-from gtfs_schematic.feed.patterns import gather_patterns
+from gtfs_schematic.feed.patterns import Hours, Runs, gather_patterns
 from gtfs_schematic.feed.plan import Plan, plan_feed
-from gtfs_schematic.feed.service import choose_date, typical_weekdays
+from gtfs_schematic.feed.service import typical_weekdays
 from gtfs_schematic.feed.speeds import find_leaps
 from gtfs_schematic.feed.stops import leave_out_unserved, read_stops, stops_of_timetable
 from gtfs_schematic.feed.ways import read_shapes, read_transfers, without_missing_shapes
@@ -37,7 +49,7 @@ _SILENT = Silent()
 def read_feed(
     paths: Sequence[Path], settings: FeedSettings, *, progress: Progress = _SILENT
 ) -> Timetable:
-    """Read the timetable of one service date from one or several GTFS Schedule feeds.
+    """Read the timetable of one service date, or of several together, from GTFS Schedule feeds.
 
     Parameters
     ----------
@@ -45,7 +57,7 @@ def read_feed(
         Zips or folders. With several, every id is prefixed "1:", "2:", … in the order given;
         the files named in findings and the ids left out as well.
     settings
-        Service date, modes and second language.
+        Service dates, what to keep, and second language.
 
     Returns
     -------
@@ -56,11 +68,13 @@ def read_feed(
     Raises
     ------
     FeedError
-        A feed that cannot be used, or nothing of it runs on the date.
+        A feed that cannot be used, or nothing of it runs then.
     UsageError
         No path, or a setting that means nothing.
     """
-    _check_usage(paths, settings)
+    if not paths:
+        raise UsageError("No feed was given. Give a GTFS zip or a folder.")
+    check_modes(settings)
     with ExitStack() as stack:
         progress.phase("Reading the feed", 2 * len(paths))
         plans = []
@@ -70,29 +84,32 @@ def read_feed(
             with _naming(prefix):
                 plans.append(plan_feed(files, prefix, settings))
             progress.step()
-        date, reason = choose_date([plan.validity for plan in plans], settings.date)
-        progress.note(reason)
+        _check_names(plans, settings)
+        choice = choose_dates([plan.validity for plan in plans], settings.date)
+        choice = with_expiry(choice, [plan.validity for plan in plans], settings.today)
+        progress.note(choice.reason)
         parts = []
         for plan in plans:
             with _naming(plan.tables.notebook.prefix):
-                parts.append(_timetable(plan, date, reason, settings))
+                parts.append(_timetable(plan, choice, settings))
             progress.step()
     timetable = join_timetables(parts)
     if not timetable.patterns:
         reasons = Counter(item.reason for item in timetable.left_out)
         told = "; ".join(f"{count} × {text}" for text, count in reasons.most_common(3))
-        raise FeedError(f"Nothing is left to draw on {date}. Left out: {told or 'nothing'}.")
+        raise FeedError(
+            f"Nothing is left to draw that runs {choice.when}. Left out: {told or 'nothing'}."
+        )
     return timetable
 
 
-def _check_usage(paths: Sequence[Path], settings: FeedSettings) -> None:
-    if not paths:
-        raise UsageError("No feed was given. Give a GTFS zip or a folder.")
-    unknown = sorted(set(settings.modes) - {*MODES, REPLACEMENT})
-    if unknown:
-        raise UsageError(
-            f"There is no mode {unknown[0]!r}. Modes are {', '.join((*MODES, REPLACEMENT))}."
-        )
+def _check_names(plans: Sequence[Plan], settings: FeedSettings) -> None:
+    prefixed = [(plan.tables.notebook.prefix, plan) for plan in plans]
+    check_names(
+        settings,
+        (names_of_agency(p, i, a) for p, plan in prefixed for i, a in plan.agencies.items()),
+        (names_of_route(p, r) for p, plan in prefixed for r in plan.all_routes.values()),
+    )
 
 
 @contextmanager
@@ -112,85 +129,107 @@ def _naming(prefix: str) -> Iterator[None]:
         ) from error
 
 
-def _timetable(plan: Plan, date: dt.date, reason: str, settings: FeedSettings) -> Timetable:
-    """Read what runs on the service date; ids are as in the feed, without prefix."""
+def _timetable(plan: Plan, choice: Choice, settings: FeedSettings) -> Timetable:
+    """Read what runs on the service dates; ids are as in the feed, without prefix."""
     tables = plan.tables
-    running = plan.validity.days.get(date, frozenset())
-    trips = [trip for trip in plan.trips if trip.service_id in running]
-    today = {trip.id: n for n, trip in enumerate(trips)}
     table = read_stops(tables)
-    stop_ids = sorted(table.own)
-    numbers = {ident: n for n, ident in enumerate(stop_ids)}
-    calls = read_calls(
-        tables,
-        {ident: today.get(ident, NOT_TODAY) for ident in plan.trip_ids},
-        numbers,
-        frozenset(numbers[ident] for ident in table.placed),
-    )
-    patterns = gather_patterns(trips, stop_ids, calls, plan.headways)
+    running = _running(plan, choice)
+    today = np.full(len(plan.drawn), NOT_TODAY, dtype=np.int32)
+    today[running] = np.arange(running.sum(), dtype=np.int32)
+    stop_ids = list(table.own)
+    placed = np.array([ident in table.placed for ident in stop_ids], dtype=np.bool_)
+    calls = read_calls(tables, Wanted(plan.trips.ids, today, Interned(stop_ids), placed))
+    runs = Runs(plan.trips, np.flatnonzero(running), _days(plan, choice), plan.headways)
+    patterns = gather_patterns(runs, stop_ids, calls)
+    if settings.min_trips:
+        patterns = without_rare_routes(
+            tables.notebook, patterns, plan.routes, settings.min_trips, choice.when
+        )
     shapes = read_shapes(tables, {p.shape_id for p in patterns if p.shape_id})
     patterns = without_missing_shapes(tables, patterns, shapes)
     stops = stops_of_timetable(tables, table, {s for p in patterns for s in p.stop_ids})
-    leave_out_unserved(tables, table, stops, date)
+    leave_out_unserved(tables, table, stops, choice.when)
     names = read_stop_names(tables, settings.language)
-    routes = _running_routes(plan, patterns, date)
+    routes = _running_routes(plan, patterns, running, choice.when)
     find_leaps(tables.notebook, patterns, stops, plan.routes)
     agency_ids = {route.agency_id for route in routes}
     for ident in plan.agencies.keys() - agency_ids:
-        tables.notebook.leave_out("agency", ident, f"none of its routes is drawn on {date}")
+        tables.notebook.leave_out("agency", ident, f"none of its routes is drawn {choice.when}")
+    services = plan.trips.services_of_routes()
     return Timetable(
-        _info(plan, date, reason, agency_ids, [route.id for route in routes]),
+        _info(plan, choice, agency_ids, [route.id for route in routes]),
         tuple(plan.agencies[ident] for ident in sorted(agency_ids & plan.agencies.keys())),
         tuple(names.translated(stop) for stop in stops),
         routes,
         patterns,
         read_transfers(tables, frozenset(stop.id for stop in stops), table.own),
         shapes,
-        _operating_days(plan, routes),
+        typical_weekdays(plan.validity.days, {route.id: services[route.id] for route in routes}),
         tables.notebook.findings,
         tables.notebook.left_out,
     )
 
 
-def _running_routes(plan: Plan, patterns: Sequence[Pattern], date: dt.date) -> tuple[Route, ...]:
+def _services(plan: Plan, date: dt.date) -> Masks:
+    """Tell which services run on a date."""
+    running = plan.validity.days.get(date, frozenset())
+    services = plan.trips.services
+    return np.array([services[n] in running for n in range(len(services))], dtype=np.bool_)
+
+
+def _days(plan: Plan, choice: Choice) -> tuple[tuple[Hours, ...], ...]:
+    """Give the days chosen, those that are alike once."""
+    days = {}
+    for day in choice.days:
+        hours = tuple(Hours(_services(plan, w.date), w.low, w.high, w.shift) for w in day)
+        days[tuple((h.services.tobytes(), h.low, h.high, h.shift) for h in hours)] = hours
+    return tuple(days.values())
+
+
+def _running(plan: Plan, choice: Choice) -> Masks:
+    """Tell which trips are drawn."""
+    running = np.zeros(len(plan.drawn), dtype=np.bool_)
+    for day in _days(plan, choice):
+        for hours in day:
+            some = plan.drawn & hours.services[plan.trips.service]
+            if plan.firsts is not None:
+                inside = (plan.firsts >= hours.low) & (plan.firsts < hours.high)
+                inside[list(plan.headways)] = True
+                some &= inside
+            running |= some
+    return running
+
+
+def _running_routes(
+    plan: Plan, patterns: Sequence[Pattern], running: Masks, when: str
+) -> tuple[Route, ...]:
     """Give the routes with patterns; the others are noted as left out, with the reason."""
-    running = {pattern.route_id for pattern in patterns}
-    trips: defaultdict[str, set[str]] = defaultdict(set)
-    for trip in plan.trips:
-        trips[trip.route_id].add(trip.service_id)
-    today = plan.validity.days.get(date, frozenset())
+    drawn = {pattern.route_id for pattern in patterns}
+    trips, today = plan.trips.route, plan.trips.route[running]
+    any_trips = {plan.trips.route_ids[n] for n in np.unique(trips[trips >= 0]).tolist()}
+    any_today = {plan.trips.route_ids[n] for n in np.unique(today).tolist()}
     for ident in plan.routes:
-        if ident in running:
+        if ident in drawn:
             continue
-        if ident not in trips:
+        if ident not in any_trips:
             reason = "has no trips"
-        elif trips[ident] & today:
+        elif ident in any_today:
             reason = "none of its trips can be used"
         else:
-            reason = f"does not run on {date}"
+            reason = f"does not run {when}"
         plan.tables.notebook.leave_out("route", ident, reason)
-    return tuple(plan.routes[ident] for ident in sorted(running))
+    return tuple(plan.routes[ident] for ident in sorted(drawn))
 
 
-def _operating_days(plan: Plan, routes: Sequence[Route]) -> dict[str, frozenset[int]]:
-    services: dict[str, set[str]] = {route.id: set() for route in routes}
-    for trip in plan.trips:
-        if trip.route_id in services:
-            services[trip.route_id].add(trip.service_id)
-    return typical_weekdays(plan.validity.days, {r: frozenset(s) for r, s in services.items()})
-
-
-def _info(
-    plan: Plan, date: dt.date, reason: str, agency_ids: set[str], route_ids: list[str]
-) -> FeedInfo:
+def _info(plan: Plan, choice: Choice, agency_ids: set[str], route_ids: list[str]) -> FeedInfo:
     return FeedInfo(
         plan.sha256,
         plan.imprint.publisher,
         plan.imprint.version,
         plan.validity.start.isoformat(),
         plan.validity.end.isoformat(),
-        date.isoformat(),
-        reason,
+        choice.date.isoformat(),
+        choice.reason,
         plan.imprint.lang,
         read_attributions(plan.tables, agency_ids, route_ids),
     )

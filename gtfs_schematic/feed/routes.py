@@ -1,27 +1,14 @@
-"""Reading agency.txt, routes.txt and trips.txt."""
+"""Reading agency.txt and routes.txt."""
 
 from __future__ import annotations
 
-from dataclasses import dataclass
 from functools import partial
 
 from gtfs_schematic.feed.cells import Cell, is_usable_id, name_of, value_of, whole_of
 from gtfs_schematic.feed.model import Agency, Route
-from gtfs_schematic.feed.modes import mode_of, refusal
+from gtfs_schematic.feed.modes import mode_of
 from gtfs_schematic.feed.tables import Tables
 from gtfs_schematic.feed.values import parse_color, parse_whole
-
-
-@dataclass(frozen=True, slots=True)
-class Trip:
-    """A row of trips.txt."""
-
-    id: str
-    route_id: str
-    service_id: str
-    headsign: str
-    direction_id: int | None
-    shape_id: str
 
 
 def read_agencies(tables: Tables) -> dict[str, Agency]:
@@ -74,54 +61,6 @@ def read_routes(tables: Tables, agencies: dict[str, Agency]) -> dict[str, Route]
             whole_of(notes, order),
         )
     return routes
-
-
-def keep_modes(
-    tables: Tables, routes: dict[str, Route], wanted: tuple[str, ...]
-) -> dict[str, Route]:
-    """Give the routes of the wanted modes; the others are noted as left out."""
-    kept = {}
-    for ident, route in routes.items():
-        reason = refusal(route.route_type, route.mode, wanted)
-        if reason:
-            tables.notebook.leave_out("route", ident, reason)
-        else:
-            kept[ident] = route
-    return kept
-
-
-def read_trips(tables: Tables, routes: dict[str, Route]) -> dict[str, Trip]:
-    """Give all trips by id; trips of unknown routes are found and left out."""
-    trips: dict[str, Trip] = {}
-    notes = tables.notebook
-    columns = ("trip_id", "route_id", "service_id", "trip_headsign", "direction_id", "shape_id")
-    for row, (trip_id, route_id, service_id, headsign, direction, shape_id) in tables.rows(
-        "trips.txt", columns
-    ):
-        at = partial(Cell, "trips.txt", row)
-        if not is_usable_id(notes, at("trip_id", trip_id), trips):
-            continue
-        if route_id not in routes:
-            fault = "trip of a route that routes.txt does not have; it is left out"
-            at("route_id", route_id).found(notes, "error", fault)
-            notes.leave_out("trip", trip_id, "its route is not in routes.txt")
-        trips[trip_id] = Trip(
-            trip_id,
-            route_id,
-            service_id,
-            name_of(notes, at("trip_headsign", headsign)),
-            value_of(
-                notes, at("direction_id", direction), _parse_direction, "direction is 0, 1 or empty"
-            ),
-            shape_id,
-        )
-    return trips
-
-
-def _parse_direction(text: str) -> int:
-    if text not in {"0", "1"}:
-        raise ValueError(text)
-    return int(text)
 
 
 def _agency_id(tables: Tables, cell: Cell, agencies: dict[str, Agency]) -> str:

@@ -1,4 +1,4 @@
-"""Choosing the service date: which services run when, and which date has most trips."""
+"""Which services run when, and how many trips they have."""
 
 from __future__ import annotations
 
@@ -9,10 +9,10 @@ import tempfile
 import warnings
 from collections import Counter, defaultdict
 from collections.abc import Iterable, Mapping, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from pathlib import Path
 
-from gtfs_schematic.errors import FeedError, UsageError
+from gtfs_schematic.errors import FeedError
 from gtfs_schematic.feed.calendars import Calendars
 from gtfs_schematic.feed.info import Imprint
 
@@ -27,20 +27,6 @@ Days = Mapping[dt.date, frozenset[str]]
 """Services that run, by date."""
 
 _WEEKDAYS = ("Monday", "Tuesday", "Wednesday", "Thursday", "Friday", "Saturday", "Sunday")
-_MONTHS = (
-    "January",
-    "February",
-    "March",
-    "April",
-    "May",
-    "June",
-    "July",
-    "August",
-    "September",
-    "October",
-    "November",
-    "December",
-)
 _TYPICAL_SHARE = 0.5
 
 
@@ -55,6 +41,9 @@ class Validity:
     """Only dates from `start` to `end`, only services with trips."""
     trips: Mapping[str, int]
     """Trips of every service, headway-based ones counted out."""
+    early: Mapping[str, int] = field(default_factory=dict)
+    late: Mapping[str, int] = field(default_factory=dict)
+    """Those that start in the night before the date's morning, and after its evening."""
 
     def count(self, date: dt.date) -> int:
         """Give the number of trips on a date."""
@@ -151,77 +140,6 @@ def validity_of(
     if not inside:
         return Validity(label, first, last, days, trips)
     return Validity(label, start, end, inside, trips)
-
-
-def choose_date(feeds: Sequence[Validity], wanted: str) -> tuple[dt.date, str]:
-    """Choose the service date for one or several feeds together.
-
-    Parameters
-    ----------
-    wanted
-        "busiest", or a date as YYYY-MM-DD. The busiest is, among the dates on which most of the
-        feeds run, the one with most trips; of several, the earliest.
-
-    Returns
-    -------
-    date, reason
-        The reason is one sentence for a person.
-
-    Raises
-    ------
-    UsageError
-        `wanted` is neither.
-    FeedError
-        The date is outside a feed's validity, or no feed runs on it; the feeds share no date.
-    """
-    if wanted == "busiest":
-        return _busiest(feeds)
-    try:
-        date = dt.date.fromisoformat(wanted)
-    except ValueError:
-        raise UsageError(
-            f"{wanted!r} is no service date: write YYYY-MM-DD, for example 2026-03-11, or busiest."
-        ) from None
-    for feed in feeds:
-        if not feed.start <= date <= feed.end:
-            raise FeedError(
-                f"{date} is outside the validity of {feed.label}, which is {feed.start} to "
-                f"{feed.end}. Give a date within it."
-            )
-    total = sum(feed.count(date) for feed in feeds)
-    if total == 0:
-        near = sorted({d for f in feeds for d in f.days}, key=lambda d: (abs(d - date), d))
-        raise FeedError(
-            f"No trip runs on {_spoken(date)}, {date}. The nearest date with service is {near[0]}."
-        )
-    return date, f"{_spoken(date)} was asked for; it has {total:,} trips."
-
-
-def _busiest(feeds: Sequence[Validity]) -> tuple[dt.date, str]:
-    start, end = max(feed.start for feed in feeds), min(feed.end for feed in feeds)
-    totals: Counter[dt.date] = Counter()
-    running: Counter[dt.date] = Counter()
-    for feed in feeds:
-        for date in feed.days:
-            if start <= date <= end:
-                totals[date] += feed.count(date)
-                running[date] += 1
-    if not totals:
-        ranges = "; ".join(f"{feed.label}: {feed.start} to {feed.end}" for feed in feeds)
-        raise FeedError(
-            f"The feeds share no date with service ({ranges}). Give feeds that hold at one time."
-        )
-    date = min(totals, key=lambda d: (-running[d], -totals[d], d))
-    same = sum(totals[d] == totals[date] and running[d] == running[date] for d in totals)
-    first = f", as the first of {same} such dates" if same > 1 else ""
-    return date, (
-        f"{_spoken(date)} has the most trips, {totals[date]:,}, of the {len(totals):,} dates with "
-        f"service from {start} to {end}{first}."
-    )
-
-
-def _spoken(date: dt.date) -> str:
-    return f"{_WEEKDAYS[date.weekday()]} {date.day} {_MONTHS[date.month - 1]} {date.year}"
 
 
 def typical_weekdays(

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import datetime as dt
 from collections import defaultdict
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, field, replace
@@ -90,15 +89,13 @@ def stops_of_timetable(tables: Tables, table: StopTable, called: Iterable[str]) 
     return tuple(_settled(tables, table, ident) for ident in sorted(wanted))
 
 
-def leave_out_unserved(
-    tables: Tables, table: StopTable, stops: Iterable[Stop], date: dt.date
-) -> None:
+def leave_out_unserved(tables: Tables, table: StopTable, stops: Iterable[Stop], when: str) -> None:
     """Note the stops and stations of the feed that no trip in the timetable calls at."""
     served = {stop.id for stop in stops}
     kinds = {0: "stop", 1: "station"}
     for ident, stop in table.own.items():
         if ident not in served and stop.location_type in kinds:
-            reason = f"no trip in the timetable of {date} calls at it"
+            reason = f"no trip that is drawn calls at it {when}"
             tables.notebook.leave_out(kinds[stop.location_type], ident, reason)
 
 

@@ -2,8 +2,6 @@
 
 from __future__ import annotations
 
-from array import array
-from collections import defaultdict
 from collections.abc import Collection, Container, Mapping
 from dataclasses import replace
 from functools import partial
@@ -11,11 +9,19 @@ from functools import partial
 import numpy as np
 from numpy.typing import NDArray
 
+from gtfs_schematic.feed import numerals
+from gtfs_schematic.feed.blocks import Block, Masks, read_in_blocks
 from gtfs_schematic.feed.cells import Cell, whole_of
+from gtfs_schematic.feed.findings import Notebook
+from gtfs_schematic.feed.interned import UNKNOWN, Interned
+from gtfs_schematic.feed.kernels import Ints, Places
 from gtfs_schematic.feed.model import Pattern, Transfer
 from gtfs_schematic.feed.tables import REQUIRED_COLUMNS, Tables
 from gtfs_schematic.feed.values import is_nowhere, parse_degrees, parse_whole
 
+Floats = NDArray[np.float64]
+
+_SHAPES = "shapes.txt"
 _TRANSFER_TYPES = range(6)
 _NOT_POSSIBLE = 3
 
@@ -77,13 +83,42 @@ def read_shapes(tables: Tables, wanted: Collection[str]) -> dict[str, NDArray[np
 
     Points that are no place on Earth are found and skipped.
     """
-    points: defaultdict[str, tuple[array[int], array[float]]] = defaultdict(
-        lambda: (array("q"), array("d"))
-    )
-    columns = REQUIRED_COLUMNS["shapes.txt"]
-    for row, (ident, lat, lon, sequence) in tables.rows("shapes.txt", columns):
-        if ident not in wanted:
-            continue
+    reader = _ShapeReader(tables.notebook, sorted(wanted))
+    read_in_blocks(tables, _SHAPES, REQUIRED_COLUMNS[_SHAPES], reader.bulk, reader.single)
+    return reader.shapes()
+
+
+class _ShapeReader:
+    """Gathers points of shapes: number of the shape, place in its order, lon, lat."""
+
+    def __init__(self, notebook: Notebook, wanted: list[str]) -> None:
+        self._notebook = notebook
+        self._ids = Interned(wanted)
+        self._parts: list[tuple[Places, Ints, Floats, Floats]] = []
+
+    def bulk(self, block: Block) -> Masks:
+        """Take what is regular; see `read_in_blocks`."""
+        shape = self._ids.find(block.column(0), block.regular.view(np.uint8))
+        here = shape != UNKNOWN
+        odd = np.zeros(len(shape), dtype=np.uint8)
+        lat, lon = np.empty(len(shape)), np.empty(len(shape))
+        order = np.empty(len(shape), dtype=np.int64)
+        used = here.view(np.uint8)
+        numerals.parse_decimals(block.column(1), used, odd, lat)
+        numerals.parse_decimals(block.column(2), used, odd, lon)
+        numerals.parse_wholes(block.column(3), used, odd, order)
+        nowhere = ((np.abs(lon) < 1.0) & (np.abs(lat) < 1.0)) | (np.abs(lat) > 89.0)
+        strange: Masks = here & ((odd != 0) | nowhere | (np.abs(lon) > 180.0))
+        good = here & ~strange
+        self._parts.append((shape[good], order[good], lon[good], lat[good]))
+        return strange
+
+    def single(self, row: int, texts: tuple[str, ...]) -> None:
+        """Take one row strictly."""
+        ident, lat, lon, sequence = texts
+        shape = self._ids.find_text(ident)
+        if shape == UNKNOWN:
+            return
         try:
             place = parse_degrees(lon, 180.0), parse_degrees(lat, 90.0)
             order = parse_whole(sequence)
@@ -91,22 +126,34 @@ def read_shapes(tables: Tables, wanted: Collection[str]) -> dict[str, NDArray[np
             place, order = (0.0, 0.0), 0
         if is_nowhere(*place):
             fault = "shape point is no place on Earth or has no number; it does not count"
-            cell = Cell("shapes.txt", row, "shape_pt_lat", f"{lat}, {lon}, {sequence}")
-            cell.found(tables.notebook, "warning", fault)
-            continue
-        orders, places = points[ident]
-        orders.append(order)
-        places.extend(place)
-    shapes = {}
-    for ident in sorted(points):
-        orders, places = points[ident]
-        shape = np.array(places).reshape(-1, 2)
+            cell = Cell(_SHAPES, row, "shape_pt_lat", f"{lat}, {lon}, {sequence}")
+            cell.found(self._notebook, "warning", fault)
+            return
+        self._parts.append(
+            (
+                np.array([shape], dtype=np.int32),
+                np.array([order], dtype=np.int64),
+                np.array([place[0]]),
+                np.array([place[1]]),
+            )
+        )
+
+    def shapes(self) -> dict[str, Floats]:
+        """Give all shapes gathered, by id in order."""
+        if not self._parts:
+            return {}
+        shape, order, lon, lat = map(np.concatenate, zip(*self._parts, strict=True))
         # Equal numbers are against the rules; the coordinates make the order definite.
-        shape = shape[np.lexsort((shape[:, 1], shape[:, 0], np.array(orders)))]
-        shape.setflags(write=False)
-        if len(shape) >= 2:
-            shapes[ident] = shape
-    return shapes
+        ranks = np.lexsort((lat, lon, order, shape))
+        shape, points = shape[ranks], np.column_stack([lon, lat])[ranks]
+        cuts = np.searchsorted(shape, np.arange(len(self._ids) + 1))
+        found = {}
+        for number in range(len(self._ids)):
+            own = points[cuts[number] : cuts[number + 1]].copy()
+            own.setflags(write=False)
+            if len(own) >= 2:
+                found[self._ids[number]] = own
+        return found
 
 
 def without_missing_shapes(

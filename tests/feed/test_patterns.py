@@ -191,7 +191,11 @@ def test_calls_that_are_none_do_not_count(read_town):
     ("rows", "reason"),
     [
         (["t1s,10:00:00,10:00:00,gate1,1"], "fewer than two usable stops"),
-        ([], "fewer than two usable stops"),
+        ([], "it has no row in stop_times.txt"),
+        (
+            ["t1s,,,,1", "t1s,,,,2"],
+            "it runs on demand: stop_times.txt names areas for it instead of stops",
+        ),
         (["t1s,,,gate1,1", "t1s,,,tams,2"], "no time at any stop"),
     ],
 )
@@ -225,5 +229,6 @@ def test_nothing_to_draw_is_an_error_with_the_reasons(read_town, table):
     header = table("stop_times.txt").splitlines()[0] + "\n"
     from gtfs_schematic.errors import FeedError  # noqa: PLC0415
 
-    with pytest.raises(FeedError, match=r"Nothing is left to draw on 2026-03-02.*4 × fewer than"):
+    told = r"Nothing is left to draw that runs on 2026-03-02.*4 × it has no row"
+    with pytest.raises(FeedError, match=told):
         read_town({"stop_times.txt": header})

@@ -30,7 +30,7 @@ def path(request):
 
 @pytest.fixture(scope="module")
 def timetable(path):
-    return read_feed([path], FeedSettings())
+    return read_feed([path], FeedSettings(date="busiest"))
 
 
 @pytest.fixture(scope="module")

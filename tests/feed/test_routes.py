@@ -63,8 +63,8 @@ def test_modes_are_filtered_and_the_busiest_date_follows(read_town, table):
         f"s{n},08:00:00,08:00:00,vend,1\ns{n},08:05:00,08:05:00,tams,2\n" for n in range(9)
     )
     changes = {"trips.txt": trips, "stop_times.txt": times}
-    assert read_town(changes).info.service_date == "2026-03-07"
-    tram = read_town(changes, modes=("tram",))
+    assert read_town(changes, date="busiest").info.service_date == "2026-03-07"
+    tram = read_town(changes, date="busiest", modes=("tram",))
     assert tram.info.service_date == "2026-03-02"
     assert [(r.id, r.mode) for r in tram.routes] == [("t1", "tram")]
     assert "mode bus is not among those asked for" in {item.reason for item in tram.left_out}

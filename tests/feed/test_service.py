@@ -11,8 +11,9 @@ from hypothesis import strategies as st
 
 from gtfs_schematic.errors import FeedError, UsageError
 from gtfs_schematic.feed.calendars import Calendars, Exceptional, Span
+from gtfs_schematic.feed.dates import choose_dates
 from gtfs_schematic.feed.info import Imprint
-from gtfs_schematic.feed.service import choose_date, service_days, typical_weekdays, validity_of
+from gtfs_schematic.feed.service import service_days, typical_weekdays, validity_of
 
 FIRST = dt.date(2026, 2, 20)
 SERVICES = ("NA", "001", "ü,\n", "x")
@@ -61,7 +62,8 @@ def test_the_busiest_date_is_the_earliest_of_the_most_trips(calendars, trips):
         with pytest.raises(FeedError, match="no service on any date"):
             validity_of("feed", calendars, Imprint(), trips)
         return
-    chosen, reason = choose_date([validity_of("feed", calendars, Imprint(), trips)], "busiest")
+    choice = choose_dates([validity_of("feed", calendars, Imprint(), trips)], "busiest")
+    chosen, reason = choice.date, choice.reason
     totals = Counter({date: sum(trips[i] for i in ids) for date, ids in days.items()})
     assert totals[chosen] == max(totals.values())
     assert all(totals[date] < totals[chosen] for date in days if date < chosen)
@@ -74,7 +76,7 @@ def test_the_busiest_date_is_the_earliest_of_the_most_trips(calendars, trips):
 
 
 def test_busiest_is_the_first_full_weekday_of_the_town(read_town):
-    info = read_town().info
+    info = read_town(date="busiest").info
     assert (info.start_date, info.end_date) == ("2026-03-02", "2026-03-28")
     assert info.service_date == "2026-03-02"
     assert info.service_reason == (
@@ -85,7 +87,7 @@ def test_busiest_is_the_first_full_weekday_of_the_town(read_town):
 
 def test_headway_trips_make_a_date_busy(read_town):
     headways = "trip_id,start_time,end_time,headway_secs\nt1s,06:00:00,07:00:00,600\n"
-    info = read_town({"frequencies.txt": headways}).info
+    info = read_town({"frequencies.txt": headways}, date="busiest").info
     assert info.service_date == "2026-03-07"
     assert "has the most trips, 6, of" in info.service_reason
 
