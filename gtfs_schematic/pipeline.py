@@ -118,7 +118,10 @@ def draw(
 
     progress.phase("composing the sheet")
     drawing = compose(labelled, settings.drawing)
-    _must_be_sound("drawing", drawing_check.faults(drawing, network, unnamed=labelled.unplaced))
+    found = drawing_check.faults(
+        drawing, network, unnamed=labelled.unplaced, said_as=labelled.abbreviated
+    )
+    _must_be_sound("drawing", found)
 
     progress.phase("measuring the drift")
     timing = timing_of(timetable, network)

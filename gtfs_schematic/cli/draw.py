@@ -121,6 +121,7 @@ def describe(
         *words.left_out(network.left_out, where=_WHERE),
         *words.findings(network.findings, where=_WHERE),
         *_names(result),
+        *_short_names(result),
         *_letters(result),
         *_contrast(result),
         _GUARANTEES,
@@ -143,6 +144,15 @@ def _names(result: Result) -> list[str]:
     head = f"Names: {whole - len(missing)} of {whole} placed; no room for"
     advice = "a larger sheet or smaller type gives room"
     return [head, *words.first_few(rows, everything=False, where=advice)]
+
+
+def _short_names(result: Result) -> list[str]:
+    """Say which names stand in a short form."""
+    short = result.labelled.abbreviated
+    if not short:
+        return []
+    rows = [f"{result.network.station[key].name}: {short[key]}" for key in sorted(short)]
+    return [f"Abbreviated: {words.count(len(rows), 'name')}", *(f"  {row}" for row in rows)]
 
 
 def _letters(result: Result) -> list[str]:

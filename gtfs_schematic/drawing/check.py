@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import re
 from collections import Counter
-from collections.abc import Collection, Iterator
+from collections.abc import Collection, Iterator, Mapping
 
 from gtfs_schematic.drawing.model import Drawing, Group, PathShape, TextShape
 from gtfs_schematic.network.model import Network
@@ -17,11 +17,18 @@ _CAUTION_WORDS = (
 _OUTSIDE_MM = 0.01
 
 
-def faults(drawing: Drawing, network: Network, *, unnamed: Collection[str] = ()) -> tuple[str, ...]:
+def faults(
+    drawing: Drawing,
+    network: Network,
+    *,
+    unnamed: Collection[str] = (),
+    said_as: Mapping[str, str] | None = None,
+) -> tuple[str, ...]:
     """List what is wrong with a drawing; empty when all is well.
 
     1. Every line and every station of the network is drawn exactly once, with a title.
-    2. Every station's name stands beside its marker, but for the ids in `unnamed`.
+    2. Every station's name stands beside its marker, but for the ids in `unnamed`; those in
+       `said_as` stand in the short form given there.
     3. Everything lies on the page.
     4. The cautions, the publisher and the feed's attributions stand on the sheet.
     """
@@ -29,7 +36,7 @@ def faults(drawing: Drawing, network: Network, *, unnamed: Collection[str] = ())
     return (
         *_counts(groups, "line", [line.id for line in network.lines]),
         *_counts(groups, "station", [station.id for station in network.stations]),
-        *_names(groups, network, unnamed),
+        *_names(groups, network, unnamed, said_as or {}),
         *_outside(drawing, groups),
         *_words(groups, network),
     )
@@ -58,7 +65,12 @@ def _counts(groups: list[Group], kind: str, wanted: list[str]) -> Iterator[str]:
             yield f"{kind} {id_!r} has no path"
 
 
-def _names(groups: list[Group], network: Network, unnamed: Collection[str]) -> Iterator[str]:
+def _names(
+    groups: list[Group],
+    network: Network,
+    unnamed: Collection[str],
+    said_as: Mapping[str, str],
+) -> Iterator[str]:
     said = {
         group.data["station"]: " ".join(
             child.text
@@ -69,7 +81,7 @@ def _names(groups: list[Group], network: Network, unnamed: Collection[str]) -> I
         if group.css_class == "station" and "station" in group.data
     }
     for station in network.stations:
-        wanted = "" if station.id in unnamed else station.name
+        wanted = "" if station.id in unnamed else said_as.get(station.id, station.name)
         if _letters(said.get(station.id, "")) != _letters(wanted):
             yield (
                 f"station {station.id!r} is named {said.get(station.id, '')!r} "

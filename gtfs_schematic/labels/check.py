@@ -48,11 +48,19 @@ def _completeness(labelled: LabelledLayout) -> Iterator[str]:
         if label is None:
             continue
         said = "".join(line.text for line in label.lines if not line.second)
-        if said.split() != station.name.split() and _bare(said) != _bare(station.name):
+        wanted = labelled.abbreviated.get(station.id, station.name)
+        if _bare(said) != _bare(wanted) or not _is_short_for(labelled, wanted, station.name):
             yield f"The label of station {station.id} says {said!r}, not {station.name!r}."
     for station_id in labelled.labels:
         if station_id not in network.station:
             yield f"There is a label for {station_id}, which is no station."
+
+
+def _is_short_for(labelled: LabelledLayout, short: str, name: str) -> bool:
+    """Tell whether each word is that of the name or one that the settings give for it."""
+    table = labelled.settings.abbreviations
+    listed = [part for word in name.split() for part in table.get(word, word).split()]
+    return short.split() in (name.split(), listed)
 
 
 def _bare(text: str) -> str:

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from typing import Literal
 
 from pydantic import BaseModel, ConfigDict, Field
@@ -36,6 +36,8 @@ class LabelSettings(BaseModel):
     """Whether a line's name stands in a small badge at its termini's names."""
     line_names_every_mm: float = Field(default=90.0, ge=0.0)
     """Along a line its name stands on it about this often, millimetres; 0 for never."""
+    abbreviations: dict[str, str] = Field(default_factory=dict)
+    """Short forms of words, tried for names that find no place otherwise."""
     sides: dict[str, Side] = Field(default_factory=dict)
     """Per station id the side that a person asks for; kept wherever it is free."""
 
@@ -113,5 +115,7 @@ class LabelledLayout:
     labels: Mapping[str, Label]
     unplaced: tuple[str, ...]
     """Ids of stations whose label found no free place; empty in a good drawing."""
+    abbreviated: Mapping[str, str] = field(default_factory=dict)
+    """Per station id what its label says, where that is a short form of its name."""
     run_badges: tuple[RunBadge, ...] = ()
     """Names of lines along their runs, in the order of lines and their stretches."""

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import replace
 
 from gtfs_schematic.bundles.model import BundledLayout
 from gtfs_schematic.labels.along import run_badges
@@ -31,7 +32,8 @@ def place_labels(
 
     No label touches a line, walk, marker or other label or leaves the frame, each by the
     clearance of the settings. Where the usual places do not do, labels are pushed further out,
-    broken into more rows and set at 90 % of their size; what still finds no place is listed.
+    broken into more rows and set at 90 % of their size, at last abbreviated; what still finds no
+    place is listed.
     """
     progress.phase("placing names", 3)
     sites = sites_of(bundled, settings)
@@ -46,15 +48,36 @@ def place_labels(
     chosen = _chosen(sites, choice, listed)
     if len(chosen) < len(sites):
         chosen = _widen(sites, entries, chosen, (obstacles, neighbors, settings))
+    short = _shortened(sites, chosen, settings)
+    if short != sites:
+        chosen = _widen(short, entries, chosen, (obstacles, neighbors, settings))
     progress.step()
     labels = {station_id: _label(chosen[station_id]) for station_id in sorted(chosen)}
     return LabelledLayout(
         bundled=bundled,
         settings=settings,
         labels=labels,
+        abbreviated={
+            station_id: chosen[station_id].candidate.site.name
+            for station_id in sorted(chosen)
+            if chosen[station_id].candidate.site.shortened
+        },
         unplaced=tuple(site.station_id for site in sites if site.station_id not in chosen),
         run_badges=run_badges(bundled, settings, obstacles, tuple(labels.values())),
     )
+
+
+def _shortened(
+    sites: tuple[Site, ...], chosen: dict[str, Entry], settings: LabelSettings
+) -> tuple[Site, ...]:
+    """Give the sites, with the words of names that found no place in their short forms."""
+    found = []
+    for site in sites:
+        words = [settings.abbreviations.get(word, word) for word in site.name.split(" ")]
+        name = " ".join(words)
+        lost = site.station_id not in chosen and name != site.name
+        found.append(replace(site, name=name, shortened=True) if lost else site)
+    return tuple(found)
 
 
 def _chosen(sites: Sequence[Site], choice: Choice, listed: Sequence[Entry]) -> dict[str, Entry]:

@@ -47,6 +47,8 @@ class Site:
     run: Run
     lines: frozenset[str]
     """Ids of the lines that call."""
+    shortened: bool = False
+    """Whether the name is a short form."""
 
     def support(self, side: Side) -> Point:
         """Give the covered point furthest to a side; where several are, the middle of them."""
