@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Sequence
+from collections.abc import Iterable, Mapping, Sequence
 
 from gtfs_schematic.drift.timing import Timing
 from gtfs_schematic.edition.model import (
@@ -13,16 +13,22 @@ from gtfs_schematic.edition.model import (
     EditionStation,
     EditionWalk,
 )
-from gtfs_schematic.feed.model import FeedInfo, Finding
+from gtfs_schematic.feed.model import FeedInfo, Finding, Timetable
 from gtfs_schematic.geometry import Point
 from gtfs_schematic.labels.model import LabelledLayout
 from gtfs_schematic.layout.model import Layout
+from gtfs_schematic.network.model import Line, Network
 
 _PLACES_MM = 4
 _PLACES_DEGREES = 7
 
 
-def edition_of(labelled: LabelledLayout, title: str, timing: Timing | None = None) -> Edition:
+def edition_of(
+    labelled: LabelledLayout,
+    title: str,
+    timing: Timing | None = None,
+    stop_codes: Mapping[str, tuple[str, ...]] | None = None,
+) -> Edition:
     """Make the edition that a labelled layout shows.
 
     Parameters
@@ -33,6 +39,8 @@ def edition_of(labelled: LabelledLayout, title: str, timing: Timing | None = Non
         Title of the edition, as on the sheet.
     timing
         When its lines run, so that journeys can be measured from the edition alone.
+    stop_codes
+        Per station id the codes at its stops (`stop_codes_of`).
 
     Returns
     -------
@@ -49,15 +57,12 @@ def edition_of(labelled: LabelledLayout, title: str, timing: Timing | None = Non
         feed=_feed(network.info),
         width_mm=layout.sheet.width_mm,
         height_mm=layout.sheet.height_mm,
-        stations=_stations(labelled, timing),
+        stations=_stations(labelled, timing, stop_codes or {}),
         links=tuple(
             EditionLink(k.id, k.start, k.end, bundled.orders[k.id], _path(layout.paths[k.id]))
             for k in network.links
         ),
-        lines=tuple(
-            EditionLine(k.id, k.name, k.color, k.text_color, k.route_ids, k.itineraries)
-            for k in network.lines
-        ),
+        lines=tuple(_line(line) for line in network.lines),
         left_out=tuple((item.kind, item.id, item.reason) for item in network.left_out),
         findings=tuple(sentence(finding) for finding in network.findings),
         walks=_walks(layout),
@@ -92,7 +97,37 @@ def _feed(info: FeedInfo) -> EditionFeed:
     )
 
 
-def _stations(labelled: LabelledLayout, timing: Timing) -> tuple[EditionStation, ...]:
+def stop_codes_of(timetable: Timetable, network: Network) -> dict[str, tuple[str, ...]]:
+    """Give per station id the codes at its stops, sorted; stations without codes are left out."""
+    codes = {stop.id: stop.code for stop in timetable.stops if stop.code}
+    found = {
+        station.id: tuple(sorted({codes[stop] for stop in station.stop_ids if stop in codes}))
+        for station in network.stations
+    }
+    return {key: value for key, value in found.items() if value}
+
+
+def _line(line: Line) -> EditionLine:
+    return EditionLine(
+        id=line.id,
+        name=line.name,
+        color=line.color,
+        text_color=line.text_color,
+        route_ids=line.route_ids,
+        itineraries=line.itineraries,
+        long_name=line.long_name,
+        mode=line.mode,
+        service=line.service,
+        trips=line.trips,
+        first_departure_s=line.first_departure_s,
+        last_departure_s=line.last_departure_s,
+        headway_s=line.headway_s,
+    )
+
+
+def _stations(
+    labelled: LabelledLayout, timing: Timing, stop_codes: Mapping[str, tuple[str, ...]]
+) -> tuple[EditionStation, ...]:
     layout = labelled.bundled.layout
     return tuple(
         EditionStation(
@@ -108,6 +143,9 @@ def _stations(labelled: LabelledLayout, timing: Timing) -> tuple[EditionStation,
             group=station.group,
             label_side=labelled.labels[station.id].side if station.id in labelled.labels else "",
             change_s=timing.change_s.get(station.id),
+            stop_codes=stop_codes.get(station.id, ()),
+            second_name=station.second_name,
+            boarding=station.boarding,
         )
         for station in layout.network.stations
     )

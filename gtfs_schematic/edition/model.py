@@ -2,9 +2,12 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from collections.abc import Mapping
+from dataclasses import dataclass, field
+from typing import Any
 
 from gtfs_schematic.drift.placed import TimedPattern
+from gtfs_schematic.feed.model import Boarding
 from gtfs_schematic.geometry import Point
 from gtfs_schematic.network.model import StationKind
 
@@ -39,6 +42,10 @@ class EditionStation:
     """Compass side of the marker on which the name stands; empty if it found no place."""
     change_s: int | None = None
     """Seconds that the feed gives for a change within the station."""
+    stop_codes: tuple[str, ...] = ()
+    """Codes that riders read at its stops, sorted."""
+    second_name: str = ""
+    boarding: Boarding = "unknown"
 
 
 @dataclass(frozen=True, slots=True)
@@ -73,6 +80,17 @@ class EditionLine:
     text_color: str
     route_ids: tuple[str, ...]
     itineraries: tuple[tuple[str, ...], ...]
+    long_name: str = ""
+    mode: str = ""
+    """Empty in editions that do not say; then nothing is known of service either."""
+    service: str = ""
+    trips: int = 0
+    """Trips on the service date, both directions."""
+    first_departure_s: int | None = None
+    """Seconds after noon minus 12 h."""
+    last_departure_s: int | None = None
+    headway_s: int | None = None
+    """Median time between departures of the busier direction at its first stop, seconds."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -92,3 +110,9 @@ class Edition:
     walks: tuple[EditionWalk, ...] = ()
     patterns: tuple[TimedPattern, ...] = ()
     """When the lines run on the service date; empty in editions that do not say."""
+    previous: str = ""
+    """SHA-256 of the `edition.json` that this edition revises; empty for a first one."""
+    settings: Mapping[str, Any] = field(default_factory=dict)
+    """What was set other than by default, as nested tables."""
+    adjustments: Mapping[str, Any] = field(default_factory=dict)
+    """What a person overrode, as nested tables (see adjustments.py)."""

@@ -69,6 +69,9 @@ class _Station(_Part):
     group: str
     label_side: str = ""
     change_s: Annotated[int, Field(ge=0)] | None = None
+    stop_codes: list[str] = []
+    second_name: str = ""
+    boarding: Literal["unknown", "yes", "no"] = "unknown"
 
 
 class _Link(_Part):
@@ -94,6 +97,13 @@ class _Line(_Part):
     text_color: Color
     route_ids: list[str]
     itineraries: list[list[str]]
+    long_name: str = ""
+    mode: str = ""
+    service: str = ""
+    trips: Annotated[int, Field(ge=0)] = 0
+    first_departure_s: int | None = None
+    last_departure_s: int | None = None
+    headway_s: int | None = None
 
 
 class _Pattern(_Part):
@@ -122,6 +132,9 @@ class _Document(_Part):
     patterns: list[_Pattern] = []
     left_out: list[_LeftOut] = []
     findings: list[str] = []
+    previous: Annotated[str, Field(pattern=r"^([0-9a-f]{64})?$")] = ""
+    settings: dict[str, Any] = {}
+    adjustments: dict[str, Any] = {}
 
 
 def to_json(edition: Edition) -> bytes:
@@ -142,6 +155,9 @@ def to_json(edition: Edition) -> bytes:
         "title": edition.title,
         "feed": _plain(edition.feed),
         "sheet": {"width_mm": edition.width_mm, "height_mm": edition.height_mm},
+        "previous": edition.previous,
+        "settings": edition.settings,
+        "adjustments": edition.adjustments,
     }
     tables: dict[str, list[Any]] = {
         "stations": [_plain(station) for station in edition.stations],
@@ -210,6 +226,9 @@ def _edition(document: _Document) -> Edition:
         findings=tuple(document.findings),
         walks=tuple(EditionWalk(**_frozen(part)) for part in document.walks),
         patterns=tuple(TimedPattern(**_frozen(part)) for part in document.patterns),
+        previous=document.previous,
+        settings=document.settings,
+        adjustments=document.adjustments,
     )
 
 

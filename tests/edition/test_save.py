@@ -55,6 +55,9 @@ def editions(draw: st.DrawFn) -> Edition:
             group=draw(st.sampled_from(station_ids)),
             label_side=draw(st.sampled_from(["", "E", "NW"])),
             change_s=draw(st.none() | st.integers(0, 999)),
+            stop_codes=tuple(draw(st.lists(ids, max_size=2))),
+            second_name=draw(texts),
+            boarding=draw(st.sampled_from(["unknown", "yes", "no"])),
         )
         for key in station_ids
     )
@@ -74,6 +77,11 @@ def editions(draw: st.DrawFn) -> Edition:
             text_color=draw(colors),
             route_ids=tuple(draw(st.lists(ids, max_size=2))),
             itineraries=tuple(draw(st.lists(some_stations, max_size=2))),
+            long_name=draw(texts),
+            mode=draw(st.sampled_from(["", "tram", "bus"])),
+            service=draw(st.sampled_from(["", "all-day", "night"])),
+            trips=draw(st.integers(0, 999)),
+            headway_s=draw(st.none() | st.integers(1, 9999)),
         )
         for key in line_ids
     )
@@ -84,9 +92,13 @@ def editions(draw: st.DrawFn) -> Edition:
     timed = tuple(
         timed_pattern(draw, line_ids, station_ids) for _ in range(draw(st.integers(0, 2)))
     )
+    plain = st.dictionaries(texts, texts | st.booleans() | st.lists(texts, max_size=2), max_size=2)
     return Edition(
-        draw(texts), feed, WIDTH, HEIGHT, stations, links, lines, left_out, findings, walks, timed
-    )
+        draw(texts), feed, WIDTH, HEIGHT, stations, links, lines, left_out, findings, walks, timed,
+        previous=draw(st.sampled_from(["", sha])),
+        settings=draw(plain),
+        adjustments=draw(plain),
+    )  # fmt: skip
 
 
 def timed_pattern(draw, line_ids, station_ids):
