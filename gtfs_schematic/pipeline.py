@@ -11,7 +11,7 @@ which shares no code with it: what a check faults never reaches a file.
 from __future__ import annotations
 
 import os
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from pathlib import Path
 
@@ -116,6 +116,15 @@ def draw(
     frames = candidate_frames(network, settings.sheet, settings.drawing)
     labelled = _labelled(network, settings, frames, progress)
 
+    return finish(timetable, labelled, settings, progress)
+
+
+def finish(
+    timetable: Timetable, labelled: LabelledLayout, settings: Settings, progress: Progress
+) -> Result:
+    """Compose the sheet of a labelled layout, make its edition and measure the drift."""
+    bundled = labelled.bundled
+    network = bundled.layout.network
     progress.phase("composing the sheet")
     drawing = compose(labelled, settings.drawing)
     found = drawing_check.faults(
@@ -130,7 +139,6 @@ def draw(
     drift = measure_edition(edition, settings.drift)
     _must_be_sound("drift", drift_check.faults(drift))
 
-    bundled = labelled.bundled
     return Result(
         settings,
         timetable,
@@ -235,6 +243,30 @@ def _labelled(
         labelled = _labelled_on_sheet(placement, settings, larger, progress)
         best = min(best, labelled, key=_unplaced)
     return best
+
+
+def labelled_from(
+    layout: Layout | None,
+    network: Network,
+    settings: Settings,
+    sides: Mapping[str, str],
+    progress: Progress,
+) -> LabelledLayout:
+    """Bundle and label a layout that stands, names on the sides that they had; None: lay it out."""
+    if layout is None:
+        frames = candidate_frames(network, settings.sheet, settings.drawing)
+        return _labelled(network, settings, frames, progress)
+    clearances = clearances_of(network, settings.bundles, settings.labels)
+    _must_be_sound("layout", layout_check.faults(layout, clearances, settings.layout.pins))
+    bundled = bundle(layout, settings.bundles, progress=progress)
+    _must_be_sound("bundles", bundles_check.faults(bundled))
+    kept = {key: side for key, side in sides.items() if key in network.station}
+    asked = LabelSettings.model_validate(
+        settings.labels.model_dump() | {"sides": kept | settings.labels.sides}
+    )
+    labelled = place_labels(bundled, asked, progress=progress)
+    _must_be_sound("labels", labels_check.faults(labelled))
+    return labelled
 
 
 def _labelled_on_sheet(

@@ -15,6 +15,7 @@ from gtfs_schematic.cli.draw import draw
 from gtfs_schematic.cli.drift import drift
 from gtfs_schematic.cli.inspect import inspect
 from gtfs_schematic.cli.review import review
+from gtfs_schematic.cli.revise import revise
 from gtfs_schematic.errors import SchematicError
 
 _INTERRUPTED = 130
@@ -31,7 +32,8 @@ Exit codes:
 \b
 Example:
   gtfs-schematic demo feeds
-  gtfs-schematic draw feeds/before.zip --out diagram
+  gtfs-schematic draw feeds/before.zip --out spring
+  gtfs-schematic revise spring feeds/after.zip --out summer
 """
 
 
@@ -44,7 +46,7 @@ def cli() -> None:
     """Draw transit network diagrams from GTFS feeds, and measure their drift from geography."""
 
 
-for command in (inspect, draw, drift, review, demo):
+for command in (inspect, draw, drift, revise, review, demo):
     cli.add_command(command)
 
 

@@ -28,7 +28,7 @@ FILES = (
 )
 """What an edition's folder holds."""
 
-FILES_IF_WANTED = ("diagram.png",)
+FILES_IF_WANTED = ("diagram.png", "changes.html", "changes.csv", "changes.json")
 """What it may hold beside, and nothing else."""
 
 

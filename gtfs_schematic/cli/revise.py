@@ -1,0 +1,95 @@
+"""Command `revise`: from an edition and a new feed to the next edition and its change sheet."""
+
+from __future__ import annotations
+
+from pathlib import Path
+from typing import TYPE_CHECKING, Any
+
+import click
+
+from gtfs_schematic.cli import options, words
+from gtfs_schematic.cli.console import listening
+
+if TYPE_CHECKING:
+    from gtfs_schematic.revision import Revision
+
+_EPILOG = """\b
+Example:
+  gtfs-schematic draw spring.zip --out spring
+  gtfs-schematic revise spring summer.zip --out summer
+"""
+
+_WHERE = "changes.html and changes.csv list all"
+
+
+@click.command(epilog=_EPILOG)
+@options.edition
+@options.feeds
+@click.option(
+    "--out",
+    type=click.Path(path_type=Path),
+    required=True,
+    metavar="DIR",
+    help="Folder to write; EDITION stays untouched.",
+)
+@options.overwrite
+@options.feed_options
+@options.draw_options
+@options.as_json
+@options.quiet
+def revise(
+    edition: Path,
+    feeds: tuple[Path, ...],
+    out: Path,
+    **given: Any,  # noqa: ANN401 - the options of the registry
+) -> int:
+    """Redraw EDITION from FEED, a new timetable, and write what differs.
+
+    What both have keeps its id and its place on the sheet; only what is new finds one. Beside the
+    files of draw, the folder gets changes.html, changes.csv and changes.json. Give the same options
+    and configuration as for EDITION.
+    """
+    settings = options.settings_from(given)
+    from gtfs_schematic.edition.folder import check_target, load_edition, write_folder
+    from gtfs_schematic.errors import UsageError
+
+    if out.resolve() == (edition if edition.is_dir() else edition.parent).resolve():
+        raise UsageError(f"{out} is the edition that is revised. Name another folder with --out.")
+    check_target(out, overwrite=given["overwrite"])
+    before = load_edition(edition)
+    folder = edition if edition.is_dir() else edition.parent
+    diagram = options.read_bytes(folder / "diagram.svg", "diagram of the edition")
+    from gtfs_schematic.revision import files_of_revision
+    from gtfs_schematic.revision import revise as run
+
+    with listening(quiet=given["quiet"]) as progress:
+        revision = run(before, feeds, settings, progress=progress)
+        progress.phase("writing files")
+        files = files_of_revision(revision, before, diagram)
+    write_folder(out, files, overwrite=given["overwrite"])
+    if given["as_json"]:
+        click.echo(files["changes.json"])
+    else:
+        click.echo("\n".join(describe(revision, out)))
+    return 0
+
+
+def describe(revision: Revision, out: Path) -> list[str]:
+    """Write what changed, for people."""
+    sheet, result = revision.sheet, revision.result
+    rows = [f"{c.subject} {c.kind}: {c.name} ({c.id})" for c in sheet.changes]
+    missing = result.labelled.unplaced
+    return [
+        f"{result.edition.title}, {result.drawing.width_mm:g} × {result.drawing.height_mm:g} mm",
+        words.service_date(result.network.info),
+        f"Changes: {words.count(len(rows), 'change')}" if rows else "Changes: none",
+        *words.first_few(rows, everything=len(rows) <= 30, where=_WHERE),
+        *(
+            ["Laid out anew: what is new found no room beside what stood"]
+            if revision.anew
+            else [f"Kept in place: {sheet.kept - sheet.moved_on_sheet} of {sheet.kept} stations"]
+        ),
+        *(f"Look at this match: {doubt}" for doubt in sheet.doubtful),
+        *([f"Names without a place: {', '.join(missing)}"] if missing else ["Names: all placed"]),
+        f"Written to {out}",
+    ]

@@ -1,0 +1,137 @@
+"""A revised edition keeps ids and places, finds every change, and says nothing else changed."""
+
+from __future__ import annotations
+
+import csv
+import io
+import json
+import random
+import zipfile
+from pathlib import Path
+
+import pytest
+
+from gtfs_schematic import pipeline
+from gtfs_schematic.config import Settings
+from gtfs_schematic.edition.identity import match_edition
+from gtfs_schematic.edition.model import Edition
+from gtfs_schematic.layout.check import faults
+from gtfs_schematic.revision import Revision, files_of_revision, revise
+
+DATA = Path(__file__).parent.parent / "data"
+BEFORE, AFTER = DATA / "before.zip", DATA / "after.zip"
+SETTINGS = Settings.model_validate({"layout": {"effort": "quick"}})
+TRUTH = json.loads((DATA / "changes-truth.json").read_text("utf-8"))
+
+
+@pytest.fixture(scope="module")
+def drawn() -> pipeline.Result:
+    return pipeline.draw(BEFORE, SETTINGS)
+
+
+@pytest.fixture(scope="module")
+def before(drawn: pipeline.Result) -> Edition:
+    return drawn.edition
+
+
+@pytest.fixture(scope="module")
+def revision(before: Edition) -> Revision:
+    return revise(before, AFTER, SETTINGS)
+
+
+def names(revision: Revision, subject: str, kind: str) -> set[str]:
+    return {c.name for c in revision.sheet.changes if (c.subject, c.kind) == (subject, kind)}
+
+
+def test_an_unchanged_feed_gives_the_same_drawing_and_no_change(before: Edition):
+    again = revise(before, BEFORE, SETTINGS)
+    assert again.sheet.changes == ()
+    new, old = again.result.edition, before
+    assert [(s.id, s.x_mm, s.y_mm) for s in new.stations] == [
+        (s.id, s.x_mm, s.y_mm) for s in old.stations
+    ]
+    assert new.links == old.links
+    sides = [a.label_side == b.label_side for a, b in zip(new.stations, old.stations, strict=True)]
+    assert sum(sides) >= 0.95 * len(sides)
+
+
+def test_what_stands_keeps_its_place(before: Edition, revision: Revision):
+    old = {s.id: (s.x_mm, s.y_mm) for s in before.stations}
+    new = {s.id: (s.x_mm, s.y_mm) for s in revision.result.edition.stations}
+    assert not revision.anew
+    assert all(new[key] == old[key] for key in set(old) & set(new))
+    clearances = pipeline.clearances_of(revision.result.network, SETTINGS.bundles, SETTINGS.labels)
+    assert faults(revision.result.layout, clearances) == ()
+
+
+def test_every_change_of_the_demo_is_found(revision: Revision):
+    """The truth file was written by the demo's generator, not by this comparison."""
+    lines, stations = TRUTH["lines"], TRUTH["stations"]
+    assert names(revision, "line", "new") == {each["name"] for each in lines["new"]}
+    assert names(revision, "line", "gone") == {each["name"] for each in lines["withdrawn"]}
+    rerouted = {each["name"] for each in (*lines["extended"], *lines["rerouted"])}
+    dropped = {each["name"] for each in lines["calls_dropped"]}
+    assert names(revision, "line", "rerouted") == rerouted | dropped
+    assert names(revision, "station", "gone") == {each["name"] for each in stations["closed"]}
+    assert names(revision, "station", "new") == {each["name"] for each in stations["opened"]}
+    assert len(names(revision, "station", "renamed")) == len(stations["renamed"])
+    assert len(names(revision, "station", "moved")) == len(stations["moved"])
+
+
+def test_ids_all_new_match_all_the_same(before: Edition, drawn: pipeline.Result, tmp_path):
+    shuffled = tmp_path / "shuffled.zip"
+    _shuffle_ids(BEFORE, shuffled)
+    _, network = pipeline.inspect(shuffled, SETTINGS)
+    matches = match_edition(before, network)
+    old = {s.id: (s.name, round(s.lon, 6), round(s.lat, 6)) for s in before.stations}
+    new = {s.id: (s.name, round(s.lon, 6), round(s.lat, 6)) for s in network.stations}
+    assert len(matches.stations) == len(old)
+    assert len(matches.lines) == len(before.lines)
+    assert all(new[key] == old[match.old_id] for key, match in matches.stations.items())
+    names_of = {line.id: line.name for line in network.lines}
+    old_names = {line.id: line.name for line in before.lines}
+    assert all(names_of[key] == old_names[m.old_id] for key, m in matches.lines.items())
+
+
+def test_the_change_sheet_is_written_whole(before: Edition, revision: Revision, drawn):
+    svg = pipeline.files_of(drawn)["diagram.svg"]
+    files = files_of_revision(revision, before, svg)
+    document = json.loads(files["changes.json"])
+    assert document["kept"] == 98
+    assert document["moved_on_sheet"] == 0
+    rows = list(csv.DictReader(io.StringIO(files["changes.csv"].decode())))
+    assert [row["id"] for row in rows] == [change.id for change in revision.sheet.changes]
+    page = files["changes.html"].decode()
+    assert all(change.name in page for change in revision.sheet.changes)
+    assert page.count("data:image/svg+xml;base64,") == 2
+    assert "http://" not in page.replace("http://www.w3.org", "")
+
+
+def _shuffle_ids(source: Path, target: Path) -> None:
+    """Permute all stop ids among each other, and give every route a new id."""
+    with zipfile.ZipFile(source) as old:
+        tables = {
+            name: list(csv.DictReader(io.StringIO(old.read(name).decode("utf-8-sig"))))
+            for name in old.namelist()
+        }
+    stops = [row["stop_id"] for row in tables["stops.txt"]]
+    mixed = stops[:]
+    random.Random(3).shuffle(mixed)  # noqa: S311 - a shuffle, no secret
+    stop = dict(zip(stops, mixed, strict=True))
+    route = {row["route_id"]: f"r-{i}" for i, row in enumerate(tables["routes.txt"])}
+    for name, rows in tables.items():
+        for row in rows:
+            for key, value in row.items():
+                if key in {"stop_id", "parent_station", "from_stop_id", "to_stop_id"} and value:
+                    row[key] = stop[value]
+                elif key == "route_id" and value:
+                    row[key] = route[value]
+                elif name == "translations.txt" and key == "record_id" and value in stop:
+                    row[key] = stop[value]
+    with zipfile.ZipFile(target, "w") as new:
+        for name, rows in tables.items():
+            text = io.StringIO()
+            writer = csv.DictWriter(text, list(rows[0]) if rows else ["empty"])
+            writer.writeheader()
+            writer.writerows(rows)
+            new.writestr(name, text.getvalue())
