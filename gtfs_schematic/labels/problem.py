@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import itertools
 from collections import defaultdict
 from collections.abc import Sequence
 from dataclasses import dataclass
@@ -117,13 +118,31 @@ def _conflicts(
     clearance, between_rows = clearances_mm
     boxes = np.array([entry.box for entry in entries], dtype=object)
     boxes = _grown(boxes, along_mm=_WORD_SPACE_MM, across_mm=between_rows / 2.0)
-    tree = shapely.STRtree(boxes)
-    first, second = tree.query(boxes, predicate="dwithin", distance=clearance)
+    first, second = _near_pairs(boxes, clearance)
     foreign = owner[first] != owner[second]
-    lists: list[list[int]] = [[] for _ in entries]
-    for i, j in zip(first[foreign].tolist(), second[foreign].tolist(), strict=True):
-        lists[i].append(j)
-    return [frozenset(others) for others in lists]
+    first, second = first[foreign], second[foreign]
+    order = np.argsort(first, kind="stable")
+    ends = np.searchsorted(first[order], np.arange(len(entries) + 1))
+    others = second[order].tolist()
+    return [frozenset(others[i:j]) for i, j in itertools.pairwise(ends.tolist())]
+
+
+def _near_pairs(boxes: Shapes, distance: float) -> tuple[NDArray[np.int64], NDArray[np.int64]]:
+    """Give the pairs of boxes within a distance, both ways round, themselves included.
+
+    Most boxes are level, so that plain differences of their sides tell; the tilted are measured.
+    """
+    bounds = shapely.bounds(boxes)
+    left, top, right, bottom = bounds.T
+    grown = shapely.box(left - distance, top - distance, right + distance, bottom + distance)
+    first, second = shapely.STRtree(boxes).query(grown)
+    across = np.maximum(left[first] - right[second], left[second] - right[first])
+    down = np.maximum(top[first] - bottom[second], top[second] - bottom[first])
+    near = np.hypot(np.maximum(across, 0.0), np.maximum(down, 0.0)) <= distance
+    tilted = shapely.area(boxes) < 0.999 * (right - left) * (bottom - top)
+    measured = np.flatnonzero(near & (tilted[first] | tilted[second]))
+    near[measured] = shapely.dwithin(boxes[first[measured]], boxes[second[measured]], distance)
+    return first[near], second[near]
 
 
 def _grown(boxes: Shapes, *, along_mm: float, across_mm: float) -> Shapes:

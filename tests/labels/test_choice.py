@@ -4,10 +4,14 @@ from __future__ import annotations
 
 import itertools
 
+import numpy as np
+import shapely
 from hypothesis import given, settings
 from hypothesis import strategies as st
+from shapely import affinity
 
 from gtfs_schematic.labels.choice import UNPLACED, Choice, PairCost, Problem, greedy, solve
+from gtfs_schematic.labels.problem import _near_pairs
 
 
 @st.composite
@@ -81,3 +85,22 @@ def test_a_label_gives_way_so_that_two_are_placed():
     )
     assert solve(problem, (0, None)) == (1, 2)
     assert problem.total((0, None)) == UNPLACED
+
+
+@given(st.lists(st.tuples(*[st.floats(0.0, 30.0)] * 4, st.sampled_from([0.0, -45.0])), max_size=12))
+def test_near_pairs_are_those_that_plain_distances_give(
+    places: list[tuple[float, float, float, float, float]],
+):
+    boxes = np.array(
+        [
+            affinity.rotate(shapely.box(x, y, x + w + 0.1, y + h + 0.1), angle)
+            for x, y, w, h, angle in places
+        ],
+        dtype=object,
+    )
+    first, second = _near_pairs(boxes, 0.5)
+    found = set(zip(first.tolist(), second.tolist(), strict=True))
+    for i, j in itertools.product(range(len(boxes)), repeat=2):
+        gap = shapely.distance(boxes[i], boxes[j])
+        if abs(gap - 0.5) > 1e-6:  # else rounding decides
+            assert ((i, j) in found) == (gap < 0.5)
