@@ -1,28 +1,29 @@
 """Tell which stations and lines of a new network are those of an earlier edition, and how surely.
 
-Ids are hints, not proof: feeds renumber. A pair is judged by ids, name, place and lines together,
-and the best assignment of all pairs is taken (Kuhn 1955; scipy's `linear_sum_assignment`).
+Ids are hints, not proof: feeds renumber. What pairs share is weighed (evidence.py) and the
+likeliest pairs are chosen together (pairing.py); stations and lines in turn, since each tell of
+the other.
 """
 
 from __future__ import annotations
 
-import math
-from collections.abc import Collection, Mapping, Sequence
+from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
-from difflib import SequenceMatcher
+from typing import Protocol
 
-import numpy as np
-from scipy.optimize import linear_sum_assignment
+from gtfs_schematic.edition.adjustments import Adjustments, Same
+from gtfs_schematic.edition.match_lines import LineMatching
+from gtfs_schematic.edition.match_parts import Part, absorbed_lines, absorbed_stations
+from gtfs_schematic.edition.match_stations import Found, StationMatching
+from gtfs_schematic.edition.model import Edition
+from gtfs_schematic.edition.roster import Roster, roster_of_edition, roster_of_network
+from gtfs_schematic.network.model import Network
 
-from gtfs_schematic.edition.model import Edition, EditionLine, EditionStation
-from gtfs_schematic.network.model import Line, Network, Station
-
-_REACH_M = 600.0
-"""Stations further apart than this are one only if they share a stop id and a name."""
-_METRES_PER_DEGREE = 111_195.0
-"""Length of a degree of a sphere of 6,371 km radius; near enough to compare neighbours."""
-_LEAST_SURE = 0.5
-_DOUBTFUL = 0.7
+DOUBTFUL = 0.8
+"""Less sure matches are for a person to look at."""
+_ROUNDS = 5
+"""Stations and lines settle after two or three rounds."""
+_SAID = "an adjustment says so"
 
 
 @dataclass(frozen=True, slots=True)
@@ -42,16 +43,31 @@ class Matches:
 
     stations: Mapping[str, Match]
     lines: Mapping[str, Match]
+    merged_stations: tuple[Match, ...] = ()
+    """Old stations without a match that became part of a new one that has another."""
+    split_stations: tuple[Match, ...] = ()
+    """New stations without a match that were part of an old one that has another."""
+    merged_lines: tuple[Match, ...] = ()
+    split_lines: tuple[Match, ...] = ()
+    unknown: tuple[str, ...] = ()
+    """Adjustments that name what neither feed has."""
 
     @property
     def doubtful(self) -> tuple[Match, ...]:
         """Matches that a person should look at, the least sure first."""
         every = [*self.stations.values(), *self.lines.values()]
-        found = [match for match in every if match.confidence < _DOUBTFUL]
-        return tuple(sorted(found, key=lambda m: (m.confidence, m.new_id)))
+        every += [*self.merged_stations, *self.split_stations]
+        every += [*self.merged_lines, *self.split_lines]
+        found = [match for match in every if match.confidence < DOUBTFUL]
+        return tuple(sorted(found, key=lambda m: (m.confidence, m.new_id, m.old_id)))
 
 
-def match_edition(edition: Edition, network: Network) -> Matches:
+def match_edition(
+    edition: Edition,
+    network: Network,
+    stop_codes: Mapping[str, tuple[str, ...]] | None = None,
+    adjustments: Adjustments | None = None,
+) -> Matches:
     """Match a network's stations and lines to those of an earlier edition.
 
     Parameters
@@ -60,107 +76,137 @@ def match_edition(edition: Edition, network: Network) -> Matches:
         The earlier edition.
     network
         The network of the new feed, with ids of its own.
+    stop_codes
+        Per station id of the network the codes at its stops (`make.stop_codes_of`).
+    adjustments
+        What a person says of the same and the not the same.
     """
-    old_names = {line.id: line.name for line in edition.lines}
-    new_names = {line.id: line.name for line in network.lines}
-    pairs = {
-        (i, j): judged
-        for i, new in enumerate(network.stations)
-        for j, old in enumerate(edition.stations)
-        if (judged := _judge_stations(new, old, new_names, old_names)) is not None
-    }
-    new_ids = [station.id for station in network.stations]
-    stations = _assign(new_ids, [station.id for station in edition.stations], pairs)
-    known = {new: match.old_id for new, match in stations.items()}
-    line_pairs = {
-        (i, j): judged
-        for i, new in enumerate(network.lines)
-        for j, old in enumerate(edition.lines)
-        if (judged := _judge_lines(new, old, known)) is not None
-    }
-    lines = _assign(
-        [line.id for line in network.lines], [line.id for line in edition.lines], line_pairs
+    return match_rosters(
+        roster_of_edition(edition), roster_of_network(network, stop_codes), adjustments
     )
-    return Matches(stations, lines)
 
 
-def _assign(
-    new_ids: Sequence[str],
-    old_ids: Sequence[str],
-    pairs: Mapping[tuple[int, int], tuple[float, str]],
-) -> dict[str, Match]:
-    """Choose pairs that use each id once, with the greatest sum of confidence."""
-    if not pairs:
-        return {}
-    score = np.zeros((len(new_ids), len(old_ids)))
-    for (i, j), (confidence, _) in pairs.items():
-        score[i, j] = round(confidence, 6)
-    rows, columns = linear_sum_assignment(score, maximize=True)
-    return {
-        new_ids[i]: Match(new_ids[i], old_ids[j], pairs[i, j][1], round(pairs[i, j][0], 3))
-        for i, j in zip(rows.tolist(), columns.tolist(), strict=True)
-        if (i, j) in pairs and pairs[i, j][0] >= _LEAST_SURE
-    }
+def match_rosters(old: Roster, new: Roster, adjustments: Adjustments | None = None) -> Matches:
+    """Match the stations and lines of two rosters; the other way round gives the same pairs.
+
+    Parameters
+    ----------
+    old, new
+        Any two; their ids need not agree in anything.
+    adjustments
+        What a person says of the same and the not the same.
+    """
+    said = adjustments or Adjustments()
+    fixed_stations = _Said(said.same_station, old.stations, new.stations)
+    fixed_lines = _Said(said.same_line, old.lines, new.lines)
+    # Ties are broken by the order of rows and columns: it must not matter which roster is which.
+    turned = _content(new) < _content(old)
+    first, second = (new, old) if turned else (old, new)
+    found = _settled(
+        StationMatching(first, second),
+        LineMatching(first, second),
+        fixed_stations.turned(turned),
+        fixed_lines.turned(turned),
+    )
+    stations, lines = (_turned(each) if turned else each for each in found)
+    pairs = {key: new_id for key, (new_id, _, _) in stations.items()}
+    line_pairs = {key: new_id for key, (new_id, _, _) in lines.items()}
+    back, lines_back = ({b: a for a, b in each.items()} for each in (pairs, line_pairs))
+    return Matches(
+        {b: Match(b, a, why, sure) for a, b, why, sure in _rows(stations)},
+        {b: Match(b, a, why, sure) for a, b, why, sure in _rows(lines)},
+        _parts(absorbed_stations(old, new, pairs)),
+        _parts(absorbed_stations(new, old, back), turned=True),
+        _parts(absorbed_lines(old, new, pairs, line_pairs)),
+        _parts(absorbed_lines(new, old, back, lines_back), turned=True),
+        (*fixed_stations.unknown("same_station"), *fixed_lines.unknown("same_line")),
+    )
 
 
-def _judge_stations(
-    new: Station, old: EditionStation, new_names: Mapping[str, str], old_names: Mapping[str, str]
-) -> tuple[float, str] | None:
-    """Give confidence and reason that two stations are one; None if they cannot be."""
-    away = _metres(new, old)
-    shared = bool(set(new.stop_ids) & set(old.stop_ids))
-    if away > 5.0 * _REACH_M or (away > _REACH_M and not shared):
-        return None
-    alike = _alike(new.name, old.name)
-    if away > _REACH_M and alike < 0.8:
-        return None
-    near = max(0.0, 1.0 - away / _REACH_M)
-    common = _jaccard([new_names[k] for k in new.lines], [old_names[k] for k in old.lines])
-    confidence = 0.2 * shared + 0.35 * alike + 0.3 * near + 0.15 * common
-    if not shared and alike < 0.6 and near < 0.9:
-        return None
-    reasons = [
-        "the same stop ids" if shared else "",
-        "the same name" if alike == 1.0 else f"a name {alike:.0%} alike" if alike > 0.6 else "",
-        f"{away:.0f} m apart",
-        f"{common:.0%} of the lines" if common else "",
-    ]
-    # Ids may all be new: what name, place and lines agree on needs no id.
-    sure = confidence / (1.0 if shared else 0.8)
-    return min(1.0, sure), ", ".join(reason for reason in reasons if reason)
+def _settled(
+    stations: StationMatching, lines: LineMatching, fixed: _Said, fixed_lines: _Said
+) -> tuple[Found, Found]:
+    """Match stations and lines in turn until nothing changes."""
+    matched: Found = {}
+    matched_lines: Found = {}
+    for _ in range(_ROUNDS):
+        before = (_ids(matched), _ids(matched_lines))
+        matched = stations.matched(*before, fixed.settled) | fixed.found
+        matched_lines = lines.matched(_ids(matched), fixed_lines.settled) | fixed_lines.found
+        if (_ids(matched), _ids(matched_lines)) == before:
+            break
+    return matched, matched_lines
 
 
-def _judge_lines(new: Line, old: EditionLine, known: Mapping[str, str]) -> tuple[float, str] | None:
-    """Give confidence and reason that two lines are one; None if they cannot be."""
-    called = {known.get(s, s) for course in new.itineraries for s in course}
-    before = {s for course in old.itineraries for s in course}
-    common = _jaccard(called, before)
-    shared = bool(set(new.route_ids) & set(old.route_ids))
-    named = new.name.casefold() == old.name.casefold()
-    colored = new.color.upper() == old.color.upper()
-    confidence = 0.15 * shared + 0.35 * named + 0.1 * colored + 0.4 * common
-    if common == 0.0 or not (named or common > 0.5):
-        return None
-    reasons = [
-        "the same route ids" if shared else "",
-        "the same name" if named else "",
-        "the same color" if colored else "",
-        f"{common:.0%} of the stations",
-    ]
-    sure = confidence / (1.0 if shared else 0.85)
-    return min(1.0, sure), ", ".join(reason for reason in reasons if reason)
+class _HasIds(Protocol):
+    @property
+    def id(self) -> str:
+        """Its id."""
 
 
-def _metres(new: Station, old: EditionStation) -> float:
-    shrink = math.cos(math.radians(old.lat))
-    return _METRES_PER_DEGREE * math.hypot((new.lon - old.lon) * shrink, new.lat - old.lat)
+class _Said:
+    """What adjustments say, by the ids of the two rosters."""
+
+    def __init__(
+        self, same: Iterable[Same], old: Iterable[_HasIds], new: Iterable[_HasIds]
+    ) -> None:
+        self._lost: list[tuple[int, str]] = []
+        self.found: Found = {}
+        ids_old, ids_new = _resolver(old), _resolver(new)
+        gone: set[str] = set()
+        for i, each in enumerate(same):
+            a = ids_old.get(each.old)
+            b = ids_new.get(each.new) if each.new else None
+            if a is None or (each.new and b is None):
+                self._lost.append((i, each.old if a is None else each.new))
+            elif b is None:
+                gone.add(a)
+            else:
+                self.found[a] = (b, _SAID, 1.0)
+        self.settled = ({*self.found, *gone}, {b for b, _, _ in self.found.values()})
+
+    def turned(self, turned: bool) -> _Said:  # noqa: FBT001 - private, and its name says it
+        """Give the same with old and new exchanged, if so."""
+        if turned:
+            self.settled = (self.settled[1], self.settled[0])
+            self.found = _turned(self.found)
+        return self
+
+    def unknown(self, kind: str) -> list[str]:
+        """Name the adjustments that apply to nothing."""
+        return [f"{kind}.{i}: {key} is in neither feed" for i, key in self._lost]
 
 
-def _alike(first: str, second: str) -> float:
-    a, b = first.casefold().strip(), second.casefold().strip()
-    return 1.0 if a == b else SequenceMatcher(None, a, b, autojunk=False).ratio()
+def _resolver(things: Iterable[_HasIds]) -> dict[str, str]:
+    """Per id, and per stop or route id, the id of the thing; its own id wins."""
+    found: dict[str, str] = {}
+    for thing in things:
+        for part in getattr(thing, "stop_ids", ()) or getattr(thing, "route_ids", ()):
+            found[part] = thing.id
+    return found | {thing.id: thing.id for thing in things}
 
 
-def _jaccard(first: Collection[str], second: Collection[str]) -> float:
-    a, b = set(first), set(second)
-    return len(a & b) / len(a | b) if a | b else 0.0
+def _ids(found: Found) -> dict[str, str]:
+    return {key: found[key][0] for key in sorted(found)}
+
+
+def _turned(found: Found) -> Found:
+    return {b: (a, why, sure) for a, (b, why, sure) in found.items()}
+
+
+def _rows(found: Found) -> list[tuple[str, str, str, float]]:
+    rows = [(a, b, why, round(sure, 3)) for a, (b, why, sure) in found.items()]
+    return sorted(rows, key=lambda row: row[1])
+
+
+def _parts(parts: Iterable[Part], *, turned: bool = False) -> tuple[Match, ...]:
+    """Give parts of old things as matches, or parts of new things if turned."""
+    return tuple(
+        Match(part, whole, why, sure) if turned else Match(whole, part, why, sure)
+        for part, whole, why, sure in parts
+    )
+
+
+def _content(roster: Roster) -> list[tuple[str, float, float, str]]:
+    """Give a key that orders rosters by what they hold."""
+    return sorted((s.name, s.lon, s.lat, s.id) for s in roster.stations)
