@@ -41,7 +41,7 @@ def compose(labelled: LabelledLayout, settings: DrawingSettings) -> Drawing:
             title_group(page, settings),
             *_grid(page, settings),
             Group("walks", tuple(walk_groups(layout, settings))),
-            Group("lines", tuple(line_groups(bundled, styles, settings.background))),
+            Group("lines", tuple(line_groups(labelled, styles, settings.background))),
             Group("line-names", tuple(name_groups(labelled, styles, settings.background))),
             Group("stations", tuple(station_groups(labelled, styles, settings))),
             key_group(page, network, settings, marker_look(labelled, settings)),

@@ -2,10 +2,10 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Mapping
+from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import replace
 
-from gtfs_schematic.bundles.model import BundledLayout, Corner
+from gtfs_schematic.bundles.model import Corner
 from gtfs_schematic.drawing.course import on_line, straight_middle
 from gtfs_schematic.drawing.markers import chevron, walk_shapes
 from gtfs_schematic.drawing.model import DrawingSettings, Group, PathShape, TextShape
@@ -22,7 +22,7 @@ from gtfs_schematic.drawing.style import (
 from gtfs_schematic.drawing.words import line_course, walk_title
 from gtfs_schematic.geometry import Point, distance
 from gtfs_schematic.labels import fonts
-from gtfs_schematic.labels.model import LabelledLayout
+from gtfs_schematic.labels.model import LabelledLayout, RunBadge
 from gtfs_schematic.layout.model import Layout
 from gtfs_schematic.network.model import Line
 
@@ -30,6 +30,8 @@ _WALK_CORNER_MM = 2.0
 _ARROWS_MM = 30.0
 """Arrowheads of one line in one direction keep this apart."""
 _SAME_WAY = 0.7
+_AIR_MM = 1.2
+"""From a name on the line to an arrowhead."""
 
 
 def walk_groups(layout: Layout, settings: DrawingSettings) -> Iterator[Group]:
@@ -44,7 +46,7 @@ def walk_groups(layout: Layout, settings: DrawingSettings) -> Iterator[Group]:
 
 
 def line_groups(
-    bundled: BundledLayout, styles: Mapping[str, LineStyle], background: str
+    labelled: LabelledLayout, styles: Mapping[str, LineStyle], background: str
 ) -> Iterator[Group]:
     """Give the lines, the lightest first, each on a casing in the colour of the paper.
 
@@ -52,6 +54,7 @@ def line_groups(
     touching those alongside; it lies under all stretches of its line, so that branches join.
     Arrowheads come right after their line, so that lines which cross above hide them too.
     """
+    bundled = labelled.bundled
     full, gap = bundled.settings.line_width_mm, bundled.settings.line_gap_mm
     halo = 0.95 * gap if gap else 0.15 * full
     network = bundled.layout.network
@@ -68,7 +71,7 @@ def line_groups(
             data={"line": line.id},
             title=f"Line {line.name}: {line_course(line, network)}",
         )
-        marks = tuple(_direction_marks(bundled, line, style.width * full))
+        marks = tuple(_direction_marks(labelled, line, style.width * full))
         if marks:
             yield Group("direction", marks, data={"for-line": line.id})
 
@@ -102,9 +105,11 @@ def name_groups(
         yield Group("badge", shapes, data={"for-line": badge.line_id})
 
 
-def _direction_marks(bundled: BundledLayout, line: Line, width: float) -> Iterator[PathShape]:
+def _direction_marks(labelled: LabelledLayout, line: Line, width: float) -> Iterator[PathShape]:
     """Give arrowheads where a line runs in one direction only, not too near to each other."""
+    bundled = labelled.bundled
     layout = bundled.layout
+    badges = [badge for badge in labelled.run_badges if badge.line_id == line.id]
     drawn: list[tuple[Point, Point]] = []
     for start, end in line.one_way_links:
         link = layout.network.link_between.get(frozenset((start, end)))
@@ -117,7 +122,17 @@ def _direction_marks(bundled: BundledLayout, line: Line, width: float) -> Iterat
         if found is None or any(_repeats(found, other) for other in drawn):
             continue
         drawn.append(found)
-        yield chevron(*found, 0.34 * width, line.text_color)
+        at, way = found
+        yield chevron(_beside(badges, at, way), way, 0.34 * width, line.text_color)
+
+
+def _beside(badges: Sequence[RunBadge], at: Point, way: Point) -> Point:
+    """Give a place on a line, moved on to where no name on the line covers it."""
+    for badge in badges:
+        reach = badge.width_mm / 2.0 + _AIR_MM
+        if distance(at, badge.at_mm) < reach:
+            return (badge.at_mm[0] + reach * way[0], badge.at_mm[1] + reach * way[1])
+    return at
 
 
 def _repeats(one: tuple[Point, Point], other: tuple[Point, Point]) -> bool:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import itertools
 import math
 from dataclasses import replace
 
@@ -17,7 +18,7 @@ from gtfs_schematic.drawing.markers import MarkerLook, marker, spanning_edges
 from gtfs_schematic.drawing.model import DrawingSettings, Group, PathShape
 from gtfs_schematic.drawing.paths import commands
 from gtfs_schematic.drawing.style import line_styles
-from gtfs_schematic.labels.model import LabelledLayout
+from gtfs_schematic.labels.model import LabelledLayout, RunBadge
 
 LOOK = MarkerLook(1.2, 1.9, 1.95, "#111111", "#FFFFFF")
 
@@ -104,6 +105,49 @@ def test_an_arrowhead_points_along_the_only_direction():
     assert tip[1] < first[1] == pytest.approx(last[1])
     assert tip[0] == pytest.approx(layout.positions["reh"][0], abs=0.002)
     assert layout.positions["rathaus"][1] < tip[1] < layout.positions["reh"][1]
+
+
+def one_way(links: tuple[tuple[str, str], ...]) -> LabelledLayout:
+    """Give line D of the star, labelled, in one direction on some links."""
+    layout = drawn_sheets.on_page(drawn_networks.star())
+    lines = tuple(
+        replace(line, one_way_links=links) if line.id == "D" else line
+        for line in layout.network.lines
+    )
+    layout = replace(layout, network=replace(layout.network, lines=lines))
+    return drawn_sheets.naive_labels(drawn_sheets.naive_bundle(layout))
+
+
+def arrowheads(labelled: LabelledLayout) -> list[tuple[float, float]]:
+    """Give the tips of all arrowheads."""
+    (drawn,) = (group for group in compose_groups(labelled) if group.css_class == "lines")
+    heads = [
+        head
+        for child in drawn.children
+        if isinstance(child, Group) and child.css_class == "direction"
+        for head in child.children
+        if isinstance(head, PathShape)
+    ]
+    return [tuple(commands(head.d))[1][1] for head in heads]
+
+
+def test_arrowheads_in_one_direction_do_not_crowd():
+    # Five stations on 80 mm, every link in one direction: not an arrowhead on each.
+    down = ("pappel", "quell", "rathaus", "reh", "sand")
+    tips = arrowheads(one_way(tuple(itertools.pairwise(down))))
+    assert 2 <= len(tips) <= 3
+    assert all(math.dist(a, b) >= 29.0 for a, b in itertools.combinations(tips, 2))
+    there_and_back = (("pappel", "quell"), ("reh", "rathaus"))
+    assert len(arrowheads(one_way(there_and_back))) == 2
+
+
+def test_a_name_on_a_line_does_not_cover_its_arrowhead():
+    labelled = one_way((("reh", "rathaus"),))
+    (tip,) = arrowheads(labelled)
+    badge = RunBadge("D", "D", (tip[0], tip[1] + 0.3), 2.4, 2.4, 2.2, 0.0)
+    (moved,) = arrowheads(replace(labelled, run_badges=(badge,)))
+    assert moved[0] == pytest.approx(tip[0], abs=0.01)
+    assert abs(moved[1] - badge.at_mm[1]) > 1.2
 
 
 def test_modes_and_services_differ_without_color():
