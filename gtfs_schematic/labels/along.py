@@ -25,6 +25,8 @@ _NEAREST = 0.4
 """Names of one line keep at least this apart, in distances of names."""
 _AIR_MM = 0.4
 """From markers, names and other badges."""
+_FROM_MARKERS_MM = (2.0, _AIR_MM)
+"""What a badge keeps from markers if it can, so that it does not seem to be a station's name."""
 _TOUCH_MM = 0.12
 """A badge may reach over the gap between two lines of a bundle, and so much over the next line."""
 
@@ -98,6 +100,10 @@ class _Artist:
 
     def _free_spot(self, stretch: Stretch, text: str, wanted: float) -> _Spot | None:
         """Give the free spot nearest to a length along a stretch."""
+        both = (self._spot_within(stretch, text, wanted, air) for air in _FROM_MARKERS_MM)
+        return next((spot for spot in both if spot is not None), None)
+
+    def _spot_within(self, stretch: Stretch, text: str, wanted: float, air: float) -> _Spot | None:
         width, height = badge_width(text, self.size), badge_height(self.size)
         steps = int(_REACH * self.every / _STEP_MM)
         for k in sorted(range(-steps, steps + 1), key=abs):
@@ -106,11 +112,11 @@ class _Artist:
                 continue
             at, along = found
             upright = _Spot(at, 0.0, _box(at, width, height, 0.0))
-            if self._is_free(upright.box, stretch.line_id, 0.0):
+            if self._is_free(upright.box, stretch.line_id, 0.0, air):
                 return upright
             angle = _reading_angle(along)
             turned = _Spot(at, angle, _box(at, width, height, angle))
-            if self._is_free(turned.box, stretch.line_id, _TOUCH_MM):
+            if self._is_free(turned.box, stretch.line_id, _TOUCH_MM, air):
                 return turned
         return None
 
@@ -118,12 +124,14 @@ class _Artist:
         least = _NEAREST * self.every
         return any(distance(at, other) < least for other in self.places.get(line_id, ()))
 
-    def _is_free(self, box: shapely.Polygon, line_id: str, over_mm: float) -> bool:
+    def _is_free(
+        self, box: shapely.Polygon, line_id: str, over_mm: float, from_markers: float
+    ) -> bool:
         """Tell whether a box covers nothing but its own line, others by `over_mm` at most."""
         obstacles = self.obstacles
         if len(self.names.query(box, predicate="dwithin", distance=_AIR_MM)):
             return False
-        if len(obstacles.marker_tree.query(box, predicate="dwithin", distance=_AIR_MM)):
+        if len(obstacles.marker_tree.query(box, predicate="dwithin", distance=from_markers)):
             return False
         if len(obstacles.walk_tree.query(box, predicate="dwithin", distance=1.0)):
             return False

@@ -130,7 +130,9 @@ def _ambiguity(
     boxes: Shapes, own: NDArray[np.int64], own_distance: NDArray[np.float64], obstacles: Obstacles
 ) -> NDArray[np.float64]:
     """Give the cost of foreign markers near a label."""
-    hits = obstacles.marker_tree.query(boxes, predicate="dwithin", distance=_NEAR_MM)
+    # As far as the own marker at least: one further off than a foreign one would mislead.
+    reach = np.maximum(_NEAR_MM, own_distance)
+    hits = obstacles.marker_tree.query(boxes, predicate="dwithin", distance=reach)
     box, marker = hits[:, own[hits[0]] != hits[1]]
     nearest = np.full(len(boxes), np.inf)
     np.minimum.at(nearest, box, shapely.distance(boxes[box], obstacles.markers[marker]))

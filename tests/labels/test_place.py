@@ -15,8 +15,12 @@ from gtfs_schematic.bundles.model import BundledLayout
 from gtfs_schematic.labels.check import faults
 from gtfs_schematic.labels.fonts import text_width_mm
 from gtfs_schematic.labels.model import LabelledLayout, LabelSettings
+from gtfs_schematic.labels.obstacles import obstacles_of
 from gtfs_schematic.labels.place import place_labels
+from gtfs_schematic.labels.problem import entries_of
+from gtfs_schematic.labels.reach import ANYWHERE
 from gtfs_schematic.labels.room import room_requests
+from gtfs_schematic.labels.site import sites_of
 
 NAMES = ("ribbon", "ring", "star", "walk_and_crossing")
 Straight = Callable[..., BundledLayout]
@@ -159,3 +163,22 @@ def test_the_order_of_the_input_does_not_matter(
 
 def _plain() -> LabelSettings:
     return LabelSettings(line_badges=False)
+
+
+@pytest.mark.parametrize("name", NAMES)
+def test_no_place_far_from_its_marker_is_nearer_to_another(
+    networks: Mapping[str, BundledLayout], name: str
+):
+    bundled, wanted = networks[name], LabelSettings()
+    obstacles = obstacles_of(bundled, wanted)
+    entries = entries_of(sites_of(bundled, wanted), obstacles, wanted, ANYWHERE)
+    outlines = dict(zip(obstacles.stations, obstacles.markers, strict=True))
+    far = 0
+    for key, found in entries.items():
+        foreign = shapely.union_all([shape for other, shape in outlines.items() if other != key])
+        for entry in found:
+            own = entry.box.distance(outlines[key])
+            if own > 2.0:
+                far += 1
+                assert entry.box.distance(foreign) >= own - 1e-6, key
+    assert far > 20
