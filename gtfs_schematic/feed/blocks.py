@@ -10,6 +10,7 @@ from __future__ import annotations
 
 import codecs
 import io
+import itertools
 from collections.abc import Callable, Iterator
 from dataclasses import dataclass
 from typing import Any, cast
@@ -22,7 +23,9 @@ from gtfs_schematic.feed import kernels
 from gtfs_schematic.feed.kernels import Bytes, Ints, Places
 from gtfs_schematic.feed.tables import MOST_ROWS, Picker, Tables
 
-_SIZE = 1 << 22
+_SIZE = 1 << 21
+_ROWS = 1 << 16
+_LONGEST = 1 << 26
 _LF = 10
 
 Masks = NDArray[Any]
@@ -35,11 +38,12 @@ Single = Callable[[int, tuple[str, ...]], None]
 
 @dataclass(frozen=True)
 class Block:
-    """Rows of a table, split into fields."""
+    """Rows of a table, split into fields; it holds until the next one is read."""
 
     buffer: Bytes
     starts: Places
     ends: Places
+    """Where fields lie, (columns, rows)."""
     regular: Masks
     """Rows of one line with as many fields as the header; the others have no fields here."""
     first_row: int
@@ -48,29 +52,42 @@ class Block:
     @property
     def rows(self) -> Ints:
         """Row numbers."""
-        return self.first_row + np.arange(len(self.starts))
+        return self.first_row + np.arange(len(self.regular))
 
     def column(self, number: int) -> tuple[Bytes, Places, Places]:
         """Give a buffer, and where in it each row's field of one column starts and ends."""
         return (
             self.buffer,
-            np.ascontiguousarray(self.starts[:, number]),
-            np.ascontiguousarray(self.ends[:, number]),
+            self.starts[number],
+            self.ends[number],
         )
 
 
-def whole_lines(stream: io.BufferedIOBase, size: int = _SIZE) -> Iterator[bytes]:
-    """Yield a file in pieces of about `size` bytes that end with a line, but for the last."""
-    rest = b""
-    while piece := stream.read(size):
-        cut = piece.rfind(b"\n") + 1
-        if cut == 0:
-            rest += piece
-            continue
-        yield rest + piece[:cut]
-        rest = piece[cut:]
-    if rest:
-        yield rest
+def whole_lines(stream: io.BufferedIOBase, name: str, size: int = _SIZE) -> Iterator[Bytes]:
+    """Yield a file in pieces of about `size` bytes that end with a line, but for the last.
+
+    A piece holds until the next is asked for.
+
+    Raises
+    ------
+    FeedError
+        A line longer than any line of a feed.
+    """
+    buffer = bytearray(size)
+    filled = 0
+    while read := stream.readinto(memoryview(buffer)[filled:]):
+        filled += read
+        cut = buffer.rfind(b"\n", 0, filled) + 1
+        if cut:
+            yield np.frombuffer(buffer, dtype=np.uint8, count=cut)
+            buffer[: filled - cut] = buffer[cut:filled]
+            filled -= cut
+        if filled == len(buffer):
+            if filled >= _LONGEST:
+                raise FeedError(f"has a line of more than {_LONGEST:,} bytes.", file=name)
+            buffer = buffer + bytearray(filled)
+    if filled:
+        yield np.frombuffer(buffer, dtype=np.uint8, count=filled)
 
 
 def read_in_blocks(
@@ -88,19 +105,21 @@ def read_in_blocks(
     if not tables.has(name):
         return
     with tables.files.open(name) as stream:
-        pieces = whole_lines(stream)
-        first = next(pieces, b"")
-        header = None if name in tables.not_utf8 else _header(tables, name, first)
+        pieces = whole_lines(stream, name)
+        first = next(pieces, np.empty(0, dtype=np.uint8))
+        line = _first_line(first)
+        header = _header(tables, name, line) if tables.is_utf8(name) else None
         if header is None:
-            rest, behind = _chained(first, pieces), None
+            rest, behind = _chained(first, 0, pieces), None
         else:
             reader = _Reader(tables, name, header, columns)
-            body = first[first.find(b"\n") + 1 :] if b"\n" in first else b""
-            for piece in _chained(body, pieces):
-                left = reader.take(piece, bulk, single)
-                if left:
-                    rest, behind = _chained(left, pieces), (reader.row, list(header))
+            start = len(line)
+            for piece in itertools.chain([first], pieces):
+                end = reader.take(piece, start, bulk, single)
+                if end < len(piece):
+                    rest, behind = _chained(piece, end, pieces), (reader.row, list(header))
                     break
+                start = 0
             else:
                 return
         raw = cast("io.BufferedReader", io.BufferedReader(_Stream(rest)))
@@ -116,39 +135,47 @@ class _Reader:
     ) -> None:
         self._tables, self._name = tables, name
         self._picker = Picker(tables, name, header, columns)
-        self._wanted = len(columns)
         numbers = [columns.index(c) if c in columns else -1 for c in header]
         self._columns = np.array(numbers, dtype=np.int64)
+        self._starts = np.empty((len(columns), _ROWS), dtype=np.int32)
+        self._ends = np.empty_like(self._starts)
+        self._kinds = np.empty(_ROWS, dtype=np.uint8)
         self.row = 2
 
-    def take(self, piece: bytes, bulk: Bulk, single: Single) -> bytes:
-        """Read a piece of whole lines; give what no row that ends with its line begins."""
-        buffer = np.frombuffer(piece, dtype=np.uint8)
-        most = piece.count(b"\n") + 1
-        starts = np.empty((most, self._wanted), dtype=np.int32)
-        ends = np.empty_like(starts)
-        kinds = np.empty(most, dtype=np.uint8)
-        count, consumed = kernels.split_lines(
-            buffer, len(piece), self._columns, starts, ends, kinds
-        )
-        if self.row + count > MOST_ROWS:
-            raise FeedError(
-                f"has more than {MOST_ROWS:,} rows, which no feed has.", file=self._name
+    def take(self, piece: Bytes, start: int, bulk: Bulk, single: Single) -> int:
+        """Read the rows of a piece of whole lines from `start` on.
+
+        Give where the first row begins that does not end with its line; the end if all do.
+        """
+        while start < len(piece):
+            count, end = kernels.split_lines(
+                piece, start, self._columns, self._starts, self._ends, self._kinds
             )
-        kinds = kinds[:count]
-        regular = kinds == kernels.REGULAR
-        block = Block(buffer, starts[:count], ends[:count], regular, self.row)
-        odd = (kinds == kernels.ODD) | (regular & bulk(block))
-        if odd.any():
-            lines = np.append(0, np.flatnonzero(buffer[:consumed] == _LF) + 1)
-            for n in np.flatnonzero(odd).tolist():
-                number = self.row + n
-                line = piece[lines[n] : lines[n + 1] if n + 1 < len(lines) else consumed]
-                texts = self._picker.texts(number, self._tables.values(self._name, number, line))
-                if texts is not None:
-                    single(number, texts)
-        self.row += count
-        return piece[consumed:]
+            if self.row + count > MOST_ROWS:
+                fault = f"has more than {MOST_ROWS:,} rows, which no feed has."
+                raise FeedError(fault, file=self._name)
+            kinds = self._kinds[:count]
+            regular = kinds == kernels.REGULAR
+            block = Block(piece, self._starts[:, :count], self._ends[:, :count], regular, self.row)
+            odd = (kinds == kernels.ODD) | (regular & bulk(block))
+            if odd.any():
+                self._take_odd(piece[start:end], np.flatnonzero(odd), single)
+            self.row += count
+            if end < len(piece) and count < _ROWS:
+                return end
+            start = end
+        return start
+
+    def _take_odd(self, lines: Bytes, odd: Ints, single: Single) -> None:
+        """Read some of the lines strictly, given their numbers from 0."""
+        ends = np.append(np.flatnonzero(lines == _LF) + 1, len(lines))
+        starts = np.append(0, ends)
+        for n in odd.tolist():
+            number = self.row + n
+            line = lines[starts[n] : ends[n]].tobytes()
+            texts = self._picker.texts(number, self._tables.values(self._name, number, line))
+            if texts is not None:
+                single(number, texts)
 
 
 class _Stream(io.RawIOBase):
@@ -165,23 +192,27 @@ class _Stream(io.RawIOBase):
     def readinto(self, target: Any, /) -> int:  # noqa: ANN401 - typing has no word for buffers yet
         """Fill a buffer and tell how far; 0 at the end."""
         if not self._left:
-            self._left = memoryview(next(self._pieces, b""))
+            self._left = memoryview(next((piece for piece in self._pieces if piece), b""))
         view = memoryview(target).cast("B")
         size = min(len(view), len(self._left))
         view[:size], self._left = self._left[:size], self._left[size:]
         return size
 
 
-def _header(tables: Tables, name: str, first: bytes) -> tuple[str, ...] | None:
+def _first_line(piece: Bytes) -> bytes:
+    """Give the first line, with its end and what byte order mark there is."""
+    ends = np.flatnonzero(piece[: kernels.LONGEST_LINE] == _LF)
+    return piece[: ends[0] + 1 if len(ends) else len(piece)].tobytes()
+
+
+def _header(tables: Tables, name: str, line: bytes) -> tuple[str, ...] | None:
     """Give the column names; None if the header may not be one line."""
-    line = first.removeprefix(codecs.BOM_UTF8)
-    line = line[: line.find(b"\n") + 1] or line
     if b"\r" in line.rstrip(b"\r\n") or line.count(b'"') % 2:
         return None
-    return tuple(tables.header_of(name, line))
+    return tuple(tables.header_of(name, line.removeprefix(codecs.BOM_UTF8)))
 
 
-def _chained(first: bytes, others: Iterator[bytes]) -> Iterator[bytes]:
-    if first:
-        yield first
-    yield from others
+def _chained(first: Bytes, start: int, others: Iterator[Bytes]) -> Iterator[bytes]:
+    """Yield a piece from `start` on, and the pieces after it."""
+    yield first[start:].tobytes()
+    yield from (piece.tobytes() for piece in others)

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from dataclasses import replace
 
 import numpy as np
@@ -34,6 +34,12 @@ def read_calls(tables: Tables, wanted: Wanted) -> Calls:
     calls = _merge_repeated(tables, calls)
     calls = _drop_short(tables, calls, wanted, reader)
     return _with_times(tables, calls, ids)
+
+
+def without_stops(tables: Tables, calls: Calls, wanted: Wanted, stops: Sequence[int]) -> Calls:
+    """Give the calls without those at some stops, and without trips that are then too short."""
+    calls = _merge_repeated(tables, calls.where(~np.isin(calls.stop, stops)))
+    return _drop_short(tables, calls, wanted, None)
 
 
 def _in_order(calls: Calls) -> Calls:
@@ -94,12 +100,12 @@ def _merge_repeated(tables: Tables, calls: Calls) -> Calls:
     return replace(calls.where(firsts), departure=calls.departure[lasts])
 
 
-def _drop_short(tables: Tables, calls: Calls, wanted: Wanted, reader: CallReader) -> Calls:
+def _drop_short(tables: Tables, calls: Calls, wanted: Wanted, reader: CallReader | None) -> Calls:
     counts = np.bincount(calls.trip, minlength=len(wanted.of_today))
     for trip in np.flatnonzero(counts < 2).tolist():
-        if not reader.listed[trip]:
+        if reader and not reader.listed[trip]:
             reason = "it has no row in stop_times.txt"
-        elif trip in reader.on_demand:
+        elif reader and trip in reader.on_demand:
             reason = "it runs on demand: stop_times.txt names areas for it instead of stops"
         else:
             reason = "fewer than two usable stops"

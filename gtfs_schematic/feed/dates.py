@@ -25,7 +25,7 @@ LATE = (EARLY[0] + _DAY, EARLY[1] + _DAY)
 """Trips that start from 01:00 to before 04:00 are night service: by then the last ordinary trips
 are out, and the first of the morning are not (common practice, no source). Feeds put them before
 a date's morning, or after its evening, past 24:00."""
-_EVER = (-(10**9), 10**9)
+EVER = (-(10**9), 10**9)
 _RARE = 0.2
 _NEARLY = 0.98
 _POOR = 0.5
@@ -41,8 +41,8 @@ class Window:
     """Trips of one date that depart within hours; seconds after noon minus 12 h."""
 
     date: dt.date
-    low: int = _EVER[0]
-    high: int = _EVER[1]
+    low: int = EVER[0]
+    high: int = EVER[1]
     """The first time that is too late."""
     shift: int = 0
     """To be added to the departures, so that they count from another date."""

@@ -34,7 +34,7 @@ class StopNames:
     def translated(self, stop: Stop) -> Stop:
         """Give the stop with its second name, "" if there is none or it is the first name."""
         other = self.by_id.get(stop.id) or self.by_name.get(stop.name) or ""
-        return stop if other == stop.name else replace(stop, second_name=other)
+        return stop if other in ("", stop.name) else replace(stop, second_name=other)
 
 
 def read_imprint(tables: Tables) -> Imprint:

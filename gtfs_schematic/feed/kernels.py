@@ -12,45 +12,53 @@ from numpy.typing import NDArray
 
 Bytes = NDArray[np.uint8]
 Places = NDArray[np.int32]
-"""Places of fields in a buffer, (rows, columns)."""
+"""Places in a buffer, or numbers of texts."""
 Ints = NDArray[np.int64]
 
 REGULAR, ODD, BLANK, BROKEN = 0, 1, 2, 3
 
 _LF, _CR, _SPACE, _QUOTE, _COMMA = 10, 13, 32, 34, 44
-_LONGEST_LINE = 100_000
+LONGEST_LINE = 100_000
 _MIX = np.uint64(0xC6A4A7935BD1E995)
 _SHIFT = np.uint64(47)
+_ONE, _EIGHT = np.uint64(1), np.uint64(8)
+_LOW, _HIGH = np.uint64(0x0101010101010101), np.uint64(0x8080808080808080)
+_LINE_ENDS = np.uint64(0x0A0A0A0A0A0A0A0A)
+# Places are unsigned within the loops: a signed one would be tested for counting from the end.
 
 
 @njit(cache=True, nogil=True)
-def _word(buffer: Bytes, start: int, size: int) -> np.uint64:
-    """Give up to eight bytes as one number, the first byte least."""
+def _word(buffer: Bytes, start: np.uint64) -> np.uint64:
+    """Give eight bytes as one number, the first byte least."""
     word = np.uint64(0)
-    for byte in range(size):
-        word |= np.uint64(buffer[start + byte]) << np.uint64(8 * byte)
+    for byte in range(8):
+        word |= np.uint64(buffer[start + np.uint64(byte)]) << np.uint64(8 * byte)
     return word
 
 
 @njit(cache=True, nogil=True)
 def murmur(
-    buffer: Bytes, start: int, end: int, seeds: tuple[int, int]
+    buffer: Bytes, start: np.uint64, end: np.uint64, seeds: tuple[int, int]
 ) -> tuple[np.uint64, np.uint64]:
     """Hash a piece of a buffer to 64 bits with each of two seeds.
 
     MurmurHash64A (Appleby 2008, placed in the public domain), with both seeds in one loop.
     """
-    length = np.uint64(end - start) * _MIX
+    place, end = np.uint64(start), np.uint64(end)
+    length = (end - place) * _MIX
     first, second = np.uint64(seeds[0]) ^ length, np.uint64(seeds[1]) ^ length
-    place = start
-    while place + 8 <= end:
-        word = _word(buffer, place, 8) * _MIX
+    while place + _EIGHT <= end:
+        word = _word(buffer, place) * _MIX
         word = (word ^ (word >> _SHIFT)) * _MIX
         first = (first ^ word) * _MIX
         second = (second ^ word) * _MIX
-        place += 8
+        place += _EIGHT
     if place < end:
-        word = _word(buffer, place, end - place)
+        word = shift = np.uint64(0)
+        while place < end:
+            word |= np.uint64(buffer[place]) << shift
+            shift += _EIGHT
+            place += _ONE
         first = (first ^ word) * _MIX
         second = (second ^ word) * _MIX
     first = (first ^ (first >> _SHIFT)) * _MIX
@@ -59,27 +67,42 @@ def murmur(
 
 
 @njit(cache=True, nogil=True)
-def hash_lines(buffer: Bytes, start: int, end: int) -> tuple[np.uint64, np.uint64, int]:
+def _line_end(buffer: Bytes, place: np.uint64, size: np.uint64) -> np.uint64:
+    """Give the place of the next line feed, or the end.
+
+    Eight bytes at a time: a byte of a word is zero where subtracting one from every byte borrows
+    into its highest bit (Mycroft 1987, known from many string libraries).
+    """
+    while place + _EIGHT <= size:
+        word = _word(buffer, place) ^ _LINE_ENDS
+        if (word - _LOW) & ~word & _HIGH:
+            break
+        place += _EIGHT
+    while place < size and buffer[place] != _LF:
+        place += _ONE
+    return place
+
+
+@njit(cache=True, nogil=True)
+def hash_lines(buffer: Bytes, start: int) -> tuple[np.uint64, np.uint64, int]:
     """Give two sums modulo 2^64 of the hashes of all lines that are not blank, and their number.
 
     Line ends do not count.
     """
     first = second = np.uint64(0)
     count = 0
-    place = start
+    place, end = np.uint64(start), np.uint64(len(buffer))
     while place < end:
-        stop = place
-        while stop < end and buffer[stop] != _LF:
-            stop += 1
+        stop = _line_end(buffer, place, end)
         last = stop
-        while last > place and buffer[last - 1] == _CR:
-            last -= 1
+        while last > place and buffer[last - _ONE] == _CR:
+            last -= _ONE
         if last > place:
             one, two = murmur(buffer, place, last, (1, 2))
             first += one
             second += two
             count += 1
-        place = stop + 1
+        place = stop + _ONE
     return first, second, count
 
 
@@ -90,105 +113,99 @@ def _is_space(byte: int) -> bool:
 
 
 @njit(cache=True, nogil=True)
-def _field(buffer: Bytes, size: int, place: int) -> tuple[int, int, int, int]:
-    """Give where a field starts and ends, where its comma or line end is, and its kind.
+def _quoted(buffer: Bytes, size: np.uint64, place: np.uint64) -> tuple[np.uint64, np.uint64, int]:
+    """Give where a field in quotes ends, where its comma or line end is, and its kind.
 
-    The kind is `REGULAR`, `ODD` (quotes inside quotes) or `BROKEN` (a line end inside quotes).
+    `place` is behind the first quote. The kind is `REGULAR`, `ODD` (quotes inside quotes) or
+    `BROKEN` (a line end inside quotes).
     """
-    start = place
-    if place == size or buffer[place] != _QUOTE:
-        while place < size and buffer[place] not in (_COMMA, _LF, _CR):
-            place += 1
-        return start, place, place, REGULAR
     kind = REGULAR
     inside = True
-    end = place = place + 1
+    end = place
     while place < size and (inside or buffer[place] not in (_COMMA, _LF, _CR)):
         byte = buffer[place]
         if byte in (_LF, _CR):
-            return start, place, place, BROKEN
+            return end, place, BROKEN
         if not inside:
             kind = ODD
         if byte == _QUOTE:
             inside = not inside
             end = place
-        place += 1
-    return start + 1, end, place, BROKEN if inside else kind
+        place += _ONE
+    return end, place, BROKEN if inside else kind
 
 
 @njit(cache=True, nogil=True)
-def _row(
-    buffer: Bytes, size: int, place: int, columns: Ints, row: tuple[Places, Places]
-) -> tuple[int, int, int]:
-    """Split one row; give where its line end is, how many fields it has, and its kind."""
-    starts, ends = row
-    kind, field = REGULAR, 0
-    for n in range(len(starts)):
-        starts[n] = ends[n] = 0
-    while kind != BROKEN:
-        start, end, place, odd = _field(buffer, size, place)
-        kind = max(kind, odd)
-        if field < len(columns) and columns[field] >= 0:
-            while start < end and _is_space(buffer[start]):
-                start += 1
-            while end > start and _is_space(buffer[end - 1]):
-                end -= 1
-            starts[columns[field]], ends[columns[field]] = start, end
-        field += 1
-        if place == size or buffer[place] != _COMMA:
-            break
-        place += 1
-    return place, field, kind
-
-
-@njit(cache=True, nogil=True)
-def split_lines(
-    buffer: Bytes, size: int, columns: Ints, starts: Places, ends: Places, kinds: Bytes
+def split_lines(  # noqa: C901, PLR0912 - a call in its inner loop doubles its time
+    buffer: Bytes, first: int, columns: Ints, starts: Places, ends: Places, kinds: Bytes
 ) -> tuple[int, int]:
     """Split lines into fields, as CSV with commas and double quotes.
 
     Parameters
     ----------
-    buffer, size
-        Whole lines and how many bytes they take.
+    buffer, first
+        Whole lines, and where to begin.
     columns
         For every column of the table its number among the fields wanted, -1 if it is not wanted.
     starts, ends, kinds
-        Filled with the places of the wanted fields, white space around them left out, and with
-        what kind of row each is. Fields of columns that the table lacks stay empty.
+        Filled with the places of the wanted fields, (fields, rows), white space around them left
+        out, and with what kind of row each is. Fields of columns that the table lacks are empty.
 
     Returns
     -------
-    rows, consumed
-        How many rows and bytes were split. It is fewer than all if a row does not end with its
-        line, or may not: then the rest needs another reader.
+    rows, end
+        How many rows were split, and where the last ends: as many as there is room for, unless
+        the lines end or a row does not end with its line, or may not. Then the rest needs
+        another reader.
     """
-    rows = place = 0
-    while place < size:
+    rows, place, stop = 0, np.uint64(first), np.uint64(len(buffer))
+    while place < stop and rows < len(kinds):
         begin = place
-        place, fields, kind = _row(buffer, size, begin, columns, (starts[rows], ends[rows]))
+        kind, field = REGULAR, 0
+        for n in range(len(starts)):
+            starts[n, rows] = ends[n, rows] = 0
+        while kind != BROKEN:
+            start = end = place
+            if place < stop and buffer[place] == _QUOTE:
+                start = place + _ONE
+                end, place, odd = _quoted(buffer, stop, start)
+                kind = max(kind, odd)
+            else:
+                while place < stop and buffer[place] not in (_COMMA, _LF, _CR):
+                    place += _ONE
+                end = place
+            if field < len(columns) and columns[field] >= 0:
+                while start < end and _is_space(buffer[start]):
+                    start += _ONE
+                while end > start and _is_space(buffer[end - _ONE]):
+                    end -= _ONE
+                starts[columns[field], rows], ends[columns[field], rows] = start, end
+            field += 1
+            if place == stop or buffer[place] != _COMMA:
+                break
+            place += _ONE
         blank = place == begin
         if kind == BROKEN:
-            return rows, begin
-        if place < size and buffer[place] == _CR:
-            place += 1
-            if place == size or buffer[place] != _LF:
-                return rows, begin
-        place += 1
+            return rows, int(np.int64(begin))
+        if place < stop and buffer[place] == _CR:
+            place += _ONE
+            if place == stop or buffer[place] != _LF:
+                return rows, int(np.int64(begin))
+        place = min(place + _ONE, stop)
         if blank:
             kind = BLANK
-        elif fields != len(columns) or place - begin > _LONGEST_LINE:
+        elif field != len(columns) or place - begin > np.uint64(LONGEST_LINE):
             kind = ODD
         kinds[rows] = kind
         rows += 1
-    return rows, size
+    return rows, int(np.int64(place))
 
 
 @njit(cache=True, nogil=True)
 def _same(one: Bytes, start: int, other: Bytes, begin: int, length: int) -> bool:
     """Tell whether two pieces of bytes are the same."""
-    for n in range(length):  # noqa: SIM110 - a compiled loop knows no generators
-        if one[start + n] != other[begin + n]:
+    for n in range(np.uint64(length)):
+        if one[np.uint64(start) + n] != other[np.uint64(begin) + n]:
             return False
     return True
 
@@ -242,7 +259,7 @@ def number_texts(
             if bounds[table[slot] + 1] - at == length and _same(buffer, start, texts, at, length):
                 found[row] = table[slot]
                 break
-            slot = (slot + np.uint64(1)) & mask
+            slot = (slot + _ONE) & mask
         if found[row] < 0 and learn:
             found[row] = table[slot] = count
             texts[bounds[count] : bounds[count] + length] = buffer[start : start + length]
@@ -259,5 +276,5 @@ def refill(texts: Bytes, bounds: Ints, count: int, table: Places) -> None:
     for number in range(count):
         slot = murmur(texts, bounds[number], bounds[number + 1], (0, 0))[0] & mask
         while table[slot] >= 0:
-            slot = (slot + np.uint64(1)) & mask
+            slot = (slot + _ONE) & mask
         table[slot] = number

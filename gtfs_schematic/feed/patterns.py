@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections import Counter, defaultdict
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
+from itertools import chain
 
 import numpy as np
 from numpy.typing import NDArray
@@ -12,6 +13,7 @@ from numpy.typing import NDArray
 from gtfs_schematic.feed.blocks import Masks
 from gtfs_schematic.feed.calendars import Headway
 from gtfs_schematic.feed.callrows import Calls, Ints
+from gtfs_schematic.feed.dates import EVER
 from gtfs_schematic.feed.interned import Interned
 from gtfs_schematic.feed.model import Pattern
 from gtfs_schematic.feed.trips import NO_DIRECTION, Trips
@@ -42,6 +44,13 @@ class Runs:
     headways: Mapping[int, tuple[Headway, ...]] = field(default_factory=dict)
     """Per number among all trips the rows of frequencies.txt; such a trip is counted out, and its
     own times only give the time from stop to stop."""
+
+    @property
+    def plain(self) -> bool:
+        """Whether all departures of the trips count."""
+        return len(self.days) == 1 and [(h.low, h.high, h.shift) for h in self.days[0]] == [
+            (*EVER, 0)
+        ]
 
 
 def gather_patterns(runs: Runs, stop_ids: Sequence[str], calls: Calls) -> tuple[Pattern, ...]:
@@ -122,6 +131,8 @@ def _united(
     A departure counts as often as on the day that has it most often (the union of multisets), so
     that trips that run on several days count once.
     """
+    if runs.plain:
+        return tuple(sorted(chain.from_iterable(departures)))
     union: Counter[int] = Counter()
     for day in runs.days:
         own: Counter[int] = Counter()

@@ -17,7 +17,7 @@ from gtfs_schematic.feed.calendars import (
     read_headways,
 )
 from gtfs_schematic.feed.dates import EARLY, LATE
-from gtfs_schematic.feed.digest import fingerprint
+from gtfs_schematic.feed.digest import Digest
 from gtfs_schematic.feed.filters import keep_routes
 from gtfs_schematic.feed.findings import Notebook
 from gtfs_schematic.feed.info import Imprint, read_imprint
@@ -35,7 +35,7 @@ class Plan:
     """What is known of a feed before its service date is chosen."""
 
     tables: Tables
-    sha256: str
+    digest: Digest
     imprint: Imprint
     agencies: Mapping[str, Agency]
     all_routes: Mapping[str, Route]
@@ -52,7 +52,7 @@ class Plan:
     validity: Validity
 
 
-def plan_feed(files: FeedFiles, prefix: str, settings: FeedSettings) -> Plan:
+def plan_feed(files: FeedFiles, digest: Digest, prefix: str, settings: FeedSettings) -> Plan:
     """Read what is needed to choose the service date: everything but stops, calls and shapes.
 
     Raises
@@ -60,9 +60,8 @@ def plan_feed(files: FeedFiles, prefix: str, settings: FeedSettings) -> Plan:
     FeedError
         Files or columns are missing, or nothing ever runs.
     """
-    content = fingerprint(files)
     notes = Notebook(prefix)
-    tables = Tables(files, content.not_utf8, notes)
+    tables = Tables(files, digest.is_utf8, notes)
     check_tables(tables)
     _find_odd_files(tables)
     agencies = read_agencies(tables)
@@ -89,7 +88,7 @@ def plan_feed(files: FeedFiles, prefix: str, settings: FeedSettings) -> Plan:
         validity = replace(validity, early=early, late=late)
     return Plan(
         tables,
-        content.sha256,
+        digest,
         imprint,
         agencies,
         routes,
@@ -127,8 +126,9 @@ def _find_odd_files(tables: Tables) -> None:
         notes.find("info", files.folder, fault)
     for folder in files.ignored_folders:
         notes.find("warning", folder, "a folder beside the feed looks like a feed; it is ignored")
-    for name in sorted(tables.not_utf8 - REQUIRED_COLUMNS.keys()):
-        notes.find("info", name, "the file is not UTF-8 text; it is not used")
+    for name in sorted(set(files.names) - REQUIRED_COLUMNS.keys()):
+        if not tables.is_utf8(name):
+            notes.find("info", name, "the file is not UTF-8 text; it is not used")
 
 
 def _find_empty_validity(notes: Notebook, validity: Validity, imprint: Imprint) -> None:

@@ -13,6 +13,7 @@ from __future__ import annotations
 import datetime as dt
 from collections import Counter
 from collections.abc import Iterator, Sequence
+from concurrent.futures import ThreadPoolExecutor
 from contextlib import ExitStack, contextmanager
 from pathlib import Path
 
@@ -22,8 +23,9 @@ from gtfs_schematic.errors import FeedError, UsageError
 from gtfs_schematic.feed.archive import open_feed
 from gtfs_schematic.feed.blocks import Masks
 from gtfs_schematic.feed.callrows import NOT_TODAY, Wanted
-from gtfs_schematic.feed.calls import read_calls
+from gtfs_schematic.feed.calls import read_calls, without_stops
 from gtfs_schematic.feed.dates import Choice, choose_dates, with_expiry
+from gtfs_schematic.feed.digest import Digest
 from gtfs_schematic.feed.filters import (
     check_modes,
     check_names,
@@ -34,12 +36,18 @@ from gtfs_schematic.feed.filters import (
 from gtfs_schematic.feed.info import read_attributions, read_stop_names
 from gtfs_schematic.feed.interned import Interned
 from gtfs_schematic.feed.join import join_timetables
-from gtfs_schematic.feed.model import FeedInfo, FeedSettings, Pattern, Route, Timetable
+from gtfs_schematic.feed.model import FeedInfo, FeedSettings, Pattern, Route, Stop, Timetable
 from gtfs_schematic.feed.patterns import Hours, Runs, gather_patterns
 from gtfs_schematic.feed.plan import Plan, plan_feed
 from gtfs_schematic.feed.service import typical_weekdays
-from gtfs_schematic.feed.speeds import find_leaps
-from gtfs_schematic.feed.stops import leave_out_unserved, read_stops, stops_of_timetable
+from gtfs_schematic.feed.speeds import find_leaps, with_stations_in_place
+from gtfs_schematic.feed.stops import (
+    StopTable,
+    leave_out_unserved,
+    read_stops,
+    stops_of_timetable,
+)
+from gtfs_schematic.feed.tables import Tables
 from gtfs_schematic.feed.ways import read_shapes, read_transfers, without_missing_shapes
 from gtfs_schematic.progress import Progress, Silent
 
@@ -81,8 +89,11 @@ def read_feed(
         for number, path in enumerate(paths, start=1):
             prefix = f"{number}:" if len(paths) > 1 else ""
             files = stack.enter_context(open_feed(Path(path)))
+            # The digest reads all bytes once more, on another core if there is one.
+            pool = ThreadPoolExecutor(1)
+            stack.callback(pool.shutdown, cancel_futures=True)
             with _naming(prefix):
-                plans.append(plan_feed(files, prefix, settings))
+                plans.append(plan_feed(files, Digest(files, pool), prefix, settings))
             progress.step()
         _check_names(plans, settings)
         choice = choose_dates([plan.validity for plan in plans], settings.date)
@@ -138,20 +149,27 @@ def _timetable(plan: Plan, choice: Choice, settings: FeedSettings) -> Timetable:
     today[running] = np.arange(running.sum(), dtype=np.int32)
     stop_ids = list(table.own)
     placed = np.array([ident in table.placed for ident in stop_ids], dtype=np.bool_)
-    calls = read_calls(tables, Wanted(plan.trips.ids, today, Interned(stop_ids), placed))
+    wanted = Wanted(plan.trips.ids, today, Interned(stop_ids), placed)
+    calls = read_calls(tables, wanted)
     runs = Runs(plan.trips, np.flatnonzero(running), _days(plan, choice), plan.headways)
     patterns = gather_patterns(runs, stop_ids, calls)
+    stops = _stops(tables, table, patterns)
+    astray = find_leaps(tables.notebook, patterns, stops, plan.routes, table.rows)
+    if astray:
+        numbers = [n for n, ident in enumerate(stop_ids) if ident in astray]
+        patterns = gather_patterns(runs, stop_ids, without_stops(tables, calls, wanted, numbers))
     if settings.min_trips:
         patterns = without_rare_routes(
             tables.notebook, patterns, plan.routes, settings.min_trips, choice.when
         )
     shapes = read_shapes(tables, {p.shape_id for p in patterns if p.shape_id})
     patterns = without_missing_shapes(tables, patterns, shapes)
-    stops = stops_of_timetable(tables, table, {s for p in patterns for s in p.stop_ids})
+    if astray or settings.min_trips:
+        stops = _stops(tables, table, patterns)
+    stops = with_stations_in_place(tables.notebook, stops, table.rows)
     leave_out_unserved(tables, table, stops, choice.when)
     names = read_stop_names(tables, settings.language)
     routes = _running_routes(plan, patterns, running, choice.when)
-    find_leaps(tables.notebook, patterns, stops, plan.routes)
     agency_ids = {route.agency_id for route in routes}
     for ident in plan.agencies.keys() - agency_ids:
         tables.notebook.leave_out("agency", ident, f"none of its routes is drawn {choice.when}")
@@ -168,6 +186,10 @@ def _timetable(plan: Plan, choice: Choice, settings: FeedSettings) -> Timetable:
         tables.notebook.findings,
         tables.notebook.left_out,
     )
+
+
+def _stops(tables: Tables, table: StopTable, patterns: Sequence[Pattern]) -> tuple[Stop, ...]:
+    return stops_of_timetable(tables, table, {s for p in patterns for s in p.stop_ids})
 
 
 def _services(plan: Plan, date: dt.date) -> Masks:
@@ -223,7 +245,7 @@ def _running_routes(
 
 def _info(plan: Plan, choice: Choice, agency_ids: set[str], route_ids: list[str]) -> FeedInfo:
     return FeedInfo(
-        plan.sha256,
+        plan.digest.sha256,
         plan.imprint.publisher,
         plan.imprint.version,
         plan.validity.start.isoformat(),

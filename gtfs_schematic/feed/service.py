@@ -162,11 +162,12 @@ def typical_weekdays(
     for date, running in days.items():
         for service in running:
             dates_of[service].append(date)
-    typical = {}
-    for route, ids in services.items():
-        dates = {date for ident in ids for date in dates_of[ident]}
-        typical[route] = _typical(dates)
-    return typical
+    # Many routes of a large feed have the same services.
+    typical = {
+        ids: _typical({date for ident in ids for date in dates_of[ident]})
+        for ids in set(services.values())
+    }
+    return {route: typical[ids] for route, ids in services.items()}
 
 
 def _typical(dates: set[dt.date]) -> frozenset[int]:

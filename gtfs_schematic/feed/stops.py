@@ -8,9 +8,10 @@ from dataclasses import dataclass, field, replace
 from functools import partial
 
 from gtfs_schematic.feed.cells import Cell, is_usable_id, name_of, whole_of
+from gtfs_schematic.feed.findings import Notebook
 from gtfs_schematic.feed.model import Boarding, Stop
 from gtfs_schematic.feed.tables import Tables
-from gtfs_schematic.feed.values import clean_name, is_nowhere, parse_degrees
+from gtfs_schematic.feed.values import clean_name, is_clean, is_nowhere, parse_degrees
 
 _FILE = "stops.txt"
 _COLUMNS = (
@@ -24,7 +25,8 @@ _COLUMNS = (
     "wheelchair_boarding",
     "platform_code",
 )
-_BOARDING: Mapping[int | None, Boarding] = {1: "yes", 2: "no"}
+_KINDS = {"": 0, **{str(n): n for n in range(5)}}
+_BOARDING: Mapping[str, Boarding] = {"": "unknown", "0": "unknown", "1": "yes", "2": "no"}
 
 
 @dataclass(frozen=True)
@@ -50,29 +52,29 @@ def read_stops(tables: Tables) -> StopTable:
     rows: dict[str, int] = {}
     notes = tables.notebook
     for row, texts in tables.rows(_FILE, _COLUMNS):
-        ident, name, code, lat, lon, type_, parent, boarding, platform = map(
-            partial(Cell, _FILE, row), _COLUMNS, texts
-        )
-        if not is_usable_id(notes, ident, rows):
+        ident, name, code, lat, lon, type_, parent, boarding, platform = texts
+        at = partial(Cell, _FILE, row)
+        if not is_usable_id(notes, at("stop_id", ident), rows):
             continue
-        rows[ident.text] = row
-        place = _place(tables, lon, lat)
-        kind = whole_of(notes, type_) or 0
-        if kind not in range(5):
-            type_.found(notes, "warning", "location type is not one of 0 to 4; taken as 0")
-            kind = 0
-        own[ident.text] = Stop(
-            ident.text,
-            name_of(notes, name),
-            clean_name(code.text),
+        rows[ident] = row
+        place = _place(notes, row, lon, lat)
+        own[ident] = Stop(
+            ident,
+            name if is_clean(name) else name_of(notes, at("stop_name", name)),
+            clean_name(code),
             place[0] if place else None,
             place[1] if place else None,
-            kind,
-            parent.text or None,
-            _BOARDING.get(whole_of(notes, boarding), "unknown"),
-            platform_code=clean_name(platform.text),
+            _KINDS[type_] if type_ in _KINDS else _kind(notes, at("location_type", type_)),
+            parent or None,
+            _BOARDING[boarding]
+            if boarding in _BOARDING
+            else _boarding(notes, at("wheelchair_boarding", boarding)),
+            platform_code=clean_name(platform),
         )
-    chain = {ident: _chain(tables, own, rows, ident) for ident in own}
+    chain = {
+        ident: _chain(tables, own, rows, ident) if stop.parent_id else ()
+        for ident, stop in own.items()
+    }
     return StopTable(own, rows, chain, _placed(own, chain))
 
 
@@ -101,6 +103,8 @@ def leave_out_unserved(tables: Tables, table: StopTable, stops: Iterable[Stop], 
 
 def _settled(tables: Tables, table: StopTable, ident: str) -> Stop:
     stop, above, row = table.own[ident], table.chain[ident], table.rows[ident]
+    if stop.name and stop.lon is not None and not above:
+        return replace(stop, parent_id=None) if stop.parent_id else stop
     lon, lat = table.placed[ident]
     if stop.lon is None:
         message = "stop has no coordinates of its own and is put where its station or platforms lie"
@@ -121,21 +125,35 @@ def _settled(tables: Tables, table: StopTable, ident: str) -> Stop:
     )
 
 
-def _place(tables: Tables, lon: Cell, lat: Cell) -> tuple[float, float] | None:
-    if not lon.text and not lat.text:
+def _kind(notebook: Notebook, cell: Cell) -> int:
+    """Give a location type that is not written plainly."""
+    kind = whole_of(notebook, cell) or 0
+    if kind in range(5):
+        return kind
+    cell.found(notebook, "warning", "location type is not one of 0 to 4; taken as 0")
+    return 0
+
+
+def _boarding(notebook: Notebook, cell: Cell) -> Boarding:
+    """Give a flag of boarding that is not written plainly."""
+    return _BOARDING.get(str(whole_of(notebook, cell)), "unknown")
+
+
+def _place(notebook: Notebook, row: int, lon: str, lat: str) -> tuple[float, float] | None:
+    if not lon and not lat:
         return None
     degrees = []
-    for cell, limit in ((lon, 180.0), (lat, 90.0)):
+    for field_name, text, limit in (("stop_lon", lon, 180.0), ("stop_lat", lat, 90.0)):
         try:
-            degrees.append(parse_degrees(cell.text, limit))
+            degrees.append(parse_degrees(text, limit))
         except ValueError:
             fault = "coordinate is not a number of degrees within its range; it does not count"
-            cell.found(tables.notebook, "error", fault)
+            Cell(_FILE, row, field_name, text).found(notebook, "error", fault)
             return None
     place = degrees[0], degrees[1]
     if is_nowhere(*place):
         fault = "coordinates near 0, 0 or at a pole stand for none; they do not count"
-        lat.found(tables.notebook, "error", fault)
+        Cell(_FILE, row, "stop_lat", lat).found(notebook, "error", fault)
         return None
     return place
 
@@ -189,7 +207,10 @@ def _placed(
         if chain[ident] and stop.location_type == 0 and stop.lon is not None:
             below[chain[ident][-1]].append((stop.lon, stop.lat or 0.0))
     placed = {}
-    for ident in own:
+    for ident, stop in own.items():
+        if stop.lon is not None and stop.lat is not None:
+            placed[ident] = (stop.lon, stop.lat)
+            continue
         for member in (own[i] for i in (ident, *chain[ident])):
             if member.lon is not None and member.lat is not None:
                 placed[ident] = (member.lon, member.lat)

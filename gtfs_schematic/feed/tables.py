@@ -5,7 +5,7 @@ from __future__ import annotations
 import csv
 import io
 import re
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 from dataclasses import dataclass, replace
 from operator import itemgetter
 
@@ -59,7 +59,8 @@ class Tables:
     """The tables of one feed, to be read by `rows`."""
 
     files: FeedFiles
-    not_utf8: frozenset[str]
+    is_utf8: Callable[[str], bool]
+    """Tells whether a file is UTF-8 throughout."""
     notebook: Notebook
 
     def has(self, name: str) -> bool:
@@ -115,7 +116,8 @@ class Tables:
         """Give the column names of a table, stripped; empty if the file is empty."""
         with (
             self.files.open(name) as raw,
-            io.TextIOWrapper(raw, "utf-8-sig", self._errors(name), newline="") as text,
+            # Not to wait for the digest of a large file.
+            io.TextIOWrapper(raw, "utf-8-sig", "surrogateescape", newline="") as text,
         ):
             return self._header(name, csv.reader(text, strict=True))
 
@@ -132,7 +134,7 @@ class Tables:
 
     def _errors(self, name: str) -> str:
         # Bad bytes survive decoding as lone surrogates, so that they can be located.
-        return "surrogateescape" if name in self.not_utf8 else "strict"
+        return "strict" if self.is_utf8(name) else "surrogateescape"
 
     def _header(self, name: str, reader: Iterator[list[str]]) -> list[str]:
         try:
@@ -197,7 +199,7 @@ class Picker:
         # A place of -1 picks the empty text that is appended to every row.
         self._pick = itemgetter(*places) if len(places) > 1 else _pick_one(places[0])
         self._wanted = frozenset(columns)
-        self._suspect = name in tables.not_utf8
+        self._suspect = not tables.is_utf8(name)
         if self._suspect:
             for column in header:
                 if "\ufffd" in column:

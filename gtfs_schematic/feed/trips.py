@@ -101,7 +101,7 @@ class _Reader:
         self._unknown: dict[int, str] = {}
 
     def bulk(self, block: Block) -> Masks:
-        odd = np.zeros(len(block.starts), dtype=np.uint8)
+        odd = np.zeros(len(block.regular), dtype=np.uint8)
         regular = block.regular.view(np.uint8)
         numerals.mark_unprintable(block.column(0), regular, odd)
         route = self._routes.find(block.column(1))

@@ -68,13 +68,18 @@ def is_nowhere(lon: float, lat: float) -> bool:
     return (abs(lon) < 1.0 and abs(lat) < 1.0) or abs(lat) > 89.0
 
 
+def is_clean(text: str) -> bool:
+    """Tell whether `clean_name` would certainly leave a stripped text as it is."""
+    return text.isprintable() and "  " not in text
+
+
 def clean_name(text: str) -> str:
     """Give `text` with every run of white space as one space and no control characters.
 
     The reference forbids tabs and line ends in values; control characters are not even allowed
     in an XML file. Characters that shape text (zero-width joiners, direction marks) stay.
     """
-    if text.isprintable() and "  " not in text:
+    if is_clean(text):
         return text.strip()
     spaced = (" " if char.isspace() else char for char in text)
     return " ".join("".join(char for char in spaced if not _is_control(char)).split())

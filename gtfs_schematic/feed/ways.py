@@ -143,8 +143,10 @@ class _ShapeReader:
         if not self._parts:
             return {}
         shape, order, lon, lat = map(np.concatenate, zip(*self._parts, strict=True))
-        # Equal numbers are against the rules; the coordinates make the order definite.
-        ranks = np.lexsort((lat, lon, order, shape))
+        ranks = np.argsort(shape, kind="stable")
+        if not (np.diff(order[ranks])[np.diff(shape[ranks]) == 0] > 0).all():
+            # Equal numbers are against the rules; the coordinates make the order definite.
+            ranks = np.lexsort((lat, lon, order, shape))
         shape, points = shape[ranks], np.column_stack([lon, lat])[ranks]
         cuts = np.searchsorted(shape, np.arange(len(self._ids) + 1))
         found = {}
