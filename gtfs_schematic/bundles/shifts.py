@@ -13,8 +13,9 @@ from gtfs_schematic.bundles.junction import Junction, Leg, Pass
 from gtfs_schematic.bundles.slots import SHIFT_SHARES, Slots, moved
 from gtfs_schematic.geometry import Point
 
-_LENGTHS = (2.5, 1.5)
-"""Lengths of the oblique piece to try, in multiples of the largest change of slot."""
+_LENGTHS = (4.0, 2.5, 1.5)
+"""Lengths of the oblique piece to try, in multiples of the largest change of slot; gaps between
+lines that shift together narrow by the cosine of its angle, so the longest that fits is best."""
 _STARTS = (0.0, 0.5, 1.0, 1.5, 2.0, 3.0)
 """Distances from the station to try, in multiples of the lines' pitch."""
 _CLEAR = 0.95
