@@ -25,7 +25,7 @@ _PLACE = ((0.0, 0.05, 0.2, 0.5, 1.0, 2.0, 5.0, 20.0), (5.0, 4.5, 3.0, 1.0, -0.5,
 """By distance in typical spacings of stations."""
 _AROUND = (-1.5, 4.5)
 _LINES = (-1.0, 2.5)
-_COURSE = ((0.0, 0.2, 0.5, 0.8, 1.0), (-4.0, -2.0, 1.0, 3.0, 4.0))
+_COURSE = ((0.0, 0.2, 0.5, 0.8, 0.9, 1.0), (-4.0, -2.0, 1.0, 3.5, 4.5, 5.5))
 _LOOSE = 0.9
 _PART = 0.8
 
@@ -59,7 +59,8 @@ def worth_of(shared_right: int, shared: int, right_shared: int, right: int, most
         The most that agreement may count.
     """
     hit = (shared_right + 0.5) / (shared + 1.0)
-    kept = (right_shared + 0.5) / (right + 1.0)
+    # A few pairs prove little: two count as if they had kept nothing.
+    kept = right_shared / (right + 2.0)
     return Worth(
         min(most, max(0.0, math.log(hit / (1.0 - hit)) + 1.0)) if hit > 0.5 else 0.0,
         max(-2.0, math.log(1.0 - kept)) if kept > 0.5 else 0.0,
