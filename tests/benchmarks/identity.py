@@ -6,11 +6,13 @@ Every change of `changed_timetables.CHANGES` once per seed; then four changes at
 new, and with all ids exchanged. Prints what was taken for another, what was not found, and
 precision and recall of stations and lines.
 """
+# ruff: noqa: T201 - a script's results go to standard output
 
 from __future__ import annotations
 
 import argparse
 import sys
+from collections.abc import Iterator
 from pathlib import Path
 
 sys.path.insert(0, str(Path(__file__).resolve().parent.parent))
@@ -21,6 +23,7 @@ from gtfs_schematic import pipeline
 from gtfs_schematic.edition.identity import match_rosters
 from gtfs_schematic.edition.make import stop_codes_of
 from gtfs_schematic.edition.roster import roster_of_network
+from gtfs_schematic.feed.model import Timetable
 from gtfs_schematic.network.build import build_network
 from gtfs_schematic.network.model import NetworkSettings
 
@@ -55,7 +58,7 @@ def main() -> None:
         print(f"{kind}: {right} right, precision {precision:.4f}, recall {recall:.4f}")
 
 
-def _feeds(timetable, seed):
+def _feeds(timetable: Timetable, seed: int) -> Iterator[changes.Changed]:
     plain = changes.unchanged(timetable)
     for change in changes.CHANGES:
         yield change(plain, changes.chance_of(seed))
