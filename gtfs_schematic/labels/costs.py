@@ -43,6 +43,8 @@ NOT_ASKED = 1000.0
 """Another side than a person asks for."""
 _NEAR_MM = 2.5
 _NEARLY_MM = 0.5
+_CLEARLY = 0.6
+"""Share of the distance from its own marker at which a foreign one is clearly nearer."""
 _OFF_MM = 2.0
 """A label further than this from its marker lies off it."""
 _LINE_MM = 1.2
@@ -75,7 +77,7 @@ def candidate_costs(
 ) -> NDArray[np.float64]:
     """Give the cost of each candidate by itself, at least 0; infinite if it would mislead.
 
-    A label misleads if it lies off its own marker and nearer to a foreign one.
+    A label misleads if it lies off its own marker and clearly nearer to a foreign one.
     """
     costs = np.array([_own_cost(candidate, settings) for candidate in candidates])
     if not len(costs):
@@ -138,7 +140,7 @@ def _ambiguity(
     np.minimum.at(nearest, box, shapely.distance(boxes[box], obstacles.markers[marker]))
     cost = AMBIGUOUS * np.clip(1.0 - nearest / _NEAR_MM, 0.0, 1.0)
     cost += NEARER * (nearest < own_distance + _NEARLY_MM)
-    cost[(nearest < own_distance) & (own_distance > _OFF_MM)] = np.inf
+    cost[(nearest < _CLEARLY * own_distance) & (own_distance > _OFF_MM)] = np.inf
     return np.asarray(cost, dtype=np.float64)
 
 
