@@ -8,9 +8,10 @@ run that compiles. Printed: seconds of the processor and by the clock, the expon
 seconds ~ stations^b by least squares on logarithms (goal: at most 1.3), and the ratio of standard
 to quick (goal: at least 4).
 
-Then, per network of the knob and fidelity: bends per line, mean turn of a bend, variation of link
-lengths (standard deviation by mean) and drift (the share of the variance of the drawn places that
-no similarity of the ground explains, 0 to 1). Goal: drift falls and variation rises all along.
+Then, for the feeds and generated networks of `--knob-stations`, at five fidelities: bends per line,
+mean turn of a bend, variation of link lengths (standard deviation by mean) and drift (the share of
+the variance of the drawn places that no similarity of the ground explains, 0 to 1). Goal: drift
+falls and variation rises all along.
 
 Tables and plots: speed.csv, knob.csv, speed.png, knob.png. The plots need the extra `benchmark`.
 """
@@ -32,10 +33,13 @@ import numpy as np
 from layout_guarantees import CLEARANCES, FRAMES
 from sized_networks import KINDS
 
+from gtfs_schematic.feed.model import FeedSettings
+from gtfs_schematic.feed.read import read_feed
 from gtfs_schematic.layout.engine import fit_sheet, place
 from gtfs_schematic.layout.ground import project
 from gtfs_schematic.layout.model import Layout, LayoutSettings
-from gtfs_schematic.network.model import Network
+from gtfs_schematic.network.build import build_network
+from gtfs_schematic.network.model import Network, NetworkSettings
 
 EFFORTS = ("quick", "standard")
 FIDELITIES = (0.0, 0.25, 0.5, 0.75, 1.0)
@@ -66,12 +70,11 @@ class Timing:
 class Knob:
     """What one fidelity makes of one network."""
 
-    kind: str
-    seed: int
+    network: str
     fidelity: float
     bends_per_line: float
     turn_deg: float
-    """Mean turn of a bend."""
+    """Mean turn of a bend; not a number where no line bends."""
     length_variation: float
     drift: float
 
@@ -127,9 +130,8 @@ def drift_of(layout: Layout) -> float:
     return float(1.0 - abs(np.vdot(z, w)) ** 2 / (np.vdot(z, z).real * np.vdot(w, w).real))
 
 
-def knob(kind: str, stations: int, seed: int, fidelity: float) -> Knob:
+def knob(name: str, network: Network, fidelity: float) -> Knob:
     """Lay one network out at one fidelity and measure it."""
-    network = KINDS[kind](stations, seed)
     placement = place(network, LayoutSettings(fidelity=fidelity))
     layout = fit_sheet(placement, CLEARANCES, FRAMES)
     turns = turns_of(layout)
@@ -137,9 +139,9 @@ def knob(kind: str, stations: int, seed: int, fidelity: float) -> Knob:
         sum(math.dist(p, q) for p, q in itertools.pairwise(path)) for path in layout.paths.values()
     ]
     return Knob(
-        kind, seed, fidelity,
+        name, fidelity,
         bends_per_line=round(len(turns) / len(network.lines), 3),
-        turn_deg=round(float(np.mean(turns or [0.0])), 2),
+        turn_deg=round(float(np.mean(turns)), 2) if turns else math.nan,
         length_variation=round(float(np.std(lengths) / np.mean(lengths)), 4),
         drift=round(drift_of(layout), 5),
     )  # fmt: skip
@@ -153,7 +155,8 @@ def main() -> None:
     parser.add_argument("--kinds", nargs="+", default=sorted(KINDS), choices=sorted(KINDS))
     parser.add_argument("--repeats", type=int, default=1)
     parser.add_argument("--knob-stations", type=int, default=100)
-    parser.add_argument("--knob-seeds", type=int, default=2, help="0 leaves the knob out")
+    parser.add_argument("--knob-seeds", type=int, default=2, help="generated networks of a kind")
+    parser.add_argument("--feeds", type=Path, nargs="*", default=[Path("data/before.zip")])
     asked = parser.parse_args()
     asked.out.mkdir(parents=True, exist_ok=True)
     timed(KINDS["grid"](30, 0), "grid", "quick", 1)
@@ -164,12 +167,19 @@ def main() -> None:
         _write(asked.out / "speed.csv", timings)
     _print_growth(timings, asked.kinds)
     knobs = []
-    for kind, seed, fidelity in itertools.product(asked.kinds, range(asked.knob_seeds), FIDELITIES):
-        knobs.append(knob(kind, asked.knob_stations, seed, fidelity))
+    networks = [(feed.stem, _network_of(feed)) for feed in asked.feeds]
+    for kind, seed in itertools.product(asked.kinds, range(asked.knob_seeds)):
+        networks.append((f"{kind} {seed}", KINDS[kind](asked.knob_stations, seed)))
+    for (name, network), fidelity in itertools.product(networks, FIDELITIES):
+        knobs.append(knob(name, network, fidelity))
         print(*astuple(knobs[-1]), sep="\t", flush=True)
         _write(asked.out / "knob.csv", knobs)
     _print_knob(knobs)
     _plot(asked.out, timings, knobs)
+
+
+def _network_of(feed: Path) -> Network:
+    return build_network(read_feed([feed], FeedSettings()), NetworkSettings())
 
 
 def _write(path: Path, rows: Sequence[Any]) -> None:
@@ -192,12 +202,13 @@ def _print_growth(timings: Sequence[Timing], kinds: Sequence[str]) -> None:
 def _print_knob(knobs: Sequence[Knob]) -> None:
     for name in ("bends_per_line", "turn_deg", "length_variation", "drift") if knobs else ():
         at = [[getattr(k, name) for k in knobs if k.fidelity == f] for f in FIDELITIES]
+        at = [[value for value in some if not math.isnan(value)] or [math.nan] for some in at]
         print(f"mean {name} at {FIDELITIES}:", *(f"{np.mean(some):.4f}" for some in at))
-    for (kind, seed), some in itertools.groupby(knobs, key=lambda k: (k.kind, k.seed)):
+    for name, some in itertools.groupby(knobs, key=lambda k: k.network):
         row = list(some)
         falls = all(a.drift >= b.drift for a, b in itertools.pairwise(row))
         rises = all(a.length_variation <= b.length_variation for a, b in itertools.pairwise(row))
-        print(f"{kind} {seed}: drift falls all along: {falls}; variation rises: {rises}")
+        print(f"{name}: drift falls all along: {falls}; variation rises: {rises}")
 
 
 def _plot(out: Path, timings: Sequence[Timing], knobs: Sequence[Knob]) -> None:
@@ -219,14 +230,12 @@ def _plot(out: Path, timings: Sequence[Timing], knobs: Sequence[Knob]) -> None:
         figure.savefig(out / "speed.png", dpi=150)
     if knobs:
         figure, panels = plt.subplots(1, 3, figsize=(13, 4))
-        for name, axes in zip(("drift", "length_variation", "bends_per_line"), panels, strict=True):
-            for (kind, seed), some in itertools.groupby(knobs, key=lambda k: (k.kind, k.seed)):
-                axes.plot(
-                    FIDELITIES, [getattr(k, name) for k in some], "-o", label=f"{kind} {seed}"
-                )
-            axes.set(xlabel="fidelity", title=name.replace("_", " "))
-        panels[0].legend(fontsize="small")
-        figure.savefig(out / "knob.png", dpi=150)
+        for what, axes in zip(("drift", "length_variation", "bends_per_line"), panels, strict=True):
+            for name, some in itertools.groupby(knobs, key=lambda k: k.network):
+                axes.plot(FIDELITIES, [getattr(k, what) for k in some], "-o", label=name)
+            axes.set(xlabel="fidelity", title=what.replace("_", " "))
+        panels[-1].legend(fontsize="small", loc="upper left", bbox_to_anchor=(1.0, 1.0))
+        figure.savefig(out / "knob.png", dpi=150, bbox_inches="tight")
 
 
 if __name__ == "__main__":
