@@ -4,7 +4,6 @@ from __future__ import annotations
 
 import fcntl
 import os
-import shutil
 import subprocess
 import sys
 import tarfile
@@ -28,6 +27,9 @@ _PACKAGES = {
 }
 """Feeds in the source distributions of Python packages: requirement, path inside."""
 
+_BROKEN_FEEDS = ("transitfeed-py3==1.2.16", "tests/data")
+"""Dozens of small broken feeds, made to test another reader."""
+
 _PATIENCE_S = 300
 
 
@@ -49,10 +51,21 @@ def ann_arbor_feed() -> Path:
     return _feed("ann_arbor.zip")
 
 
-def _feed(name: str) -> Path:
-    """Give a feed from the cache, fetching it first; skip the test if that is not possible.
+@pytest.fixture(scope="session")
+def broken_feeds() -> Path:
+    """Give a folder of small broken feeds, zips and folders."""
+    return _cached("broken", *_BROKEN_FEEDS)
 
-    Under continuous integration (CI is set) a feed that cannot be had fails the test.
+
+def _feed(name: str) -> Path:
+    """Give a feed from the cache."""
+    return _cached(name, *_PACKAGES[name])
+
+
+def _cached(name: str, requirement: str, inside: str) -> Path:
+    """Give a file or folder from the cache, fetching it first; skip the test if that fails.
+
+    Under continuous integration (CI is set) one that cannot be had fails the test.
     """
     cache = _cache()
     target = cache / name
@@ -60,7 +73,6 @@ def _feed(name: str) -> Path:
     with (cache / f"{name}.lock").open("w") as lock:
         fcntl.flock(lock, fcntl.LOCK_EX)  # one worker fetches, the others wait for it
         if not target.exists():
-            requirement, inside = _PACKAGES[name]
             try:
                 _fetch(requirement, inside, target)
             except (OSError, subprocess.SubprocessError, tarfile.TarError, KeyError) as error:
@@ -79,7 +91,7 @@ def _cache() -> Path:
 
 
 def _fetch(requirement: str, inside: str, target: Path) -> None:
-    """Download a source distribution and keep one file of it, whole or not at all."""
+    """Download a source distribution and keep one path of it, whole or not at all."""
     with tempfile.TemporaryDirectory(dir=target.parent) as name:
         folder = Path(name)
         # Source of this package only: what builds it may come as wheels, which saves minutes.
@@ -88,12 +100,12 @@ def _fetch(requirement: str, inside: str, target: Path) -> None:
         subprocess.run(command, check=True, capture_output=True, text=True, timeout=_PATIENCE_S)
         with tarfile.open(_only(folder)) as archive:
             top = archive.getnames()[0].split("/")[0]
-            member = archive.extractfile(f"{top}/{inside}")
-            if member is None:
+            wanted = f"{top}/{inside}"
+            members = [m for m in archive.getmembers() if f"{m.name}/".startswith(f"{wanted}/")]
+            if not members:
                 raise KeyError(inside)
-            with member, (folder / "feed.zip").open("wb") as copy:
-                shutil.copyfileobj(member, copy)
-        (folder / "feed.zip").replace(target)
+            archive.extractall(folder / "unpacked", members, filter="data")
+        (folder / "unpacked" / wanted).replace(target)
 
 
 def _only(folder: Path) -> Path:

@@ -104,7 +104,12 @@ def read_headways(tables: Tables, trip_ids: Container[str]) -> Mapping[str, tupl
 def _spans(tables: Tables) -> list[Span]:
     spans = []
     file = "calendar.txt"
+    seen = set()
     for row, (service, *days, start, end) in tables.rows(file, REQUIRED_COLUMNS[file]):
+        if service in seen:
+            fault = "service stands in the table before; all its rows count"
+            Cell(file, row, "service_id", service).found(tables.notebook, "warning", fault)
+        seen.add(service)
         dates = (
             _date(tables, file, row, "start_date", start),
             _date(tables, file, row, "end_date", end),

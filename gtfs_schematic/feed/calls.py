@@ -29,6 +29,10 @@ def read_calls(tables: Tables, wanted: Wanted) -> Calls:
     if reader.broken:
         calls = calls.where(~np.isin(calls.trip, sorted(reader.broken)))
     calls = _in_order(calls)
+    negative = calls.row[calls.sequence < 0].tolist()
+    tables.notebook.find_rows(
+        "warning", FILE, "stop_sequence is negative; it counts", negative, "stop_sequence"
+    )
     _find_equal_sequences(tables, calls)
     calls = _drop_unplaced(tables, calls, wanted)
     calls = _merge_repeated(tables, calls)
@@ -116,6 +120,11 @@ def _drop_short(tables: Tables, calls: Calls, wanted: Wanted, reader: CallReader
 
 def _with_times(tables: Tables, calls: Calls, trip_id: Callable[[int], str]) -> Calls:
     """Fill in missing times and make them run forward; trips without any time are left out."""
+    half = (calls.arrival == NO_TIME) != (calls.departure == NO_TIME)
+    if half.any():
+        fault = "only one of arrival and departure is given; it is taken for both"
+        field = "arrival_time, departure_time"
+        tables.notebook.find_rows("info", FILE, fault, calls.row[half].tolist(), field)
     calls = replace(
         calls,
         arrival=np.where(calls.arrival == NO_TIME, calls.departure, calls.arrival),
@@ -127,7 +136,13 @@ def _with_times(tables: Tables, calls: Calls, trip_id: Callable[[int], str]) -> 
     timed = np.isin(calls.trip, calls.trip[known])
     for trip in np.unique(calls.trip[~timed]).tolist():
         tables.notebook.leave_out("trip", trip_id(trip), "no time at any stop")
-    return _forward(tables, _interpolated(calls.where(timed)))
+    calls = calls.where(timed)
+    starts, ends = calls.bounds()
+    at_ends = np.unique(np.concatenate([starts, ends - 1]))
+    missing = calls.row[at_ends[calls.arrival[at_ends] == NO_TIME]]
+    fault = "trip has no time at its first or last stop; the nearest one known is taken"
+    tables.notebook.find_rows("warning", FILE, fault, missing.tolist(), "arrival_time")
+    return _forward(tables, _interpolated(calls))
 
 
 def _interpolated(calls: Calls) -> Calls:

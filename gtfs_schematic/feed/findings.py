@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections import Counter
+from collections.abc import Sequence
 
 from gtfs_schematic.feed.model import Finding, LeftOut, Severity
 
@@ -43,6 +44,14 @@ class Notebook:
             self._findings.append(
                 Finding(severity, self.prefix + file, message, row=row, field=field, value=value)
             )
+
+    def find_rows(
+        self, severity: Severity, file: str, message: str, rows: Sequence[int], field: str
+    ) -> None:
+        """Note one kind of finding in many rows, in order."""
+        for row in rows[:_LISTED]:
+            self.find(severity, file, message, row=row, field=field)
+        self._count[severity, file, message, field] += max(0, len(rows) - _LISTED)
 
     def leave_out(self, kind: str, ident: str, reason: str) -> None:
         """Note that something of the feed is not shown; the first reason given stands."""

@@ -150,8 +150,11 @@ def test_bad_calendar_rows_are_found_and_the_others_count(read_town, table):
     timetable = read_town({"calendar.txt": text, "calendar_dates.txt": extra})
     assert [(f.file, f.row, f.field, f.value) for f in timetable.findings] == [
         ("calendar.txt", 4, "monday", "yes"),
+        ("calendar.txt", 4, "service_id", "sa"),
+        ("calendar.txt", 5, "service_id", "wk"),
         ("calendar.txt", 5, "start_date", "2026-03-02"),
         ("calendar.txt", 6, "end_date", "20260302"),
+        ("calendar.txt", 6, "service_id", "wk"),
         ("calendar_dates.txt", 2, "exception_type", "3"),
         ("calendar_dates.txt", 3, "date", "tomorrow"),
     ]
@@ -167,7 +170,9 @@ def test_dates_at_the_ends_of_time_do_no_harm(read_town, table):
     assert (timetable.info.start_date, timetable.info.end_date) == ("0001-01-01", "9999-12-31")
     assert timetable.info.service_date == "2026-03-02"
     assert [(f.severity, f.row, f.field) for f in timetable.findings] == [
-        ("warning", 6, "end_date")
+        *(("warning", row, "service_id") for row in (4, 5)),
+        ("warning", 6, "end_date"),
+        ("warning", 6, "service_id"),
     ]
 
 
