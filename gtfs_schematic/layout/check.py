@@ -264,12 +264,17 @@ def _ways(layout: Layout, edges: tuple[_Edge, ...]) -> nx.Graph:
 def _converge(ways: nx.Graph, a: _Edge, b: _Edge, wanted: float) -> bool:
     """Whether two links belong to one bend or branching: a short way along the drawing joins them.
 
-    At an angle of 45 degrees a gap of `wanted` opens after 2.5 times that length of way.
+    Two links that leave a point at 45 degrees are `wanted` apart only where the way between them is
+    longer than `wanted` / sin 22.5°: of all triangles over that side with 45 degrees opposite, the
+    one with equal legs has the longest way.
     """
     ends = [n for x, y, d in ways.edges(data="edge") if d == a.id for n in (x, y)]
     others = {n for x, y, d in ways.edges(data="edge") if d == b.id for n in (x, y)}
     reached = nx.multi_source_dijkstra_path_length(
-        ways, {a.start, a.end, *ends}, cutoff=2.5 * wanted, weight="length"
+        ways,
+        {a.start, a.end, *ends},
+        cutoff=wanted / math.sin(math.pi / 8) + _TOLERANCE_MM,
+        weight="length",
     )
     return bool(({b.start, b.end} | others) & set(reached))
 
