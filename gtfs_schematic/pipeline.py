@@ -12,7 +12,7 @@ from __future__ import annotations
 
 import os
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import Path
 
 from gtfs_schematic.bundles import check as bundles_check
@@ -38,7 +38,7 @@ from gtfs_schematic.drift.report import to_csv
 from gtfs_schematic.drift.report import to_json as drift_to_json
 from gtfs_schematic.drift.timing import timing_of
 from gtfs_schematic.edition import check as edition_check
-from gtfs_schematic.edition.make import edition_of
+from gtfs_schematic.edition.make import edition_of, stop_codes_of
 from gtfs_schematic.edition.model import Edition
 from gtfs_schematic.edition.save import to_json as edition_to_json
 from gtfs_schematic.errors import InternalFaultError
@@ -134,7 +134,11 @@ def finish(
 
     progress.phase("measuring the drift")
     timing = timing_of(timetable, network)
-    edition = edition_of(labelled, sheet_title(network, settings.drawing), timing)
+    codes = stop_codes_of(timetable, network)
+    edition = replace(
+        edition_of(labelled, sheet_title(network, settings.drawing), timing, codes),
+        settings=settings.model_dump(mode="json", exclude_defaults=True),
+    )
     _must_be_sound("edition", edition_check.faults(edition))
     drift = measure_edition(edition, settings.drift)
     _must_be_sound("drift", drift_check.faults(drift))

@@ -3,14 +3,17 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
-from gtfs_schematic.config import Settings
+from gtfs_schematic.config import Settings, settings_of
 from gtfs_schematic.drawing.sheet import candidate_frames
-from gtfs_schematic.edition.carry import with_carried_ids
+from gtfs_schematic.edition.carry import carried_matches, with_carried_ids
+from gtfs_schematic.edition.change_list import to_pdf
 from gtfs_schematic.edition.change_page import to_html
+from gtfs_schematic.edition.change_pictures import Sheets
 from gtfs_schematic.edition.changes import ChangeSheet, change_sheet, to_csv, to_json
 from gtfs_schematic.edition.identity import Matches, match_edition
+from gtfs_schematic.edition.make import stop_codes_of
 from gtfs_schematic.edition.model import Edition
 from gtfs_schematic.layout.model import Layout, SheetFrame
 from gtfs_schematic.layout.revise import revise_layout
@@ -33,6 +36,7 @@ class Revision:
 
     result: Result
     matches: Matches
+    """By the ids of the new edition."""
     sheet: ChangeSheet
     anew: bool
     """Whether what is new found no room, so that the whole diagram was laid out anew."""
@@ -43,6 +47,7 @@ def revise(
     paths: StrPath | Sequence[StrPath],
     settings: Settings | None = None,
     *,
+    sha256: str = "",
     progress: Progress = Silent(),  # noqa: B008 - it has no state
 ) -> Revision:
     """Draw feeds as the edition after another.
@@ -57,7 +62,9 @@ def revise(
     paths
         The new feed; several are drawn as one network.
     settings
-        What each room is told; None for the defaults.
+        What each room is told; None for what the edition was drawn with.
+    sha256
+        Of the earlier edition's file, for the new one to name.
     progress
         Who listens to what is going on.
 
@@ -66,15 +73,18 @@ def revise(
     SchematicError
         If the feed cannot be used, or the layout cannot meet what was asked.
     """
-    settings = settings or Settings()
+    if settings is None:
+        settings = settings_of(before.settings, "settings of the edition")
     timetable, network = inspect(paths, settings, progress=progress)
-    matches = match_edition(before, network)
-    network = with_carried_ids(network, before, matches)
+    found = match_edition(before, network, stop_codes_of(timetable, network))
+    matches = carried_matches(network, before, found)
+    network = with_carried_ids(network, before, found)
     layout = _layout(before, network, settings, progress)
     if layout is None:
         progress.note("what is new finds no room beside what stands; laying out anew")
     labelled = labelled_from(layout, network, settings, _sides(before), progress)
     result = finish(timetable, labelled, settings, progress)
+    result = replace(result, edition=replace(result.edition, previous=sha256))
     sheet = change_sheet(before, result.edition, matches)
     return Revision(result, matches, sheet, layout is None)
 
@@ -84,11 +94,12 @@ def files_of_revision(
 ) -> dict[str, bytes]:
     """Give the files of the new edition and of its change sheet by name."""
     files = files_of(revision.result)
-    pages = (before, diagram_before), (revision.result.edition, files["diagram.svg"])
+    sheets = Sheets(before, diagram_before, revision.result.edition, files["diagram.svg"])
     return files | {
         "changes.json": to_json(revision.sheet),
         "changes.csv": to_csv(revision.sheet),
-        "changes.html": to_html(revision.sheet, *pages),
+        "changes.html": to_html(revision.sheet, sheets),
+        "changes.pdf": to_pdf(revision.sheet),
     }
 
 

@@ -65,7 +65,9 @@ _FEED_OPTIONS = (
     click.option(
         "--agency", multiple=True, metavar="NAME", help="Keep this agency only; repeatable."
     ),
-    click.option("--route", multiple=True, metavar="NAME", help="Keep this route only; repeatable."),
+    click.option(
+        "--route", multiple=True, metavar="NAME", help="Keep this route only; repeatable."
+    ),
     click.option(
         "--without-route", multiple=True, metavar="NAME", help="Leave this route out; repeatable."
     ),
@@ -129,21 +131,23 @@ def write_file(path: Path, data: bytes) -> None:
         ) from error
 
 
-def settings_from(given: Mapping[str, Any]) -> Settings:
+def settings_from(given: Mapping[str, Any], base: Mapping[str, Any] | None = None) -> Settings:
     """Give the settings of a configuration file and the options that win over it.
 
     Parameters
     ----------
     given
         The command's options by name; those that are None or empty were not given.
+    base
+        Settings that hold where no configuration is given, as nested tables.
     """
-    from gtfs_schematic.config import Settings, settings_from_toml, with_values
+    from gtfs_schematic.config import settings_from_toml, settings_of, with_values
 
     config = given.get("config")
     settings = (
         settings_from_toml(read_bytes(config, "configuration"), str(config))
         if config is not None
-        else Settings()
+        else settings_of(base or {}, "settings of the edition")
     )
     values = {
         SETTINGS[name]: value

@@ -46,24 +46,30 @@ def revise(
     """Redraw EDITION from FEED, a new timetable, and write what differs.
 
     What both have keeps its id and its place on the sheet; only what is new finds one. Beside the
-    files of draw, the folder gets changes.html, changes.csv and changes.json. Give the same options
-    and configuration as for EDITION.
+    files of draw, the folder gets changes.html, changes.pdf, changes.csv and changes.json. What was
+    set for EDITION holds again; options win over it, and a configuration takes its place.
     """
-    settings = options.settings_from(given)
-    from gtfs_schematic.edition.folder import check_target, load_edition, write_folder
+    from gtfs_schematic.edition.folder import (
+        check_target,
+        digest_of_edition,
+        load_edition,
+        write_folder,
+    )
     from gtfs_schematic.errors import UsageError
 
     if out.resolve() == (edition if edition.is_dir() else edition.parent).resolve():
         raise UsageError(f"{out} is the edition that is revised. Name another folder with --out.")
     check_target(out, overwrite=given["overwrite"])
     before = load_edition(edition)
+    settings = options.settings_from(given, before.settings)
     folder = edition if edition.is_dir() else edition.parent
     diagram = options.read_bytes(folder / "diagram.svg", "diagram of the edition")
     from gtfs_schematic.revision import files_of_revision
     from gtfs_schematic.revision import revise as run
 
     with listening(quiet=given["quiet"]) as progress:
-        revision = run(before, feeds, settings, progress=progress)
+        sha256 = digest_of_edition(edition)
+        revision = run(before, feeds, settings, sha256=sha256, progress=progress)
         progress.phase("writing files")
         files = files_of_revision(revision, before, diagram)
     write_folder(out, files, overwrite=given["overwrite"])
@@ -77,7 +83,7 @@ def revise(
 def describe(revision: Revision, out: Path) -> list[str]:
     """Write what changed, for people."""
     sheet, result = revision.sheet, revision.result
-    rows = [f"{c.subject} {c.kind}: {c.name} ({c.id})" for c in sheet.changes]
+    rows = [f"{c.subject} {c.kind}: {c.name} ({c.id})" for c in sheet.large]
     missing = result.labelled.unplaced
     return [
         f"{result.edition.title}, {result.drawing.width_mm:g} × {result.drawing.height_mm:g} mm",

@@ -6,7 +6,8 @@ from collections.abc import Collection, Mapping
 from dataclasses import replace
 
 from gtfs_schematic.edition.identity import Match, Matches
-from gtfs_schematic.edition.model import Edition
+from gtfs_schematic.edition.model import Edition, EditionLine
+from gtfs_schematic.edition.roster import Roster
 from gtfs_schematic.network.links import link_id
 from gtfs_schematic.network.model import Line, Link, Network, Station, Walk
 from gtfs_schematic.network.smooth import corridors_of
@@ -16,12 +17,11 @@ from gtfs_schematic.network.transfers import walk_id
 def with_carried_ids(network: Network, edition: Edition, matches: Matches) -> Network:
     """Rename stations and lines to the ids that they have in the edition.
 
-    A new station or line whose id the edition uses for another gets a mark at its end.
+    A new station or line whose id the edition uses for another gets a mark at its end. A line
+    whose color this program chose keeps the one that riders know.
     """
-    stations = _renaming(
-        [s.id for s in network.stations], matches.stations, {s.id for s in edition.stations}
-    )
-    lines = _renaming([k.id for k in network.lines], matches.lines, {k.id for k in edition.lines})
+    stations, lines = names_of(network, edition, matches)
+    known = {line.id: line for line in edition.lines}
     links = _links(network, stations, lines)
     walks = _walks(network, stations)
     groups: dict[str, str] = {}
@@ -36,8 +36,78 @@ def with_carried_ids(network: Network, edition: Edition, matches: Matches) -> Ne
         stations=renamed,
         links=links,
         walks=walks,
-        lines=tuple(sorted((_line(k, stations, lines) for k in network.lines), key=_id)),
+        lines=tuple(
+            sorted((_colored(_line(k, stations, lines), known) for k in network.lines), key=_id)
+        ),
         corridors=corridors_of(renamed, links),
+    )
+
+
+def names_of(
+    later: Network | Roster, earlier: Edition | Roster, matches: Matches
+) -> tuple[dict[str, str], dict[str, str]]:
+    """Give the ids to be carried: per id of now, of stations and of lines."""
+    return (
+        _renaming(
+            [s.id for s in later.stations], matches.stations, {s.id for s in earlier.stations}
+        ),
+        _renaming([k.id for k in later.lines], matches.lines, {k.id for k in earlier.lines}),
+    )
+
+
+def carried_matches(
+    later: Network | Roster, earlier: Edition | Roster, matches: Matches
+) -> Matches:
+    """Give matches by the ids that the later things have once they are carried."""
+    stations, lines = names_of(later, earlier, matches)
+
+    def parts(some: tuple[Match, ...], names: Mapping[str, str]) -> tuple[Match, ...]:
+        return tuple(replace(match, new_id=names[match.new_id]) for match in some)
+
+    return replace(
+        matches,
+        stations={m.new_id: m for m in parts(tuple(matches.stations.values()), stations)},
+        lines={m.new_id: m for m in parts(tuple(matches.lines.values()), lines)},
+        merged_stations=parts(matches.merged_stations, stations),
+        split_stations=parts(matches.split_stations, stations),
+        merged_lines=parts(matches.merged_lines, lines),
+        split_lines=parts(matches.split_lines, lines),
+    )
+
+
+def carried_roster(later: Roster, earlier: Roster, matches: Matches) -> Roster:
+    """Rename the stations and lines of a roster as `with_carried_ids` does those of a network."""
+    stations, lines = names_of(later, earlier, matches)
+
+    def ids(names: Mapping[str, str], some: tuple[str, ...]) -> tuple[str, ...]:
+        return tuple(names[key] for key in some)
+
+    return replace(
+        later,
+        stations=tuple(
+            sorted(
+                (
+                    replace(s, id=stations[s.id], lines=tuple(sorted(ids(lines, s.lines))))
+                    for s in later.stations
+                ),
+                key=lambda s: s.id,
+            )
+        ),
+        lines=tuple(
+            sorted(
+                (
+                    replace(
+                        k,
+                        id=lines[k.id],
+                        itineraries=tuple(ids(stations, i) for i in k.itineraries),
+                    )
+                    for k in later.lines
+                ),
+                key=lambda k: k.id,
+            )
+        ),
+        links=tuple((stations[a], stations[b], ids(lines, on)) for a, b, on in later.links),
+        walks=tuple((stations[a], stations[b], time) for a, b, time in later.walks),
     )
 
 
@@ -87,6 +157,13 @@ def _line(line: Line, stations: Mapping[str, str], lines: Mapping[str, str]) -> 
         one_way_links=tuple(sorted(pairs)),
         part_service=tuple(sorted(part)),
     )
+
+
+def _colored(line: Line, known: Mapping[str, EditionLine]) -> Line:
+    """Keep the color of the edition where the feed has none, or one that will not do."""
+    if line.color_from_feed or line.id not in known:
+        return line
+    return replace(line, color=known[line.id].color, text_color=known[line.id].text_color)
 
 
 def _links(

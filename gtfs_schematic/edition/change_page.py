@@ -2,96 +2,97 @@
 
 from __future__ import annotations
 
-import base64
+from collections.abc import Iterator, Sequence
 from html import escape
 
-from gtfs_schematic.edition.changes import Change, ChangeSheet
-from gtfs_schematic.edition.model import Edition
+from gtfs_schematic.edition.change_pictures import (
+    Sheets,
+    clippings,
+    definitions,
+    grouped,
+    overlay,
+)
+from gtfs_schematic.edition.change_words import (
+    CAUTION,
+    HEADINGS,
+    KINDS,
+    SIGN_OFF,
+    conclusion,
+    doubts_heading,
+    period,
+    sentence,
+    summary,
+)
+from gtfs_schematic.edition.changes import ChangeSheet
+from gtfs_schematic.edition.differences import Change
 
 _STYLE = """
-body { font: 11pt/1.4 'Noto Sans', sans-serif; color: #1b1f24; margin: 2rem; }
-h1 { font-size: 1.6rem } h2 { font-size: 1.15rem; margin-top: 2rem }
+body { font: 11pt/1.4 'Noto Sans', sans-serif; color: #1b1f24; margin: 2rem auto;
+  max-width: 72rem; padding: 0 1rem }
+h1 { font-size: 1.6rem } h2 { font-size: 1.15rem; margin-top: 2rem } h3 { font-size: 1rem }
 table { border-collapse: collapse; width: 100% }
 th, td { text-align: left; vertical-align: top; padding: .25rem .6rem .25rem 0;
-  border-bottom: 1px solid #cfd4da }
-.pair { display: grid; grid-template-columns: 1fr 1fr; gap: 1rem }
-figure { margin: 0; position: relative } figcaption { font-weight: bold }
-figure svg { position: absolute; left: 0; bottom: 0; width: 100% } figure img { width: 100% }
+  border-bottom: 1px solid #cfd4da; overflow-wrap: anywhere }
+td:last-child, th:last-child { text-align: center; white-space: nowrap }
+.pair { display: grid; grid-template-columns: 1fr 1fr; gap: 1rem; break-inside: avoid }
+figure { margin: 0 } figcaption { font-weight: bold }
+figure svg, .overlay { display: block; width: 100%; height: auto; border: 1px solid #cfd4da;
+  overflow: hidden; background: #fff }
+.store { position: absolute }
+.ring { fill: none; stroke: #d0006f; stroke-width: .8 }
 .box { display: inline-block; width: .9em; height: .9em; border: 1px solid #1b1f24 }
-.line { display: inline-block; min-width: 12em; border-bottom: 1px solid #1b1f24 }
-@media print { body { margin: 1cm } tr { break-inside: avoid } }
+.fill { display: inline-block; min-width: 12em; border-bottom: 1px solid #1b1f24 }
+.verdict { border-left: .3rem solid #1b1f24; padding: .2rem .8rem }
+@media print { body { margin: 0; max-width: none } tr, section.place { break-inside: avoid } }
 """
-
-_HEADINGS = {
-    "line": "Lines",
-    "station": "Stations",
-    "drawing": "Stations that stand elsewhere on the sheet",
-}
+_MOST_PLACES = 14
+"""A change at more stations than this has no clipping of its own: the overlay shows it."""
 
 
-def to_html(
-    sheet: ChangeSheet, before: tuple[Edition, bytes], after: tuple[Edition, bytes]
-) -> bytes:
-    """Write the change sheet as a page.
+def to_html(sheet: ChangeSheet, sheets: Sheets | None = None) -> bytes:
+    """Write the change sheet as a page that needs nothing else.
 
     Parameters
     ----------
     sheet
         What differs.
-    before, after
-        Each edition and its diagram as SVG.
+    sheets
+        Both editions with their diagrams; None where feeds alone are compared.
     """
-    touched = {change.id for change in sheet.changes if change.subject != "line"}
+    title = f"Changes: {sheet.after.title}"
     parts = [
         "<!DOCTYPE html>",
-        (
-            f'<html lang="en"><head><meta charset="utf-8"><title>Changes: {escape(after[0].title)}'
-            f"</title><style>{_STYLE}</style></head><body>"
-        ),
-        f"<h1>Changes: {escape(sheet.before_title)} → {escape(sheet.after_title)}</h1>",
-        f"<p>{_period(before[0])} → {_period(after[0])}. {_summary(sheet)}</p>",
-        *(_table(sheet, subject) for subject in _HEADINGS),
+        '<html lang="en"><head><meta charset="utf-8">',
+        '<meta name="viewport" content="width=device-width,initial-scale=1">',
+        f'<title>{escape(title)}</title><link rel="icon" href="data:,">',
+        f"<style>{_STYLE}</style></head><body>",
+        f"<h1>Changes: {escape(sheet.before.title)} → {escape(sheet.after.title)}</h1>",
+        f"<p>{escape(period(sheet.before))} → {escape(period(sheet.after))}.",
+        f"{escape(summary(sheet))}</p>",
+        *(_table(sheet.large, subject) for subject in HEADINGS),
+        f'<p class="verdict">{escape(conclusion(sheet))}</p>',
         _doubts(sheet),
-        '<h2>Both diagrams</h2><p>Rings mark the stations named above.</p><div class="pair">',
-        _figure("Before", *before, touched),
-        _figure("After", *after, touched),
-        "</div>",
+        *(_pictures(sheet, sheets) if sheets is not None else ()),
+        _small(sheet),
         _checklist(),
-        (
-            "<p>Schematic diagrams, not to scale. This page compares what two feeds say; the "
-            "operator's own publications hold.</p></body></html>"
-        ),
+        f"<p>{escape(CAUTION)}</p></body></html>",
     ]
-    return ("\n".join(parts) + "\n").encode()
+    return ("\n".join(part for part in parts if part) + "\n").encode()
 
 
-def _period(edition: Edition) -> str:
-    return escape(f"{edition.feed.start_date}/{edition.feed.end_date}")
-
-
-def _summary(sheet: ChangeSheet) -> str:
-    if not sheet.changes:
-        return f"Nothing changed: all {sheet.kept} stations and all lines are as before."
-    return (
-        f"{len(sheet.changes)} changes. Of {sheet.kept} stations that stay, "
-        f"{sheet.moved_on_sheet} stand elsewhere on the sheet. Nothing else that is compared "
-        "(names, places, colors, ids, calls of stations and lines) changed."
-    )
-
-
-def _table(sheet: ChangeSheet, subject: str) -> str:
-    rows = [change for change in sheet.changes if change.subject == subject]
+def _table(changes: Sequence[Change], subject: str) -> str:
+    rows = [change for change in changes if change.subject == subject]
     if not rows:
         return ""
-    body = "".join(_row(change) for change in rows)
+    body = "".join(map(_row, rows))
     return (
-        f"<h2>{_HEADINGS[subject]}</h2><table><thead><tr><th>What</th><th>Name</th><th>Id</th>"
+        f"<h2>{HEADINGS[subject]}</h2><table><thead><tr><th>What</th><th>Name</th><th>Id</th>"
         f"<th>Before</th><th>After</th><th>Checked</th></tr></thead><tbody>{body}</tbody></table>"
     )
 
 
 def _row(change: Change) -> str:
-    cells = (change.kind, change.name, change.id, change.before, change.after)
+    cells = (KINDS[change.kind], change.name, change.id, change.before, change.after)
     texts = "".join(f"<td>{escape(cell)}</td>" for cell in cells)
     return f'<tr>{texts}<td><span class="box"></span></td></tr>'
 
@@ -100,31 +101,34 @@ def _doubts(sheet: ChangeSheet) -> str:
     if not sheet.doubtful:
         return ""
     items = "".join(f"<li>{escape(doubt)}</li>" for doubt in sheet.doubtful)
-    return f"<h2>Matches to look at</h2><ul>{items}</ul>"
+    return f"<h2>{escape(doubts_heading(sheet))}</h2><ul>{items}</ul>"
 
 
-def _figure(caption: str, edition: Edition, svg: bytes, touched: set[str]) -> str:
-    """Show a diagram as an image, with rings over the stations that a change concerns."""
-    rings = "".join(
-        f'<circle cx="{s.x_mm:g}" cy="{s.y_mm:g}" r="5"/>'
-        for s in edition.stations
-        if s.id in touched
-    )
-    size = f"0 0 {edition.width_mm:g} {edition.height_mm:g}"
-    source = base64.b64encode(svg).decode()
-    return (
-        f"<figure><figcaption>{caption}</figcaption>"
-        f'<img alt="{escape(edition.title)}" src="data:image/svg+xml;base64,{source}">'
-        f'<svg viewBox="{size}" aria-hidden="true"><g fill="none" stroke="#d0006f" '
-        f'stroke-width="1">{rings}</g></svg></figure>'
-    )
+def _pictures(sheet: ChangeSheet, sheets: Sheets) -> Iterator[str]:
+    yield definitions(sheets)
+    yield "<h2>Both editions over each other</h2>"
+    yield overlay(sheets)
+    texts = {sentence(change): change.places for change in sheet.large}
+    groups = grouped(texts, _MOST_PLACES)
+    if groups:
+        yield "<h2>Where it is to be seen</h2><p>Rings mark the stations that are meant.</p>"
+    for things, places in groups:
+        told = "".join(f"<li>{escape(thing)}</li>" for thing in things)
+        pair = clippings(sheets, places)
+        yield f'<section class="place"><ul>{told}</ul>{pair}</section>'
+
+
+def _small(sheet: ChangeSheet) -> str:
+    if not sheet.small:
+        return ""
+    items = "".join(f"<li>{escape(sentence(change))}</li>" for change in sheet.small)
+    return f"<h2>Below the limits</h2><ul>{items}</ul>"
 
 
 def _checklist() -> str:
-    roles = ("Planning", "Customer information", "Accessibility", "Approved for print")
     rows = "".join(
-        f'<tr><td><span class="box"></span> {role}</td><td>Name <span class="line"></span></td>'
-        '<td>Date <span class="line"></span></td></tr>'
-        for role in roles
+        f'<tr><td><span class="box"></span> {role}</td><td>Name <span class="fill"></span></td>'
+        '<td>Date <span class="fill"></span></td></tr>'
+        for role in SIGN_OFF
     )
     return f"<h2>Sign-off</h2><table><tbody>{rows}</tbody></table>"

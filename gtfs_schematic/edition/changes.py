@@ -1,84 +1,139 @@
-"""The change sheet's facts: what differs between an edition and the one after it."""
+"""The change sheet's facts: what differs between an edition, or a feed, and the one after it."""
 
 from __future__ import annotations
 
 import csv
 import io
 import json
-import math
 from collections.abc import Iterator
-from dataclasses import asdict, dataclass
+from dataclasses import asdict, dataclass, replace
 
+from gtfs_schematic.edition import changes_check
+from gtfs_schematic.edition.differences import Change, ChangeLimits
 from gtfs_schematic.edition.identity import Matches
-from gtfs_schematic.edition.model import Edition, EditionLine, EditionStation
+from gtfs_schematic.edition.line_changes import line_changes
+from gtfs_schematic.edition.model import Edition
+from gtfs_schematic.edition.roster import Roster, roster_of_edition
+from gtfs_schematic.edition.station_changes import station_changes, walk_changes
+from gtfs_schematic.errors import InternalFaultError
 
-_MOVED_M = 25.0
-"""A station that moved less on the ground has not moved (common practice, no source)."""
-_METRES_PER_DEGREE = 111_195.0
+COMPARED = (
+    "names, stops and their codes, places, access and calling lines of stations; names, colors, "
+    "routes, courses and times of lines; walks"
+)
+"""What "nothing else" means."""
 
 
 @dataclass(frozen=True, slots=True)
-class Change:
-    """One thing that differs; `subject` is "line", "station" or "drawing"."""
+class Side:
+    """The earlier or the later of what is compared."""
 
-    subject: str
-    kind: str
-    """new, gone, renamed, recolored, renumbered, rerouted, moved, "lines changed", "drawn anew"."""
-    id: str
-    name: str
-    before: str = ""
-    after: str = ""
+    title: str
+    sha256: str
+    """Of the feed."""
+    start_date: str
+    end_date: str
+    service_date: str
 
 
 @dataclass(frozen=True, slots=True)
 class ChangeSheet:
-    """All differences of two editions whose ids are carried over, and what to look at."""
+    """All differences of two rosters in which the same ids are the same things."""
 
-    before_title: str
-    after_title: str
-    before_sha256: str
-    """Hash of the earlier edition's feed; likewise of the later."""
-    after_sha256: str
+    before: Side
+    after: Side
+    limits: ChangeLimits
     changes: tuple[Change, ...]
+    """Of lines, stations and walks; and of the drawing, where two are compared."""
     doubtful: tuple[str, ...]
+    """Matches that a person should look at."""
+    not_compared: tuple[str, ...]
+    """What the earlier edition does not say."""
     kept: int
-    """Stations of both editions."""
+    """Stations of both."""
     moved_on_sheet: int
     """How many of them stand elsewhere on the sheet."""
 
+    @property
+    def large(self) -> tuple[Change, ...]:
+        """The changes that do not stay below the limits."""
+        return tuple(change for change in self.changes if not change.small)
 
-def change_sheet(before: Edition, after: Edition, matches: Matches) -> ChangeSheet:
-    """Compare two editions; the later has the ids of the earlier where things are the same."""
-    old = {station.id: station for station in before.stations}
-    new = {station.id: station for station in after.stations}
-    kept = sorted(set(old) & set(new))
-    changes = [*_lines(before, after), *_stations(old, new)]
-    moved = [s for s in kept if (old[s].x_mm, old[s].y_mm) != (new[s].x_mm, new[s].y_mm)]
-    changes += [
-        Change(
-            "drawing", "drawn anew", s, new[s].name,
-            f"{old[s].x_mm:g}, {old[s].y_mm:g} mm", f"{new[s].x_mm:g}, {new[s].y_mm:g} mm",
+    @property
+    def small(self) -> tuple[Change, ...]:
+        """The changes that do."""
+        return tuple(change for change in self.changes if change.small)
+
+
+def change_sheet(
+    before: Edition, after: Edition, matches: Matches, limits: ChangeLimits | None = None
+) -> ChangeSheet:
+    """Compare two editions; the later has the ids of the earlier where things are the same.
+
+    Parameters
+    ----------
+    before, after
+        The editions.
+    matches
+        By the ids of the later edition (`carry.carried_matches`).
+    limits
+        What is small.
+    """
+    sheet = roster_changes(roster_of_edition(before), roster_of_edition(after), matches, limits)
+    drawn = tuple(_drawn(before, after))
+    return replace(sheet, changes=(*sheet.changes, *drawn), moved_on_sheet=len(drawn))
+
+
+def roster_changes(
+    old: Roster, new: Roster, matches: Matches, limits: ChangeLimits | None = None
+) -> ChangeSheet:
+    """Compare two rosters in which the same ids are the same things.
+
+    Raises
+    ------
+    InternalFaultError
+        If the sheet does not tell everything that differs: a defect of this program.
+    """
+    limits = limits or ChangeLimits()
+    stations = {m.old_id: m.new_id for m in matches.merged_stations}
+    stations |= {m.new_id: m.old_id for m in matches.split_stations}
+    lines = {m.old_id: m.new_id for m in matches.merged_lines}
+    lines |= {m.new_id: m.old_id for m in matches.split_lines}
+    changes = (
+        *line_changes((old, new), lines, stations, limits),
+        *station_changes(old, new, stations, limits),
+        *walk_changes(old, new),
+    )
+    found = changes_check.faults(changes, old, new, stations)
+    if found:
+        raise InternalFaultError(
+            "The change sheet does not tell all that differs, or tells what does not, so it was "
+            f"not written. This is a defect of the program: please report it. {found[0]}"
         )
-        for s in moved
-    ]  # fmt: skip
+    service = any(not line.mode for line in old.lines)
     return ChangeSheet(
-        before.title,
-        after.title,
-        before.feed.sha256,
-        after.feed.sha256,
-        tuple(changes),
-        tuple(
-            f"{match.new_id} is taken for {match.old_id} ({match.confidence:.0%}): {match.reason}"
-            for match in matches.doubtful
-        ),
-        len(kept),
-        len(moved),
+        _side(old),
+        _side(new),
+        limits,
+        changes,
+        tuple(_doubts(old, new, matches)),
+        ("modes, long names and times of lines, which the earlier edition does not hold",)
+        if service
+        else (),
+        len(set(old.station) & set(new.station)),
+        0,
     )
 
 
 def to_json(sheet: ChangeSheet) -> bytes:
-    """Write a change sheet for machines."""
-    document = {"format": "gtfs-schematic/changes", "version": 1, **asdict(sheet)}
+    """Write a change sheet as the schema `changes.schema.json` says."""
+    document = {
+        "format": "gtfs-schematic/changes",
+        "version": 1,
+        **asdict(sheet),
+        "nothing_else_changed": not sheet.small and not sheet.not_compared,
+        "compared": COMPARED,
+    }
     return (json.dumps(document, ensure_ascii=False, indent=1) + "\n").encode()
 
 
@@ -86,78 +141,43 @@ def to_csv(sheet: ChangeSheet) -> bytes:
     """Write one row a change."""
     text = io.StringIO()
     writer = csv.writer(text, lineterminator="\n")
-    writer.writerow(["subject", "kind", "id", "name", "before", "after"])
-    for change in sheet.changes:
+    writer.writerow(["subject", "kind", "id", "name", "before", "after", "small", "stations"])
+    for c in sheet.changes:
+        small = "yes" if c.small else ""
         writer.writerow(
-            [change.subject, change.kind, change.id, change.name, change.before, change.after]
+            [c.subject, c.kind, c.id, c.name, c.before, c.after, small, " ".join(c.places)]
         )
     return text.getvalue().encode()
 
 
-def _lines(before: Edition, after: Edition) -> Iterator[Change]:
-    old = {line.id: line for line in before.lines}
-    new = {line.id: line for line in after.lines}
-    names = {s.id: s.name for s in (*before.stations, *after.stations)}
-    for key in sorted(set(old) | set(new)):
-        if key not in old:
-            yield Change("line", "new", key, new[key].name, "", _ends(new[key], names))
-        elif key not in new:
-            yield Change("line", "gone", key, old[key].name, _ends(old[key], names), "")
-        else:
-            yield from _line(old[key], new[key], names)
+def _side(roster: Roster) -> Side:
+    return Side(
+        roster.title, roster.sha256, roster.start_date, roster.end_date, roster.service_date
+    )
 
 
-def _line(old: EditionLine, new: EditionLine, names: dict[str, str]) -> Iterator[Change]:
-    if old.name != new.name:
-        yield Change("line", "renamed", new.id, new.name, old.name, new.name)
-    if old.color != new.color:
-        yield Change("line", "recolored", new.id, new.name, old.color, new.color)
-    if set(old.route_ids) != set(new.route_ids):
-        yield Change(
-            "line", "renumbered", new.id, new.name, " ".join(old.route_ids), " ".join(new.route_ids)
+def _doubts(old: Roster, new: Roster, matches: Matches) -> Iterator[str]:
+    names = [
+        {s.id: s.name for s in roster.stations} | {k.id: k.name for k in roster.lines}
+        for roster in (old, new)
+    ]
+    parts = {*matches.merged_stations, *matches.split_stations}
+    parts |= {*matches.merged_lines, *matches.split_lines}
+    for match in matches.doubtful:
+        verb = "has become part of, or been part of," if match in parts else "is now"
+        yield (
+            f"{names[0].get(match.old_id, match.old_id)} ({match.old_id}) {verb} "
+            f"{names[1].get(match.new_id, match.new_id)} ({match.new_id}), {match.confidence:.0%} "
+            f"sure: {match.reason}"
         )
-    called = {s for course in old.itineraries for s in course}
-    calls = {s for course in new.itineraries for s in course}
-    if called != calls:
-        yield Change(
-            "line", "rerouted", new.id, new.name,
-            "no longer at " + _listed(called - calls, names) if called - calls else "",
-            "now at " + _listed(calls - called, names) if calls - called else "",
-        )  # fmt: skip
+    yield from matches.unknown
 
 
-def _stations(old: dict[str, EditionStation], new: dict[str, EditionStation]) -> Iterator[Change]:
-    for key in sorted(set(old) | set(new)):
-        if key not in old:
-            yield Change("station", "new", key, new[key].name, "", " ".join(new[key].lines))
-        elif key not in new:
-            yield Change("station", "gone", key, old[key].name, " ".join(old[key].lines), "")
-        else:
-            yield from _station(old[key], new[key])
-
-
-def _station(old: EditionStation, new: EditionStation) -> Iterator[Change]:
-    if old.name != new.name:
-        yield Change("station", "renamed", new.id, new.name, old.name, new.name)
-    if set(old.stop_ids) != set(new.stop_ids):
-        yield Change(
-            "station", "renumbered", new.id, new.name,
-            " ".join(old.stop_ids), " ".join(new.stop_ids),
-        )  # fmt: skip
-    shrink = math.cos(math.radians(old.lat))
-    away = _METRES_PER_DEGREE * math.hypot((new.lon - old.lon) * shrink, new.lat - old.lat)
-    if away >= _MOVED_M:
-        yield Change("station", "moved", new.id, new.name, "", f"{away:.0f} m on the ground")
-    if set(old.lines) != set(new.lines):
-        yield Change(
-            "station", "lines changed", new.id, new.name, " ".join(old.lines), " ".join(new.lines)
-        )
-
-
-def _ends(line: EditionLine, names: dict[str, str]) -> str:
-    first = line.itineraries[0] if line.itineraries else ()
-    return f"{names[first[0]]} – {names[first[-1]]}" if first else ""
-
-
-def _listed(stations: set[str], names: dict[str, str]) -> str:
-    return ", ".join(sorted(names.get(s, s) for s in stations))
+def _drawn(before: Edition, after: Edition) -> Iterator[Change]:
+    """Tell which stations of both stand elsewhere on the sheet."""
+    old = {s.id: s for s in before.stations}
+    for s in after.stations:
+        was = old.get(s.id)
+        if was is not None and (was.x_mm, was.y_mm) != (s.x_mm, s.y_mm):
+            there, here = (f"{each.x_mm:g}, {each.y_mm:g} mm" for each in (was, s))
+            yield Change("drawing", "drawn anew", s.id, s.name, there, here, (s.id,))

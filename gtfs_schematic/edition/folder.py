@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import contextlib
+import hashlib
 import os
 import shutil
 import tempfile
@@ -28,7 +29,7 @@ FILES = (
 )
 """What an edition's folder holds."""
 
-FILES_IF_WANTED = ("diagram.png", "changes.html", "changes.csv", "changes.json")
+FILES_IF_WANTED = ("diagram.png", "changes.html", "changes.pdf", "changes.csv", "changes.json")
 """What it may hold beside, and nothing else."""
 
 
@@ -131,6 +132,25 @@ def load_edition(path: StrPath) -> Edition:
         return from_json(data)
     except EditionError as error:
         raise EditionError(f"{file}: {str(error).removeprefix('edition.json: ')}") from error
+
+
+def digest_of_edition(path: StrPath) -> str:
+    """Give the SHA-256 of an edition's `edition.json`, by which the next names it.
+
+    Raises
+    ------
+    EditionError
+        If it cannot be read.
+    """
+    file = Path(path)
+    if file.is_dir():
+        file /= EDITION_FILE
+    try:
+        return hashlib.sha256(file.read_bytes()).hexdigest()
+    except OSError as error:
+        raise EditionError(
+            f"{file}: cannot read the edition ({error.strerror or error})."
+        ) from error
 
 
 def _is_edition(folder: Path) -> bool:
