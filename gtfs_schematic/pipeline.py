@@ -265,10 +265,14 @@ def labelled_from(
     bundled = bundle(layout, settings.bundles, progress=progress)
     _must_be_sound("bundles", bundles_check.faults(bundled))
     kept = {key: side for key, side in sides.items() if key in network.station}
-    asked = LabelSettings.model_validate(
-        settings.labels.model_dump() | {"sides": kept | settings.labels.sides}
-    )
-    labelled = place_labels(bundled, asked, progress=progress)
+    # Without any wish names fall as they did, if nothing near them changed: to the letter.
+    labelled = place_labels(bundled, settings.labels, progress=progress)
+    fallen = {key: labelled.labels[key].side for key in kept if key in labelled.labels}
+    if fallen != kept:
+        asked = LabelSettings.model_validate(
+            settings.labels.model_dump() | {"sides": kept | settings.labels.sides}
+        )
+        labelled = place_labels(bundled, asked, progress=progress)
     _must_be_sound("labels", labels_check.faults(labelled))
     return labelled
 
