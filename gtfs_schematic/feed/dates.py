@@ -27,6 +27,8 @@ are out, and the first of the morning are not (common practice, no source). Feed
 a date's morning, or after its evening, past 24:00."""
 EVER = (-(10**9), 10**9)
 _RARE = 0.2
+_VERY_RARE = 0.05
+_FEW, _MANY = 3, 10
 _NEARLY = 0.98
 _POOR = 0.5
 _WEEKDAYS = ("Monday", "Tuesday", "Wednesday", "Thursday", "Friday", "Saturday", "Sunday")
@@ -80,12 +82,13 @@ def choose_dates(feeds: Sequence[Validity], wanted: str) -> Choice:
 
     Notes
     -----
-    Of several feeds only dates count on which most of them run. A typical Saturday is found so:
-    of the Saturdays with at least half the trips of the busiest, it is the earliest that has as
-    many trips as possible while at least a fifth of them have nearly (98 %) as many or more. So
-    neither a holiday nor an event nor a period of thin service is typical, but term time is. A
-    typical weekday is found likewise among Mondays to Fridays; without any, the busiest date is
-    taken. The shares are our own choice.
+    Of several feeds only dates count on which most of them run. A typical Saturday is found so: the
+    number of trips is wanted that is as high as possible and yet usual, which it is if nearly
+    (98 %) as many or more run on a fifth of the Saturdays with at least half as many, on a
+    twentieth of all Saturdays (or ten), and on three (half of them, if there are fewer than six).
+    The earliest Saturday with that number is taken. So neither a holiday nor an event nor a period
+    of thin service is typical, but term time is. A typical weekday is found likewise among Mondays
+    to Fridays; without any, the busiest date is taken. The shares are our own choice.
     """
     if wanted == "busiest":
         return _busiest(feeds, "")
@@ -165,8 +168,7 @@ def _typical(feeds: Sequence[Validity], wanted: str) -> Choice:
             f"No trip runs on a {name.split()[-1]} {span}. The first date with service is "
             f"{nights[0]}; give a date, or {DEFAULT}."
         )
-    worthy = sorted(n for n in totals.values() if n >= _POOR * max(totals.values()))
-    usual = max(n for n in worthy if sum(m >= _NEARLY * n for m in worthy) >= _RARE * len(worthy))
+    usual = _usual(list(totals.values()))
     date = min(date for date, total in totals.items() if total == usual)
     alike = sum(_NEARLY * usual <= n <= usual / _NEARLY for n in totals.values())
     kind = "dates from Monday to Friday" if wanted == DEFAULT else f"{_WEEKDAYS[date.weekday()]}s"
@@ -177,6 +179,17 @@ def _typical(feeds: Sequence[Validity], wanted: str) -> Choice:
         f"{_spoken(date)} is the busiest {name}: it has {usual:,} trips, and of the "
         f"{len(totals):,} {kind} with service {span}, {alike:,} have about as many{apart}.",
     )
+
+
+def _usual(totals: Sequence[int]) -> int:
+    """Give the highest number of trips that is not rare; see `choose_dates`."""
+    few = min(_FEW, len(totals) / 2)
+    for total in sorted(set(totals), reverse=True):
+        alike = sum(other >= _NEARLY * total for other in totals)
+        similar = sum(other >= _POOR * total for other in totals)
+        if alike >= max(_RARE * similar, min(_VERY_RARE * len(totals), _MANY), few):
+            return total
+    return max(totals)
 
 
 def _busiest(feeds: Sequence[Validity], before: str) -> Choice:

@@ -7,21 +7,30 @@ from dataclasses import replace
 from itertools import chain
 
 from gtfs_schematic.feed.digest import joint_sha256
+from gtfs_schematic.feed.findings import Notebook
 from gtfs_schematic.feed.model import FeedInfo, Pattern, Timetable, Transfer
 from gtfs_schematic.feed.patterns import pattern_key
 from gtfs_schematic.feed.ways import transfer_key
 
 
-def join_timetables(parts: Sequence[Timetable]) -> Timetable:
-    """Join timetables of one service date; with several, ids get the prefixes "1:", "2:", ….
+def join_timetables(
+    parts: Sequence[tuple[str, Timetable]], unused: Sequence[Notebook]
+) -> Timetable:
+    """Join timetables of the same dates.
 
-    Findings and things left out carry their prefix already.
+    Parameters
+    ----------
+    parts
+        Timetables with the prefix that their ids get; findings and things left out carry it
+        already.
+    unused
+        What is noted of feeds of which nothing is drawn.
     """
-    if len(parts) == 1:
-        return parts[0]
-    prefixed = [_prefixed(part, f"{n}:") for n, part in enumerate(parts, start=1)]
+    if len(parts) == 1 and not parts[0][0]:
+        return parts[0][1]
+    prefixed = [_prefixed(part, prefix) for prefix, part in parts]
     return Timetable(
-        _joint_info([part.info for part in parts]),
+        _joint_info([part.info for _, part in parts]),
         tuple(sorted(chain(*(p.agencies for p in prefixed)), key=lambda item: item.id)),
         tuple(sorted(chain(*(p.stops for p in prefixed)), key=lambda item: item.id)),
         tuple(sorted(chain(*(p.routes for p in prefixed)), key=lambda item: item.id)),
@@ -29,9 +38,12 @@ def join_timetables(parts: Sequence[Timetable]) -> Timetable:
         tuple(sorted(chain(*(p.transfers for p in prefixed)), key=transfer_key)),
         {ident: shape for p in prefixed for ident, shape in p.shapes.items()},
         {ident: days for p in prefixed for ident, days in p.operating_days.items()},
-        tuple(chain(*(p.findings for p in prefixed))),
+        tuple(chain(*(p.findings for p in prefixed), *(notes.findings for notes in unused))),
         tuple(
-            sorted(chain(*(p.left_out for p in prefixed)), key=lambda item: (item.kind, item.id))
+            sorted(
+                chain(*(p.left_out for p in prefixed), *(notes.left_out for notes in unused)),
+                key=lambda item: (item.kind, item.id),
+            )
         ),
     )
 

@@ -18,7 +18,6 @@ from gtfs_schematic.feed.calendars import (
 )
 from gtfs_schematic.feed.dates import EARLY, LATE
 from gtfs_schematic.feed.digest import Digest
-from gtfs_schematic.feed.filters import keep_routes
 from gtfs_schematic.feed.findings import Notebook
 from gtfs_schematic.feed.info import Imprint, read_imprint
 from gtfs_schematic.feed.kernels import Ints
@@ -38,7 +37,6 @@ class Plan:
     digest: Digest
     imprint: Imprint
     agencies: Mapping[str, Agency]
-    all_routes: Mapping[str, Route]
     routes: Mapping[str, Route]
     """Those asked for."""
     trips: Trips
@@ -52,33 +50,62 @@ class Plan:
     validity: Validity
 
 
-def plan_feed(files: FeedFiles, digest: Digest, prefix: str, settings: FeedSettings) -> Plan:
-    """Read what is needed to choose the service date: everything but stops, calls and shapes.
+@dataclass(frozen=True)
+class Draft:
+    """What is known of a feed when only its agencies and routes are read."""
+
+    tables: Tables
+    digest: Digest
+    agencies: Mapping[str, Agency]
+    routes: Mapping[str, Route]
+
+    @property
+    def label(self) -> str:
+        """What to call the feed."""
+        return self.tables.notebook.prefix + self.tables.files.label
+
+
+def draft_feed(files: FeedFiles, digest: Digest, prefix: str) -> Draft:
+    """Read agencies and routes.
 
     Raises
     ------
     FeedError
-        Files or columns are missing, or nothing ever runs.
+        Files or columns are missing.
     """
-    notes = Notebook(prefix)
-    tables = Tables(files, digest.is_utf8, notes)
+    tables = Tables(files, digest.is_utf8, Notebook(prefix))
     check_tables(tables)
     _find_odd_files(tables)
     agencies = read_agencies(tables)
-    routes = read_routes(tables, agencies)
-    trips = read_trips(tables, routes)
-    kept = keep_routes(notes, routes, agencies, settings)
+    return Draft(tables, digest, agencies, read_routes(tables, agencies))
+
+
+def plan_feed(draft: Draft, routes: Mapping[str, Route], settings: FeedSettings) -> Plan:
+    """Read what is needed to choose the service date: everything but stops, calls and shapes.
+
+    Parameters
+    ----------
+    routes
+        Those asked for.
+
+    Raises
+    ------
+    FeedError
+        Nothing ever runs on them.
+    """
+    tables = draft.tables
+    trips = read_trips(tables, draft.routes)
     headways = {
         trips.ids.find_text(ident): rows for ident, rows in read_headways(tables, trips.ids).items()
     }
-    drawn = trips.of_routes(kept)
+    drawn = trips.of_routes(routes)
     counts = _trips_by_service(trips, drawn, headways)
     calendars, imprint = read_calendars(tables), read_imprint(tables)
     find_unknown_services(tables, calendars, trips.service_ids())
-    label = prefix + files.label
-    _check_any(label, kept, counts)
-    validity = validity_of(label, calendars, imprint, counts)
-    _find_empty_validity(notes, validity, imprint)
+    if not counts:
+        raise FeedError(f"{draft.label} has no trip on any of the routes asked for.")
+    validity = validity_of(draft.label, calendars, imprint, counts)
+    _find_empty_validity(tables.notebook, validity, imprint)
     firsts = None
     if settings.date == "night":
         firsts = first_departures(tables, trips)
@@ -88,11 +115,10 @@ def plan_feed(files: FeedFiles, digest: Digest, prefix: str, settings: FeedSetti
         validity = replace(validity, early=early, late=late)
     return Plan(
         tables,
-        digest,
+        draft.digest,
         imprint,
-        agencies,
+        draft.agencies,
         routes,
-        kept,
         trips,
         drawn,
         headways,
@@ -110,13 +136,6 @@ def _trips_by_service(
         weights[trip] *= sum(len(row.departures) for row in rows) or 1
     sums = np.bincount(trips.service, weights, minlength=len(trips.services)).astype(np.int64)
     return {trips.services[n]: int(sums[n]) for n in np.unique(trips.service[drawn]).tolist()}
-
-
-def _check_any(label: str, routes: Mapping[str, Route], counts: Mapping[str, int]) -> None:
-    if not routes:
-        raise FeedError(f"No route of {label} is left by the filters (modes, agencies, routes).")
-    if not counts:
-        raise FeedError(f"{label} has no trip on any of the routes asked for.")
 
 
 def _find_odd_files(tables: Tables) -> None:

@@ -1,11 +1,12 @@
 """Reading one or several feeds: paths become the timetable of one service date.
 
 The page to read first in this room. Each feed goes through: finding its files (archive.py), a
-fingerprint (digest.py), its tables as text (tables.py), routes and trips (routes.py), calendars
-(calendars.py), all of it called by plan.py. Then one service date is chosen for all feeds
-(service.py). Then, per feed, the calls of that date (calls.py) become patterns (patterns.py), and
-what those need is added: stops (stops.py), transfers and shapes (ways.py), names and credits
-(info.py). Several feeds are joined at the end (join.py).
+fingerprint (digest.py), its tables as text (tables.py; large ones in blocks.py), routes (routes.py;
+those asked for, filters.py), trips (trips.py) and calendars (calendars.py, service.py), all of it
+called by plan.py. Then the service dates are chosen for all feeds (dates.py). Then, per feed, the
+calls of those dates (callrows.py, calls.py) become patterns (patterns.py), and what those need is
+added: stops (stops.py; those that lie astray are left out, speeds.py), transfers and shapes
+(ways.py), names and credits (info.py). Several feeds are joined at the end (join.py).
 """
 
 from __future__ import annotations
@@ -29,16 +30,18 @@ from gtfs_schematic.feed.digest import Digest
 from gtfs_schematic.feed.filters import (
     check_modes,
     check_names,
+    keep_routes,
     names_of_agency,
     names_of_route,
     without_rare_routes,
 )
+from gtfs_schematic.feed.findings import Notebook
 from gtfs_schematic.feed.info import read_attributions, read_stop_names
 from gtfs_schematic.feed.interned import Interned
 from gtfs_schematic.feed.join import join_timetables
 from gtfs_schematic.feed.model import FeedInfo, FeedSettings, Pattern, Route, Stop, Timetable
 from gtfs_schematic.feed.patterns import Hours, Runs, gather_patterns
-from gtfs_schematic.feed.plan import Plan, plan_feed
+from gtfs_schematic.feed.plan import Draft, Plan, draft_feed, plan_feed
 from gtfs_schematic.feed.service import typical_weekdays
 from gtfs_schematic.feed.speeds import find_leaps, with_stations_in_place
 from gtfs_schematic.feed.stops import (
@@ -85,26 +88,18 @@ def read_feed(
     check_modes(settings)
     with ExitStack() as stack:
         progress.phase("Reading the feed", 2 * len(paths))
-        plans = []
-        for number, path in enumerate(paths, start=1):
-            prefix = f"{number}:" if len(paths) > 1 else ""
-            files = stack.enter_context(open_feed(Path(path)))
-            # The digest reads all bytes once more, on another core if there is one.
-            pool = ThreadPoolExecutor(1)
-            stack.callback(pool.shutdown, cancel_futures=True)
-            with _naming(prefix):
-                plans.append(plan_feed(files, Digest(files, pool), prefix, settings))
-            progress.step()
-        _check_names(plans, settings)
+        drafts = [_draft(stack, path, prefix) for path, prefix in _prefixed(paths)]
+        plans, unused = _plans(drafts, settings, progress)
         choice = choose_dates([plan.validity for plan in plans], settings.date)
         choice = with_expiry(choice, [plan.validity for plan in plans], settings.today)
         progress.note(choice.reason)
         parts = []
         for plan in plans:
             with _naming(plan.tables.notebook.prefix):
-                parts.append(_timetable(plan, choice, settings))
+                part = _timetable(plan, choice, settings)
+            parts.append((plan.tables.notebook.prefix, part))
             progress.step()
-    timetable = join_timetables(parts)
+    timetable = join_timetables(parts, unused)
     if not timetable.patterns:
         reasons = Counter(item.reason for item in timetable.left_out)
         told = "; ".join(f"{count} × {text}" for text, count in reasons.most_common(3))
@@ -114,13 +109,46 @@ def read_feed(
     return timetable
 
 
-def _check_names(plans: Sequence[Plan], settings: FeedSettings) -> None:
-    prefixed = [(plan.tables.notebook.prefix, plan) for plan in plans]
+def _prefixed(paths: Sequence[Path]) -> Iterator[tuple[Path, str]]:
+    """Yield every path with the prefix of its ids."""
+    for number, path in enumerate(paths, start=1):
+        yield Path(path), f"{number}:" if len(paths) > 1 else ""
+
+
+def _draft(stack: ExitStack, path: Path, prefix: str) -> Draft:
+    files = stack.enter_context(open_feed(path))
+    # The digest reads all bytes once more, on another core if there is one.
+    pool = ThreadPoolExecutor(1)
+    stack.callback(pool.shutdown, cancel_futures=True)
+    with _naming(prefix):
+        return draft_feed(files, Digest(files, pool), prefix)
+
+
+def _plans(
+    drafts: Sequence[Draft], settings: FeedSettings, progress: Progress
+) -> tuple[list[Plan], list[Notebook]]:
+    """Plan the feeds; give also the notebooks of those that have none of the routes asked for."""
+    notebooks = [draft.tables.notebook for draft in drafts]
+    pairs = [(notebook.prefix, draft) for notebook, draft in zip(notebooks, drafts, strict=True)]
     check_names(
         settings,
-        (names_of_agency(p, i, a) for p, plan in prefixed for i, a in plan.agencies.items()),
-        (names_of_route(p, r) for p, plan in prefixed for r in plan.all_routes.values()),
+        (names_of_agency(p, i, a) for p, draft in pairs for i, a in draft.agencies.items()),
+        (names_of_route(p, r) for p, draft in pairs for r in draft.routes.values()),
     )
+    plans, unused = [], []
+    for draft, notes in zip(drafts, notebooks, strict=True):
+        routes = keep_routes(notes, draft.routes, draft.agencies, settings)
+        if routes:
+            with _naming(notes.prefix):
+                plans.append(plan_feed(draft, routes, settings))
+        else:
+            notes.leave_out("feed", draft.tables.files.label, "none of its routes is asked for")
+            unused.append(notes)
+        progress.step()
+    if not plans:
+        labels = ", ".join(draft.label for draft in drafts)
+        raise FeedError(f"No route of {labels} is left by the filters (modes, agencies, routes).")
+    return plans, unused
 
 
 @contextmanager
