@@ -9,7 +9,7 @@ from typing import TYPE_CHECKING, Any
 import click
 
 from gtfs_schematic.cli import options, words
-from gtfs_schematic.errors import EditionError, LimitExceededError, UsageError
+from gtfs_schematic.errors import EditionError, LimitExceededError
 
 if TYPE_CHECKING:
     from gtfs_schematic.drift.limits import LimitResult
@@ -88,7 +88,7 @@ def drift(edition: Path, **given: Any) -> int:  # noqa: ANN401 - the options of 
     measured = _Measured(loaded, settings, given)
     results = judge(measured.report, limits)
     if given["out"] is not None:
-        _write(given["out"], _files(measured, results), overwrite=given["overwrite"])
+        options.write_report(given["out"], _files(measured, results), overwrite=given["overwrite"])
     _say(measured, results, given)
     over = [result for result in results if result.exceeded]
     return LimitExceededError.exit_code if over else 0
@@ -148,32 +148,6 @@ def _json(measured: _Measured, results: tuple[LimitResult, ...]) -> bytes:
 
     beside = measured.beside
     return to_json(measured.report, results, (beside.title, beside.report) if beside else None)
-
-
-def _write(folder: Path, files: Mapping[str, bytes], *, overwrite: bool) -> None:
-    """Write a report into a folder of its own.
-
-    Raises
-    ------
-    UsageError
-        If it holds an edition, or files that must not be replaced.
-    """
-    if (folder / "edition.json").exists():
-        raise UsageError(f"{folder}: an edition stands there. Choose another folder with --out.")
-    standing = [name for name in files if (folder / name).exists()]
-    if standing and not overwrite:
-        raise UsageError(
-            f"{folder}: {standing[0]} stands there already. Give --overwrite to replace it, or "
-            "choose another folder with --out."
-        )
-    try:
-        folder.mkdir(parents=True, exist_ok=True)
-    except OSError as error:
-        raise UsageError(
-            f"{folder}: cannot be made ({error.strerror or error}). Choose another folder."
-        ) from error
-    for name in sorted(files):
-        options.write_file(folder / name, files[name])
 
 
 def _say(measured: _Measured, results: tuple[LimitResult, ...], given: Mapping[str, Any]) -> None:

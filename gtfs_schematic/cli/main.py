@@ -10,9 +10,11 @@ from importlib.metadata import version
 
 import click
 
+from gtfs_schematic.cli.changes import changes
 from gtfs_schematic.cli.demo import demo
 from gtfs_schematic.cli.draw import draw
 from gtfs_schematic.cli.drift import drift
+from gtfs_schematic.cli.editions import editions
 from gtfs_schematic.cli.inspect import inspect
 from gtfs_schematic.cli.review import review
 from gtfs_schematic.cli.revise import revise
@@ -46,7 +48,7 @@ def cli() -> None:
     """Draw transit network diagrams from GTFS feeds, and measure their drift from geography."""
 
 
-for command in (inspect, draw, drift, revise, review, demo):
+for command in (inspect, draw, drift, revise, changes, editions, review, demo):
     cli.add_command(command)
 
 

@@ -131,6 +131,32 @@ def write_file(path: Path, data: bytes) -> None:
         ) from error
 
 
+def write_report(folder: Path, files: Mapping[str, bytes], *, overwrite: bool) -> None:
+    """Write a report into a folder of its own.
+
+    Raises
+    ------
+    UsageError
+        If it holds an edition, or files that must not be replaced.
+    """
+    if (folder / "edition.json").exists():
+        raise UsageError(f"{folder}: an edition stands there. Choose another folder with --out.")
+    standing = [name for name in files if (folder / name).exists()]
+    if standing and not overwrite:
+        raise UsageError(
+            f"{folder}: {standing[0]} stands there already. Give --overwrite to replace it, or "
+            "choose another folder with --out."
+        )
+    try:
+        folder.mkdir(parents=True, exist_ok=True)
+    except OSError as error:
+        raise UsageError(
+            f"{folder}: cannot be made ({error.strerror or error}). Choose another folder."
+        ) from error
+    for name in sorted(files):
+        write_file(folder / name, files[name])
+
+
 def settings_from(given: Mapping[str, Any], base: Mapping[str, Any] | None = None) -> Settings:
     """Give the settings of a configuration file and the options that win over it.
 

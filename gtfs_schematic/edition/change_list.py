@@ -70,8 +70,10 @@ Row = tuple[str, float, bool, bool]
 
 
 def _rows(sheet: ChangeSheet) -> Iterator[Row]:
-    yield f"Changes: {sheet.before.title} → {sheet.after.title}", _TITLE, True, False
-    yield f"{period(sheet.before)} → {period(sheet.after)}. {summary(sheet)}", _BODY, False, False
+    yield f"Changes: {sheet.after.title}", _TITLE, True, False
+    yield f"Before: {sheet.before.title}, {period(sheet.before)}", _BODY, False, False
+    yield f"After: {sheet.after.title}, {period(sheet.after)}", _BODY, False, False
+    yield summary(sheet), _BODY, False, False
     for subject, heading in HEADINGS.items():
         rows = [change for change in sheet.large if change.subject == subject]
         if rows:

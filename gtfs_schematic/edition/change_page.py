@@ -39,7 +39,7 @@ figure { margin: 0 } figcaption { font-weight: bold }
 figure svg, .overlay { display: block; width: 100%; height: auto; border: 1px solid #cfd4da;
   overflow: hidden; background: #fff }
 .store { position: absolute }
-.ring { fill: none; stroke: #d0006f; stroke-width: .8 }
+.ring { fill: none; stroke: #d0006f }
 .box { display: inline-block; width: .9em; height: .9em; border: 1px solid #1b1f24 }
 .fill { display: inline-block; min-width: 12em; border-bottom: 1px solid #1b1f24 }
 .verdict { border-left: .3rem solid #1b1f24; padding: .2rem .8rem }

@@ -59,7 +59,7 @@ def clippings(sheets: Sheets, places: Sequence[str]) -> str:
         ("before", "Before", sheets.before),
         ("after", "After", sheets.after),
     ):
-        rings = _rings(edition, set(places))
+        rings = _rings(edition, set(places), box[2])
         cells.append(
             f'<figure><figcaption>{caption}</figcaption><svg viewBox="{_view(box)}" role="img" '
             f'aria-label="{caption}: part of {escape(edition.title)}"><use href="#{name}"/>{rings}'
@@ -88,13 +88,15 @@ def _box(sheets: Sheets, places: Sequence[str]) -> Box | None:
     return left, top, width, height
 
 
-def _rings(edition: Edition, wanted: set[str]) -> str:
+def _rings(edition: Edition, wanted: set[str], width: float) -> str:
+    """Ring stations, as wide and strong as suits a clipping of that width."""
+    radius = max(2.8, 0.022 * width)
     circles = "".join(
-        f'<circle cx="{s.x_mm:g}" cy="{s.y_mm:g}" r="3.6"/>'
+        f'<circle cx="{s.x_mm:g}" cy="{s.y_mm:g}" r="{radius:.3g}"/>'
         for s in edition.stations
         if s.id in wanted
     )
-    return f'<g class="ring">{circles}</g>'
+    return f'<g class="ring" stroke-width="{0.005 * width:.2g}">{circles}</g>'
 
 
 def overlay(sheets: Sheets) -> str:

@@ -51,7 +51,7 @@ CAUTION = (
 
 def sentence(change: Change) -> str:
     """Write a change in one line."""
-    texts = " → ".join(text for text in (change.before, change.after) if text)
+    texts = ", now ".join(text for text in (change.before, change.after) if text)
     head = f"{change.subject} {change.name} ({change.id}), {KINDS[change.kind]}"
     return f"{head[0].upper()}{head[1:]}{f': {texts}' if texts else ''}"
 
