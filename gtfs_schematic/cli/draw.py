@@ -10,7 +10,7 @@ from typing import TYPE_CHECKING, Any
 
 import click
 
-from gtfs_schematic.cli import options, words
+from gtfs_schematic.cli import advice, options, words
 from gtfs_schematic.cli.console import listening
 from gtfs_schematic.errors import LimitExceededError
 
@@ -70,6 +70,8 @@ def draw(
         result = run(feeds, settings, progress=progress)
         progress.phase("writing files")
         files = files_of(result, limits)
+    if not given["quiet"]:
+        advice.tell_expiry(result.network.info)
     write_folder(out, files, overwrite=given["overwrite"])
     judged = judge(result.drift, limits)
     if given["as_json"]:

@@ -3,13 +3,14 @@
 from __future__ import annotations
 
 import json
+from collections import Counter
 from dataclasses import asdict
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
 import click
 
-from gtfs_schematic.cli import options, words
+from gtfs_schematic.cli import advice, options, words
 from gtfs_schematic.cli.console import listening
 
 if TYPE_CHECKING:
@@ -20,6 +21,13 @@ Example:
   gtfs-schematic inspect feed.zip --date 2026-03-11
   gtfs-schematic inspect feed.zip --json > feed.json
 """
+
+_KINDS = {
+    "all-day": "",
+    "peak": "; in the peak only",
+    "night": "; at night only",
+    "some-days": "; on some days only",
+}
 
 
 @click.command(epilog=_EPILOG)
@@ -56,6 +64,8 @@ def inspect(
 
     with listening(quiet=given["quiet"]) as progress:
         _, network = read(feeds, settings, progress=progress)
+    if not given["quiet"]:
+        advice.tell_expiry(network.info)
     if geojson is not None:
         options.write_file(geojson, to_geojson(network))
     if graphml is not None:
@@ -76,6 +86,7 @@ def to_json(network: Network) -> bytes:
         "start_date": network.info.start_date,
         "end_date": network.info.end_date,
         "agencies": list(network.agencies),
+        "modes": dict(sorted(Counter(line.mode for line in network.lines).items())),
         "lines": [
             {
                 "id": line.id,
@@ -100,6 +111,7 @@ def to_json(network: Network) -> bytes:
         "links": len(network.links),
         "left_out": [asdict(item) for item in network.left_out],
         "findings": [asdict(finding) for finding in network.findings],
+        "suggestions": advice.suggestions(network),
     }
     return json.dumps(document, ensure_ascii=False, indent=1).encode()
 
@@ -115,12 +127,19 @@ def describe(network: Network, *, everything: bool) -> list[str]:
         f"Feed: {name}{version}{f', valid {until}' if until else ''}",
         f"Agencies: {', '.join(network.agencies) or 'none named'}",
         words.service_date(info),
+        f"Modes: {_modes(network)}",
         f"Network: {words.size(network)}",
         "Lines:",
         *(f"  {_line(line, network)}" for line in network.lines),
         *words.left_out(network.left_out, everything=everything, where=where),
         *words.findings(network.findings, everything=everything, where=where),
+        *(f"Suggestion: {each}" for each in advice.suggestions(network)),
     ]
+
+
+def _modes(network: Network) -> str:
+    modes = Counter(line.mode for line in network.lines)
+    return ", ".join(f"{mode} ({words.count(modes[mode], 'line')})" for mode in sorted(modes))
 
 
 def _line(line: Line, network: Network) -> str:
@@ -132,7 +151,7 @@ def _line(line: Line, network: Network) -> str:
     every = f", every {_minutes(line.headway_s)}" if line.headway_s is not None else ""
     return (
         f"{line.name} ({line.mode}){course}, {words.count(stations, 'station')}, "
-        f"{words.count(line.trips, 'trip')}, {span}{every}{_headways(line)}"
+        f"{words.count(line.trips, 'trip')}, {span}{every}{_headways(line)}{_KINDS[line.service]}"
     )
 
 

@@ -16,6 +16,7 @@ FEW = 5
 """How many rows of a long list are shown."""
 
 _PLURALS = {
+    "agency": "agencies",
     "boundary": "boundaries",
     "frequency": "frequencies",
     "stop on a line": "stops on lines",
