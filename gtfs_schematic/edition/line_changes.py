@@ -157,7 +157,7 @@ class _Courses:
                 self._one(a, b, told)
             else:
                 told.variants.append((_name(a, names), _name(b, names)))
-        if not any((told.gained, told.lost, told.called, told.dropped, told.added, told.removed)):
+        if told == _Told():
             # The same stations in another order, or only the pairing of branches.
             before, after = ("; ".join(listed(i, names) for i in some) for some in (old, new))
             told.variants.append((before, after))
