@@ -47,6 +47,7 @@ MODULES_OF = {
     "fonttools": {"fontTools"},
     "import-linter": {"importlinter"},
     "pytest-xdist": {"xdist"},
+    "scikit-learn": {"sklearn"},
 }
 
 

@@ -217,11 +217,14 @@ def _on_sheet(
     sizes = dataclasses.replace(sizes, pinned=pins_in_frame(skeleton.graph, sizes.settings, frame))
     skeleton = dataclasses.replace(skeleton, points=points)
     for _ in range(_FILLINGS):
-        # What has no more room in one direction still grows in the other.
+        # What has no more room in one direction still grows in the other, the less the more the
+        # drawing is to be true to the ground.
         spare = np.maximum(1.0, np.asarray(box) / np.maximum(np.ptp(points, axis=0), 1e-9))
-        if not sizes.pinned and (spare.max() < _FULL or scale >= _LOOSEST * spacing):
+        fidelity = sizes.settings.fidelity
+        grow = float(spare.min() ** fidelity * math.sqrt(spare.prod()) ** (1.0 - fidelity))
+        if not sizes.pinned and (grow < _FULL or scale >= _LOOSEST * spacing):
             break
-        scale = min(scale * 0.98 * math.sqrt(spare.prod()), _LOOSEST * spacing)
+        scale = min(scale * 0.98 * grow, _LOOSEST * spacing)
         skeleton, points, pairs = _settled(skeleton, sizes, scale, box, pairs)
     return skeleton, points, frame
 
@@ -246,7 +249,7 @@ def _settled(
 ) -> tuple[Skeleton, NDArray[np.float64], NDArray[np.int64] | None]:
     """Settle, then take out bends that have shrunk to nothing, and settle again."""
     while True:
-        wants = wants_of(skeleton, sizes, scale_mm, tight=box is None)
+        wants = wants_of(skeleton, sizes, scale_mm, box)
         points, pairs = settle(skeleton, wants, box, pairs)
         lengths = np.hypot(*np.diff(points[skeleton.segments], axis=1)[:, 0].T)
         gone = lengths < _NO_LENGTH_MM

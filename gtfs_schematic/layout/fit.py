@@ -51,11 +51,15 @@ class Sizes:
     """Per pinned vertex its place, millimetres from the frame's lower left corner, y north."""
 
 
-def wants_of(skeleton: Skeleton, sizes: Sizes, scale_mm: float, *, tight: bool) -> Wants:
+def wants_of(
+    skeleton: Skeleton, sizes: Sizes, scale_mm: float, box: tuple[float, float] | None
+) -> Wants:
     """Say what the lengths should be when a station spacing is `scale_mm` on the sheet.
 
-    `tight` asks for the least size instead: that is how the sheet is chosen.
+    Without a `box` (width and height, millimetres) the least size is asked for instead: that is
+    how the sheet is chosen.
     """
+    tight = box is None
     clearances = sizes.clearances
     graph = skeleton.graph
     walk = np.array([piece.is_walk for piece in graph.pieces], dtype=bool)
@@ -90,8 +94,8 @@ def wants_of(skeleton: Skeleton, sizes: Sizes, scale_mm: float, *, tight: bool) 
         piece_least=np.round(least, 6),
         piece_goal=np.round(least if tight else np.maximum(goal, least), 6),
         piece_weight=np.where(walk, 2.0, np.where(asked, _WISH_WEIGHT, 1.0)) * weight,
-        anchors=sizes.anchors * scale_mm,
-        anchor_weight=0.02 if tight else 0.05 + 0.5 * sizes.settings.fidelity**2,
+        anchors=_anchors_in_box(sizes, scale_mm, box),
+        anchor_weight=0.02 if tight else 0.05 + 3.0 * sizes.settings.fidelity**3,
         half_width=half,
         clear=2.0 * clearances.line_gap_mm + 0.5,
         room=np.zeros((len(owner), 8)) if tight else _label_room(skeleton, clearances),
@@ -99,6 +103,17 @@ def wants_of(skeleton: Skeleton, sizes: Sizes, scale_mm: float, *, tight: bool) 
         jogs=np.where(jog, 3.0 * lines, 0.0),
         spread=2.0 if tight else 0.0,
     )
+
+
+def _anchors_in_box(
+    sizes: Sizes, scale_mm: float, box: tuple[float, float] | None
+) -> NDArray[np.float64]:
+    """Anchors to scale from the box's corner on, shrunk as a whole if they would leave it."""
+    places: NDArray[np.float64] = (sizes.anchors - sizes.anchors.min(axis=0)) * scale_mm
+    if box is None:
+        return places
+    shrink = np.min(np.asarray(box) / np.maximum(np.ptp(places, axis=0), 1e-9))
+    return np.asarray(places * min(1.0, float(shrink)))
 
 
 def pins_in_frame(
