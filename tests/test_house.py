@@ -24,9 +24,7 @@ MODULES = sorted(PACKAGE.rglob("*.py"))
 PROJECT = tomllib.loads((ROOT / "pyproject.toml").read_text("utf-8"))
 RUNTIME = [Requirement(text) for text in PROJECT["project"]["dependencies"]]
 TEST = [Requirement(text) for text in PROJECT["project"]["optional-dependencies"]["test"]]
-BENCHMARK = [
-    Requirement(text) for text in PROJECT["project"]["optional-dependencies"]["benchmark"]
-]
+BENCHMARK = [Requirement(text) for text in PROJECT["project"]["optional-dependencies"]["benchmark"]]
 
 TOP_LEVEL = {
     "README.md",
