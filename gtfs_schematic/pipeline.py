@@ -38,6 +38,8 @@ from gtfs_schematic.drift.report import to_csv
 from gtfs_schematic.drift.report import to_json as drift_to_json
 from gtfs_schematic.drift.timing import timing_of
 from gtfs_schematic.edition import check as edition_check
+from gtfs_schematic.edition.adjusted import Adjusted, adjusted
+from gtfs_schematic.edition.adjustments import Adjustments, plain
 from gtfs_schematic.edition.make import edition_of, stop_codes_of
 from gtfs_schematic.edition.model import Edition
 from gtfs_schematic.edition.save import to_json as edition_to_json
@@ -45,9 +47,10 @@ from gtfs_schematic.errors import InternalFaultError
 from gtfs_schematic.feed import check as feed_check
 from gtfs_schematic.feed.model import Timetable
 from gtfs_schematic.feed.read import read_feed
+from gtfs_schematic.geometry import Point
 from gtfs_schematic.labels import check as labels_check
 from gtfs_schematic.labels.fonts import text_width_mm
-from gtfs_schematic.labels.model import LabelledLayout, LabelSettings
+from gtfs_schematic.labels.model import LabelledLayout, LabelSettings, Side
 from gtfs_schematic.labels.place import place_labels
 from gtfs_schematic.labels.room import room_requests
 from gtfs_schematic.layout import check as layout_check
@@ -91,6 +94,7 @@ def draw(
     paths: StrPath | Sequence[StrPath],
     settings: Settings | None = None,
     *,
+    adjustments: Adjustments | None = None,
     progress: Progress = Silent(),  # noqa: B008 - it has no state
 ) -> Result:
     """Draw feeds as one diagram.
@@ -101,6 +105,8 @@ def draw(
         Zip file or folder; several are drawn as one network.
     settings
         What each room is told; None for the defaults.
+    adjustments
+        What a person overrides.
     progress
         Who listens to what is going on.
 
@@ -113,10 +119,36 @@ def draw(
     """
     settings = settings or Settings()
     timetable, network = inspect(paths, settings, progress=progress)
-    frames = candidate_frames(network, settings.sheet, settings.drawing)
-    labelled = _labelled(network, settings, frames, progress)
+    wanted = settings
+    if adjustments is not None:
+        found = adjust(network, adjustments, timetable, progress)
+        network, wanted = found.network, with_wishes(settings, found.sides, found.pins)
+    frames = candidate_frames(network, wanted.sheet, wanted.drawing)
+    labelled = _labelled(network, wanted, frames, progress)
 
-    return finish(timetable, labelled, settings, progress)
+    result = finish(timetable, labelled, settings, progress)
+    kept = plain(adjustments or Adjustments())
+    return replace(result, edition=replace(result.edition, adjustments=kept))
+
+
+def adjust(
+    network: Network, adjustments: Adjustments, timetable: Timetable, progress: Progress
+) -> Adjusted:
+    """Apply adjustments, check what comes of it, and say which of them apply to nothing."""
+    found = adjusted(network, adjustments, timetable)
+    _must_be_sound("adjustments", network_check.faults(found.network))
+    for stale in found.stale:
+        progress.note(f"an adjustment applies to nothing and is kept: {stale}")
+    return found
+
+
+def with_wishes(
+    settings: Settings, sides: Mapping[str, Side], pins: Mapping[str, Point]
+) -> Settings:
+    """Give settings in which labels and layout heed what a person asked for."""
+    labels = settings.labels.model_copy(update={"sides": settings.labels.sides | dict(sides)})
+    layout = settings.layout.model_copy(update={"pins": {**settings.layout.pins, **pins}})
+    return settings.model_copy(update={"labels": labels, "layout": layout})
 
 
 def finish(

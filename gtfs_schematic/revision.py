@@ -2,12 +2,13 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
 
 from gtfs_schematic.config import Settings, settings_of
 from gtfs_schematic.drawing.sheet import candidate_frames
-from gtfs_schematic.edition.carry import carried_matches, with_carried_ids
+from gtfs_schematic.edition.adjustments import Adjustments, adjustments_of, plain, translated
+from gtfs_schematic.edition.carry import carried_matches, names_of, with_carried_ids
 from gtfs_schematic.edition.change_list import to_pdf
 from gtfs_schematic.edition.change_page import to_html
 from gtfs_schematic.edition.change_pictures import Sheets
@@ -15,19 +16,24 @@ from gtfs_schematic.edition.changes import ChangeSheet, change_sheet, to_csv, to
 from gtfs_schematic.edition.identity import Matches, match_edition
 from gtfs_schematic.edition.make import stop_codes_of
 from gtfs_schematic.edition.model import Edition
+from gtfs_schematic.geometry import Point, distance
 from gtfs_schematic.layout.model import Layout, SheetFrame
 from gtfs_schematic.layout.revise import revise_layout
 from gtfs_schematic.network.model import Network
 from gtfs_schematic.pipeline import (
     Result,
     StrPath,
+    adjust,
     clearances_of,
     files_of,
     finish,
     inspect,
     labelled_from,
+    with_wishes,
 )
 from gtfs_schematic.progress import Progress, Silent
+
+_PIN_MM = 0.01
 
 
 @dataclass(frozen=True, slots=True)
@@ -48,6 +54,7 @@ def revise(
     settings: Settings | None = None,
     *,
     sha256: str = "",
+    adjustments: Adjustments | None = None,
     progress: Progress = Silent(),  # noqa: B008 - it has no state
 ) -> Revision:
     """Draw feeds as the edition after another.
@@ -65,6 +72,8 @@ def revise(
         What each room is told; None for what the edition was drawn with.
     sha256
         Of the earlier edition's file, for the new one to name.
+    adjustments
+        What a person overrides, by ids of the edition; None for what holds in it.
     progress
         Who listens to what is going on.
 
@@ -75,16 +84,26 @@ def revise(
     """
     if settings is None:
         settings = settings_of(before.settings, "settings of the edition")
+    if adjustments is None:
+        adjustments = adjustments_of(before.adjustments, "adjustments of the edition")
     timetable, network = inspect(paths, settings, progress=progress)
-    found = match_edition(before, network, stop_codes_of(timetable, network))
-    matches = carried_matches(network, before, found)
-    network = with_carried_ids(network, before, found)
-    layout = _layout(before, network, settings, progress)
+    codes = stop_codes_of(timetable, network)
+    found = match_edition(before, network, codes, adjustments)
+    now = adjust(network, _of_now(adjustments, before, network, found), timetable, progress)
+    # Matched again, now that what a person merged and renamed is as it was in the edition.
+    found = match_edition(before, now.network, codes, adjustments)
+    matches = carried_matches(now.network, before, found)
+    names, _ = names_of(now.network, before, found)
+    network = with_carried_ids(now.network, before, found)
+    sides = {names[key]: side for key, side in now.sides.items()}
+    wanted = with_wishes(settings, sides, {names[key]: pin for key, pin in now.pins.items()})
+    layout = _layout(before, network, wanted, progress)
     if layout is None:
         progress.note("what is new finds no room beside what stands; laying out anew")
-    labelled = labelled_from(layout, network, settings, _sides(before), progress)
+    labelled = labelled_from(layout, network, wanted, _sides(before), progress)
     result = finish(timetable, labelled, settings, progress)
-    result = replace(result, edition=replace(result.edition, previous=sha256))
+    edition = replace(result.edition, previous=sha256, adjustments=plain(adjustments))
+    result = replace(result, edition=edition)
     sheet = change_sheet(before, result.edition, matches)
     return Revision(result, matches, sheet, layout is None)
 
@@ -103,6 +122,31 @@ def files_of_revision(
     }
 
 
+def _of_now(
+    adjustments: Adjustments, before: Edition, network: Network, matches: Matches
+) -> Adjustments:
+    """Give adjustments by the ids of the new feed; what is gone keeps a name that nothing has."""
+    stations = {m.old_id: m.new_id for m in matches.stations.values()}
+    lines = {m.old_id: m.new_id for m in matches.lines.values()}
+    whole = {key: s.id for s in before.stations for key in (*s.stop_ids, s.id)}
+    line_of = {key: k.id for k in before.lines for key in (*k.route_ids, k.id)}
+    gone = "{} of the edition before"
+    found = translated(
+        adjustments,
+        {key: stations.get(s, gone.format(key)) for key, s in whole.items()},
+        {key: lines.get(k, gone.format(key)) for key, k in line_of.items()},
+    )
+    merges = []
+    for was, now in zip(adjustments.merge, found.merge, strict=True):
+        # What the edition has merged is one station there, and some in the new feed.
+        ids = {whole[key] for key in was.stations if key in whole}
+        parts = [m.new_id for m in matches.split_stations if m.old_id in ids]
+        known = [key for key in was.stations if key not in whole and key in network.station]
+        every = tuple(dict.fromkeys((*now.stations, *parts, *known)))
+        merges.append(now.model_copy(update={"stations": every}))
+    return found.model_copy(update={"merge": tuple(merges)})
+
+
 def _layout(
     before: Edition, network: Network, settings: Settings, progress: Progress
 ) -> Layout | None:
@@ -113,9 +157,15 @@ def _layout(
     clearances = clearances_of(network, settings.bundles, settings.labels)
     for frame in _frames(before, network, settings):
         layout = revise_layout(network, positions, paths, clearances, frame, progress=progress)
-        if layout is not None:
+        if layout is not None and _pinned(layout, settings.layout.pins):
             return layout
     return None
+
+
+def _pinned(layout: Layout, pins: Mapping[str, Point]) -> bool:
+    """Whether every pin is kept: what stands may have to give way to a new one."""
+    drawn = layout.positions
+    return all(distance(drawn[key], pin) <= _PIN_MM for key, pin in pins.items() if key in drawn)
 
 
 def _frames(before: Edition, network: Network, settings: Settings) -> list[SheetFrame]:

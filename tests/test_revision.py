@@ -13,6 +13,7 @@ import pytest
 
 from gtfs_schematic import pipeline
 from gtfs_schematic.config import Settings
+from gtfs_schematic.edition.adjustments import adjustments_of
 from gtfs_schematic.edition.identity import match_edition
 from gtfs_schematic.edition.model import Edition
 from gtfs_schematic.layout.check import faults
@@ -136,3 +137,48 @@ def _shuffle_ids(source: Path, target: Path) -> None:
             writer.writeheader()
             writer.writerows(rows)
             new.writestr(name, text.getvalue())
+
+
+ADJUSTED = {
+    "stations": {"183": {"name": "Mulg Halt", "label_side": "S"}, "406": {"note": "as agreed"}},
+    "lines": {"m1": {"color": "#225577"}},
+}
+MERGED = ADJUSTED | {"merge": [{"stations": ["331-1", "332-1"], "name": "Mlåt both"}]}
+
+
+def test_adjustments_outlive_a_change_of_all_ids(tmp_path):
+    shuffled = tmp_path / "shuffled.zip"
+    _shuffle_ids(BEFORE, shuffled)
+    before, again = _revised(ADJUSTED, shuffled)
+    assert {s.id: s.name for s in before.stations}["183"] == "Mulg Halt"
+    assert _names_and_colors(again.result.edition) == _names_and_colors(before)
+    assert {c.kind for c in again.sheet.changes} <= {"renumbered", "stops"}
+    old, new = ({s.id: s for s in each.stations} for each in (before, again.result.edition))
+    assert new["183"].label_side == old["183"].label_side
+
+
+def test_merges_outlive_a_revision():
+    before, again = _revised(MERGED, BEFORE)
+    names, _ = _names_and_colors(before)
+    assert names["331-1"] == "Mlåt both"
+    assert "332-1" not in names
+    assert again.sheet.changes == ()
+    assert _names_and_colors(again.result.edition) == _names_and_colors(before)
+    assert again.result.edition.adjustments == before.adjustments
+
+
+def _revised(said: dict[str, object], feed: Path) -> tuple[Edition, Revision]:
+    adjustments = adjustments_of(said, "test")
+    before = pipeline.draw(BEFORE, SETTINGS, adjustments=adjustments).edition
+    return before, revise(before, feed, SETTINGS)
+
+
+def _names_and_colors(edition: Edition) -> tuple[dict[str, str], dict[str, str]]:
+    return {s.id: s.name for s in edition.stations}, {k.id: k.color for k in edition.lines}
+
+
+def test_settings_of_the_edition_hold_again(before: Edition):
+    assert before.settings == {"layout": {"effort": "quick"}}
+    again = revise(before, BEFORE, sha256="a" * 64)
+    assert again.result.settings == SETTINGS
+    assert again.result.edition.previous == "a" * 64

@@ -45,6 +45,7 @@ _GUARANTEES = (
 @options.overwrite
 @options.feed_options
 @options.draw_options
+@options.adjustments
 @options.limit
 @options.as_json
 @options.quiet
@@ -58,6 +59,7 @@ def draw(
     FEED is a GTFS zip file or a folder; several are drawn as one network.
     """
     settings = options.settings_from(given)
+    adjustments = options.adjustments_from(given)
     from gtfs_schematic.drift.limits import judge, limits_of
     from gtfs_schematic.edition.folder import check_target, write_folder
 
@@ -67,7 +69,7 @@ def draw(
     from gtfs_schematic.pipeline import files_of
 
     with listening(quiet=given["quiet"]) as progress:
-        result = run(feeds, settings, progress=progress)
+        result = run(feeds, settings, adjustments=adjustments, progress=progress)
         progress.phase("writing files")
         files = files_of(result, limits)
     if not given["quiet"]:

@@ -12,6 +12,7 @@ from gtfs_schematic.errors import UsageError
 
 if TYPE_CHECKING:
     from gtfs_schematic.config import Settings
+    from gtfs_schematic.edition.adjustments import Adjustments
 
 Command = TypeVar("Command", bound=Callable[..., Any])
 
@@ -52,6 +53,13 @@ config = click.option(
     type=click.Path(path_type=Path),
     metavar="FILE",
     help="Settings as TOML; configs/standard.toml explains them all.",
+)
+
+adjustments = click.option(
+    "--adjustments",
+    type=click.Path(path_type=Path),
+    metavar="FILE",
+    help="What you override, as TOML: names, colors, sides of names, pins, merges and more.",
 )
 
 _FEED_OPTIONS = (
@@ -113,6 +121,22 @@ def read_bytes(path: Path, what: str) -> bytes:
         return path.read_bytes()
     except OSError as error:
         raise UsageError(f"{path}: cannot read the {what} ({error.strerror or error}).") from error
+
+
+def adjustments_from(given: Mapping[str, Any]) -> Adjustments | None:
+    """Give the adjustments of a file that the user named; None if none was.
+
+    Raises
+    ------
+    UsageError
+        If it cannot be read, or an adjustment is wrong.
+    """
+    path = given.get("adjustments")
+    if path is None:
+        return None
+    from gtfs_schematic.edition.adjustments import adjustments_from_toml
+
+    return adjustments_from_toml(read_bytes(path, "adjustments"), str(path))
 
 
 def write_file(path: Path, data: bytes) -> None:

@@ -35,6 +35,7 @@ _WHERE = "changes.html and changes.csv list all"
 @options.overwrite
 @options.feed_options
 @options.draw_options
+@options.adjustments
 @options.as_json
 @options.quiet
 def revise(
@@ -47,7 +48,8 @@ def revise(
 
     What both have keeps its id and its place on the sheet; only what is new finds one. Beside the
     files of draw, the folder gets changes.html, changes.pdf, changes.csv and changes.json. What was
-    set for EDITION holds again; options win over it, and a configuration takes its place.
+    set for EDITION holds again; options win over it, and a configuration takes its place. So do
+    its adjustments, unless others are given.
     """
     from gtfs_schematic.edition.folder import (
         check_target,
@@ -62,6 +64,7 @@ def revise(
     check_target(out, overwrite=given["overwrite"])
     before = load_edition(edition)
     settings = options.settings_from(given, before.settings)
+    adjustments = options.adjustments_from(given)
     folder = edition if edition.is_dir() else edition.parent
     diagram = options.read_bytes(folder / "diagram.svg", "diagram of the edition")
     from gtfs_schematic.revision import files_of_revision
@@ -69,7 +72,9 @@ def revise(
 
     with listening(quiet=given["quiet"]) as progress:
         sha256 = digest_of_edition(edition)
-        revision = run(before, feeds, settings, sha256=sha256, progress=progress)
+        revision = run(
+            before, feeds, settings, sha256=sha256, adjustments=adjustments, progress=progress
+        )
         progress.phase("writing files")
         files = files_of_revision(revision, before, diagram)
     write_folder(out, files, overwrite=given["overwrite"])

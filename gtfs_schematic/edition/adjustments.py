@@ -136,6 +136,38 @@ def adjustments_of(values: Mapping[str, Any], name: str) -> Adjustments:
         raise UsageError("\n".join(_advice(each, name) for each in error.errors())) from error
 
 
+def translated(
+    adjustments: Adjustments, stations: Mapping[str, str], lines: Mapping[str, str]
+) -> Adjustments:
+    """Give adjustments by other ids of the same things.
+
+    Parameters
+    ----------
+    adjustments
+        As a person wrote them.
+    stations, lines
+        Other ids by those that stand there; what is in neither keeps its own.
+    """
+
+    def station(key: str) -> str:
+        return stations.get(key, key)
+
+    return adjustments.model_copy(
+        update={
+            "stations": {station(k): v for k, v in adjustments.stations.items()},
+            "lines": {lines.get(k, k): v for k, v in adjustments.lines.items()},
+            "merge": tuple(
+                each.model_copy(update={"stations": tuple(map(station, each.stations))})
+                for each in adjustments.merge
+            ),
+            "split": tuple(
+                each.model_copy(update={"station": station(each.station)})
+                for each in adjustments.split
+            ),
+        }
+    )
+
+
 def plain(adjustments: Adjustments) -> dict[str, Any]:
     """Give adjustments as nested tables without what stands at its default."""
     return adjustments.model_dump(mode="json", exclude_defaults=True)
