@@ -10,6 +10,7 @@ import tempfile
 from collections.abc import Mapping
 from pathlib import Path
 
+from gtfs_schematic.edition.exchange import exchanged
 from gtfs_schematic.edition.model import Edition
 from gtfs_schematic.edition.save import from_json
 from gtfs_schematic.errors import EditionError, SchematicError, UsageError
@@ -38,6 +39,7 @@ def write_folder(folder: StrPath, files: Mapping[str, bytes], *, overwrite: bool
 
     1. Everything is first written into a hidden folder beside the wanted one.
     2. A finished folder takes the place of the old one by renaming; a failure leaves the old.
+       Where the system can exchange two folders in one step, no moment is without an edition.
 
     Parameters
     ----------
@@ -165,6 +167,9 @@ def _replace(fresh: Path, target: Path) -> None:
     """Rename `fresh` to `target`; an old folder comes back if that fails."""
     if not target.exists():
         fresh.rename(target)
+        return
+    if exchanged(fresh, target):
+        # What stood there is in `fresh` now, which the caller clears away.
         return
     aside = Path(tempfile.mkdtemp(prefix=f".{target.name}-old-", dir=target.parent))
     old = aside / target.name

@@ -3,7 +3,10 @@
 from __future__ import annotations
 
 import importlib.util
+import signal
 import stat
+import subprocess
+import sys
 from pathlib import Path
 
 import pytest
@@ -116,6 +119,8 @@ def test_a_failed_write_leaves_the_old_edition(tmp_path, monkeypatch):
 
 
 def test_a_failed_rename_brings_the_old_edition_back(tmp_path, monkeypatch):
+    """On systems that cannot exchange two folders in one step."""
+    monkeypatch.setattr("gtfs_schematic.edition.folder.exchanged", lambda *_: False)
     target = tmp_path / "x"
     write_folder(target, CONTENT)
     whole = Path.rename
@@ -155,3 +160,51 @@ def test_the_schemas_travel_with_the_package():
     for room, name in (("edition", "edition.schema.json"), ("drift", "drift.schema.json")):
         spec = importlib.util.find_spec(f"gtfs_schematic.{room}")
         assert Path(spec.origin).with_name(name).is_file()
+
+
+_KILLED = """
+import sys
+from pathlib import Path
+from gtfs_schematic.edition.folder import write_folder
+
+steps, folder = int(sys.argv[1]), sys.argv[2]
+files = {file.name: b"new" for file in Path(folder).iterdir()}
+files["edition.json"] = (Path(folder) / "edition.json").read_bytes()
+files["diagram.svg"] = b"new" * 200_000
+
+def watch(event, arguments):
+    # Every step on the disk is announced here before it is taken.
+    global steps
+    if event == "open" or event.split(".")[0] in {"os", "shutil", "tempfile", "ctypes"}:
+        steps -= 1
+        if steps == 0:
+            import os, signal
+            os.kill(os.getpid(), signal.SIGKILL)
+
+sys.addaudithook(watch)
+write_folder(folder, files, overwrite=True)
+"""
+_EVERY = 3
+
+
+def test_killed_at_any_step_the_edition_is_the_old_or_the_new(tmp_path):
+    """A killed process can tidy nothing up: what it leaves behind has a hidden name."""
+    states = set()
+    for step in (*range(1, 400, _EVERY), 10**6):
+        target = tmp_path / str(step) / "edition"
+        write_folder(target, CONTENT)
+        command = [sys.executable, "-c", _KILLED, str(step), str(target)]
+        code = subprocess.run(command, check=False).returncode
+        assert code in (0, -signal.SIGKILL)
+        found = content(target)
+        assert load_edition(target) == EDITION
+        state = "old" if found == CONTENT else "new"
+        assert state == "old" or found["drift.csv"] == b"new"
+        assert set(found) == set(CONTENT)
+        beside = {entry.name for entry in target.parent.iterdir()} - {"edition"}
+        assert all(name.startswith(".") for name in beside)
+        states.add((code, state))
+        if code == 0:
+            break
+    assert (-signal.SIGKILL, "old") in states
+    assert (0, "new") in states
