@@ -11,8 +11,11 @@ from __future__ import annotations
 import codecs
 import io
 import itertools
-from collections.abc import Callable, Iterator
+from collections.abc import Callable, Generator, Iterator
+from concurrent.futures import ThreadPoolExecutor
+from contextlib import closing
 from dataclasses import dataclass
+from functools import cached_property
 from typing import Any, cast
 
 import numpy as np
@@ -38,21 +41,29 @@ Single = Callable[[int, tuple[str, ...]], None]
 
 @dataclass(frozen=True)
 class Block:
-    """Rows of a table, split into fields; it holds until the next one is read."""
+    """Rows of a table, split into fields; it holds until the next but one is made."""
 
     buffer: Bytes
+    first: int
+    last: int
+    """Where in the buffer the rows start and end."""
     starts: Places
     ends: Places
     """Where fields lie, (columns, rows)."""
-    regular: Masks
-    """Rows of one line with as many fields as the header; the others have no fields here."""
+    kinds: Bytes
+    """What kind of row each is; only the fields of regular ones are known."""
     first_row: int
     """Number of the first row; the header is row 1."""
 
     @property
     def rows(self) -> Ints:
         """Row numbers."""
-        return self.first_row + np.arange(len(self.regular))
+        return self.first_row + np.arange(len(self.kinds))
+
+    @cached_property
+    def regular(self) -> Masks:
+        """Which rows have one line and as many fields as the header."""
+        return np.asarray(self.kinds == kernels.REGULAR)
 
     def column(self, number: int) -> tuple[Bytes, Places, Places]:
         """Give a buffer, and where in it each row's field of one column starts and ends."""
@@ -66,22 +77,25 @@ class Block:
 def whole_lines(stream: io.BufferedIOBase, name: str, size: int = _SIZE) -> Iterator[Bytes]:
     """Yield a file in pieces of about `size` bytes that end with a line, but for the last.
 
-    A piece holds until the next is asked for.
+    A piece holds until the next but one is asked for.
 
     Raises
     ------
     FeedError
         A line longer than any line of a feed.
     """
-    buffer = bytearray(size)
+    buffer, spare = bytearray(size), bytearray(size)
     filled = 0
     while read := stream.readinto(memoryview(buffer)[filled:]):
         filled += read
         cut = buffer.rfind(b"\n", 0, filled) + 1
         if cut:
             yield np.frombuffer(buffer, dtype=np.uint8, count=cut)
-            buffer[: filled - cut] = buffer[cut:filled]
-            filled -= cut
+            rest = buffer[cut:filled]
+            if len(spare) < len(buffer):
+                spare = bytearray(len(buffer))
+            spare[: len(rest)] = rest
+            buffer, spare, filled = spare, buffer, len(rest)
         if filled == len(buffer):
             if filled >= _LONGEST:
                 raise FeedError(f"has a line of more than {_LONGEST:,} bytes.", file=name)
@@ -112,70 +126,86 @@ def read_in_blocks(
         if header is None:
             rest, behind = _chained(first, 0, pieces), None
         else:
-            reader = _Reader(tables, name, header, columns)
-            start = len(line)
-            for piece in itertools.chain([first], pieces):
-                end = reader.take(piece, start, bulk, single)
-                if end < len(piece):
-                    rest, behind = _chained(piece, end, pieces), (reader.row, list(header))
-                    break
-                start = 0
-            else:
+            splitter = _Splitter(name, header, columns)
+            picker = Picker(tables, name, header, columns)
+            row = 2
+            with closing(_ahead(splitter.blocks(first, len(line), pieces))) as coming:
+                for block in coming:
+                    odd = (block.kinds == kernels.ODD) | (block.regular & bulk(block))
+                    if odd.any():
+                        _take_odd(block, np.flatnonzero(odd), (tables, name, picker), single)
+                    row += len(block.kinds)
+            if splitter.left is None:
                 return
+            rest, behind = _chained(*splitter.left, pieces), (row, list(header))
         raw = cast("io.BufferedReader", io.BufferedReader(_Stream(rest)))
         for number, texts in tables.rows_from(raw, name, columns, behind):
             single(number, texts)
 
 
-class _Reader:
-    """Reads the pieces of one table one after the other; `row` is the number of the next row."""
+def _ahead(items: Iterator[Block]) -> Generator[Block]:
+    """Yield items while the next one is being made in another thread."""
+    with ThreadPoolExecutor(1) as pool:
+        coming = pool.submit(next, items, None)
+        while (item := coming.result()) is not None:
+            coming = pool.submit(next, items, None)
+            yield item
 
-    def __init__(
-        self, tables: Tables, name: str, header: tuple[str, ...], columns: tuple[str, ...]
-    ) -> None:
-        self._tables, self._name = tables, name
-        self._picker = Picker(tables, name, header, columns)
+
+class _Splitter:
+    """Splits the pieces of one table into blocks."""
+
+    def __init__(self, name: str, header: tuple[str, ...], columns: tuple[str, ...]) -> None:
+        self._name = name
         numbers = [columns.index(c) if c in columns else -1 for c in header]
         self._columns = np.array(numbers, dtype=np.int64)
-        self._starts = np.empty((len(columns), _ROWS), dtype=np.int32)
-        self._ends = np.empty_like(self._starts)
-        self._kinds = np.empty(_ROWS, dtype=np.uint8)
-        self.row = 2
-
-    def take(self, piece: Bytes, start: int, bulk: Bulk, single: Single) -> int:
-        """Read the rows of a piece of whole lines from `start` on.
-
-        Give where the first row begins that does not end with its line; the end if all do.
-        """
-        while start < len(piece):
-            count, end = kernels.split_lines(
-                piece, start, self._columns, self._starts, self._ends, self._kinds
+        # Taken in turns: one is filled while the other is used.
+        self._spare = [
+            (
+                np.empty((len(columns), _ROWS), dtype=np.int32),
+                np.empty((len(columns), _ROWS), dtype=np.int32),
+                np.empty(_ROWS, dtype=np.uint8),
             )
-            if self.row + count > MOST_ROWS:
-                fault = f"has more than {MOST_ROWS:,} rows, which no feed has."
-                raise FeedError(fault, file=self._name)
-            kinds = self._kinds[:count]
-            regular = kinds == kernels.REGULAR
-            block = Block(piece, self._starts[:, :count], self._ends[:, :count], regular, self.row)
-            odd = (kinds == kernels.ODD) | (regular & bulk(block))
-            if odd.any():
-                self._take_odd(piece[start:end], np.flatnonzero(odd), single)
-            self.row += count
-            if end < len(piece) and count < _ROWS:
-                return end
-            start = end
-        return start
+            for _ in range(2)
+        ]
+        self.left: tuple[Bytes, int] | None = None
+        """When all blocks are made: the piece, and the place in it, of the first row that does
+        not end with its line; None if all do."""
 
-    def _take_odd(self, lines: Bytes, odd: Ints, single: Single) -> None:
-        """Read some of the lines strictly, given their numbers from 0."""
-        ends = np.append(np.flatnonzero(lines == _LF) + 1, len(lines))
-        starts = np.append(0, ends)
-        for n in odd.tolist():
-            number = self.row + n
-            line = lines[starts[n] : ends[n]].tobytes()
-            texts = self._picker.texts(number, self._tables.values(self._name, number, line))
-            if texts is not None:
-                single(number, texts)
+    def blocks(self, first: Bytes, start: int, pieces: Iterator[Bytes]) -> Iterator[Block]:
+        """Yield the blocks of a piece from `start` on, and of those after it."""
+        row = 2
+        for piece in itertools.chain([first], pieces):
+            while start < len(piece):
+                self._spare.reverse()
+                starts, ends, kinds = self._spare[0]
+                count, end = kernels.split_lines(piece, start, self._columns, *self._spare[0])
+                if row + count > MOST_ROWS:
+                    fault = f"has more than {MOST_ROWS:,} rows, which no feed has."
+                    raise FeedError(fault, file=self._name)
+                yield Block(
+                    piece, start, end, starts[:, :count], ends[:, :count], kinds[:count], row
+                )
+                row += count
+                if end < len(piece) and count < _ROWS:
+                    self.left = piece, end
+                    return
+                start = end
+            start = 0
+
+
+def _take_odd(block: Block, odd: Ints, table: tuple[Tables, str, Picker], single: Single) -> None:
+    """Read some of the lines of a block strictly, given their numbers from 0."""
+    tables, name, picker = table
+    lines = block.buffer[block.first : block.last]
+    ends = np.append(np.flatnonzero(lines == _LF) + 1, len(lines))
+    starts = np.append(0, ends)
+    for n in odd.tolist():
+        number = block.first_row + n
+        values = tables.values(name, number, lines[starts[n] : ends[n]].tobytes())
+        texts = picker.texts(number, values)
+        if texts is not None:
+            single(number, texts)
 
 
 class _Stream(io.RawIOBase):

@@ -116,7 +116,8 @@ class CallReader:
         if not here.any():
             return rest
         self.listed[trip[here]] = True
-        here &= ~(_is_one(block, 5) & _is_one(block, 6))
+        rows = np.flatnonzero(here)
+        here[rows[_is_one(block, 5, rows) & _is_one(block, 6, rows)]] = False
         odd = np.zeros(len(trip), dtype=np.uint8)
         used = here.view(np.uint8)
         stop = self._wanted.stops.find(block.column(1), used)
@@ -195,11 +196,11 @@ class CallReader:
         return Calls(*columns)
 
 
-def _is_one(block: Block, column: int) -> Masks:
-    """Tell which rows have the text "1" in a column."""
+def _is_one(block: Block, column: int, rows: Ints) -> Masks:
+    """Tell which of some rows have the text "1" in a column."""
     buffer, starts, ends = block.column(column)
-    one: Masks = ends - starts == 1
-    one[one] = buffer[starts[one]] == _ONE
+    one: Masks = ends[rows] - starts[rows] == 1
+    one[one] = buffer[starts[rows[one]]] == _ONE
     return one
 
 

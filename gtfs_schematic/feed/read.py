@@ -12,6 +12,7 @@ added: stops (stops.py; those that lie astray are left out, speeds.py), transfer
 from __future__ import annotations
 
 import datetime as dt
+import gc
 from collections import Counter
 from collections.abc import Iterator, Sequence
 from concurrent.futures import ThreadPoolExecutor
@@ -86,7 +87,7 @@ def read_feed(
     if not paths:
         raise UsageError("No feed was given. Give a GTFS zip or a folder.")
     check_modes(settings)
-    with ExitStack() as stack:
+    with _without_collector(), ExitStack() as stack:
         progress.phase("Reading the feed", 2 * len(paths))
         drafts = [_draft(stack, path, prefix) for path, prefix in _prefixed(paths)]
         plans, unused = _plans(drafts, settings, progress)
@@ -107,6 +108,21 @@ def read_feed(
             f"Nothing is left to draw that runs {choice.when}. Left out: {told or 'nothing'}."
         )
     return timetable
+
+
+@contextmanager
+def _without_collector() -> Iterator[None]:
+    """Keep the garbage collector from walking through all that is read, again and again.
+
+    What is read has no cycles. On a national feed this saves a tenth of the time.
+    """
+    was_on = gc.isenabled()
+    gc.disable()
+    try:
+        yield
+    finally:
+        if was_on:
+            gc.enable()
 
 
 def _prefixed(paths: Sequence[Path]) -> Iterator[tuple[Path, str]]:

@@ -54,7 +54,8 @@ def read_stops(tables: Tables) -> StopTable:
     for row, texts in tables.rows(_FILE, _COLUMNS):
         ident, name, code, lat, lon, type_, parent, boarding, platform = texts
         at = partial(Cell, _FILE, row)
-        if not is_usable_id(notes, at("stop_id", ident), rows):
+        plain = ident and ident not in rows and ident.isprintable()
+        if not plain and not is_usable_id(notes, at("stop_id", ident), rows):
             continue
         rows[ident] = row
         place = _place(notes, row, lon, lat)

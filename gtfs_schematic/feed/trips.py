@@ -55,9 +55,10 @@ class Trips:
     def services_of_routes(self) -> dict[str, frozenset[str]]:
         """Give the services of every route's trips, by route id."""
         known = self.route >= 0
-        pairs = np.unique(np.column_stack([self.route[known], self.service[known]]), axis=0)
+        count = max(1, len(self.services))
+        pairs = np.unique(self.route[known] * count + self.service[known])
         found: dict[str, set[str]] = {}
-        for route, service in pairs.tolist():
+        for route, service in (divmod(pair, count) for pair in pairs.tolist()):
             found.setdefault(self.route_ids[route], set()).add(self.services[service])
         return {route: frozenset(services) for route, services in found.items()}
 

@@ -1,11 +1,12 @@
 """Measure how a feed as large as a country's is read, against plain scans of its stop times.
 
 Run as ``python tests/benchmarks/large_feed.py [--cache DIR] [--zip]`` with the optional
-dependencies "benchmark". The feed (national_feed.py, over 1 GB) is written once and kept. Then, one
-after the other, each in a process of its own: scans of stop_times.txt that take every column as
-text, with pyarrow, DuckDB and polars; our reading of the busiest typical weekday, from the folder
-and, with --zip, from a zip; partridge loading the same date. Wall time counts from after the
-imports. Goals: at most 3 times the fastest scan, and under 2 GiB. Exits with 1 if they are missed.
+dependencies "benchmark". The feed (national_feed.py, over 1 GB) is written once and kept. Then, in
+several rounds, one after the other, each in a process of its own: scans of stop_times.txt that take
+every column as text, with pyarrow, DuckDB and polars, and our reading of the busiest typical
+weekday; at last, with --zip, our reading from a zip, and partridge loading the same date. Wall time
+counts from after the imports. Goals: the best of our readings takes at most 3 times the best of all
+scans, and under 2 GiB. Exits with 1 if they are missed.
 """
 # ruff: noqa: T201, PLC0415 - results go to standard output; a task imports what it measures
 
@@ -168,7 +169,7 @@ def zipped(folder: Path) -> Path:
     return path
 
 
-def compare(cache: Path, *, with_zip: bool) -> int:
+def compare(cache: Path, rounds: int, *, with_zip: bool) -> int:
     """Measure everything on the large feed and say whether the goals are met."""
     small = written_feed(cache / "warm", 400)
     feed = written_feed(cache / "national", 800_000)
@@ -178,33 +179,37 @@ def compare(cache: Path, *, with_zip: bool) -> int:
                 pass
     read_by_us(small)()  # compiles our loops, which is done once on a machine
     scans = [task for task in TASKS if task.startswith("scan")]
-    fastest = min(measure(task, feed)["seconds"] for task in scans)
-    ours = measure("our reading", feed)
-    fastest = min(fastest, measure("scan with pyarrow", feed)["seconds"])
+    scanned, read = [], []
+    for _ in range(rounds):  # in turns, since a machine is not equally free at all times
+        scanned += [measure(task, feed)["seconds"] for task in scans]
+        read.append(measure("our reading", feed))
+    ours, fastest = min(each["seconds"] for each in read), min(scanned)
+    megabytes = max(each["megabytes"] for each in read)
     if with_zip:
         print("The same from a zip:")
         measure("our reading", zipped(feed))
     partridge = measure("partridge", feed)
-    ratio = ours["seconds"] / fastest
+    ratio = ours / fastest
     print(
-        f"Our reading takes {ratio:.2f} times the fastest scan (goal: {_GOAL_RATIO}), "
-        f"{ours['megabytes']:.0f} MB (goal: {_GOAL_MB:.0f}) and "
-        f"{ours['seconds'] / partridge['seconds']:.3f} times what partridge takes."
+        f"Best of {rounds} rounds: our reading takes {ratio:.2f} times the fastest scan (goal: "
+        f"{_GOAL_RATIO}), {megabytes:.0f} MB (goal: {_GOAL_MB:.0f}) and "
+        f"{ours / partridge['seconds']:.3f} times what partridge takes."
     )
-    return int(ratio > _GOAL_RATIO or ours["megabytes"] > _GOAL_MB)
+    return int(ratio > _GOAL_RATIO or megabytes > _GOAL_MB)
 
 
 def main() -> int:
     """Parse the command line."""
     parser = argparse.ArgumentParser(description=__doc__.split("\n", maxsplit=1)[0])
     parser.add_argument("--cache", type=Path, default=Path(".cache/benchmarks"))
+    parser.add_argument("--rounds", type=int, default=3)
     parser.add_argument("--zip", action="store_true", help="read it from a zip, too")
     parser.add_argument("--task", nargs=2, metavar=("TASK", "FEED"), help=argparse.SUPPRESS)
     given = parser.parse_args()
     if given.task:
         run_task(given.task[0], Path(given.task[1]))
         return 0
-    return compare(given.cache, with_zip=given.zip)
+    return compare(given.cache, given.rounds, with_zip=given.zip)
 
 
 if __name__ == "__main__":
