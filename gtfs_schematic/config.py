@@ -16,7 +16,8 @@ from gtfs_schematic.drawing.model import DrawingSettings, SheetSettings
 from gtfs_schematic.drift.model import DriftSettings
 from gtfs_schematic.errors import UsageError
 from gtfs_schematic.feed.model import FeedSettings
-from gtfs_schematic.labels.model import LabelSettings
+from gtfs_schematic.geometry import Point
+from gtfs_schematic.labels.model import LabelSettings, Side
 from gtfs_schematic.layout.model import LayoutSettings
 from gtfs_schematic.network.model import NetworkSettings
 
@@ -85,6 +86,15 @@ def with_values(settings: Settings, values: Mapping[str, Any], name: str) -> Set
         room, key = path.split(".")
         tables[room][key] = value
     return settings_of(tables, name)
+
+
+def with_wishes(
+    settings: Settings, sides: Mapping[str, Side], pins: Mapping[str, Point]
+) -> Settings:
+    """Give settings in which labels and layout heed what a person asked for."""
+    labels = settings.labels.model_copy(update={"sides": settings.labels.sides | dict(sides)})
+    layout = settings.layout.model_copy(update={"pins": {**settings.layout.pins, **pins}})
+    return settings.model_copy(update={"labels": labels, "layout": layout})
 
 
 def _plain(value: Any) -> Any:  # noqa: ANN401 - TOML holds any of its kinds

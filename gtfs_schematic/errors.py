@@ -73,3 +73,20 @@ class InternalFaultError(SchematicError, RuntimeError):
     """A stage's own check found its output at fault: a defect of this program, not of the feed."""
 
     exit_code: ClassVar[int] = 1
+
+
+def must_be_sound(stage: str, faults: tuple[str, ...]) -> None:
+    """Stop if a stage's own check faults its output.
+
+    Raises
+    ------
+    InternalFaultError
+        Names the first ten faults.
+    """
+    if faults:
+        listed = "\n".join(f"  - {fault}" for fault in faults[:10])
+        more = f"\n  … and {len(faults) - 10} more" if len(faults) > 10 else ""
+        raise InternalFaultError(
+            f"The check of the {stage} stage found {len(faults)} faults, so nothing was written. "
+            f"This is a defect of the program: please report it with the feed.\n{listed}{more}"
+        )

@@ -18,7 +18,7 @@ from pathlib import Path
 from gtfs_schematic.bundles import check as bundles_check
 from gtfs_schematic.bundles.build import bundle
 from gtfs_schematic.bundles.model import BundledLayout, BundleSettings
-from gtfs_schematic.config import Settings
+from gtfs_schematic.config import Settings, with_wishes
 from gtfs_schematic.drawing import check as drawing_check
 from gtfs_schematic.drawing.compose import compose
 from gtfs_schematic.drawing.listing import to_text
@@ -43,14 +43,13 @@ from gtfs_schematic.edition.adjustments import Adjustments, plain
 from gtfs_schematic.edition.make import edition_of, stop_codes_of
 from gtfs_schematic.edition.model import Edition
 from gtfs_schematic.edition.save import to_json as edition_to_json
-from gtfs_schematic.errors import InternalFaultError
+from gtfs_schematic.errors import must_be_sound
 from gtfs_schematic.feed import check as feed_check
 from gtfs_schematic.feed.model import Timetable
 from gtfs_schematic.feed.read import read_feed
-from gtfs_schematic.geometry import Point
 from gtfs_schematic.labels import check as labels_check
 from gtfs_schematic.labels.fonts import text_width_mm
-from gtfs_schematic.labels.model import LabelledLayout, LabelSettings, Side
+from gtfs_schematic.labels.model import LabelledLayout, LabelSettings
 from gtfs_schematic.labels.place import place_labels
 from gtfs_schematic.labels.room import room_requests
 from gtfs_schematic.layout import check as layout_check
@@ -136,19 +135,10 @@ def adjust(
 ) -> Adjusted:
     """Apply adjustments, check what comes of it, and say which of them apply to nothing."""
     found = adjusted(network, adjustments, timetable)
-    _must_be_sound("adjustments", network_check.faults(found.network))
+    must_be_sound("adjustments", network_check.faults(found.network))
     for stale in found.stale:
         progress.note(f"an adjustment applies to nothing and is kept: {stale}")
     return found
-
-
-def with_wishes(
-    settings: Settings, sides: Mapping[str, Side], pins: Mapping[str, Point]
-) -> Settings:
-    """Give settings in which labels and layout heed what a person asked for."""
-    labels = settings.labels.model_copy(update={"sides": settings.labels.sides | dict(sides)})
-    layout = settings.layout.model_copy(update={"pins": {**settings.layout.pins, **pins}})
-    return settings.model_copy(update={"labels": labels, "layout": layout})
 
 
 def finish(
@@ -162,7 +152,7 @@ def finish(
     found = drawing_check.faults(
         drawing, network, unnamed=labelled.unplaced, said_as=labelled.abbreviated
     )
-    _must_be_sound("drawing", found)
+    must_be_sound("drawing", found)
 
     progress.phase("measuring the drift")
     timing = timing_of(timetable, network)
@@ -171,9 +161,9 @@ def finish(
         edition_of(labelled, sheet_title(network, settings.drawing), timing, codes),
         settings=settings.model_dump(mode="json", exclude_defaults=True),
     )
-    _must_be_sound("edition", edition_check.faults(edition))
+    must_be_sound("edition", edition_check.faults(edition))
     drift = measure_edition(edition, settings.drift)
-    _must_be_sound("drift", drift_check.faults(drift))
+    must_be_sound("drift", drift_check.faults(drift))
 
     return Result(
         settings,
@@ -204,10 +194,10 @@ def inspect(
     settings = settings or Settings()
     each = [paths] if isinstance(paths, str | os.PathLike) else paths
     timetable = read_feed([Path(path) for path in each], settings.feed, progress=progress)
-    _must_be_sound("feed", feed_check.faults(timetable))
+    must_be_sound("feed", feed_check.faults(timetable))
 
     network = build_network(timetable, settings.network, progress=progress)
-    _must_be_sound("network", network_check.faults(network))
+    must_be_sound("network", network_check.faults(network))
     return timetable, recolored(network, settings.drawing)
 
 
@@ -293,9 +283,9 @@ def labelled_from(
         frames = candidate_frames(network, settings.sheet, settings.drawing)
         return _labelled(network, settings, frames, progress)
     clearances = clearances_of(network, settings.bundles, settings.labels)
-    _must_be_sound("layout", layout_check.faults(layout, clearances, settings.layout.pins))
+    must_be_sound("layout", layout_check.faults(layout, clearances, settings.layout.pins))
     bundled = bundle(layout, settings.bundles, progress=progress)
-    _must_be_sound("bundles", bundles_check.faults(bundled))
+    must_be_sound("bundles", bundles_check.faults(bundled))
     kept = {key: side for key, side in sides.items() if key in network.station}
     # Without any wish names fall as they did, if nothing near them changed: to the letter.
     labelled = place_labels(bundled, settings.labels, progress=progress)
@@ -305,7 +295,7 @@ def labelled_from(
             settings.labels.model_dump() | {"sides": kept | settings.labels.sides}
         )
         labelled = place_labels(bundled, asked, progress=progress)
-    _must_be_sound("labels", labels_check.faults(labelled))
+    must_be_sound("labels", labels_check.faults(labelled))
     return labelled
 
 
@@ -322,13 +312,13 @@ def _labelled_on_sheet(
     tries: list[LabelledLayout] = []
     for _ in range(1 + ROUNDS):
         layout = fit_sheet(placement, clearances, frames, requests=requests, progress=progress)
-        _must_be_sound("layout", layout_check.faults(layout, clearances, settings.layout.pins))
+        must_be_sound("layout", layout_check.faults(layout, clearances, settings.layout.pins))
 
         bundled = bundle(layout, settings.bundles, progress=progress)
-        _must_be_sound("bundles", bundles_check.faults(bundled))
+        must_be_sound("bundles", bundles_check.faults(bundled))
 
         labelled = place_labels(bundled, settings.labels, progress=progress)
-        _must_be_sound("labels", labels_check.faults(labelled))
+        must_be_sound("labels", labels_check.faults(labelled))
 
         tries.append(labelled)
         helped = min(map(_unplaced, tries[-PATIENCE:])) < min(
@@ -359,14 +349,3 @@ def _joined(old: tuple[RoomRequest, ...], new: tuple[RoomRequest, ...]) -> tuple
     for request in (*old, *new):
         wanted[request.station_id] = max(request.length_mm, wanted.get(request.station_id, 0.0))
     return tuple(RoomRequest(key, wanted[key]) for key in sorted(wanted))
-
-
-def _must_be_sound(stage: str, faults: tuple[str, ...]) -> None:
-    """Stop if a stage's own check faults its output."""
-    if faults:
-        listed = "\n".join(f"  - {fault}" for fault in faults[:10])
-        more = f"\n  … and {len(faults) - 10} more" if len(faults) > 10 else ""
-        raise InternalFaultError(
-            f"The check of the {stage} stage found {len(faults)} faults, so nothing was written. "
-            f"This is a defect of the program: please report it with the feed.\n{listed}{more}"
-        )

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
 
-from gtfs_schematic.config import Settings, settings_of
+from gtfs_schematic.config import Settings, settings_of, with_wishes
 from gtfs_schematic.drawing.sheet import candidate_frames
 from gtfs_schematic.edition.adjustments import Adjustments, adjustments_of, plain, translated
 from gtfs_schematic.edition.carry import carried_matches, names_of, with_carried_ids
@@ -29,7 +29,6 @@ from gtfs_schematic.pipeline import (
     finish,
     inspect,
     labelled_from,
-    with_wishes,
 )
 from gtfs_schematic.progress import Progress, Silent
 

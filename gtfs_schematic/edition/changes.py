@@ -15,7 +15,7 @@ from gtfs_schematic.edition.line_changes import line_changes
 from gtfs_schematic.edition.model import Edition
 from gtfs_schematic.edition.roster import Roster, roster_of_edition
 from gtfs_schematic.edition.station_changes import station_changes, walk_changes
-from gtfs_schematic.errors import InternalFaultError
+from gtfs_schematic.errors import must_be_sound
 
 COMPARED = (
     "names, stops and their codes, places, access and calling lines of stations; names, colors, "
@@ -104,12 +104,7 @@ def roster_changes(
         *station_changes(old, new, stations, limits),
         *walk_changes(old, new),
     )
-    found = changes_check.faults(changes, old, new, stations)
-    if found:
-        raise InternalFaultError(
-            "The change sheet does not tell all that differs, or tells what does not, so it was "
-            f"not written. This is a defect of the program: please report it. {found[0]}"
-        )
+    must_be_sound("change sheet", changes_check.faults(changes, old, new, stations))
     service = any(not line.mode for line in old.lines)
     return ChangeSheet(
         _side(old),
