@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import re
+import tomllib
 from dataclasses import replace
 from pathlib import Path
 
@@ -12,17 +14,32 @@ from hypothesis import strategies as st
 from gtfs_schematic import pipeline
 from gtfs_schematic.drawing.contrast import contrast_ratio
 from gtfs_schematic.edition.adjusted import Adjusted, abbreviated, adjusted
-from gtfs_schematic.edition.adjustments import adjustments_of
+from gtfs_schematic.edition.adjustments import adjustments_from_toml, adjustments_of, plain
 from gtfs_schematic.errors import UsageError
 from gtfs_schematic.network.check import faults
 
-TIMETABLE, NETWORK = pipeline.inspect(Path(__file__).parents[2] / "data" / "before.zip")
+ROOT = Path(__file__).parents[2]
+TIMETABLE, NETWORK = pipeline.inspect(ROOT / "data" / "before.zip")
 
 
 def apply(**values: object) -> Adjusted:
     result = adjusted(NETWORK, adjustments_of(values, "test"), TIMETABLE)
     assert faults(result.network) == ()
     return result
+
+
+def test_the_example_of_the_readme_holds():
+    text = (ROOT / "README.md").read_text("utf-8")
+    (example,) = re.findall(r"```toml\n(.*?)```", text, re.DOTALL)
+    said = adjustments_from_toml(example.encode(), "README.md")
+    result = adjusted(NETWORK, said, TIMETABLE)
+    assert faults(result.network) == ()
+    assert result.stale == ()
+    assert result.network.station["183"].name == "Mulgavé Hall"
+    assert any(station.name.startswith("Univ.") for station in result.network.stations)
+    assert {"335-1", "332-1"}.isdisjoint(result.network.station)
+    assert "152-B1" in result.network.station
+    assert plain(said) == tomllib.loads(example)
 
 
 def test_no_adjustment_changes_nothing():
