@@ -12,7 +12,7 @@ from numpy.typing import NDArray
 from gtfs_schematic.errors import LayoutError
 from gtfs_schematic.geometry import Point
 from gtfs_schematic.layout.model import Clearances, LayoutSettings, RoomRequest, SheetFrame
-from gtfs_schematic.layout.plane import Part, PlaneGraph
+from gtfs_schematic.layout.plane import Part, Piece, PlaneGraph
 from gtfs_schematic.layout.settle import Wants
 from gtfs_schematic.layout.skeleton import Skeleton
 from gtfs_schematic.network.model import Network
@@ -20,6 +20,7 @@ from gtfs_schematic.network.model import Network
 _WALK_SHARE = 0.75
 """Length of a walk in shares of a station spacing: short, so that it reads as one place."""
 
+_AIR_MM = 0.2
 _MOST_WISHED_MM = 14.0
 """Length up to which a wish binds, millimetres; beyond, it is weighed against the others."""
 
@@ -63,9 +64,7 @@ def wants_of(
     clearances = sizes.clearances
     graph = skeleton.graph
     walk = np.array([piece.is_walk for piece in graph.pieces], dtype=bool)
-    least = np.array(
-        [sum(p.share * sizes.link_least[p.owner] for p in piece.parts) for piece in graph.pieces]
-    )
+    least = np.array([_part_leasts(graph, piece, sizes).sum() for piece in graph.pieces])
     lines = np.array([max(1, len(piece.lines)) for piece in graph.pieces])
     pitch = clearances.line_width_mm + clearances.line_gap_mm
     least = np.maximum(least, _between_ends(graph, clearances))
@@ -216,7 +215,7 @@ def part_wants(graph: PlaneGraph, sizes: Sizes) -> tuple[NDArray[np.float64], ..
     for piece in graph.pieces:
         stop = start + len(piece.parts)
         shares = np.array([part.share for part in piece.parts])
-        least = np.array([part.share * sizes.link_least[part.owner] for part in piece.parts])
+        least = _part_leasts(graph, piece, sizes)
         wish = np.array([part.share * sizes.link_wishes.get(part.owner, 0) for part in piece.parts])
         run = true[start:stop]
         run = run / max(float(run.sum()), 1e-9)
@@ -224,6 +223,20 @@ def part_wants(graph: PlaneGraph, sizes: Sizes) -> tuple[NDArray[np.float64], ..
         wants.append(np.column_stack([blend, least, wish]))
         start = stop
     return tuple(wants)
+
+
+def _part_leasts(graph: PlaneGraph, piece: Piece, sizes: Sizes) -> NDArray[np.float64]:
+    """Least length of each part of a piece, millimetres.
+
+    Beside a crossing it is so long that the markers of two stations next to it do not touch where
+    the lines cross at 45 degrees.
+    """
+    least = np.array([part.share * sizes.link_least[part.owner] for part in piece.parts])
+    apart = sizes.clearances.marker_mm / (2.0 * math.sin(math.pi / 8)) + _AIR_MM
+    for end, part in ((0, 0), (1, -1)):
+        if graph.station_of[piece.ends[end]] is None:
+            least[part] = max(least[part], apart)
+    return least
 
 
 def _wished_least(graph: PlaneGraph, sizes: Sizes) -> NDArray[np.float64]:
