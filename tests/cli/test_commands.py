@@ -210,7 +210,7 @@ def test_inspect_for_people(capsys):
     assert run(["inspect", str(BEFORE), "--date", "2026-03-11"]) == 0
     captured = capsys.readouterr()
     assert "Service date: 2026-03-11" in captured.out
-    assert "Reading the feed" in captured.err
+    assert "Wednesday 11 March 2026 was asked for" in captured.err
     with zipfile.ZipFile(BEFORE) as archive:
         routes = csv.DictReader(io.StringIO(archive.read("routes.txt").decode("utf-8-sig")))
         for route in routes:
