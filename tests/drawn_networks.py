@@ -28,7 +28,7 @@ from gtfs_schematic.network.model import (
 
 _INFO = FeedInfo(
     sha256="0" * 64,
-    publisher="Verkehrsbund Auenland-Mitte",
+    publisher="Verkehrsbund Wiesmarn-Mitte",
     version="7",
     start_date="2026-03-01",
     end_date="2026-06-30",

@@ -20,7 +20,7 @@ from gtfs_schematic.labels import fonts
 from gtfs_schematic.labels.model import Label, LabelledLayout, LabelSettings, TextLine
 from gtfs_schematic.layout.model import Layout, SheetFrame
 
-SETTINGS = DrawingSettings(attribution="Fahrplandaten: Verkehrsbund Auenland-Mitte, frei nutzbar.")
+SETTINGS = DrawingSettings(attribution="Fahrplandaten: Verkehrsbund Wiesmarn-Mitte, frei nutzbar.")
 
 
 def on_page(layout: Layout, size: str = "A3") -> Layout:

@@ -89,5 +89,5 @@ def test_what_leaves_the_page_is_found(drawing: Drawing, network: Network):
 def test_missing_cautions_and_attribution_are_found(drawing: Drawing, network: Network):
     bare = altered(drawing, "notes", lambda _: ())
     assert any("navigation" in fault for fault in faults(bare, network))
-    owed = replace(network, info=replace(network.info, attributions=("Karte: Amt Auenland",)))
-    assert any("Amt Auenland" in fault for fault in faults(drawing, owed))
+    owed = replace(network, info=replace(network.info, attributions=("Karte: Amt Wiesmarn",)))
+    assert any("Amt Wiesmarn" in fault for fault in faults(drawing, owed))

@@ -119,7 +119,7 @@ def test_dates_are_an_iso_8601_interval():
     open_end = replace(network, info=replace(network.info, end_date=""))
     assert validity(open_end) == "Valid from 2026-03-01"
     unknown = replace(network.info, start_date="", end_date="", version="", service_date="")
-    assert subtitle(replace(network, info=unknown)) == "Data: Verkehrsbund Auenland-Mitte"
+    assert subtitle(replace(network, info=unknown)) == "Data: Verkehrsbund Wiesmarn-Mitte"
 
 
 def test_courses_name_ends_branches_and_rings():

@@ -52,7 +52,7 @@ def test_every_station_name_can_be_found(reader: pypdf.PdfReader, labelled: Labe
 def test_title_dates_and_cautions_can_be_found(reader: pypdf.PdfReader):
     text = dense(reader.pages[0].extract_text())
     for words in (
-        "Verkehrsbund Auenland-Mitte",
+        "Verkehrsbund Wiesmarn-Mitte",
         "2026-03-01/2026-06-30",
         "not to scale",
         "frei nutzbar",
