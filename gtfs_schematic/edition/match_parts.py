@@ -36,12 +36,12 @@ def absorbed_stations(old: Roster, new: Roster, known: Mapping[str, str]) -> Ite
     matching = StationMatching(old, new)
     trusted = matching.worths[0].agree >= _TRUSTED
     matched = set(known.values())
-    for i, station in enumerate(matching.rows):
-        if station.id in known:
-            continue
+    beside = matching.beside([s.id not in known for s in matching.rows], _NAMED_M)
+    for i, others in beside.items():
+        station = matching.rows[i]
         judged = []
-        for j, other in enumerate(matching.columns):
-            away = matching.meters((i, j))
+        for other in (matching.columns[j] for j in others):
+            away = matching.meters((i, matching.column_of[other.id]))
             if other.id not in matched:
                 continue
             if trusted and set(station.stop_ids) & set(other.stop_ids):

@@ -83,6 +83,18 @@ class StationMatching:
             found.update((i, j) for i, several in enumerate(near) for j in several)
         return frozenset(found)
 
+    def beside(self, wanted: Sequence[bool], meters: float) -> dict[int, list[int]]:
+        """Give per wanted row the columns that lie within some metres or share a stop id."""
+        rows = [i for i, want in enumerate(wanted) if want]
+        if not rows or not len(self.columns):
+            return {}
+        near = cKDTree(self.at_column).query_ball_point(self.at_row[rows], meters)
+        shared = _joined([self.rows[i] for i in rows], self.columns, _stop_ids)
+        found = {i: set(several) for i, several in zip(rows, near, strict=True)}
+        for n, j in shared:
+            found[rows[n]].add(j)
+        return {i: sorted(found[i]) for i in rows}
+
     @cached_property
     def worths(self) -> tuple[Worth, Worth]:
         """What stop ids and stop codes are worth."""
