@@ -51,6 +51,7 @@ def revise(
     set for EDITION holds again; options win over it, and a configuration takes its place. So do
     its adjustments, unless others are given.
     """
+    adjustments = options.adjustments_from(given)
     from gtfs_schematic.edition.folder import (
         check_target,
         digest_of_edition,
@@ -64,7 +65,6 @@ def revise(
     check_target(out, overwrite=given["overwrite"])
     before = load_edition(edition)
     settings = options.settings_from(given, before.settings)
-    adjustments = options.adjustments_from(given)
     folder = edition if edition.is_dir() else edition.parent
     diagram = options.read_bytes(folder / "diagram.svg", "diagram of the edition")
     from gtfs_schematic.revision import files_of_revision
@@ -87,6 +87,8 @@ def revise(
 
 def describe(revision: Revision, out: Path) -> list[str]:
     """Write what changed, for people."""
+    from gtfs_schematic.edition.change_words import stayed
+
     sheet, result = revision.sheet, revision.result
     rows = [f"{c.subject} {c.kind}: {c.name} ({c.id})" for c in sheet.large]
     missing = result.labelled.unplaced
@@ -100,6 +102,7 @@ def describe(revision: Revision, out: Path) -> list[str]:
             if revision.anew
             else [f"Kept in place: {sheet.kept - sheet.moved_on_sheet} of {sheet.kept} stations"]
         ),
+        *([stayed(sheet.stability)] if sheet.stability else []),
         *(f"Look at this match: {doubt}" for doubt in sheet.doubtful),
         *([f"Names without a place: {', '.join(missing)}"] if missing else ["Names: all placed"]),
         f"Written to {out}",

@@ -20,6 +20,7 @@ from gtfs_schematic.edition.change_words import (
     doubts_heading,
     period,
     sentence,
+    stayed,
     summary,
 )
 from gtfs_schematic.edition.changes import ChangeSheet
@@ -80,6 +81,8 @@ def _rows(sheet: ChangeSheet) -> Iterator[Row]:
             yield heading, _HEADING, True, False
         yield from ((sentence(change), _BODY, False, True) for change in rows)
     yield conclusion(sheet), _BODY, True, False
+    if sheet.stability:
+        yield stayed(sheet.stability), _BODY, False, False
     if sheet.doubtful:
         yield doubts_heading(sheet), _HEADING, True, False
         yield from ((doubt, _BODY, False, True) for doubt in sheet.doubtful)

@@ -21,6 +21,7 @@ from gtfs_schematic.edition.change_words import (
     doubts_heading,
     period,
     sentence,
+    stayed,
     summary,
 )
 from gtfs_schematic.edition.changes import ChangeSheet
@@ -71,6 +72,7 @@ def to_html(sheet: ChangeSheet, sheets: Sheets | None = None) -> bytes:
         f"{escape(summary(sheet))}</p>",
         *(_table(sheet.large, subject) for subject in HEADINGS),
         f'<p class="verdict">{escape(conclusion(sheet))}</p>',
+        f"<p>{escape(stayed(sheet.stability))}</p>" if sheet.stability else "",
         _doubts(sheet),
         *(_pictures(sheet, sheets) if sheets is not None else ()),
         _small(sheet),

@@ -6,6 +6,7 @@ from collections.abc import Mapping
 
 from gtfs_schematic.edition.changes import COMPARED, ChangeSheet, Side
 from gtfs_schematic.edition.differences import Change
+from gtfs_schematic.edition.stability import Stability
 
 HEADINGS: Mapping[str, str] = {
     "line": "Lines",
@@ -89,3 +90,19 @@ def conclusion(sheet: ChangeSheet) -> str:
 def doubts_heading(sheet: ChangeSheet) -> str:
     """Head the list of matches to look at."""
     return f"Matches to look at ({len(sheet.doubtful)})"
+
+
+def stayed(found: Stability) -> str:
+    """Say what of the drawing stayed as it was."""
+    moved = f"{found.moved} of {found.kept} stations moved"
+    if found.moved:
+        moved += (
+            f" (median {found.move_median_mm:.1f} mm, most {found.move_largest_mm:.1f} mm, "
+            f"as far as {found.farthest_links} links from a change)"
+        )
+    return (
+        f"On the sheet {moved}, {found.links_turned} of {found.links_kept} links turned, "
+        f"{found.labels_turned} of {found.labels_kept} names stand on another side, "
+        f"{found.order_inversions} pairs of lines changed places in {found.orders_kept} bundles, "
+        f"{found.colors_changed} lines changed color."
+    )

@@ -14,6 +14,7 @@ from gtfs_schematic.edition.identity import Matches
 from gtfs_schematic.edition.line_changes import line_changes
 from gtfs_schematic.edition.model import Edition
 from gtfs_schematic.edition.roster import Roster, roster_of_edition
+from gtfs_schematic.edition.stability import Stability, stability_of
 from gtfs_schematic.edition.station_changes import station_changes, walk_changes
 from gtfs_schematic.errors import must_be_sound
 
@@ -22,6 +23,11 @@ COMPARED = (
     "routes, courses and times of lines; walks"
 )
 """What "nothing else" means."""
+
+_SEEN = frozenset(
+    {"new", "gone", "merged", "split", "extended", "shortened", "rerouted", "calls", "way"}
+)
+"""Changes of a line that the drawing must follow."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -53,6 +59,8 @@ class ChangeSheet:
     """Stations of both."""
     moved_on_sheet: int
     """How many of them stand elsewhere on the sheet."""
+    stability: Stability | None = None
+    """What of the drawing stayed; None where feeds alone are compared."""
 
     @property
     def large(self) -> tuple[Change, ...]:
@@ -81,7 +89,13 @@ def change_sheet(
     """
     sheet = roster_changes(roster_of_edition(before), roster_of_edition(after), matches, limits)
     drawn = tuple(_drawn(before, after))
-    return replace(sheet, changes=(*sheet.changes, *drawn), moved_on_sheet=len(drawn))
+    touched = {s for c in sheet.large if c.kind in _SEEN or c.subject != "line" for s in c.places}
+    return replace(
+        sheet,
+        changes=(*sheet.changes, *drawn),
+        moved_on_sheet=len(drawn),
+        stability=stability_of(before, after, touched),
+    )
 
 
 def roster_changes(
