@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Sequence
 from dataclasses import dataclass, replace
 
 from gtfs_schematic.config import Settings, settings_of, with_wishes
@@ -16,7 +16,8 @@ from gtfs_schematic.edition.changes import ChangeSheet, change_sheet, to_csv, to
 from gtfs_schematic.edition.identity import Matches, match_edition
 from gtfs_schematic.edition.make import stop_codes_of
 from gtfs_schematic.edition.model import Edition
-from gtfs_schematic.geometry import Point, distance
+from gtfs_schematic.feed.model import Timetable
+from gtfs_schematic.layout import check as layout_check
 from gtfs_schematic.layout.model import Layout, SheetFrame
 from gtfs_schematic.layout.revise import revise_layout
 from gtfs_schematic.network.model import Network
@@ -31,8 +32,6 @@ from gtfs_schematic.pipeline import (
     labelled_from,
 )
 from gtfs_schematic.progress import Progress, Silent
-
-_PIN_MM = 0.01
 
 
 @dataclass(frozen=True, slots=True)
@@ -81,11 +80,33 @@ def revise(
     SchematicError
         If the feed cannot be used, or the layout cannot meet what was asked.
     """
-    if settings is None:
-        settings = settings_of(before.settings, "settings of the edition")
+    settings = settings or settings_of(before.settings, "settings of the edition")
+    read = inspect(paths, settings, progress=progress)
+    told = Told(settings, adjustments, sha256)
+    return revise_network(before, read, told, progress=progress)
+
+
+@dataclass(frozen=True, slots=True)
+class Told:
+    """What a revision is told beside edition and feed; see `revise`."""
+
+    settings: Settings
+    adjustments: Adjustments | None = None
+    sha256: str = ""
+
+
+def revise_network(
+    before: Edition,
+    read: tuple[Timetable, Network],
+    told: Told,
+    *,
+    progress: Progress = Silent(),  # noqa: B008 - it has no state
+) -> Revision:
+    """Draw a timetable and its network as the edition after another, as `revise` does."""
+    (timetable, network), settings = read, told.settings
+    adjustments = told.adjustments
     if adjustments is None:
         adjustments = adjustments_of(before.adjustments, "adjustments of the edition")
-    timetable, network = inspect(paths, settings, progress=progress)
     codes = stop_codes_of(timetable, network)
     found = match_edition(before, network, codes, adjustments)
     now = adjust(network, _of_now(adjustments, before, network, found), timetable, progress)
@@ -101,7 +122,7 @@ def revise(
         progress.note("what is new finds no room beside what stands; laying out anew")
     labelled = labelled_from(layout, network, wanted, _sides(before), progress)
     result = finish(timetable, labelled, settings, progress)
-    edition = replace(result.edition, previous=sha256, adjustments=plain(adjustments))
+    edition = replace(result.edition, previous=told.sha256, adjustments=plain(adjustments))
     result = replace(result, edition=edition)
     sheet = change_sheet(before, result.edition, matches)
     return Revision(result, matches, sheet, layout is None)
@@ -156,15 +177,11 @@ def _layout(
     clearances = clearances_of(network, settings.bundles, settings.labels)
     for frame in _frames(before, network, settings):
         layout = revise_layout(network, positions, paths, clearances, frame, progress=progress)
-        if layout is not None and _pinned(layout, settings.layout.pins):
+        # A course that breaks a guarantee, or stands where a new pin wants to, is none.
+        pins = settings.layout.pins
+        if layout is not None and not layout_check.faults(layout, clearances, pins):
             return layout
     return None
-
-
-def _pinned(layout: Layout, pins: Mapping[str, Point]) -> bool:
-    """Whether every pin is kept: what stands may have to give way to a new one."""
-    drawn = layout.positions
-    return all(distance(drawn[key], pin) <= _PIN_MM for key, pin in pins.items() if key in drawn)
 
 
 def _frames(before: Edition, network: Network, settings: Settings) -> list[SheetFrame]:
