@@ -66,7 +66,6 @@ def wants_of(
     walk = np.array([piece.is_walk for piece in graph.pieces], dtype=bool)
     least = np.array([_part_leasts(graph, piece, sizes).sum() for piece in graph.pieces])
     lines = np.array([max(1, len(piece.lines)) for piece in graph.pieces])
-    pitch = clearances.line_width_mm + clearances.line_gap_mm
     least = np.maximum(least, _between_ends(graph, clearances))
     goal = _spans(skeleton, sizes.settings.fidelity) * scale_mm
     goal[walk] = np.maximum(least[walk], _WALK_SHARE * scale_mm)
@@ -83,8 +82,7 @@ def wants_of(
     spans = np.array([piece.spans for piece in graph.pieces])
     owner = skeleton.piece_of
     lines = lines[owner]
-    half = (lines * pitch - clearances.line_gap_mm) / 2.0
-    half[walk[owner]] = clearances.line_width_mm / 4.0
+    half = np.array([clearances.half_width_mm(len(piece.lines)) for piece in graph.pieces])[owner]
     jog = skeleton.jogs
     shortest: NDArray[np.float64] = np.where(jog, 0.0, _CORNER * (clearances.marker_mm + half))
     weight = 1.0 / np.sqrt(np.maximum(spans, 0.3))

@@ -40,6 +40,13 @@ class Clearances:
     label_width_mm: Mapping[str, float]
     """Per station the width of its label on one text line."""
 
+    def half_width_mm(self, lines: int) -> float:
+        """Give half the width of so many lines side by side, or of a walk (0 lines)."""
+        if lines == 0:
+            return self.line_width_mm / 4.0
+        pitch = self.line_width_mm + self.line_gap_mm
+        return (lines * pitch - self.line_gap_mm) / 2.0
+
 
 @dataclass(frozen=True, slots=True)
 class SheetFrame:

@@ -95,14 +95,14 @@ class Obstacles:
         return Obstacles(
             frame,
             lines,
-            np.array([_half(clearances, e.lines) for e in edges]),
+            np.array([clearances.half_width_mm(e.lines) for e in edges]),
             shared,
             crosses & ~unsure,
             unsure,
             _crossed_by(chain, courses, ground),
             shapely.points([at[s] for s in stations]),
             np.array([s in ends for s in stations], dtype=bool),
-            max(_half(clearances, e.lines) for e in chain.edges),
+            max(clearances.half_width_mm(e.lines) for e in chain.edges),
             2.0 * clearances.line_gap_mm,
             clearances.marker_mm / 2.0,
         )
@@ -166,10 +166,3 @@ def _crossed_by(
         crosses = shapely.crosses(courses, shapely.LineString([ground[a], ground[b]]))
         where[np.asarray(crosses, dtype=bool)] = e
     return where
-
-
-def _half(clearances: Clearances, lines: int) -> float:
-    if lines == 0:
-        return clearances.line_width_mm / 4.0
-    pitch = clearances.line_width_mm + clearances.line_gap_mm
-    return (lines * pitch - clearances.line_gap_mm) / 2.0
