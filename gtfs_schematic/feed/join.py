@@ -57,7 +57,13 @@ def _prefixed(part: Timetable, prefix: str) -> Timetable:
             for s in part.stops
         ),
         routes=tuple(
-            replace(r, id=prefix + r.id, agency_id=prefix + r.agency_id) for r in part.routes
+            replace(
+                r,
+                id=prefix + r.id,
+                agency_id=prefix + r.agency_id,
+                network_id=r.network_id and prefix + r.network_id,
+            )
+            for r in part.routes
         ),
         patterns=tuple(_prefixed_pattern(p, prefix) for p in part.patterns),
         transfers=tuple(

@@ -102,6 +102,8 @@ class Route:
     color: str | None
     text_color: str | None
     sort_order: int | None
+    network_id: str = ""
+    """The network that the feed puts the route in; "" if it names none."""
 
 
 @dataclass(frozen=True, slots=True)

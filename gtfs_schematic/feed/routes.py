@@ -7,6 +7,7 @@ from functools import partial
 from gtfs_schematic.feed.cells import Cell, is_usable_id, name_of, value_of, whole_of
 from gtfs_schematic.feed.model import Agency, Route
 from gtfs_schematic.feed.modes import mode_of
+from gtfs_schematic.feed.networks import with_networks
 from gtfs_schematic.feed.tables import Tables
 from gtfs_schematic.feed.values import parse_color, parse_whole
 
@@ -38,10 +39,11 @@ def read_routes(tables: Tables, agencies: dict[str, Agency]) -> dict[str, Route]
         "route_color",
         "route_text_color",
         "route_sort_order",
+        "network_id",
     )
     notes = tables.notebook
     for row, texts in tables.rows("routes.txt", columns):
-        ident, agency, short, long_, type_, color, text_color, order = map(
+        ident, agency, short, long_, type_, color, text_color, order, network = map(
             partial(Cell, "routes.txt", row), columns, texts
         )
         if not is_usable_id(notes, ident, routes):
@@ -59,8 +61,9 @@ def read_routes(tables: Tables, agencies: dict[str, Agency]) -> dict[str, Route]
             _color(tables, color),
             _color(tables, text_color),
             whole_of(notes, order),
+            network.text,
         )
-    return routes
+    return with_networks(tables, routes)
 
 
 def _agency_id(tables: Tables, cell: Cell, agencies: dict[str, Agency]) -> str:

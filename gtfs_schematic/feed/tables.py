@@ -37,6 +37,8 @@ REQUIRED_COLUMNS: dict[str, tuple[str, ...]] = {
     "calendar_dates.txt": ("service_id", "date", "exception_type"),
     "frequencies.txt": ("trip_id", "start_time", "end_time", "headway_secs"),
     "shapes.txt": ("shape_id", "shape_pt_lat", "shape_pt_lon", "shape_pt_sequence"),
+    "networks.txt": (),
+    "route_networks.txt": (),
     "transfers.txt": (),
     "translations.txt": (),
     "attributions.txt": ("organization_name",),

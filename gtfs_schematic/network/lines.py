@@ -68,8 +68,7 @@ def _trunk(route: Route, grouping: LineGrouping) -> str | None:
     if grouping == "color":
         return route.color
     if grouping == "network":
-        # A timetable whose routes do not tell their network has no networks.
-        return getattr(route, "network_id", None) or None
+        return route.network_id or None
     return None
 
 
