@@ -96,7 +96,7 @@ def test_lines_can_be_grouped_by_network(read_town, table):
     """The tram and a second tram under another name, which it meets, are one network."""
     routes = table("routes.txt") + "t2,oulm,2,Locks tram,0,,\n"
     changes = {
-        "routes.txt": with_column(routes, "land", "land", ["land"]),
+        "routes.txt": with_column(routes, ["land", "land", "land"]),
         "trips.txt": table("trips.txt") + "t2,wk,t2a,Tamselby,,\n",
         "stop_times.txt": table("stop_times.txt")
         + "t2a,07:00:00,07:00:00,vend,1\nt2a,07:08:00,07:08:00,tams,2\n",
