@@ -24,7 +24,8 @@ from numpy.typing import NDArray
 from gtfs_schematic.errors import FeedError
 from gtfs_schematic.feed import kernels
 from gtfs_schematic.feed.kernels import Bytes, Ints, Places
-from gtfs_schematic.feed.tables import MOST_ROWS, Picker, Tables
+from gtfs_schematic.feed.picker import Picker
+from gtfs_schematic.feed.tables import MOST_ROWS, Tables
 
 _SIZE = 1 << 21
 _ROWS = 1 << 16

@@ -6,7 +6,6 @@ from collections.abc import Callable, Container
 from dataclasses import dataclass
 from typing import TypeVar
 
-from gtfs_schematic.errors import FeedError
 from gtfs_schematic.feed.findings import Notebook
 from gtfs_schematic.feed.model import Severity
 from gtfs_schematic.feed.values import clean_name, parse_whole
@@ -29,13 +28,7 @@ class Cell:
 
 
 def is_usable_id(notebook: Notebook, cell: Cell, seen: Container[str]) -> bool:
-    """Tell whether a row's own id can be used; an empty or second one is found.
-
-    Raises
-    ------
-    FeedError
-        An id with control characters, which no file that we write could hold.
-    """
+    """Tell whether a row's own id can be used; an empty, second or odd one is found."""
     if not cell.text:
         cell.found(notebook, "error", "row has no id and is skipped")
         return False
@@ -43,13 +36,8 @@ def is_usable_id(notebook: Notebook, cell: Cell, seen: Container[str]) -> bool:
         cell.found(notebook, "error", "id stands in the table before; the first row counts")
         return False
     if not cell.text.isprintable():
-        raise FeedError(
-            "id holds invisible characters. Remove them.",
-            file=cell.file,
-            row=cell.row,
-            field=cell.field,
-            value=cell.text,
-        )
+        fault = "id holds spaces of an unusual width or invisible characters; it counts as it is"
+        cell.found(notebook, "warning", fault)
     return True
 
 

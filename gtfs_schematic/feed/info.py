@@ -60,6 +60,13 @@ def read_imprint(tables: Tables) -> Imprint:
     return Imprint()
 
 
+def read_languages(tables: Tables) -> list[str]:
+    """Give the languages that the feed and its agencies name, the feed's first; tags or ""."""
+    silent = tables.without_findings()
+    columns = (("feed_info.txt", ("feed_lang",)), ("agency.txt", ("agency_lang",)))
+    return [tag for file, column in columns for _, (tag,) in silent.rows(file, column)]
+
+
 def read_attributions(
     tables: Tables, agency_ids: Iterable[str], route_ids: Iterable[str]
 ) -> tuple[str, ...]:

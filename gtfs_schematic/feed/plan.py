@@ -18,8 +18,9 @@ from gtfs_schematic.feed.calendars import (
 )
 from gtfs_schematic.feed.dates import EARLY, LATE
 from gtfs_schematic.feed.digest import Digest
+from gtfs_schematic.feed.encodings import legacy_codec
 from gtfs_schematic.feed.findings import Notebook
-from gtfs_schematic.feed.info import Imprint, read_imprint
+from gtfs_schematic.feed.info import Imprint, read_imprint, read_languages
 from gtfs_schematic.feed.kernels import Ints
 from gtfs_schematic.feed.model import Agency, FeedSettings, Route
 from gtfs_schematic.feed.night import first_departures, starts_by_service
@@ -76,6 +77,7 @@ def draft_feed(files: FeedFiles, digest: Digest, prefix: str) -> Draft:
     tables = Tables(files, digest.is_utf8, Notebook(prefix))
     check_tables(tables)
     _find_odd_files(tables)
+    tables = replace(tables, legacy=legacy_codec(read_languages(tables)))
     agencies = read_agencies(tables)
     return Draft(tables, digest, agencies, read_routes(tables, agencies))
 

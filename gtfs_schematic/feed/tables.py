@@ -4,14 +4,14 @@ from __future__ import annotations
 
 import csv
 import io
-import re
 from collections.abc import Callable, Iterator
 from dataclasses import dataclass, replace
-from operator import itemgetter
 
 from gtfs_schematic.errors import FeedError
 from gtfs_schematic.feed.archive import FeedFiles
+from gtfs_schematic.feed.encodings import shown
 from gtfs_schematic.feed.findings import Notebook
+from gtfs_schematic.feed.picker import Picker
 
 Row = tuple[int, tuple[str, ...]]
 """Row number (the header is row 1) and the stripped texts of the columns asked for."""
@@ -49,9 +49,6 @@ REQUIRED_COLUMNS: dict[str, tuple[str, ...]] = {
 MOST_ROWS = 500_000_000
 """Some ten times the stop_times.txt of the largest countries; more is a fault or an attack."""
 
-_MUST_BE_RIGHT = re.compile("_id$|name$|^translation$|^parent_station$|^field_value$|^organization")
-"""Columns whose text tells things apart or stands on the diagram."""
-
 _NEEDED = ("agency.txt", "routes.txt", "stop_times.txt", "stops.txt", "trips.txt")
 _CALENDARS = ("calendar.txt", "calendar_dates.txt")
 
@@ -64,6 +61,8 @@ class Tables:
     is_utf8: Callable[[str], bool]
     """Tells whether a file is UTF-8 throughout."""
     notebook: Notebook
+    legacy: str = "cp1252"
+    """Codec in which text is read that is not UTF-8; see encodings.py."""
 
     def has(self, name: str) -> bool:
         """Tell whether the feed has a file of this name."""
@@ -77,12 +76,13 @@ class Tables:
         """Stream the rows of a table; a column that the table does not have gives "".
 
         Rows with too few values are read with the rest empty; rows with more values than the
-        header has names are skipped, because their values cannot be told apart. Both are found.
+        header has names are skipped, because their values cannot be told apart. Text that is not
+        UTF-8 is read as `Picker` says. All three are found.
 
         Raises
         ------
         FeedError
-            Text in a wanted column that is not UTF-8, or quotes that do not match.
+            Quotes that do not match; a table in UTF-16.
         """
         if self.has(name):
             with self.files.open(name) as raw:
@@ -143,7 +143,7 @@ class Tables:
             header = [column.strip() for column in next(reader, [])]
         except csv.Error as error:
             raise FeedError(f"cannot be read as CSV ({error}).", file=name, row=1) from error
-        header = [_shown(column) for column in header]
+        header = [shown(column) for column in header]
         if header and header[0].startswith("\ufffd"):
             raise FeedError(
                 "is not UTF-8 text. Save the file as UTF-8 (it looks like UTF-16).",
@@ -180,105 +180,6 @@ class Tables:
             raise FeedError(f"has more than {MOST_ROWS:,} rows, which no feed needs.", file=name)
 
 
-class Picker:
-    """Picks the columns asked for out of a table's rows.
-
-    Parameters
-    ----------
-    tables
-        For findings.
-    name, header
-        Of the table.
-    columns
-        What to pick; a column that the table does not have gives "".
-    """
-
-    def __init__(
-        self, tables: Tables, name: str, header: tuple[str, ...], columns: tuple[str, ...]
-    ) -> None:
-        self._notebook, self._name, self._header = tables.notebook, name, header
-        places = [header.index(column) if column in header else -1 for column in columns]
-        # A place of -1 picks the empty text that is appended to every row.
-        self._pick = itemgetter(*places) if len(places) > 1 else _pick_one(places[0])
-        self._wanted = frozenset(columns)
-        self._suspect = not tables.is_utf8(name)
-        if self._suspect:
-            for column in header:
-                if "\ufffd" in column:
-                    fault = "column name is not UTF-8; the column is not used"
-                    self._notebook.find("warning", name, fault, row=1, field=column)
-
-    def texts(self, number: int, values: list[str]) -> tuple[str, ...] | None:
-        """Give the stripped texts of a row; None if the row is blank or cannot be told apart."""
-        row = values
-        if len(row) != len(self._header):
-            if not row:
-                return None
-            fitted = self._fit(number, row)
-            if fitted is None:
-                return None
-            row = fitted
-        if self._suspect:
-            row = self._readable(number, row)
-        row.append("")
-        return tuple(map(str.strip, self._pick(row)))
-
-    def _fit(self, number: int, values: list[str]) -> list[str] | None:
-        """Bring a ragged row to the header's width; None if that would be guessing."""
-        width = len(self._header)
-        if len(values) < width:
-            if not any(map(str.strip, values)):
-                return None
-            self._notebook.find(
-                "warning",
-                self._name,
-                "row has fewer values than the header has names; the rest is taken as empty",
-                row=number,
-                field=self._header[len(values)],
-            )
-            return values + [""] * (width - len(values))
-        extra = ",".join(map(_shown, values[width:]))
-        if extra.strip(", "):
-            self._notebook.find(
-                "error",
-                self._name,
-                "row has more values than the header has names and is skipped; "
-                "a text that holds a comma needs quotes",
-                row=number,
-                value=extra,
-            )
-            return None
-        self._notebook.find(
-            "info", self._name, "row ends in commas that the header does not have", row=number
-        )
-        return values[:width]
-
-    def _readable(self, number: int, values: list[str]) -> list[str]:
-        """Find text that is not UTF-8 and put U+FFFD for it; refuse it in ids and names."""
-        shown = list(map(_shown, values))
-        for column, before, after in zip(self._header, values, shown, strict=True):
-            if before == after:
-                continue
-            if column in self._wanted and _MUST_BE_RIGHT.search(column):
-                raise FeedError(
-                    "is not UTF-8 text. Save the file as UTF-8 (it may be in a Windows or Latin "
-                    "code).",
-                    file=self._name,
-                    row=number,
-                    field=column,
-                    value=after.strip(),
-                )
-            self._notebook.find(
-                "warning",
-                self._name,
-                "text is not UTF-8; U+FFFD stands for what cannot be read",
-                row=number,
-                field=column,
-                value=after.strip(),
-            )
-        return shown
-
-
 def check_tables(tables: Tables) -> None:
     """Refuse a feed that lacks files or columns no diagram can do without, naming all of them.
 
@@ -312,15 +213,3 @@ def _lacking(name: str, present: tuple[str, ...]) -> str:
     """Give a missing name, with the one beside it that differs by case only."""
     alike = [other for other in present if other.lower() == name.lower()]
     return f"{name} (found {alike[0]!r})" if alike else name
-
-
-def _pick_one(place: int) -> itemgetter[slice]:
-    """Pick one value as a list of one, so that one column reads as several do."""
-    return itemgetter(slice(place, place + 1 or None))
-
-
-def _shown(text: str) -> str:
-    """Give a text with U+FFFD for bytes that are not UTF-8."""
-    if text.isascii():
-        return text
-    return text.encode("utf-8", "surrogateescape").decode("utf-8", "replace")

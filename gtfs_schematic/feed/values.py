@@ -87,3 +87,8 @@ def clean_name(text: str) -> str:
 
 def _is_control(char: str) -> bool:
     return unicodedata.category(char) in {"Cc", "Cs"} or char in "\ufffe\uffff"
+
+
+def has_controls(text: str) -> bool:
+    """Tell whether a text holds characters that no XML file may hold."""
+    return not text.isprintable() and any(map(_is_control, text))

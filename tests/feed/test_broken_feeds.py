@@ -13,7 +13,6 @@ from gtfs_schematic.network.model import NetworkSettings
 
 REFUSED = {
     "au-sydney-entrances": "lacks routes.txt; stop_times.txt; trips.txt",
-    "bad_utf8": "agency.txt, row 2, field agency_name",
     "empty_file": "lacks column agency_name of agency.txt",
     "missing_agency": "lacks agency.txt",
     "missing_calendar": "lacks calendar.txt or calendar_dates.txt",
@@ -31,6 +30,7 @@ REFUSED = {
 """What the error says: the names of the feeds say what is wrong with them."""
 
 FOUND = {
+    "bad_utf8": ("agency.txt", "agency_name"),
     "bad_date_format": ("calendar.txt", "start_date"),
     "contains_null": ("routes.txt", "route_url"),
     "duplicate_schedule_id": ("calendar.txt", "service_id"),

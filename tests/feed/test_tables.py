@@ -71,21 +71,6 @@ def test_ragged_rows_are_found_and_only_clear_ones_are_read(read_town, table):
     assert "odd" not in left_out
 
 
-def test_text_that_is_not_utf8_is_refused_where_it_is_used(read_town, table):
-    latin = table("stops.txt").replace("Tamselby", "Tämselby").encode("latin-1")
-    with pytest.raises(FeedError) as caught:
-        read_town({"stops.txt": latin})
-    error = caught.value
-    assert (error.file, error.row, error.field) == ("stops.txt", 5, "stop_name")
-    assert error.value == "T\ufffdmselby"
-
-
-def test_text_that_is_not_utf8_elsewhere_is_only_found(read_town, table):
-    lines = table("agency.txt").splitlines()
-    text = f"{lines[0]},agency_note\n{lines[1]},é\n".encode("latin-1")
-    assert [f.severity for f in read_town({"agency.txt": text}).findings] == ["warning"]
-
-
 def test_utf16_is_refused_as_not_utf8(read_town, table):
     with pytest.raises(FeedError, match=r"stops.txt, row 1.*not UTF-8"):
         read_town({"stops.txt": table("stops.txt").encode("utf-16")})
@@ -131,10 +116,17 @@ def test_doubled_and_empty_ids_are_found_and_the_first_counts(read_town, table):
     ]
 
 
-def test_invisible_characters_in_an_id_are_refused(read_town, table):
-    text = table("routes.txt").replace("b7,", "b\x007,")
-    with pytest.raises(FeedError, match=r"routes.txt, row 3, field route_id.*invisible"):
-        read_town({"routes.txt": text})
+@pytest.mark.parametrize(
+    ("in_file", "kept"), [("b\x007", "b\\x007"), ("b\u00a07", "b\u00a07"), ("b\u200b7", "b\u200b7")]
+)
+def test_invisible_characters_in_an_id_are_found_and_the_tables_stay_joined(
+    read_town, table, in_file, kept
+):
+    names = ("routes.txt", "trips.txt")
+    changes = {name: table(name).replace("b7,", f"{in_file},", 1) for name in names}
+    timetable = read_town(changes)
+    assert {route.id for route in timetable.routes} == {kept, "t1"}
+    assert ("warning", 3, "route_id", kept) in found(timetable, "routes.txt")
 
 
 def test_a_systematic_fault_is_listed_a_few_times_and_counted(read_town, table):
