@@ -5,8 +5,9 @@ fingerprint (digest.py), its tables as text (tables.py; large ones in blocks.py)
 those asked for, filters.py), trips (trips.py) and calendars (calendars.py, service.py), all of it
 called by plan.py. Then the service dates are chosen for all feeds (dates.py). Then, per feed, the
 calls of those dates (callrows.py, calls.py) become patterns (patterns.py), and what those need is
-added: stops (stops.py; those that lie astray are left out, speeds.py), transfers and shapes
-(ways.py), names and credits (info.py). Several feeds are joined at the end (join.py).
+added: stops (stops.py; what lies astray is put to its station, families.py, or left out,
+speeds.py), transfers and shapes (ways.py), names and credits (info.py). Several feeds are joined at
+the end (join.py).
 """
 
 from __future__ import annotations
@@ -28,6 +29,7 @@ from gtfs_schematic.feed.callrows import NOT_TODAY, Wanted
 from gtfs_schematic.feed.calls import read_calls, without_stops
 from gtfs_schematic.feed.dates import Choice, choose_dates, with_expiry
 from gtfs_schematic.feed.digest import Digest
+from gtfs_schematic.feed.families import with_families_together, with_stations_in_place
 from gtfs_schematic.feed.filters import (
     check_modes,
     check_names,
@@ -44,14 +46,12 @@ from gtfs_schematic.feed.model import FeedInfo, FeedSettings, Pattern, Route, St
 from gtfs_schematic.feed.patterns import Hours, Runs, gather_patterns
 from gtfs_schematic.feed.plan import Draft, Plan, draft_feed, plan_feed
 from gtfs_schematic.feed.service import typical_weekdays
-from gtfs_schematic.feed.speeds import find_leaps, with_stations_in_place
+from gtfs_schematic.feed.speeds import find_leaps
 from gtfs_schematic.feed.stops import (
-    StopTable,
     leave_out_unserved,
     read_stops,
     stops_of_timetable,
 )
-from gtfs_schematic.feed.tables import Tables
 from gtfs_schematic.feed.ways import read_shapes, read_transfers, without_missing_shapes
 from gtfs_schematic.progress import Progress, Silent
 
@@ -197,7 +197,9 @@ def _timetable(plan: Plan, choice: Choice, settings: FeedSettings) -> Timetable:
     calls = read_calls(tables, wanted)
     runs = Runs(plan.trips, np.flatnonzero(running), _days(plan, choice), plan.headways)
     patterns = gather_patterns(runs, stop_ids, calls)
-    stops = _stops(tables, table, patterns)
+    called = {ident for pattern in patterns for ident in pattern.stop_ids}
+    stops = stops_of_timetable(tables, table, called)
+    stops = with_families_together(tables.notebook, stops, table.rows)
     astray = find_leaps(tables.notebook, patterns, stops, plan.routes, table.rows)
     if astray:
         numbers = [n for n, ident in enumerate(stop_ids) if ident in astray]
@@ -208,9 +210,7 @@ def _timetable(plan: Plan, choice: Choice, settings: FeedSettings) -> Timetable:
         )
     shapes = read_shapes(tables, {p.shape_id for p in patterns if p.shape_id})
     patterns = without_missing_shapes(tables, patterns, shapes)
-    if astray or settings.min_trips:
-        stops = _stops(tables, table, patterns)
-    stops = with_stations_in_place(tables.notebook, stops, table.rows)
+    stops = with_stations_in_place(tables.notebook, _used(stops, patterns), table.rows)
     leave_out_unserved(tables, table, stops, choice.when)
     names = read_stop_names(tables, settings.language)
     routes = _running_routes(plan, patterns, running, choice.when)
@@ -232,8 +232,11 @@ def _timetable(plan: Plan, choice: Choice, settings: FeedSettings) -> Timetable:
     )
 
 
-def _stops(tables: Tables, table: StopTable, patterns: Sequence[Pattern]) -> tuple[Stop, ...]:
-    return stops_of_timetable(tables, table, {s for p in patterns for s in p.stop_ids})
+def _used(stops: Sequence[Stop], patterns: Sequence[Pattern]) -> tuple[Stop, ...]:
+    """Give the stops that patterns call at, and the stations above them."""
+    called = {ident for pattern in patterns for ident in pattern.stop_ids}
+    above = {stop.parent_id for stop in stops if stop.id in called}
+    return tuple(stop for stop in stops if stop.id in called or stop.id in above)
 
 
 def _services(plan: Plan, date: dt.date) -> Masks:

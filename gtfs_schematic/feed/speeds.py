@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 from itertools import chain
 from typing import Any
 
@@ -21,25 +21,59 @@ _ROUNDING_S = 60
 """Trains reach 500 km/h at most; no street, cable or water vehicle reaches 150 (no source). Times
 are often rounded to minutes, so hops under 10 km are never found."""
 _ASTRAY_KM = 100.0
-"""What lies this far off has wrong coordinates; closer by, the times may be wrong (no source)."""
+_LEAST_ASTRAY_KM = 20.0
+_SPREADS = 10.0
+"""What lies this far off has wrong coordinates; closer by, the times may be wrong (no source). In a
+small network less is enough: some multiple of its spread, the median distance from its median stop
+(as the median absolute deviation tells outliers: Hampel 1974, "The influence curve and its role in
+robust estimation"; the multiple is our own choice, as networks have long branches)."""
 _GEOD = Geod(ellps="WGS84")
 
-Ints = NDArray[Any]
+Array = NDArray[Any]
+
+
+@dataclass(frozen=True)
+class _Calls:
+    """The calls of all patterns in a row: numbers of stops, seconds, numbers of patterns."""
+
+    stop: Array
+    time: Array
+    pattern: Array
+    kmh: Array
+    """Per pattern the fastest that its mode can be."""
+    lon: Array
+    lat: Array
+    """Per stop, degrees."""
+
+    def too_fast(self, used: Array) -> Array:
+        """Tell which patterns as a whole are impossibly fast, if only some calls count."""
+        stop, pattern = self.stop[used], self.pattern[used]
+        time, count = self.time[used], len(self.kmh)
+        inside = pattern[1:] == pattern[:-1]
+        start, end = stop[:-1][inside], stop[1:][inside]
+        _, _, meters = _GEOD.inv(self.lon[start], self.lat[start], self.lon[end], self.lat[end])
+        km = np.bincount(pattern[1:][inside], np.asarray(meters) / 1000.0, count)
+        seconds = np.bincount(pattern[1:][inside], np.diff(time)[inside], count)
+        return _is_too_fast(km, seconds, self.kmh)
 
 
 @dataclass(frozen=True)
 class _Hops:
     """Pairs of stops that some pattern calls at one after the other, each once."""
 
-    start: Ints
-    end: Ints
+    start: Array
+    end: Array
     """Numbers of stops, the lesser one in `start`."""
-    km: NDArray[Any]
+    km: Array
     """Geodesic on the WGS 84 ellipsoid."""
-    seconds: Ints
+    seconds: Array
     """The longest time that a trip takes."""
-    leap: NDArray[Any]
+    leap: Array
     """Whether that is impossibly fast."""
+
+    def per_stop(self, values: Array, count: int) -> Array:
+        """Sum a value of every hop at both its stops."""
+        return np.bincount(np.concatenate([self.start, self.end]), np.tile(values, 2), count)
 
 
 def find_leaps(
@@ -51,106 +85,120 @@ def find_leaps(
 ) -> frozenset[str]:
     """Find hops that are impossibly fast, and give the stops that lie astray.
 
-    A stop lies astray if all its hops are leaps of 100 km or more, to stops that do not lie
-    astray themselves; of two that have nothing but such hops, the one further from the median
-    stop does. Other leaps are only found.
+    1. Suspect is a stop all of whose hops are leaps, and as long as ten times the network's spread,
+       but at least 20 and at most 100 km.
+    2. Of two suspects side by side the one further from the median stop is at fault.
+    3. It lies astray if some pattern that calls there is possible without all suspects: else the
+       times may be wrong. If a hop is shorter than 100 km, all patterns that call there must also
+       be impossible as a whole: else a time in between may be wrong.
+
+    Other leaps are only found.
 
     Parameters
     ----------
     rows
         Per stop its row in stops.txt.
     """
-    hops = _hops(patterns, stops, routes)
+    calls = _calls(patterns, stops, routes)
+    hops = _hops(calls)
     if not hops.leap.any():
         return frozenset()
-    astray = _astray(hops, stops)
+    away = _away(calls)
+    astray = _astray(calls, hops, away)
+    share = hops.per_stop(hops.leap, len(stops)) / np.maximum(
+        hops.per_stop(np.ones(len(hops.km)), len(stops)), 1
+    )
     for n in np.flatnonzero(hops.leap).tolist():
-        start, end = stops[hops.start[n]].id, stops[hops.end[n]].id
-        if astray.isdisjoint((start, end)):
+        pair = (int(hops.start[n]), int(hops.end[n]))
+        if astray.isdisjoint(pair):
+            # Most likely at fault is the one that has most leaps, else the one further off.
+            worse = max(pair, key=lambda number: (share[number], away[number]))
+            start, end = (stops[number].id for number in pair)
             notebook.find(
                 "warning",
                 "stops.txt",
                 "two stops in a row lie too far apart for the time between them; "
                 "check their coordinates",
+                row=rows[stops[worse].id],
                 value=f"{start}, {end}: {hops.km[n]:.0f} km in {hops.seconds[n]} s",
             )
-    for number, stop in enumerate(stops):
-        if stop.id in astray:
-            nearest = hops.km[(hops.start == number) | (hops.end == number)].min()
-            told = f"lies {nearest:.0f} km from the stops before and after it"
-            fault = "stop lies too far from those before and after it to be right; it is left out"
-            notebook.find("error", "stops.txt", fault, row=rows[stop.id], value=stop.id)
-            notebook.leave_out("stop", stop.id, f"{stop.name or stop.id} {told}")
-    return astray
+    for number in sorted(astray):
+        stop = stops[number]
+        nearest = hops.km[(hops.start == number) | (hops.end == number)].min()
+        told = f"lies {nearest:.0f} km from the stops before and after it"
+        fault = "stop lies too far from those before and after it to be right; it is left out"
+        notebook.find("error", "stops.txt", fault, row=rows[stop.id], value=stop.id)
+        notebook.leave_out("stop", stop.id, f"{stop.name or stop.id} {told}")
+    return frozenset(stops[number].id for number in astray)
 
 
-def with_stations_in_place(
-    notebook: Notebook, stops: Sequence[Stop], rows: Mapping[str, int]
-) -> tuple[Stop, ...]:
-    """Put stations that lie astray amid their stops, and find them."""
-    below: dict[str, list[Stop]] = {}
-    for stop in stops:
-        if stop.parent_id is not None:
-            below.setdefault(stop.parent_id, []).append(stop)
-    settled = []
-    for stop in stops:
-        place = stop
-        if stop.id in below:
-            lon, lat = (
-                float(np.mean([getattr(child, axis) for child in below[stop.id]]))
-                for axis in ("lon", "lat")
-            )
-            _, _, meters = _GEOD.inv(stop.lon, stop.lat, lon, lat)
-            if meters > 1000.0 * _ASTRAY_KM:
-                fault = "station lies too far from its stops to be right; it is put amid them"
-                notebook.find("error", "stops.txt", fault, row=rows[stop.id], value=stop.id)
-                place = replace(stop, lon=lon, lat=lat)
-        settled.append(place)
-    return tuple(settled)
-
-
-def _hops(patterns: Sequence[Pattern], stops: Sequence[Stop], routes: Mapping[str, Route]) -> _Hops:
+def _calls(
+    patterns: Sequence[Pattern], stops: Sequence[Stop], routes: Mapping[str, Route]
+) -> _Calls:
     numbers = {stop.id: n for n, stop in enumerate(stops)}
-    called = np.array([numbers[ident] for p in patterns for ident in p.stop_ids], dtype=np.int64)
-    times = np.fromiter(chain.from_iterable(p.offsets_s for p in patterns), dtype=np.int64)
-    lengths = [len(p.stop_ids) for p in patterns]
     kmh = [_FASTEST_KMH.get(routes[p.route_id].mode, _FASTEST_ELSE_KMH) for p in patterns]
-    trip = np.repeat(np.arange(len(patterns)), lengths)
-    inside = trip[1:] == trip[:-1]
-    low, high = np.minimum(called[1:], called[:-1]), np.maximum(called[1:], called[:-1])
-    speed = np.repeat(kmh, lengths)[1:].astype(np.int64)
+    lon, lat = (np.array([getattr(stop, axis) for stop in stops]) for axis in ("lon", "lat"))
+    return _Calls(
+        np.array([numbers[ident] for p in patterns for ident in p.stop_ids], dtype=np.int64),
+        np.fromiter(chain.from_iterable(p.offsets_s for p in patterns), dtype=np.int64),
+        np.repeat(np.arange(len(patterns)), [len(p.stop_ids) for p in patterns]),
+        np.array(kmh),
+        lon,
+        lat,
+    )
+
+
+def _hops(calls: _Calls) -> _Hops:
+    inside = calls.pattern[1:] == calls.pattern[:-1]
+    low, high = (
+        np.minimum(calls.stop[1:], calls.stop[:-1]),
+        np.maximum(calls.stop[1:], calls.stop[:-1]),
+    )
+    speed = calls.kmh[calls.pattern[1:]].astype(np.int64)
     table = np.column_stack([low, high, speed])[inside]
-    pairs, which = np.unique(_joined(table, len(stops)), return_inverse=True)
+    # One number per row of start, end and speed, in the same order.
+    keys = (table[:, 0] * len(calls.lon) + table[:, 1]) * 1000 + table[:, 2]
+    pairs, which = np.unique(keys, return_inverse=True)
     firsts = np.zeros(len(pairs), dtype=np.int64)
     firsts[which] = np.arange(len(which))
     seconds = np.zeros(len(pairs), dtype=np.int64)
-    np.maximum.at(seconds, which, np.diff(times)[inside])
+    np.maximum.at(seconds, which, np.diff(calls.time)[inside])
     start, end, fastest = table[firsts].T
-    lon, lat = (np.array([getattr(stop, axis) for stop in stops]) for axis in ("lon", "lat"))
-    _, _, meters = _GEOD.inv(lon[start], lat[start], lon[end], lat[end])
-    km = meters / 1000.0
-    leap = (km > _FREE_KM) & (km > fastest * (seconds + _ROUNDING_S) / 3600.0)
-    return _Hops(start, end, km, seconds, leap)
+    _, _, meters = _GEOD.inv(calls.lon[start], calls.lat[start], calls.lon[end], calls.lat[end])
+    km = np.asarray(meters) / 1000.0
+    return _Hops(start, end, km, seconds, (km > _FREE_KM) & _is_too_fast(km, seconds, fastest))
 
 
-def _joined(table: Ints, count: int) -> Ints:
-    """Give one number per row of start, end and speed, in the same order."""
-    return np.asarray((table[:, 0] * count + table[:, 1]) * 1000 + table[:, 2])
+def _is_too_fast(km: Array, seconds: Array, kmh: Array) -> Array:
+    return np.asarray(km > kmh * (seconds + _ROUNDING_S) / 3600.0)
 
 
-def _astray(hops: _Hops, stops: Sequence[Stop]) -> frozenset[str]:
-    far = hops.leap & (hops.km >= _ASTRAY_KM)
-    ends = np.concatenate([hops.start, hops.end])
-    others = np.concatenate([hops.end, hops.start])
-    count = np.bincount(ends, minlength=len(stops))
-    suspect = (count > 0) & (np.bincount(ends, np.tile(far, 2), minlength=len(stops)) == count)
+def _away(calls: _Calls) -> Array:
+    """Give the distance of every stop from the median stop, km."""
+    lon, lat = (np.full(len(calls.lon), np.median(axis)) for axis in (calls.lon, calls.lat))
+    _, _, meters = _GEOD.inv(calls.lon, calls.lat, lon, lat)
+    return np.asarray(meters) / 1000.0
+
+
+def _astray(calls: _Calls, hops: _Hops, away: Array) -> frozenset[int]:
+    """Give the numbers of the stops that lie astray; the rules are those of `find_leaps`."""
+    count = len(away)
+    limit = np.clip(_SPREADS * np.median(away), _LEAST_ASTRAY_KM, _ASTRAY_KM)
+    every = hops.per_stop(np.ones(len(hops.km)), count)
+    suspect = (every > 0) & (hops.per_stop(hops.leap & (hops.km >= limit), count) == every)
     if not suspect.any():
         return frozenset()
-    lon, lat = (np.array([getattr(stop, axis) for stop in stops]) for axis in ("lon", "lat"))
-    middle = [np.full(len(stops), np.median(axis)) for axis in (lon, lat)]
-    _, _, away = _GEOD.inv(lon, lat, middle[0], middle[1])
-    # Of two suspects side by side the further one is at fault; the order of ids breaks ties.
-    ranks = np.argsort(np.lexsort((np.arange(len(stops)), away)))
+    ends = np.concatenate([hops.start, hops.end])
+    others = np.concatenate([hops.end, hops.start])
+    # The order of ids breaks ties.
+    ranks = np.argsort(np.lexsort((np.arange(count), away)))
     beaten = suspect[ends] & suspect[others] & (ranks[ends] < ranks[others])
     suspect[ends[beaten]] = False
-    return frozenset(stops[n].id for n in np.flatnonzero(suspect).tolist())
+
+    whole = calls.too_fast(np.ones(len(calls.stop), dtype=np.bool_))
+    rest = calls.too_fast(~suspect[calls.stop])
+    possible, impossible = np.zeros(count, np.bool_), np.ones(count, np.bool_)
+    np.logical_or.at(possible, calls.stop, ~rest[calls.pattern])
+    np.logical_and.at(impossible, calls.stop, whole[calls.pattern])
+    far = hops.per_stop(hops.km < _ASTRAY_KM, count) == 0
+    return frozenset(np.flatnonzero(suspect & possible & (far | impossible)).tolist())

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import pytest
+
 from gtfs_schematic.feed.check import faults
 from gtfs_schematic.network.build import build_network
 from gtfs_schematic.network.model import NetworkSettings
@@ -53,3 +55,63 @@ def test_a_station_astray_is_put_amid_its_stops(read_town, table):
     assert abs(gate.lat - 47.00015) < 1e-9
     assert abs(gate.lon - 8.00015) < 1e-9
     assert [(f.severity, f.row, f.value) for f in timetable.findings] == [("error", 2, "gate")]
+
+
+def test_a_platform_astray_is_put_to_its_station(read_town, table):
+    """One digit of its longitude is wrong: 60 km off. Its trams go on calling at the station."""
+    text = table("stops.txt").replace("47.0002,8.0002", "47.0002,8.8002")
+    timetable = read_town({"stops.txt": text})
+    assert faults(timetable) == ()
+    stops = {stop.id: stop for stop in timetable.stops}
+    assert abs(stops["gate2"].lon - 8.00005) < 1e-9  # amid the station and its other platform
+    assert timetable.patterns == read_town().patterns
+    assert [(f.severity, f.row, f.value) for f in timetable.findings] == [("error", 4, "gate2")]
+
+
+@pytest.mark.parametrize("place", ["47.010,8.800", "47.510,8.000"])
+def test_one_wrong_digit_in_a_small_town_is_enough(read_town, table, place):
+    """Some 60 km off, four and five minutes from the stops before and after."""
+    timetable = read_town({"stops.txt": table("stops.txt").replace("47.010,8.000", place)})
+    assert faults(timetable) == ()
+    assert [(f.severity, f.row, f.value) for f in timetable.findings] == [("error", 5, "tams")]
+    assert "tams" not in {stop.id for stop in timetable.stops}
+
+
+def times_by(places, minutes):
+    """Write calls of a bus at places, so many minutes apart."""
+    rows = [
+        f"b7a,{7 + n // 60:02d}:{n % 60:02d}:00,{7 + n // 60:02d}:{n % 60:02d}:00,{place},{k}\n"
+        for k, (place, n) in enumerate(zip(places, minutes, strict=True))
+    ]
+    return "trip_id,arrival_time,departure_time,stop_id,stop_sequence\n" + "".join(rows)
+
+
+def test_a_far_terminus_with_times_spread_evenly_stays(read_town, table):
+    """Times between timing points may be spread by number of calls: the whole way has the time."""
+    changes = {
+        "stops.txt": table("stops.txt") + "port,Airport,9,47.55,8.0,0,,\n",
+        "stop_times.txt": times_by(["gate1", "tams", "vend", "parv", "port"], [0, 10, 20, 30, 40]),
+    }
+    timetable = read_town(changes, routes=("7",))
+    assert "port" in {stop.id for stop in timetable.stops}
+    assert [(f.severity, f.row) for f in timetable.findings] == [("warning", 8)]
+    assert timetable.findings[0].value.startswith("parv, port: 5")
+
+
+def test_times_that_are_no_times_prove_nothing(read_town, table):
+    """All at the same minute: nobody would believe the other stops either."""
+    changes = {
+        "stops.txt": table("stops.txt")
+        + "mid,Midholm,8,47.3,8.0,0,,\nend,Endholm,8,47.9,8.0,0,,\n",
+        "stop_times.txt": times_by(["gate1", "tams", "mid", "end"], [0, 0, 0, 0]),
+    }
+    timetable = read_town(changes, routes=("7",))
+    assert {"mid", "end"} <= {stop.id for stop in timetable.stops}
+    assert {f.severity for f in timetable.findings} == {"warning"}
+
+
+def test_a_fault_is_found_once_though_stops_are_looked_at_again(read_town, table):
+    """A stop without a name, and another one astray."""
+    text = table("stops.txt").replace("47.010,8.000", "47.010,80.00").replace("Parvinholm", "")
+    found = read_town({"stops.txt": text}).findings
+    assert len(found) == len(set(found)) == 2
