@@ -8,6 +8,7 @@ from itertools import chain
 from typing import Any
 
 import numpy as np
+from numpy.lib.stride_tricks import sliding_window_view
 from numpy.typing import NDArray
 from pyproj import Geod
 
@@ -22,7 +23,8 @@ _ROUNDING_S = 60
 are often rounded to minutes, so hops under 10 km are never found."""
 _ASTRAY_KM = 100.0
 _LEAST_ASTRAY_KM = 20.0
-_SPREADS = 10.0
+_SPREADS = 5.0
+_WILD = 3
 """What lies this far off has wrong coordinates; closer by, the times may be wrong (no source). In a
 small network less is enough: some multiple of its spread, the median distance from its median stop
 (as the median absolute deviation tells outliers: Hampel 1974, "The influence curve and its role in
@@ -70,6 +72,8 @@ class _Hops:
     """The longest time that a trip takes."""
     leap: Array
     """Whether that is impossibly fast."""
+    wild: Array
+    """Whether it is three times as fast as that."""
 
     def per_stop(self, values: Array, count: int) -> Array:
         """Sum a value of every hop at both its stops."""
@@ -85,12 +89,13 @@ def find_leaps(
 ) -> frozenset[str]:
     """Find hops that are impossibly fast, and give the stops that lie astray.
 
-    1. Suspect is a stop all of whose hops are leaps, and as long as ten times the network's spread,
+    1. Suspect is a stop all of whose hops are leaps, and as long as five times the network's spread,
        but at least 20 and at most 100 km.
     2. Of two suspects side by side the one further from the median stop is at fault.
     3. It lies astray if some pattern that calls there is possible without all suspects: else the
        times may be wrong. If a hop is shorter than 100 km, all patterns that call there must also
-       be impossible as a whole: else a time in between may be wrong.
+       be impossible as a whole, or all its hops three times too fast and some pattern run through
+       it: else times in between may be spread badly on the way to a far terminus.
 
     Other leaps are only found.
 
@@ -166,7 +171,8 @@ def _hops(calls: _Calls) -> _Hops:
     start, end, fastest = table[firsts].T
     _, _, meters = _GEOD.inv(calls.lon[start], calls.lat[start], calls.lon[end], calls.lat[end])
     km = np.asarray(meters) / 1000.0
-    return _Hops(start, end, km, seconds, (km > _FREE_KM) & _is_too_fast(km, seconds, fastest))
+    leap, wild = (_is_too_fast(km, seconds, times * fastest) for times in (1, _WILD))
+    return _Hops(start, end, km, seconds, (km > _FREE_KM) & leap, wild)
 
 
 def _is_too_fast(km: Array, seconds: Array, kmh: Array) -> Array:
@@ -200,5 +206,8 @@ def _astray(calls: _Calls, hops: _Hops, away: Array) -> frozenset[int]:
     possible, impossible = np.zeros(count, np.bool_), np.ones(count, np.bool_)
     np.logical_or.at(possible, calls.stop, ~rest[calls.pattern])
     np.logical_and.at(impossible, calls.stop, whole[calls.pattern])
-    far = hops.per_stop(hops.km < _ASTRAY_KM, count) == 0
-    return frozenset(np.flatnonzero(suspect & possible & (far | impossible)).tolist())
+    far, wild = (hops.per_stop(~hop, count) == 0 for hop in (hops.km >= _ASTRAY_KM, hops.wild))
+    inner = np.zeros(count, np.bool_)
+    inner[calls.stop[1:-1][np.ptp(sliding_window_view(calls.pattern, 3), axis=1) == 0]] = True
+    sure = far | impossible | (wild & inner)
+    return frozenset(np.flatnonzero(suspect & possible & sure).tolist())

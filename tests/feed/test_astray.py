@@ -98,6 +98,17 @@ def test_a_far_terminus_with_times_spread_evenly_stays(read_town, table):
     assert timetable.findings[0].value.startswith("parv, port: 5")
 
 
+def test_nobody_runs_60_km_out_and_back_in_ten_minutes(read_town, table):
+    """The whole way has the time, but a stop between two others cannot lie that far off."""
+    changes = {
+        "stops.txt": table("stops.txt").replace("47.010,8.000", "47.010,8.800"),
+        "stop_times.txt": times_by(["gate1", "vend", "tams", "parv", "vend"], [0, 45, 50, 55, 90]),
+    }
+    timetable = read_town(changes, routes=("7",))
+    assert [p.stop_ids for p in timetable.patterns] == [("gate1", "vend", "parv", "vend")]
+    assert [(f.severity, f.row, f.value) for f in timetable.findings] == [("error", 5, "tams")]
+
+
 def test_times_that_are_no_times_prove_nothing(read_town, table):
     """All at the same minute: nobody would believe the other stops either."""
     changes = {
