@@ -46,6 +46,8 @@ class NetworkSettings(BaseModel):
     or the network that the feed puts them in."""
     outlier_km: float = Field(default=300.0, gt=0.0)
     """A stop further than this from the network's median stop is an outlier and not drawn."""
+    outlier_spreads: float = Field(default=10.0, ge=0.0)
+    """But it is none if no further than this many times the median of those distances."""
 
 
 @dataclass(frozen=True, slots=True)

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import itertools
+import statistics
 from collections import Counter, defaultdict
 from collections.abc import Callable, Iterable, Mapping, Sequence
 from dataclasses import dataclass, replace
@@ -196,10 +197,17 @@ def _boarding(platform: Stop, top: Stop) -> Boarding:
 
 
 def _near_sites(sites: Sites, settings: NetworkSettings) -> Sites:
-    """Rule 2: the ground's centre is the median, so distance to it is the length of `at`."""
-    limit = settings.outlier_km * 1000.0
-    far = {site.id for site in sites.sites.values() if not distance(site.at, (0.0, 0.0)) <= limit}
-    reason = f"further than {settings.outlier_km:g} km from the middle of the network"
+    """Rule 2: the ground's centre is the median, so distance to it is the length of `at`.
+
+    A country's ends lie further from its middle than any stop of a town: what is far is told by the
+    median of those distances as well (as the median absolute deviation tells outliers, Hampel
+    1974).
+    """
+    away = {site.id: distance(site.at, (0.0, 0.0)) for site in sites.sites.values()}
+    spread = statistics.median(away.values()) if away else 0.0
+    limit = max(settings.outlier_km * 1000.0, settings.outlier_spreads * spread)
+    far = {ident for ident, meters in away.items() if not meters <= limit}
+    reason = f"further than {limit / 1000.0:.0f} km from the middle of the network"
     return replace(
         sites,
         sites={key: site for key, site in sites.sites.items() if key not in far},

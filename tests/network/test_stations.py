@@ -240,6 +240,17 @@ def test_places_that_cannot_be_are_left_out_and_named(town):
     assert network.lines[0].itineraries == (("A", "B", "C"),)
 
 
+def test_the_ends_of_a_country_are_no_outliers(town):
+    """Stops every 100 km: the outermost lie 500 km from the middle one, twice the median."""
+    ids = [f"c{n:02d}" for n in range(11)]
+    country = town.row(ids, 100_000.0).both("red", ids)
+    assert len(country.network().stations) == 11
+    alone = country.network(outlier_spreads=0.0)
+    assert {o.id for o in alone.left_out if "300 km" in o.reason} == {"c00", "c01", "c09", "c10"}
+    wide = country.stop("far", 9_000_000.0).both("blue", "c05 far")
+    assert "far" not in {station.id for station in wide.network().stations}
+
+
 @pytest.mark.parametrize(
     ("one", "other"),
     [
