@@ -16,8 +16,7 @@ from gtfs_schematic.drawing.model import DrawingSettings, SheetSettings
 from gtfs_schematic.drift.model import DriftSettings
 from gtfs_schematic.errors import UsageError
 from gtfs_schematic.feed.model import FeedSettings
-from gtfs_schematic.geometry import Point
-from gtfs_schematic.labels.model import LabelSettings, Side
+from gtfs_schematic.labels.model import LabelSettings
 from gtfs_schematic.layout.model import LayoutSettings
 from gtfs_schematic.network.model import NetworkSettings
 
@@ -89,12 +88,23 @@ def with_values(settings: Settings, values: Mapping[str, Any], name: str) -> Set
 
 
 def with_wishes(
-    settings: Settings, sides: Mapping[str, Side], pins: Mapping[str, Point]
+    settings: Settings, wishes: Mapping[str, Mapping[str, Mapping[str, object]]]
 ) -> Settings:
-    """Give settings in which labels and layout heed what a person asked for."""
-    labels = settings.labels.model_copy(update={"sides": settings.labels.sides | dict(sides)})
-    layout = settings.layout.model_copy(update={"pins": {**settings.layout.pins, **pins}})
-    return settings.model_copy(update={"labels": labels, "layout": layout})
+    """Give settings in which rooms heed what a person asked for.
+
+    Parameters
+    ----------
+    settings
+        What holds otherwise.
+    wishes
+        Per room and name of a mapping in its settings, what is added to that.
+    """
+    rooms = {}
+    for room, tables in wishes.items():
+        before = getattr(settings, room)
+        after = {name: {**getattr(before, name), **table} for name, table in tables.items()}
+        rooms[room] = before.model_copy(update=after)
+    return settings.model_copy(update=rooms)
 
 
 def _plain(value: Any) -> Any:  # noqa: ANN401 - TOML holds any of its kinds

@@ -40,12 +40,14 @@ from gtfs_schematic.drift.timing import timing_of
 from gtfs_schematic.edition import check as edition_check
 from gtfs_schematic.edition.adjusted import Adjusted, adjusted
 from gtfs_schematic.edition.adjustments import Adjustments, plain
-from gtfs_schematic.edition.make import edition_of, stop_codes_of
+from gtfs_schematic.edition.make import edition_of, sentence, stop_codes_of
 from gtfs_schematic.edition.model import Edition
 from gtfs_schematic.edition.save import to_json as edition_to_json
+from gtfs_schematic.edition.unmet import unmet
+from gtfs_schematic.edition.wishes import Wishes
 from gtfs_schematic.errors import must_be_sound
 from gtfs_schematic.feed import check as feed_check
-from gtfs_schematic.feed.model import Timetable
+from gtfs_schematic.feed.model import Finding, Timetable
 from gtfs_schematic.feed.read import read_feed
 from gtfs_schematic.labels import check as labels_check
 from gtfs_schematic.labels.fonts import text_width_mm
@@ -87,6 +89,8 @@ class Result:
     drawing: Drawing
     edition: Edition
     drift: DriftReport
+    unmet: tuple[Finding, ...] = ()
+    """Wishes of a person that the drawing does not meet."""
 
 
 def draw(
@@ -118,16 +122,28 @@ def draw(
     """
     settings = settings or Settings()
     timetable, network = inspect(paths, settings, progress=progress)
-    wanted = settings
+    wanted, wishes = settings, Wishes()
     if adjustments is not None:
         found = adjust(network, adjustments, timetable, progress)
-        network, wanted = found.network, with_wishes(settings, found.sides, found.pins)
+        network, wishes = found.network, found.wishes
+        wanted = with_wishes(settings, wishes.by_room())
     frames = candidate_frames(network, wanted.sheet, wanted.drawing)
     labelled = _labelled(network, wanted, frames, progress)
 
     result = finish(timetable, labelled, settings, progress)
-    kept = plain(adjustments or Adjustments())
-    return replace(result, edition=replace(result.edition, adjustments=kept))
+    return with_adjustments(result, adjustments or Adjustments(), wishes, progress)
+
+
+def with_adjustments(
+    result: Result, adjustments: Adjustments, wishes: Wishes, progress: Progress
+) -> Result:
+    """Let the edition hold its adjustments, and say which of them the drawing does not meet."""
+    missed = unmet(wishes, result.labelled)
+    for each in missed:
+        progress.note(sentence(each))
+    findings = (*result.edition.findings, *map(sentence, missed))
+    edition = replace(result.edition, adjustments=plain(adjustments), findings=findings)
+    return replace(result, edition=edition, unmet=missed)
 
 
 def adjust(

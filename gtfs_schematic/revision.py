@@ -7,7 +7,7 @@ from dataclasses import dataclass, replace
 
 from gtfs_schematic.config import Settings, settings_of, with_wishes
 from gtfs_schematic.drawing.sheet import candidate_frames
-from gtfs_schematic.edition.adjustments import Adjustments, adjustments_of, plain, translated
+from gtfs_schematic.edition.adjustments import Adjustments, adjustments_of, plain
 from gtfs_schematic.edition.carry import carried_matches, names_of, with_carried_ids
 from gtfs_schematic.edition.change_list import to_pdf
 from gtfs_schematic.edition.change_page import to_html
@@ -16,6 +16,7 @@ from gtfs_schematic.edition.changes import ChangeSheet, change_sheet, to_csv, to
 from gtfs_schematic.edition.identity import Matches, match_edition
 from gtfs_schematic.edition.make import stop_codes_of
 from gtfs_schematic.edition.model import Edition
+from gtfs_schematic.edition.translated import translated
 from gtfs_schematic.feed.model import Timetable
 from gtfs_schematic.layout import check as layout_check
 from gtfs_schematic.layout.model import Layout, SheetFrame
@@ -115,8 +116,9 @@ def revise_network(
     matches = carried_matches(now.network, before, found)
     names, _ = names_of(now.network, before, found)
     network = with_carried_ids(now.network, before, found)
-    sides = {names[key]: side for key, side in now.sides.items()}
-    wanted = with_wishes(settings, sides, {names[key]: pin for key, pin in now.pins.items()})
+    sides = {names[key]: side for key, side in now.wishes.sides.items()}
+    pins = {names[key]: pin for key, pin in now.wishes.pins.items()}
+    wanted = with_wishes(settings, {"labels": {"sides": sides}, "layout": {"pins": pins}})
     layout = _layout(before, network, wanted, progress)
     if layout is None:
         progress.note("what is new finds no room beside what stands; laying out anew")

@@ -58,7 +58,10 @@ def test_a_byte_order_mark_is_no_fault():
         (b"\xff\xfe", ["not TOML in UTF-8"]),
         (b"[layuot]\nfidelity = 1", ["unknown key layuot", "did you mean layout?"]),
         (b"[labels]\nsize = 9", ["unknown key labels.size in [labels]", "labels.size_pt"]),
-        (b"[layout]\nzzz = 1", ["unknown key layout.zzz", "known here: effort, fidelity"]),
+        (
+            b"[layout]\nzzz = 1",
+            ["unknown key layout.zzz", "known here: directions, effort, fidelity"],
+        ),
         (b"[layout]\nfidelity = 2", ["layout.fidelity = 2", "less than or equal to 1"]),
         (b"[layout]\nfidelity = 'a'", ["layout.fidelity = 'a'", "valid number"]),
         (b"[layout]\neffort = 'max'", ["layout.effort = 'max'", "'thorough'"]),

@@ -30,7 +30,7 @@ def bundle(
     progress
         Who is told about the components that are ordered.
     """
-    found = order_lines(layout, progress=progress)
+    found = order_lines(layout, settings.orders, progress=progress)
     nodes = junctions(layout)
     slots = Slots(found.orders, settings)
     progress.phase("drawing lines side by side")

@@ -8,7 +8,7 @@ one, and links of one line need no order.
 from __future__ import annotations
 
 from collections import Counter, defaultdict
-from collections.abc import Iterator, Mapping
+from collections.abc import Collection, Iterator, Mapping
 from dataclasses import dataclass
 
 from gtfs_schematic.bundles.junction import Junction, Pass
@@ -45,11 +45,15 @@ def find_branches(nodes: Mapping[str, Junction]) -> Branches:
 
 
 def find_teams(
-    layout: Layout, nodes: Mapping[str, Junction], branches: Branches
+    layout: Layout,
+    nodes: Mapping[str, Junction],
+    branches: Branches,
+    single: Collection[str] = (),
 ) -> tuple[tuple[str, ...], ...]:
     """Merge lines with the same links and passes; a line that branches stays alone.
 
-    Two lines that branch alike must cross each other, so they are no team.
+    Two lines that branch alike must cross each other, so they are no team. Nor are lines that
+    are to be ordered one by one (`single`).
     """
     uses: dict[str, list[tuple[str, ...]]] = {line.id: [] for line in layout.network.lines}
     for link in layout.network.links:
@@ -60,7 +64,7 @@ def find_teams(
             uses[way.line_id].append((junction.station_id, way.first, way.second))
     merged: dict[tuple[tuple[str, ...], ...], list[str]] = defaultdict(list)
     for line in layout.network.lines:
-        alone = ((line.id,),) if line.id in branches else ()
+        alone = ((line.id,),) if line.id in branches or line.id in single else ()
         merged[(*uses[line.id], *alone)].append(line.id)
     return tuple(tuple(members) for members in merged.values())
 

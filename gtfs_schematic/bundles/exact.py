@@ -38,6 +38,9 @@ class ComponentModel:
         self.left: dict[Pair, cp_model.IntVar] = {}
         for chain in self.chains:
             self._add_order(chain)
+        for pair, left in problem.wanted.items():
+            if pair in self.left:
+                self.model.add(self.left[pair] == left)
         self.swaps = [self._differ(twist, "swap") for twist in self.twists]
         self.crossings = sum(
             (twist.weight * swap for twist, swap in zip(self.twists, self.swaps, strict=True)),

@@ -12,6 +12,8 @@ Orders = list[list[int]]
 
 _CROSSING = 100_000
 """What a crossing costs beside a pair out of route order on one chain, which costs 1."""
+_WISH = 10**12
+"""What it costs to stand otherwise than a person asks."""
 _MAX_SWEEPS = 25
 
 
@@ -73,7 +75,11 @@ def _own_cost(problem: OrderProblem, pair: Pair) -> tuple[int, int]:
     """Cost on the chain alone if a is left of b, and if it is not."""
     if_left, if_right = problem.leans.get(pair, (0, 0))
     ascending = problem.chains[pair[0]].ascending
-    return if_left * _CROSSING + (not ascending), if_right * _CROSSING + ascending
+    wanted = problem.wanted.get(pair)
+    return (
+        if_left * _CROSSING + (not ascending) + _WISH * (wanted is False),
+        if_right * _CROSSING + ascending + _WISH * (wanted is True),
+    )
 
 
 def _order_pair(

@@ -22,6 +22,9 @@ class BundleSettings(BaseModel):
     """White gap between two lines of a bundle, millimetres."""
     corner_radius_mm: float = Field(default=3.0, ge=0.0)
     """Radius of the innermost line's corners, millimetres; outer ones are concentric."""
+    orders: dict[str, tuple[str, ...]] = Field(default_factory=dict)
+    """Per link id some of its lines, from left to right as a person wants them, seen from start
+    to end; links that share one order share the wish."""
 
 
 @dataclass(frozen=True, slots=True)

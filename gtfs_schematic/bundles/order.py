@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import math
 from collections import defaultdict
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 
 import networkx as nx
@@ -33,15 +33,18 @@ class LineOrder:
 
 def order_lines(
     layout: Layout,
+    wanted: Mapping[str, Sequence[str]] | None = None,
     *,
     progress: Progress = Silent(),  # noqa: B008 - it has no state
 ) -> LineOrder:
     """Order the lines of every link of a layout.
 
+    What a person asks for (`wanted`, see `problem.state_problem`) goes before everything else.
+
     The pairwise bound and the greedy order come first; each component of chains that depend on
     each other is then solved exactly as far as a fixed amount of work allows.
     """
-    problem = state_problem(layout)
+    problem = state_problem(layout, wanted)
     bounds, left = order_pairs(problem)
     orders = order_greedily(problem, left)
     components = _components(problem)

@@ -11,7 +11,7 @@ from __future__ import annotations
 
 import itertools
 from collections import Counter, defaultdict
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
 
 from gtfs_schematic.bundles.chains import Chain, find_branches, find_chains, find_teams
@@ -74,6 +74,8 @@ class OrderProblem:
     stubs: tuple[Stub, ...]
     fixed: int
     """Crossings that every order has."""
+    wanted: Mapping[Pair, bool] = field(default_factory=dict)
+    """Per pair whether a person wants a left of b."""
 
 
 @dataclass
@@ -93,11 +95,23 @@ class _Draft:
         return chain, forward == junction.leg[link_id].forward
 
 
-def state_problem(layout: Layout) -> OrderProblem:
-    """Give the ordering problem of a layout; links of a single line do not appear in it."""
+def state_problem(
+    layout: Layout, wanted: Mapping[str, Sequence[str]] | None = None
+) -> OrderProblem:
+    """Give the ordering problem of a layout; links of a single line do not appear in it.
+
+    Parameters
+    ----------
+    layout
+        With links and their lines.
+    wanted
+        Per link id the order that a person asks for of some of its lines, left to right.
+    """
+    asked = wanted or {}
     nodes = junctions(layout)
     branches = find_branches(nodes)
-    teams = find_teams(layout, nodes, branches)
+    single = {line_id for lines in asked.values() for line_id in lines}
+    teams = find_teams(layout, nodes, branches, single)
     team_of = {line_id: i for i, members in enumerate(teams) for line_id in members}
     chains = find_chains(layout, nodes, branches, team_of)
     place = {link_id: (i, fwd) for i, chain in enumerate(chains) for link_id, fwd in chain.links}
@@ -115,7 +129,25 @@ def state_problem(layout: Layout) -> OrderProblem:
         seams=tuple(Seam(*key) for key in sorted(draft.seams)),
         stubs=tuple(draft.stubs),
         fixed=draft.fixed,
+        wanted=_wanted(draft, asked),
     )
+
+
+def _wanted(draft: _Draft, asked: Mapping[str, Sequence[str]]) -> dict[Pair, bool]:
+    """Give the pairs of all wishes; of two at odds on a chain the first holds."""
+    wanted: dict[Pair, bool] = {}
+    for link_id in sorted(asked):
+        if link_id not in draft.place:
+            continue
+        chain, forward = draft.place[link_id]
+        lines = asked[link_id] if forward else asked[link_id][::-1]
+        known = [draft.team_of[line_id] for line_id in lines if line_id in draft.team_of]
+        fresh = {}
+        for one, other in itertools.combinations(known, 2):
+            fresh[chain, min(one, other), max(one, other)] = one < other
+        if all(wanted.get(pair, left) == left for pair, left in fresh.items()):
+            wanted |= fresh
+    return dict(sorted(wanted.items()))
 
 
 def _add_crossing(draft: _Draft, junction: Junction, p: Pass, q: Pass) -> None:

@@ -9,15 +9,18 @@ from typing import TypeVar
 
 from gtfs_schematic.drawing.contrast import contrast_ratio
 from gtfs_schematic.edition.adjustments import Adjustments, LineAdjustment, StationAdjustment
+from gtfs_schematic.edition.contradictions import station_contradictions
+from gtfs_schematic.edition.grouping import group_lines
 from gtfs_schematic.edition.rebuilt import Draft, rebuilt
 from gtfs_schematic.edition.splitting import split_station
+from gtfs_schematic.edition.wishes import Asked, Wishes
 from gtfs_schematic.errors import UsageError
 from gtfs_schematic.feed.model import LeftOut, Timetable
-from gtfs_schematic.geometry import Point
-from gtfs_schematic.labels.model import Side
 from gtfs_schematic.network.model import Line, Network, Station
 
 Told = TypeVar("Told", StationAdjustment, LineAdjustment)
+_Told = dict[str, tuple[str, Told]]
+"""Per id where something is said of it, and what."""
 
 _BLACK, _WHITE = "#000000", "#FFFFFF"
 
@@ -27,10 +30,8 @@ class Adjusted:
     """A network with adjustments applied, and what later stages must heed."""
 
     network: Network
-    sides: Mapping[str, Side]
-    """Per station id the side of its name, for `LabelSettings.sides`."""
-    pins: Mapping[str, Point]
-    """Per station id its place on the sheet, millimetres, for `LayoutSettings.pins`."""
+    wishes: Wishes
+    """What layout, bundles and labels are asked for."""
     stale: tuple[str, ...]
     """Adjustments that apply to nothing of this network; they are kept for the next."""
 
@@ -40,7 +41,7 @@ def adjusted(
 ) -> Adjusted:
     """Apply adjustments to a network, in this order.
 
-    1. Stations are split, then merged.
+    1. Stations are split, then merged; lines are grouped.
     2. Stations and lines are hidden: lines pass, and what is left without a second call goes.
     3. Words of names are abbreviated; names and colors that a person gave stand as they are.
 
@@ -56,10 +57,37 @@ def adjusted(
     Raises
     ------
     UsageError
-        If two adjustments contradict each other about one station or line; names both.
+        If two adjustments contradict each other about one station, line or link; names both.
     """
     known = _Known(network, adjustments)
     draft = Draft.of(network)
+    _regrouped(known, draft, adjustments, timetable)
+    stations, lines = known.settled()
+    for key, (_, told) in stations.items():
+        if told.hide:
+            draft.hide_station(key)
+    for key, (_, line_told) in lines.items():
+        if line_told.hide:
+            draft.hide_line(key)
+    result = rebuilt(network, draft)
+    named = tuple(_named(s, stations, adjustments.abbreviations) for s in result.stations)
+    colored = tuple(_told(line, lines.get(line.id)) for line in result.lines)
+    result = replace(result, stations=named, lines=colored)
+    links = [(f"links.{i}", told) for i, told in enumerate(adjustments.links)]
+    wishes = Asked(result, known.station, known.line).wishes(stations, links, known.stale)
+    said = [*_hidden(stations, lines), *(LeftOut("adjustment", *each) for each in known.stale)]
+    left_out = sorted({*result.left_out, *said}, key=lambda o: (o.kind, o.id, o.reason))
+    return Adjusted(
+        replace(result, left_out=tuple(left_out)),
+        wishes,
+        tuple(f"{where}: {why}" for where, why in known.stale),
+    )
+
+
+def _regrouped(
+    known: _Known, draft: Draft, adjustments: Adjustments, timetable: Timetable | None
+) -> None:
+    """Split and merge stations, and group lines."""
     for each in adjustments.split:
         station = known.station(each.station, f"split {each.station}")
         if station is not None:
@@ -72,26 +100,19 @@ def adjusted(
         ids = [s for key in merge.stations if (s := known.station(key, where)) is not None]
         if len(set(ids)) > 1:
             draft.merge(tuple(dict.fromkeys(ids)), merge.name)
+    for i, group in enumerate(adjustments.group):
+        where = f"group {' '.join(group.lines)}"
+        lines = [k for key in group.lines if (k := known.line(key, where)) is not None]
+        hidden = [
+            key for key in group.lines if key in adjustments.lines and adjustments.lines[key].hide
+        ]
+        if hidden:
+            raise UsageError(
+                f"group.{i} and lines.{hidden[0]}.hide contradict each other about one line."
+            )
+        if len(set(lines)) > 1:
+            group_lines(draft, tuple(dict.fromkeys(lines)), group, timetable)
     known.refresh(draft)
-    stations, lines = known.settled()
-    for key, told in stations.items():
-        if told.hide:
-            draft.hide_station(key)
-    for key, line_told in lines.items():
-        if line_told.hide:
-            draft.hide_line(key)
-    result = rebuilt(network, draft)
-    named = tuple(_named(s, stations, adjustments.abbreviations) for s in result.stations)
-    colored = tuple(_told(line, lines.get(line.id)) for line in result.lines)
-    said = [*_hidden(stations, lines), *(LeftOut("adjustment", *each) for each in known.stale)]
-    left_out = sorted({*result.left_out, *said}, key=lambda o: (o.kind, o.id, o.reason))
-    drawn = {station.id for station in named}
-    return Adjusted(
-        replace(result, stations=named, lines=colored, left_out=tuple(left_out)),
-        {k: t.label_side for k, t in stations.items() if t.label_side and k in drawn},
-        {k: t.pin_mm for k, t in stations.items() if t.pin_mm and k in drawn},
-        tuple(f"{where}: {why}" for where, why in known.stale),
-    )
 
 
 class _Known:
@@ -106,13 +127,14 @@ class _Known:
         self._stations |= {s.id: s.id for s in network.stations}
 
     def refresh(self, draft: Draft) -> None:
-        """Heed what has been merged and split."""
+        """Heed what has been merged, split and grouped."""
         before = self._stations
         now = {stop: s.id for s in draft.stations.values() for stop in s.stop_ids}
         self._stations = {
             key: draft.became.get(old, old) for key, old in before.items() if key not in now
         }
         self._stations |= now | {key: key for key in draft.stations}
+        self._lines = {key: draft.line_became.get(old, old) for key, old in self._lines.items()}
 
     def station(self, key: str, where: str) -> str | None:
         """Give the id of the station that is meant; note where it is unknown."""
@@ -120,30 +142,28 @@ class _Known:
             self.stale.append((where, f"no station or stop {key} is drawn"))
         return self._stations.get(key)
 
-    def settled(self) -> tuple[dict[str, StationAdjustment], dict[str, LineAdjustment]]:
-        """Gather what is said of each station and line, and refuse what cannot all hold."""
-        stations: dict[str, tuple[str, StationAdjustment]] = {}
+    def line(self, key: str, where: str) -> str | None:
+        """Give the id of the line that is meant; note where it is unknown."""
+        if key not in self._lines:
+            self.stale.append((where, f"no line or route {key} is drawn"))
+        return self._lines.get(key)
+
+    def settled(self) -> tuple[_Told[StationAdjustment], _Told[LineAdjustment]]:
+        """Gather where and what is said of each station and line; refuse what cannot all hold."""
+        stations: _Told[StationAdjustment] = {}
         for key, told in sorted(self.adjustments.stations.items()):
             station = self.station(key, f"stations.{key}")
-            if station is None:
-                continue
-            where = f"stations.{key}"
-            if told.hide and (told.pin_mm or told.label_side or told.name):
-                other = "pin_mm" if told.pin_mm else "label_side" if told.label_side else "name"
-                raise UsageError(f"{where}.hide and {where}.{other} contradict each other.")
-            stations[station] = _both(stations.get(station), where, told)
-        lines: dict[str, tuple[str, LineAdjustment]] = {}
+            if station is not None:
+                stations[station] = _both(stations.get(station), f"stations.{key}", told)
+        for where, told in stations.values():
+            for found in station_contradictions(where, told):
+                raise UsageError(f"{found}.")
+        lines: _Told[LineAdjustment] = {}
         for key, line_told in sorted(self.adjustments.lines.items()):
-            line = self._lines.get(key)
-            if line is None:
-                self.stale.append((f"lines.{key}", f"no line or route {key} is drawn"))
-            else:
+            line = self.line(key, f"lines.{key}")
+            if line is not None:
                 lines[line] = _both(lines.get(line), f"lines.{key}", line_told)
-        _pins_apart({where: t.pin_mm for where, t in stations.values() if t.pin_mm})
-        return (
-            {key: told for key, (_, told) in stations.items()},
-            {key: told for key, (_, told) in lines.items()},
-        )
+        return stations, lines
 
 
 def _both(first: tuple[str, Told] | None, where: str, told: Told) -> tuple[str, Told]:
@@ -160,19 +180,8 @@ def _both(first: tuple[str, Told] | None, where: str, told: Told) -> tuple[str, 
     return f"{first[0]}, {where}", first[1].model_copy(update=told.model_dump(exclude_unset=True))
 
 
-def _pins_apart(pins: Mapping[str, Point]) -> None:
-    """Refuse two stations in one place."""
-    seen: dict[Point, str] = {}
-    for where, pin in pins.items():
-        if pin in seen:
-            raise UsageError(f"{seen[pin]}.pin_mm and {where}.pin_mm are the same place.")
-        seen[pin] = where
-
-
-def _named(
-    station: Station, told: Mapping[str, StationAdjustment], words: Mapping[str, str]
-) -> Station:
-    given = told[station.id].name if station.id in told else ""
+def _named(station: Station, told: _Told[StationAdjustment], words: Mapping[str, str]) -> Station:
+    given = told[station.id][1].name if station.id in told else ""
     return replace(station, name=given or abbreviated(station.name, words))
 
 
@@ -184,9 +193,10 @@ def abbreviated(name: str, words: Mapping[str, str]) -> str:
     return " ".join(short.split()) or name
 
 
-def _told(line: Line, told: LineAdjustment | None) -> Line:
-    if told is None:
+def _told(line: Line, said: tuple[str, LineAdjustment] | None) -> Line:
+    if said is None:
         return line
+    _, told = said
     color = (told.color or line.color).upper()
     text = (told.text_color or line.text_color).upper()
     if told.color and not told.text_color:
@@ -201,12 +211,9 @@ def _told(line: Line, told: LineAdjustment | None) -> Line:
     )
 
 
-def _hidden(
-    stations: Mapping[str, StationAdjustment],
-    lines: Mapping[str, LineAdjustment],
-) -> Iterable[LeftOut]:
+def _hidden(stations: _Told[StationAdjustment], lines: _Told[LineAdjustment]) -> Iterable[LeftOut]:
     for kind, told in (("station", stations), ("line", lines)):
-        for key, each in told.items():
+        for key, (_, each) in told.items():
             if each.hide:
                 note = f": {each.note}" if each.note else ""
                 yield LeftOut(kind, key, f"hidden by an adjustment{note}")

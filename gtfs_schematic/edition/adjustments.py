@@ -4,21 +4,40 @@ from __future__ import annotations
 
 import difflib
 import tomllib
-from collections.abc import Iterable, Iterator, Mapping
-from typing import Annotated, Any, get_args
+from collections.abc import Mapping
+from typing import Annotated, Any, Literal, get_args
 
 from pydantic import BaseModel, ConfigDict, Field, ValidationError, model_validator
 from pydantic_core import ErrorDetails
 
+from gtfs_schematic.edition.contradictions import contradictions
 from gtfs_schematic.errors import UsageError
 from gtfs_schematic.labels.model import Side
 
 Color = Annotated[str, Field(pattern=r"^#[0-9A-Fa-f]{6}$")]
 Id = Annotated[str, Field(min_length=1)]
+Angle = Literal[-45, 0, 45, 90]
 
 
 class _Table(BaseModel):
     model_config = ConfigDict(frozen=True, extra="forbid")
+
+
+class PinFrom(_Table):
+    """Where a station stands as seen from another; `dy_mm = 0` alone puts it level with that."""
+
+    station: Id
+    dx_mm: float | None = None
+    """Millimetres to the right of it; None: as it falls."""
+    dy_mm: float | None = None
+    """Millimetres below it."""
+
+    @model_validator(mode="after")
+    def _says_something(self) -> PinFrom:
+        """Refuse what leaves both open."""
+        if self.dx_mm is None and self.dy_mm is None:
+            raise ValueError("give dx_mm, dy_mm or both, in millimetres")
+        return self
 
 
 class StationAdjustment(_Table):
@@ -26,10 +45,20 @@ class StationAdjustment(_Table):
 
     name: str = ""
     """Name to draw instead of the feed's."""
+    short_name: str = ""
+    """What its label says instead; lists and the change sheet keep the whole name."""
+    label_rows: tuple[Id, ...] = ()
+    """The same, row by row."""
     label_side: Side | None = None
     """Where the name stands as seen from the marker."""
+    label_angle: Angle | None = None
+    """Degrees by which the name rises to the right; 0 is level."""
     pin_mm: tuple[float, float] | None = None
     """Place that the station keeps: millimetres from the sheet's left and top."""
+    pin_from: PinFrom | None = None
+    """Place that it keeps as seen from another station."""
+    straight: tuple[Id, ...] = ()
+    """Lines that go straight through; of one that branches here, one branch."""
     hide: bool = False
     """Whether lines pass the station as if it were not there."""
     note: str = ""
@@ -44,6 +73,28 @@ class LineAdjustment(_Table):
     text_color: Color | None = None
     hide: bool = False
     note: str = ""
+
+
+class LinkAdjustment(_Table):
+    """What a person says of one link, as seen from its first station towards its second."""
+
+    between: tuple[Id, Id]
+    direction: Side | None = None
+    """Where the link leads, straight on; N is up the sheet."""
+    order: tuple[Id, ...] = ()
+    """Its lines from left to right; those left out stand where they fall."""
+    note: str = ""
+
+
+class LineGroup(_Table):
+    """Lines that riders take for one."""
+
+    lines: Annotated[tuple[Id, ...], Field(min_length=2)]
+    name: str = ""
+    """Name of the whole; the first line's if empty."""
+    color: Color | None = None
+    """The first line's if none is given."""
+    text_color: Color | None = None
 
 
 class Merge(_Table):
@@ -85,18 +136,12 @@ class Adjustments(_Table):
     lines: dict[Id, LineAdjustment] = Field(default_factory=dict)
     abbreviations: dict[Id, str] = Field(default_factory=dict)
     """Words of station names and what to write for them, such as Street = "St"."""
+    links: tuple[LinkAdjustment, ...] = ()
+    group: tuple[LineGroup, ...] = ()
     merge: tuple[Merge, ...] = ()
     split: tuple[Split, ...] = ()
     same_station: tuple[Same, ...] = ()
     same_line: tuple[Same, ...] = ()
-
-    @model_validator(mode="after")
-    def _agree(self) -> Adjustments:
-        """Refuse what contradicts itself on the face of it, naming both."""
-        found = next(_contradictions(self), None)
-        if found:
-            raise ValueError(found)
-        return self
 
 
 def adjustments_from_toml(data: bytes, name: str) -> Adjustments:
@@ -131,41 +176,13 @@ def adjustments_of(values: Mapping[str, Any], name: str) -> Adjustments:
         As `adjustments_from_toml` does.
     """
     try:
-        return Adjustments.model_validate(values)
+        found = Adjustments.model_validate(values)
     except ValidationError as error:
         raise UsageError("\n".join(_advice(each, name) for each in error.errors())) from error
-
-
-def translated(
-    adjustments: Adjustments, stations: Mapping[str, str], lines: Mapping[str, str]
-) -> Adjustments:
-    """Give adjustments by other ids of the same things.
-
-    Parameters
-    ----------
-    adjustments
-        As a person wrote them.
-    stations, lines
-        Other ids by those that stand there; what is in neither keeps its own.
-    """
-
-    def station(key: str) -> str:
-        return stations.get(key, key)
-
-    return adjustments.model_copy(
-        update={
-            "stations": {station(k): v for k, v in adjustments.stations.items()},
-            "lines": {lines.get(k, k): v for k, v in adjustments.lines.items()},
-            "merge": tuple(
-                each.model_copy(update={"stations": tuple(map(station, each.stations))})
-                for each in adjustments.merge
-            ),
-            "split": tuple(
-                each.model_copy(update={"station": station(each.station)})
-                for each in adjustments.split
-            ),
-        }
-    )
+    problem = next(contradictions(found), None)
+    if problem:
+        raise UsageError(f"{name}: {problem}.")
+    return found
 
 
 def plain(adjustments: Adjustments) -> dict[str, Any]:
@@ -182,8 +199,6 @@ def _advice(error: ErrorDetails, name: str) -> str:
         hint = f"did you mean {near[0]}?" if near else f"known here: {', '.join(known)}"
         return f"{name}: unknown key {path}: {hint}"
     message = error["msg"].removeprefix("Value error, ")
-    if not error["loc"]:
-        return f"{name}: {message}"
     return f"{name}: {path} = {error['input']!r}: {message}"
 
 
@@ -200,23 +215,3 @@ def _keys(path: list[int | str]) -> list[str]:
                 model,
             )
     return sorted(getattr(model, "model_fields", ()))
-
-
-def _contradictions(adjustments: Adjustments) -> Iterator[str]:
-    """Say which adjustments cannot both hold, whatever the feed."""
-    merged = [(f"merge.{i}", s) for i, m in enumerate(adjustments.merge) for s in m.stations]
-    split = [(f"split.{i}", each.station) for i, each in enumerate(adjustments.split)]
-    yield from _twice([*merged, *split], "station")
-    for kind in ("same_station", "same_line"):
-        for side in ("old", "new"):
-            ids = [getattr(same, side) for same in getattr(adjustments, kind)]
-            places = [(f"{kind}.{i}.{side}", key) for i, key in enumerate(ids) if key]
-            yield from _twice(places, "id")
-
-
-def _twice(places: Iterable[tuple[str, str]], noun: str) -> Iterator[str]:
-    first: dict[str, str] = {}
-    for where, key in places:
-        if key in first:
-            yield f"{first[key]} and {where} contradict each other about {noun} {key}"
-        first[key] = where

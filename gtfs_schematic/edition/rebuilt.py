@@ -28,6 +28,8 @@ class Draft:
     walks: dict[tuple[str, str], int | None]
     became: dict[str, str] = field(default_factory=dict)
     """Per station that was merged or split the station that its id means now."""
+    line_became: dict[str, str] = field(default_factory=dict)
+    """Per line that was grouped the line that its id means now."""
 
     @classmethod
     def of(cls, network: Network) -> Draft:

@@ -12,6 +12,7 @@ from shapely import affinity
 from gtfs_schematic.bundles.model import BundledLayout, Corner
 from gtfs_schematic.geometry import Point
 from gtfs_schematic.labels.model import Label, LabelledLayout
+from gtfs_schematic.network.model import Station
 
 TOLERANCE_MM = 0.1
 """What clearances may fall short by: arcs and discs are approximated differently here."""
@@ -49,16 +50,19 @@ def _completeness(labelled: LabelledLayout) -> Iterator[str]:
             continue
         said = "".join(line.text for line in label.lines if not line.second)
         wanted = labelled.abbreviated.get(station.id, station.name)
-        if _bare(said) != _bare(wanted) or not _is_short_for(labelled, wanted, station.name):
+        if _bare(said) != _bare(wanted) or not _is_short_for(labelled, wanted, station):
             yield f"The label of station {station.id} says {said!r}, not {station.name!r}."
     for station_id in labelled.labels:
         if station_id not in network.station:
             yield f"There is a label for {station_id}, which is no station."
 
 
-def _is_short_for(labelled: LabelledLayout, short: str, name: str) -> bool:
-    """Tell whether each word is that of the name or one that the settings give for it."""
+def _is_short_for(labelled: LabelledLayout, short: str, station: Station) -> bool:
+    """Tell whether a person asked for it, or each word is one that the settings give for it."""
     table = labelled.settings.abbreviations
+    rows = labelled.settings.rows.get(station.id, ())
+    asked = " ".join(rows) or labelled.settings.short_names.get(station.id, station.name)
+    name = asked or station.name
     listed = [part for word in name.split() for part in table.get(word, word).split()]
     return short.split() in (name.split(), listed)
 

@@ -40,7 +40,7 @@ FOREIGN_LINE = 1.5
 CUT_OFF = 8.0
 """A line that does not call between the label and its marker."""
 NOT_ASKED = 1000.0
-"""Another side than a person asks for."""
+"""Another side, or another angle, than a person asks for."""
 _NEAR_MM = 2.5
 _NEARLY_MM = 0.5
 _CLEARLY = 0.6
@@ -61,6 +61,8 @@ SIDE_COST: Mapping[Run, Mapping[Side, float]] = {
 }
 TILT_COST: Mapping[Side, float] = {"NE": 5.0, "SW": 5.7}
 """Tilted labels stand above and begin at the marker, or below and end there; never elsewhere."""
+_TILT = 6.5
+"""Other sides, where a person asks for another angle."""
 TILT_BOLD = 6.0
 """Names of interchanges and termini are better level."""
 END_COST = (0.0, 1.0, 2.0, 5.0, 9.0)
@@ -116,7 +118,7 @@ def _own_cost(candidate: Candidate, settings: LabelSettings) -> float:
     cost += ROW * abs(candidate.rows - wanted) + 0.1 * max(0.0, widest - 1.3 * _ROW_MM)
     cost += SMALLER * (1.0 - candidate.scale)
     if candidate.angle_deg:
-        cost += TILT_COST[candidate.side] - side_cost(candidate)
+        cost += TILT_COST.get(candidate.side, _TILT) - side_cost(candidate)
         cost += TILT_BOLD if candidate.site.bold else 0.0
     if candidate.block.foot > candidate.block.last_baseline:
         cost += BENEATH
@@ -124,6 +126,9 @@ def _own_cost(candidate: Candidate, settings: LabelSettings) -> float:
         cost += BARE
     asked = settings.sides.get(candidate.site.station_id)
     if asked is not None and candidate.side != asked:
+        cost += NOT_ASKED
+    angle = candidate.site.angle
+    if angle is not None and candidate.angle_deg != -angle:
         cost += NOT_ASKED
     return cost
 

@@ -40,6 +40,12 @@ class LabelSettings(BaseModel):
     """Short forms of words, tried for names that find no place otherwise."""
     sides: dict[str, Side] = Field(default_factory=dict)
     """Per station id the side that a person asks for; kept wherever it is free."""
+    angles: dict[str, Literal[-45, 0, 45, 90]] = Field(default_factory=dict)
+    """Per station id the degrees by which its name is to rise to the right; likewise."""
+    short_names: dict[str, str] = Field(default_factory=dict)
+    """Per station id what its label says instead of the name."""
+    rows: dict[str, tuple[str, ...]] = Field(default_factory=dict)
+    """Per station id what its label says, row by row."""
 
 
 @dataclass(frozen=True, slots=True)

@@ -75,7 +75,7 @@ def _shortened(
     for site in sites:
         words = [settings.abbreviations.get(word, word) for word in site.name.split(" ")]
         name = " ".join(words)
-        lost = site.station_id not in chosen and name != site.name
+        lost = site.station_id not in chosen and name != site.name and not site.rows
         found.append(replace(site, name=name, shortened=True) if lost else site)
     return tuple(found)
 

@@ -127,6 +127,8 @@ def positions(site: Site, settings: LabelSettings, reach: Reach = NEAR) -> Itera
                     )  # fmt: skip
             if rows <= 2 and wording.badge_place != "beneath":
                 yield from _tilted(site, wording, gap, scale, bare=bare)
+            if site.angle:
+                yield from _turned(site, wording, gap, scale, bare=bare)
 
 
 def wordings(site: Site, settings: LabelSettings, reach: Reach, scale: float) -> Iterator[Wording]:
@@ -135,8 +137,9 @@ def wordings(site: Site, settings: LabelSettings, reach: Reach, scale: float) ->
     if site.badges:
         places = ("beneath", "after") if len(site.badges) <= _AFTER_MOST else ("beneath",)
         places = (*places, "none") if reach.drop_badges else places
-    for count in range(1, reach.rows + 1):
-        rows = break_name(site.name, count)
+    counts = range(1, reach.rows + 1)
+    breaks = [site.rows] if site.rows else [break_name(site.name, count) for count in counts]
+    for rows in breaks:
         if rows is None:
             continue
         for place in places:
@@ -234,3 +237,26 @@ def _tilted(
         x = pivot[0] if side == "NE" else pivot[0] - block.width
         origin = (x, pivot[1] - block.middle)
         yield Candidate(site, block, side, origin, pivot, vector, TILT_DEG, rows, 0.0, scale, bare)
+
+
+def _turned(
+    site: Site, wording: Wording, gap: float, scale: float, *, bare: bool
+) -> Iterator[Candidate]:
+    """Give positions at the angle that a person asks for: begun at the marker, or ended there."""
+    angle = -float(site.angle or 0)
+    reach = site.radius + gap
+    onward = round(angle / 45.0) % 8
+    aligns: tuple[tuple[int, Align], ...] = ((onward, "left"), ((onward + 4) % 8, "right"))
+    for octant, align in aligns:
+        block = set_block(wording, align)
+        for push in (octant, (octant - 1) % 8, (octant + 1) % 8):
+            if push in site.directions:
+                continue  # a line leaves this way
+            px, py = site.support(OCTANTS[push])
+            vector = side_vector(OCTANTS[push])
+            pivot = (px + vector[0] * reach, py + vector[1] * reach)
+            x = pivot[0] if align == "left" else pivot[0] - block.width
+            yield Candidate(
+                site, block, OCTANTS[octant], (x, pivot[1] - block.middle), pivot, vector,
+                angle, len(wording.rows), 0.0, scale, bare,
+            )  # fmt: skip

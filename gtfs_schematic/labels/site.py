@@ -49,6 +49,10 @@ class Site:
     """Ids of the lines that call."""
     shortened: bool = False
     """Whether the name is a short form."""
+    rows: tuple[str, ...] = ()
+    """The rows in which a person wants the name; empty: as it falls."""
+    angle: int | None = None
+    """Degrees by which a person wants it to rise to the right."""
 
     def support(self, side: Side) -> Point:
         """Give the covered point furthest to a side; where several are, the middle of them."""
@@ -79,10 +83,13 @@ def sites_of(bundled: BundledLayout, settings: LabelSettings) -> tuple[Site, ...
     sites = []
     for station in sorted(network.stations, key=lambda station: station.id):
         octants = tuple(sorted(directions[station.id]))
+        name = station.name.strip() or station.id
+        rows = settings.rows.get(station.id, ())
+        said = " ".join(rows) or settings.short_names.get(station.id, name)
         sites.append(
             Site(
                 station_id=station.id,
-                name=station.name.strip() or station.id,
+                name=said,
                 second_name=station.second_name.strip(),
                 badges=ends.get(station.id, ()),
                 bold=station.kind != "stop",
@@ -92,6 +99,9 @@ def sites_of(bundled: BundledLayout, settings: LabelSettings) -> tuple[Site, ...
                 directions=octants,
                 run=_run(octants),
                 lines=frozenset(station.lines),
+                shortened=said != name,
+                rows=rows,
+                angle=settings.angles.get(station.id),
             )
         )
     return tuple(sites)

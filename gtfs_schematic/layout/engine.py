@@ -19,6 +19,7 @@ from numpy.typing import NDArray
 
 from gtfs_schematic.errors import LayoutError
 from gtfs_schematic.layout.anchors import anchor_points
+from gtfs_schematic.layout.asked import ask, kept_stations, relative_pins
 from gtfs_schematic.layout.board import Board
 from gtfs_schematic.layout.embed import check_degrees, embed
 from gtfs_schematic.layout.fit import (
@@ -41,7 +42,7 @@ from gtfs_schematic.layout.objective import Weights
 from gtfs_schematic.layout.planarise import planarise
 from gtfs_schematic.layout.plane import PlaneGraph
 from gtfs_schematic.layout.restore import restore
-from gtfs_schematic.layout.settle import NoRoomError, settle
+from gtfs_schematic.layout.settle import NoRoomError, PinsCollideError, settle
 from gtfs_schematic.layout.skeleton import Skeleton, build, skeleton_of
 from gtfs_schematic.layout.snap import UNITS_PER_MM, snap
 from gtfs_schematic.network.model import Network
@@ -110,16 +111,10 @@ def place(
     if not network.links:
         raise LayoutError("The network has no links: there is nothing to draw.")
     progress.phase("placing on the ground")
-    strangers = sorted(set(settings.pins) - set(network.station))
-    if strangers:
-        raise LayoutError(
-            f"Pinned stations that the network does not have: {', '.join(strangers)}. Station ids "
-            "are those of edition.json."
-        )
-    graph = planarise(network, settings.pins)
+    graph = planarise(network, kept_stations(network, settings))
     check_degrees(graph)
     anchors = anchor_points(graph, settings.fidelity)
-    board = _board(graph, anchors, progress)
+    board = _board(graph, anchors, settings, progress)
     improve(board, _SWEEPS[settings.effort], progress)
     return Placement(network, settings, board.anchors[: graph.n_vertices], skeleton_of(board))
 
@@ -165,24 +160,24 @@ def fit_sheet(
         placement.anchors,
         link_least(network, clearances),
         link_wishes(network, requests),
+        relative=relative_pins(placement.skeleton.graph, placement.settings),
     )
-    try:
-        skeleton, points, frame = _on_sheet(placement.skeleton, sizes, frames)
-    except NoRoomError:
-        # The wishes bind more than the sheet can give; without them it holds the drawing.
-        sizes = dataclasses.replace(sizes, link_wishes={})
-        skeleton, points, frame = _on_sheet(placement.skeleton, sizes, frames)
+    sizes, (skeleton, points, frame) = _first_that_holds(placement.skeleton, sizes, frames)
     pinned = pins_in_frame(skeleton.graph, sizes.settings, frame)
-    places = _on_paper(snap(skeleton, points, frozenset(pinned)), frame, centred=not pinned)
+    units = snap(skeleton, points, frozenset(pinned), sizes.relative)
+    places = _on_paper(units, frame, centred=not pinned)
     return restore(network, skeleton, places, frame, part_wants(skeleton.graph, sizes))
 
 
-def _board(graph: PlaneGraph, anchors: NDArray[np.float64], progress: Progress) -> Board:
+def _board(
+    graph: PlaneGraph, anchors: NDArray[np.float64], settings: LayoutSettings, progress: Progress
+) -> Board:
     """Lay the graph on the coarsest lattice that holds it."""
     progress.phase("laying lines", len(_UNITS))
     stuck = 0
     for unit in _UNITS:
         board = Board(graph, anchors, Weights(), unit)
+        ask(board, settings)
         failed = embed(board)
         progress.step()
         if failed is None:
@@ -193,6 +188,23 @@ def _board(graph: PlaneGraph, anchors: NDArray[np.float64], progress: Progress) 
         f"Between {names[0]} and {names[1]} the network is too dense to be drawn without new "
         "crossings. Draw fewer lines or modes at once."
     )
+
+
+def _first_that_holds(
+    skeleton: Skeleton, sizes: Sizes, frames: Sequence[SheetFrame]
+) -> tuple[Sizes, tuple[Skeleton, NDArray[np.float64], SheetFrame]]:
+    """Settle with all wishes; without places beside other stations, or without room, if need be."""
+    tries = [sizes, dataclasses.replace(sizes, link_wishes={})]
+    if sizes.relative:
+        tries += [dataclasses.replace(each, relative=()) for each in tries]
+    for each in tries[:-1]:
+        try:
+            return each, _on_sheet(skeleton, each, frames)
+        except (NoRoomError, PinsCollideError) as error:
+            # What is in the way may be a wish; pins that collide without one are an error.
+            if isinstance(error, PinsCollideError) and not each.relative:
+                raise
+    return tries[-1], _on_sheet(skeleton, tries[-1], frames)
 
 
 def _on_sheet(

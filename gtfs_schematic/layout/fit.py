@@ -11,6 +11,7 @@ from numpy.typing import NDArray
 
 from gtfs_schematic.errors import LayoutError
 from gtfs_schematic.geometry import Point
+from gtfs_schematic.layout.asked import Relative
 from gtfs_schematic.layout.model import Clearances, LayoutSettings, RoomRequest, SheetFrame
 from gtfs_schematic.layout.plane import Part, Piece, PlaneGraph
 from gtfs_schematic.layout.settle import Wants
@@ -50,6 +51,8 @@ class Sizes:
     """Length that names want of some links, millimetres."""
     pinned: Mapping[int, Point] = field(default_factory=dict)
     """Per pinned vertex its place, millimetres from the frame's lower left corner, y north."""
+    relative: tuple[Relative, ...] = ()
+    """Places that vertices keep as seen from others."""
 
 
 def wants_of(
@@ -97,6 +100,7 @@ def wants_of(
         clear=2.0 * clearances.line_gap_mm + 0.5,
         room=np.zeros((len(owner), 8)) if tight else _label_room(skeleton, clearances),
         pinned=sizes.pinned,
+        relative=sizes.relative,
         jogs=np.where(jog, 3.0 * lines, 0.0),
         spread=2.0 if tight else 0.0,
     )

@@ -11,6 +11,9 @@ from pydantic import BaseModel, ConfigDict, Field
 from gtfs_schematic.geometry import Point
 from gtfs_schematic.network.model import Network
 
+Direction = Literal["E", "NE", "N", "NW", "W", "SW", "S", "SE"]
+"""Where a link leads on the sheet."""
+
 
 class LayoutSettings(BaseModel):
     """How the network is placed on the sheet."""
@@ -23,6 +26,13 @@ class LayoutSettings(BaseModel):
     """How much work the improvement may do: a fixed amount, never a time."""
     pins: Mapping[str, tuple[float, float]] = Field(default_factory=dict)
     """Places that stations must keep, by station id: millimetres from the left and the top."""
+    pins_from: Mapping[str, tuple[str, float | None, float | None]] = Field(default_factory=dict)
+    """Places that they keep as seen from another station: its id, millimetres to the right and
+    down; None leaves one open."""
+    directions: Mapping[str, Direction] = Field(default_factory=dict)
+    """Per link id where it is to lead from its start, N up the sheet; a strong wish."""
+    straights: Mapping[str, tuple[str, ...]] = Field(default_factory=dict)
+    """Per station id the lines that are to pass it straight; a strong wish."""
 
 
 @dataclass(frozen=True, slots=True)

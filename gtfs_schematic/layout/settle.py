@@ -20,6 +20,7 @@ from scipy.optimize import linprog
 
 from gtfs_schematic.errors import InternalFaultError, LayoutError
 from gtfs_schematic.geometry import Point
+from gtfs_schematic.layout.asked import Relative, hold_relative
 from gtfs_schematic.layout.rows import Rows
 from gtfs_schematic.layout.separation import Separations, near_pairs, separate
 from gtfs_schematic.layout.skeleton import STEP, Skeleton
@@ -73,6 +74,8 @@ class Wants:
     """Vertices whose place is fixed, millimetres."""
     jogs: NDArray[np.float64]
     """Weight of the length of each segment that is better gone, shape (m,)."""
+    relative: tuple[Relative, ...] = ()
+    """Places that vertices keep as seen from others."""
 
 
 def settle(
@@ -150,6 +153,7 @@ def _solve(
     columns = _Columns.of(skeleton, len(apart.first))
     equal, most = Rows(), Rows()
     _keep_directions(equal, runs, columns)
+    hold_relative(equal, (columns.x, columns.y), wants.relative if not loosened else ())
     _bound_lengths(most, runs, columns, wants)
     _reach_anchors(most, columns, wants)
     _keep_apart(most, skeleton, columns, wants, apart)
@@ -177,7 +181,7 @@ def _solve(
         method="highs-ipm",
     )
     if solution.status == _INFEASIBLE:
-        if wants.pinned and not loosened:
+        if (wants.pinned or wants.relative) and not loosened:
             raise PinsCollideError(_collisions(skeleton, wants, apart, box))
         raise NoRoomError("The drawing does not fit its box.")
     if not solution.success:

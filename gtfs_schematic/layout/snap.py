@@ -2,13 +2,14 @@
 
 from __future__ import annotations
 
-from collections.abc import Collection
+from collections.abc import Collection, Sequence
 
 import numpy as np
 from numpy.typing import NDArray
 from ortools.sat.python import cp_model
 
 from gtfs_schematic.errors import InternalFaultError
+from gtfs_schematic.layout.asked import Relative
 from gtfs_schematic.layout.skeleton import STEP, Skeleton
 
 UNITS_PER_MM = 100
@@ -18,7 +19,10 @@ _WORK = 60.0
 
 
 def snap(
-    skeleton: Skeleton, points: NDArray[np.float64], fixed: Collection[int] = ()
+    skeleton: Skeleton,
+    points: NDArray[np.float64],
+    fixed: Collection[int] = (),
+    relative: Sequence[Relative] = (),
 ) -> NDArray[np.int64]:
     """Find the whole-number places near `points` for which every segment keeps its direction.
 
@@ -30,6 +34,8 @@ def snap(
         Settled places in millimetres, shape (k, 2).
     fixed
         Nodes that stay where rounding puts them.
+    relative
+        Places that nodes keep as seen from others.
 
     Returns
     -------
@@ -43,14 +49,18 @@ def snap(
     """
     near = np.rint(points * UNITS_PER_MM).astype(np.int64)
     for window in _WINDOWS:
-        found = _search(skeleton, near, window, fixed)
+        found = _search(skeleton, near, window, fixed, relative)
         if found is not None:
             return found
     raise InternalFaultError("No exact octilinear places were found near the settled ones.")
 
 
 def _search(
-    skeleton: Skeleton, near: NDArray[np.int64], window: int, fixed: Collection[int]
+    skeleton: Skeleton,
+    near: NDArray[np.int64],
+    window: int,
+    fixed: Collection[int],
+    relative: Sequence[Relative],
 ) -> NDArray[np.int64] | None:
     model = cp_model.CpModel()
     places = [
@@ -71,6 +81,8 @@ def _search(
         else:
             model.add(x == y if dx == dy else x == -y)
         model.add((x * int(dx) if dx else y * int(dy)) >= 1)
+    for v, other, axis, value in relative:
+        model.add(places[v][axis] - places[other][axis] == round(value * UNITS_PER_MM))
     for xy, home in zip(places, near, strict=True):
         for variable, value in zip(xy, home, strict=True):
             model.add_hint(variable, int(value))

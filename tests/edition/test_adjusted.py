@@ -57,8 +57,8 @@ def test_names_and_colors():
     assert network.line["m1"].color == "#102030"
     assert contrast_ratio(network.line["m1"].text_color, "#102030") > 4.5  # WCAG 2.2, 1.4.3
     assert network.line["m2"].text_color == "#ABCDEF"
-    assert result.sides == {"183": "S"}
-    assert result.pins == {"183": (100.0, 80.0)}
+    assert result.wishes.sides == {"183": "S"}
+    assert result.wishes.pins == {"183": (100.0, 80.0)}
     assert result.stale == ()
 
 
@@ -98,7 +98,7 @@ def test_merged_stations_are_one():
     whole = network.station[link.start]
     assert whole.name == "Both"
     assert set(whole.stop_ids) == {s for key in ids for s in NETWORK.station[key].stop_ids}
-    assert result.pins == {link.start: (1.0, 2.0)}
+    assert result.wishes.pins == {link.start: (1.0, 2.0)}
     assert sum(k.trips for k in network.lines) == sum(k.trips for k in NETWORK.lines)
 
 
@@ -189,3 +189,141 @@ def test_any_mixture_leaves_a_sound_network(data):
     )
     assert not set(lines) & set(result.network.line)
     assert result.stale == ()
+
+
+def ends_of(line: str, station: str) -> list[tuple[str, str]]:
+    courses = NETWORK.line[line].courses
+    return [
+        (a, b)
+        for course in courses
+        for a, here, b in zip(course, course[1:], course[2:], strict=False)
+        if here == station
+    ]
+
+
+def test_grouped_lines_are_one_that_runs_as_often():
+    ids = ["t6", "t5"]
+    result = apply(
+        group=[{"lines": ids, "name": "T", "color": "#102030"}], lines={"t6": {"note": "one"}}
+    )
+    line = result.network.line["t5"]
+    assert "t6" not in result.network.line
+    assert (line.name, line.color) == ("T", "#102030")
+    old = [NETWORK.line[key] for key in ids]
+    assert line.trips == sum(each.trips for each in old)
+    assert set(line.route_ids) == {route for each in old for route in each.route_ids}
+    links = {k.id for k in NETWORK.links if set(ids) & set(k.lines)}
+    assert {k.id for k in result.network.links if "t5" in k.lines} == links
+    assert line.first_departure_s == min(each.first_departure_s for each in old)
+    assert sum(period.trips for period in line.periods) <= line.trips
+    assert result.stale == ()
+
+
+def test_wishes_are_by_ids_of_the_network():
+    link = next(k for k in NETWORK.links if len(k.lines) > 2)
+    first, second, third = link.lines[:3]
+    line = NETWORK.links[0].lines[0]
+    station = next(
+        s.id for s in NETWORK.stations if line in s.lines and len(ends_of(line, s.id)) > 0
+    )
+    platform = NETWORK.station[link.end].stop_ids[-1]
+    result = apply(
+        stations={
+            station: {"straight": [line], "label_angle": 0, "short_name": "S"},
+            link.start: {"pin_from": {"station": platform, "dy_mm": 0}},
+        },
+        links=[{"between": [platform, link.start], "order": [third, first], "direction": "E"}],
+    )
+    wishes = result.wishes
+    assert wishes.straights == {station: (line,)}
+    assert wishes.angles == {station: 0}
+    assert wishes.short_names == {station: "S"}
+    assert wishes.pins_from == {link.start: (link.end, None, 0.0)}
+    # Said from the link's end: seen from its start all is the other way round.
+    assert wishes.orders == {link.id: (first, third)}
+    assert wishes.directions == {link.id: "W"}
+    assert result.stale == ()
+    assert second not in wishes.orders[link.id]
+
+
+def test_wishes_that_apply_to_nothing_are_told():
+    link = NETWORK.links[0]
+    stranger = next(k.id for k in NETWORK.lines if k.id not in link.lines)
+    far = next(s.id for s in NETWORK.stations if frozenset((s.id, link.start)) not in
+               NETWORK.link_between and s.id != link.start)  # fmt: skip
+    result = apply(
+        stations={link.start: {"straight": [stranger], "pin_from": {"station": "x", "dx_mm": 1}}},
+        links=[
+            {"between": [link.start, link.end], "order": [stranger, link.lines[0]]},
+            {"between": [link.start, far], "direction": "E"},
+        ],
+        group=[{"lines": ["zz", link.lines[0]]}],
+    )
+    assert (result.wishes.straights, result.wishes.orders) == ({}, {})
+    assert len(result.stale) == 5
+    assert replace(result.network, left_out=NETWORK.left_out) == NETWORK
+
+
+A, B, C = next(
+    (a, s.id, b) for k in NETWORK.lines for s in NETWORK.stations for a, b in ends_of(k.id, s.id)
+)
+THROUGH = next(k.id for k in NETWORK.lines if ends_of(k.id, B))
+
+
+@pytest.mark.parametrize(
+    ("values", "both"),
+    [
+        (
+            {
+                "stations": {A: {"pin_mm": [10, 10]}, B: {"pin_mm": [20, 10]}},
+                "links": [{"between": [A, B], "direction": "N"}],
+            },
+            ("links.0.direction", f"stations.{A}.pin_mm"),
+        ),
+        (
+            {
+                "stations": {A: {"pin_from": {"station": B, "dx_mm": 5}}},
+                "links": [{"between": [A, B], "direction": "E"}],
+            },
+            ("links.0.direction", f"stations.{A}.pin_from"),
+        ),
+        (
+            {
+                "stations": {
+                    A: {"pin_from": {"station": B, "dx_mm": 5}},
+                    B: {"pin_from": {"station": A, "dy_mm": 5}},
+                },
+            },
+            (f"stations.{A}.pin_from", f"stations.{B}.pin_from"),
+        ),
+        (
+            {
+                "stations": {B: {"straight": [THROUGH]}},
+                "links": [
+                    {"between": [A, B], "direction": "E"},
+                    {"between": [B, C], "direction": "S"},
+                ],
+            },
+            (f"stations.{B}.straight", "links.0.direction", "links.1.direction"),
+        ),
+        (
+            {"lines": {"t6": {"hide": True}}, "group": [{"lines": ["t5", "t6"]}]},
+            ("group.0", "lines.t6.hide"),
+        ),
+        (
+            {
+                "stations": {
+                    NETWORK.station["152"].stop_ids[0]: {"pin_mm": [1, 2]},
+                    NETWORK.station["152"].stop_ids[1]: {
+                        "pin_from": {"station": "183", "dx_mm": 1}
+                    },
+                }
+            },
+            ("pin_mm", "pin_from", "152"),
+        ),
+    ],
+)  # fmt: skip
+def test_wishes_that_cannot_all_be_met_name_both(values, both):
+    with pytest.raises(UsageError) as caught:
+        apply(**values)
+    assert all(name in str(caught.value) for name in both)
