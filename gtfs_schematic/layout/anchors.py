@@ -1,4 +1,4 @@
-"""Where geography wants every point: even-spacing targets, reached without losing topology."""
+"""Where geography wants every point: evenly spaced, in straight runs, the topology not lost."""
 
 from __future__ import annotations
 
@@ -10,6 +10,7 @@ from scipy.sparse.linalg import spsolve
 from gtfs_schematic.layout.guard import free_radii, repulsion
 from gtfs_schematic.layout.plane import PlaneGraph
 from gtfs_schematic.layout.spread import spread
+from gtfs_schematic.layout.strokes import straightened
 
 _PULL_TO_GROUND = 0.004
 """Weight of staying at the true place against one link's wanted vector; small, so that dense
@@ -25,9 +26,12 @@ _THIN = 0.1
 _LEAST_CLEARANCE = 0.75
 """Distance that it gets at least."""
 
+_TRUE = 0.95
+"""Fidelity from which on the ground itself is wanted, wherever it runs."""
+
 
 def anchor_points(graph: PlaneGraph, fidelity: float) -> NDArray[np.float64]:
-    """Move the points of a plane graph towards even spacing, keeping its topology.
+    """Move the points of a plane graph towards even spacing and straight runs, topology kept.
 
     Parameters
     ----------
@@ -51,6 +55,10 @@ def anchor_points(graph: PlaneGraph, fidelity: float) -> NDArray[np.float64]:
     vectors = _wanted_vectors(graph, ground, lengths, fidelity)
     targets = _targets(graph, ground, lengths, vectors, fidelity)
     moved = _guarded_move(graph, ground, targets)
+    if fidelity < _TRUE:
+        targets, directions = straightened(graph, moved, fidelity)
+        moved = _guarded_move(graph, moved, targets)
+        vectors = directions * np.hypot(vectors[:, 0], vectors[:, 1])[:, None]
     return np.round(spread(moved, graph.segments, vectors, _LEAST_CLEARANCE), 6)
 
 
