@@ -10,7 +10,6 @@ stations back.
 from __future__ import annotations
 
 import dataclasses
-import math
 from collections.abc import Sequence
 from dataclasses import dataclass
 
@@ -55,8 +54,10 @@ _ROOM = 1.1
 """Share by which a sheet should exceed the least size of the drawing, for labels and air."""
 _LOOSEST = 3.0
 """A station spacing grows to at most so many times the least, however large the sheet."""
+_MAGNIFIED = 1.25
+"""How much a settled drawing may be enlarged as it is, whatever the spacing then becomes."""
 _NO_LENGTH_MM = 0.02
-_FILLINGS = 3
+_FILLINGS = 4
 _FULL = 1.06
 """How often the scale is raised to fill the sheet, and when it is full: sheet over drawing."""
 
@@ -233,12 +234,23 @@ def _on_sheet(
         # drawing is to be true to the ground.
         spare = np.maximum(1.0, np.asarray(box) / np.maximum(np.ptp(points, axis=0), 1e-9))
         fidelity = sizes.settings.fidelity
-        grow = float(spare.min() ** fidelity * math.sqrt(spare.prod()) ** (1.0 - fidelity))
+        grow = float(spare.min() ** fidelity * spare.max() ** (1.0 - fidelity))
         if not sizes.pinned and (grow < _FULL or scale >= _LOOSEST * spacing):
             break
         scale = min(scale * 0.98 * grow, _LOOSEST * spacing)
         skeleton, points, pairs = _settled(skeleton, sizes, scale, box, pairs)
+    if not sizes.pinned:
+        points = points * _magnified(points, box, _LOOSEST * spacing / scale)
     return skeleton, points, frame
+
+
+def _magnified(points: NDArray[np.float64], box: tuple[float, float], most: float) -> float:
+    """Give the factor by which a settled drawing is enlarged as it is, to fill its box.
+
+    It keeps every direction and only adds to every distance, so no guarantee can suffer.
+    """
+    spare = np.asarray(box) / np.maximum(np.ptp(points, axis=0), 1e-9)
+    return float(np.clip(spare.min(), 1.0, max(most, _MAGNIFIED)))
 
 
 def _best_of_size(fits: list[SheetFrame], width: float, height: float) -> SheetFrame:
