@@ -29,6 +29,8 @@ _KINDS = {
     "some-days": "; on some days only",
 }
 
+_LONGEST_HEADWAY_S = 2 * 3600
+
 
 @click.command(epilog=_EPILOG)
 @options.feeds
@@ -147,12 +149,22 @@ def _line(line: Line, network: Network) -> str:
     ends = [network.station[key].name for key in (longest[0], longest[-1])] if longest else []
     course = f": {' – '.join(dict.fromkeys(ends))}" if ends else ""
     stations = len({key for itinerary in line.itineraries for key in itinerary})
-    span = f"{_clock(line.first_departure_s)} to {_clock(line.last_departure_s)}"
-    every = f", every {_minutes(line.headway_s)}" if line.headway_s is not None else ""
     return (
         f"{line.name} ({line.mode}){course}, {words.count(stations, 'station')}, "
-        f"{words.count(line.trips, 'trip')}, {span}{every}{_headways(line)}{_KINDS[line.service]}"
+        f"{words.count(line.trips, 'trip')}, {_span(line)}{_headway(line)}{_KINDS[line.service]}"
     )
+
+
+def _span(line: Line) -> str:
+    first, last = _clock(line.first_departure_s), _clock(line.last_departure_s)
+    return f"at {first}" if first == last else f"{first} to {last}"
+
+
+def _headway(line: Line) -> str:
+    """Write how often a line runs; a few trips a day are told by their number alone."""
+    if line.headway_s is None or line.headway_s > _LONGEST_HEADWAY_S:
+        return ""
+    return f", every {_minutes(line.headway_s)}{_headways(line)}"
 
 
 def _headways(line: Line) -> str:

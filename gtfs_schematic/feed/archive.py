@@ -160,7 +160,7 @@ def _pick(
     if not candidates:
         zips = [name for name in found if name.lower().endswith(".zip")]
         hint = (
-            f"It holds other zips ({', '.join(zips[:5])}): give one of those."
+            f"It holds other zips ({', '.join(zips[:5])}): unpack it and give one of those."
             if zips
             else f"A feed has at least {', '.join(CORE_FILES)}."
         )

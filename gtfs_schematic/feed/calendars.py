@@ -7,13 +7,17 @@ from collections import defaultdict
 from collections.abc import Container, Iterable, Mapping
 from dataclasses import dataclass
 
+from gtfs_schematic.errors import FeedError
 from gtfs_schematic.feed.cells import Cell, whole_of
 from gtfs_schematic.feed.tables import REQUIRED_COLUMNS, Tables
 from gtfs_schematic.feed.values import parse_date, parse_time
 
 _LONGEST_YEARS = 40
-"""A calendar row that runs longer than this is cut, so that a slip of the pen in a year does
-not cost millions of dates."""
+_FIRST = dt.date(2000, 1, 1)
+"""A calendar row that runs longer than this is cut, so that a slip of the pen in a year does not
+cost millions of dates. Rows that start "since ever" start in 2000: GTFS is from 2006."""
+_MOST_DEPARTURES = 20_000_000
+"""More than the largest countries have on a day, times several."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -63,17 +67,24 @@ def read_calendars(tables: Tables) -> Calendars:
 
 
 def find_unknown_services(tables: Tables, calendars: Calendars, service_ids: Iterable[str]) -> None:
-    """Find services of trips that neither calendar table has; such trips never run."""
+    """Find services of trips that neither calendar table has in a usable row."""
     known = {row.service_id for row in calendars.spans}
     known |= {row.service_id for row in calendars.exceptions}
     for ident in sorted(set(service_ids) - known):
-        fault = "service of a trip is in neither calendar.txt nor calendar_dates.txt"
+        fault = "no usable row of the calendars has the service of a trip, so it never runs"
         tables.notebook.find("error", "trips.txt", fault, field="service_id", value=ident)
 
 
 def read_headways(tables: Tables, trip_ids: Container[str]) -> Mapping[str, tuple[Headway, ...]]:
-    """Give the usable rows of frequencies.txt per trip id, in order of time."""
+    """Give the usable rows of frequencies.txt per trip id, in order of time.
+
+    Raises
+    ------
+    FeedError
+        They add up to an absurd number of departures.
+    """
     headways: defaultdict[str, list[Headway]] = defaultdict(list)
+    total = 0
     file = "frequencies.txt"
     for row, (trip, start, end, text) in tables.rows(file, REQUIRED_COLUMNS[file]):
         if trip not in trip_ids:
@@ -95,6 +106,16 @@ def read_headways(tables: Tables, trip_ids: Container[str]) -> Mapping[str, tupl
             )
             continue
         headways[trip].append(Headway(start_s, end_s, headway))
+        total += len(headways[trip][-1].departures)
+        if total > _MOST_DEPARTURES:
+            raise FeedError(
+                f"adds up to more than {_MOST_DEPARTURES:,} departures up to here, which no feed "
+                "has. Check headway_secs.",
+                file=file,
+                row=row,
+                field="headway_secs",
+                value=text,
+            )
     return {
         trip: tuple(sorted(rows, key=lambda r: (r.start_s, r.end_s, r.headway_s)))
         for trip, rows in headways.items()
@@ -127,6 +148,10 @@ def _spans(tables: Tables) -> list[Span]:
             message = "service ends before it starts and does not count"
             tables.notebook.find("error", file, message, row=row, field="end_date", value=end)
             continue
+        if first < _FIRST <= last:
+            first = _FIRST
+            message = f"service starts before {_FIRST}; it counts from then on"
+            tables.notebook.find("warning", file, message, row=row, field="start_date", value=start)
         longest = dt.timedelta(days=366 * _LONGEST_YEARS)
         limit = first + min(longest, dt.date.max - first)
         if last > limit:

@@ -26,7 +26,7 @@ LATE = (EARLY[0] + _DAY, EARLY[1] + _DAY)
 are out, and the first of the morning are not (common practice, no source). Feeds put them before
 a date's morning, or after its evening, past 24:00."""
 EVER = (-(10**9), 10**9)
-_RARE = 0.2
+_RARE = 0.25
 _VERY_RARE = 0.05
 _FEW, _MANY = 3, 10
 _NEARLY = 0.98
@@ -84,11 +84,12 @@ def choose_dates(feeds: Sequence[Validity], wanted: str) -> Choice:
     -----
     Of several feeds only dates count on which most of them run. A typical Saturday is found so: the
     number of trips is wanted that is as high as possible and yet usual, which it is if nearly
-    (98 %) as many or more run on a fifth of the Saturdays with at least half as many, on a
+    (98 %) as many or more run on a quarter of the Saturdays with at least half as many, on a
     twentieth of all Saturdays (or ten), and on three (half of them, if there are fewer than six).
     The earliest Saturday with that number is taken. So neither a holiday nor an event nor a period
     of thin service is typical, but term time is. A typical weekday is found likewise among Mondays
-    to Fridays; without any, the busiest date is taken. The shares are our own choice.
+    to Fridays, where a quarter is more than one of five: late trips on Fridays alone are not
+    typical. Without any, the busiest date is taken. The shares are our own choice.
     """
     if wanted == "busiest":
         return _busiest(feeds, "")
@@ -130,7 +131,7 @@ def _given(feeds: Sequence[Validity], wanted: str) -> Choice:
     total = sum(feed.count(date) for feed in feeds)
     if total == 0:
         _refuse_empty(feeds, date, f"on {_spoken(date)}, {date}")
-    return _one(date, f"{_spoken(date)} was asked for; it has {total:,} trips.")
+    return _one(date, f"{_spoken(date)} was asked for; it has {_trips(total)}.")
 
 
 def _range(feeds: Sequence[Validity], wanted: str) -> Choice:
@@ -153,7 +154,7 @@ def _range(feeds: Sequence[Validity], wanted: str) -> Choice:
         f"from {start} to {end}",
         f"{start} to {end} was asked for: all trips of its {_dates(len(totals))} with service, "
         f"each departure as often as on the date that has it most often. The busiest date is "
-        f"{_spoken(busiest)}, with {totals[busiest]:,} trips.",
+        f"{_spoken(busiest)}, with {_trips(totals[busiest])}.",
     )
 
 
@@ -170,14 +171,21 @@ def _typical(feeds: Sequence[Validity], wanted: str) -> Choice:
         )
     usual = _usual(list(totals.values()))
     date = min(date for date, total in totals.items() if total == usual)
+    kind = "date from Monday to Friday" if wanted == DEFAULT else _WEEKDAYS[date.weekday()]
+    if len(totals) == 1:
+        return _one(
+            date,
+            f"{_spoken(date)} is the only {kind} with service {span}; it has {_trips(usual)}.",
+        )
+    kind = kind.replace("date", "dates") if wanted == DEFAULT else f"{kind}s"
     alike = sum(_NEARLY * usual <= n <= usual / _NEARLY for n in totals.values())
-    kind = "dates from Monday to Friday" if wanted == DEFAULT else f"{_WEEKDAYS[date.weekday()]}s"
+    told = "all" if alike == len(totals) else f"{alike:,}"
     more = sum(n > usual / _NEARLY for n in totals.values())
-    apart = f"; {more} with more trips are not typical" if more else ""
+    apart = f"; {more} with more trips {'is' if more == 1 else 'are'} not typical" if more else ""
     return _one(
         date,
-        f"{_spoken(date)} is the busiest {name}: it has {usual:,} trips, and of the "
-        f"{len(totals):,} {kind} with service {span}, {alike:,} have about as many{apart}.",
+        f"{_spoken(date)} is the busiest {name}: it has {_trips(usual)}, and of the "
+        f"{len(totals):,} {kind} with service {span}, {told} have about as many{apart}.",
     )
 
 
@@ -197,6 +205,12 @@ def _busiest(feeds: Sequence[Validity], before: str) -> Choice:
     date = min(totals, key=lambda d: (-totals[d], d))
     same = sum(total == totals[date] for total in totals.values())
     first = f", as the first of {same} such dates" if same > 1 else ""
+    if len(totals) == 1:
+        return _one(
+            date,
+            f"{before}{_spoken(date)} is the only date with service {span}; it has "
+            f"{_trips(totals[date])}.",
+        )
     return _one(
         date,
         f"{before}{_spoken(date)} has the most trips, {totals[date]:,}, of the "
@@ -284,6 +298,10 @@ def _parsed(text: str) -> dt.date:
 
 def _one(date: dt.date, reason: str) -> Choice:
     return Choice(date, ((Window(date),),), f"on {date}", reason)
+
+
+def _trips(count: int) -> str:
+    return f"{count:,} trip{'' if count == 1 else 's'}"
 
 
 def _dates(count: int) -> str:

@@ -3,13 +3,17 @@
 from __future__ import annotations
 
 from collections import Counter
-from collections.abc import Sequence
+from collections.abc import Iterable, Sequence
+from typing import NoReturn
 
+from gtfs_schematic.errors import FeedError
 from gtfs_schematic.feed.model import Finding, LeftOut, Severity
 
 _LISTED = 20
 """Findings of one kind listed one by one; the others are only counted, so that a systematic
 fault in millions of rows stays readable."""
+
+_TOLD = 3
 
 
 class Notebook:
@@ -82,6 +86,21 @@ class Notebook:
         return tuple(
             LeftOut(kind, ident, reason) for (kind, ident), reason in sorted(self._left_out.items())
         )
+
+
+def refuse_empty(left_out: Iterable[LeftOut], findings: Iterable[Finding], asked: str) -> NoReturn:
+    """Refuse a feed of which nothing is left, with the reasons that most account for it.
+
+    Raises
+    ------
+    FeedError
+        In any case.
+    """
+    reasons = Counter((i.kind, i.reason) for i in left_out if i.kind in {"route", "trip"})
+    told = [f"{n} × {kind}: {reason}" for (kind, reason), n in reasons.most_common(_TOLD)]
+    errors = [f for f in findings if f.severity == "error"][:_TOLD]
+    told += [f"{f.file}, row {f.row}: {f.message}" for f in errors]
+    raise FeedError(f"Nothing is left to draw that {asked}. {'; '.join(told) or 'No reason'}.")
 
 
 def _place(finding: Finding) -> tuple[str, int, str, str, str, str]:

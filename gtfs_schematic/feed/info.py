@@ -99,6 +99,10 @@ def read_stop_names(tables: Tables, language: str) -> StopNames:
         else:
             by_name.setdefault(old_name, translation)
     best = _best_tag(language.lower(), found)
+    if language and not best:
+        known = f"there is {', '.join(sorted(found))}" if found else "there is no other"
+        fault = f"no name of a stop is translated into the language asked for; {known}"
+        tables.notebook.find("warning", "translations.txt", fault, field="language", value=language)
     return StopNames(*found[best]) if best else StopNames()
 
 
@@ -118,13 +122,18 @@ def _translations(tables: Tables) -> Iterable[tuple[str, str, str, str]]:
     for row, (text, table, name, tag, record, value, old_tag, old_name) in tables.rows(
         file, columns
     ):
-        translation = name_of(tables.notebook, Cell(file, row, "translation", text))
-        if not translation:
+        if (table, name) == ("stops", "stop_name"):
+            key = (tag, record, "" if record else clean_name(value))
+        elif old_tag or old_name:
+            key = (old_tag, "", clean_name(old_name))
+        else:
             continue
-        if tag and table == "stops" and name == "stop_name" and (record or value):
-            yield tag, record, "" if record else clean_name(value), translation
-        elif old_tag and old_name:
-            yield old_tag, "", clean_name(old_name), translation
+        translation = name_of(tables.notebook, Cell(file, row, "translation", text))
+        if key[0] and any(key[1:]) and translation:
+            yield *key, translation
+        else:
+            fault = "row lacks a language, a translation or what is translated; it does not count"
+            tables.notebook.find("warning", file, fault, row=row)
 
 
 def _best_tag(wanted: str, present: Iterable[str]) -> str:

@@ -42,6 +42,7 @@ class Picker:
         # A place of -1 picks the empty text that is appended to every row.
         self._pick = itemgetter(*places) if len(places) > 1 else _pick_one(places[0])
         self._columns, self._wanted = columns, frozenset(columns)
+        self._whole, self._first = list(header), "".join(header[:1])
         self._suspect = not tables.is_utf8(name)
         self._legacy = tables.legacy
         if self._suspect:
@@ -64,6 +65,10 @@ class Picker:
             row = fitted
         if self._suspect:
             row = self._readable(number, row)
+        if row and row[0].strip() == self._first and [*map(str.strip, row)] == self._whole:
+            fault = "the header stands here once more; the row is skipped"
+            self._notebook.find("warning", self._name, fault, row=number)
+            return None
         row.append("")
         texts = tuple(map(str.strip, self._pick(row)))
         return texts if "".join(texts).isprintable() else self._visible(number, texts)

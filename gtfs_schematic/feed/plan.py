@@ -16,6 +16,7 @@ from gtfs_schematic.feed.calendars import (
     read_calendars,
     read_headways,
 )
+from gtfs_schematic.feed.complete import check_complete
 from gtfs_schematic.feed.dates import EARLY, LATE
 from gtfs_schematic.feed.digest import Digest
 from gtfs_schematic.feed.encodings import legacy_codec
@@ -26,7 +27,7 @@ from gtfs_schematic.feed.model import Agency, FeedSettings, Route
 from gtfs_schematic.feed.night import first_departures, starts_by_service
 from gtfs_schematic.feed.routes import read_agencies, read_routes
 from gtfs_schematic.feed.service import Validity, validity_of
-from gtfs_schematic.feed.tables import REQUIRED_COLUMNS, Tables, check_tables
+from gtfs_schematic.feed.tables import REQUIRED_COLUMNS, Tables
 from gtfs_schematic.feed.trips import Trips, read_trips
 
 
@@ -75,7 +76,7 @@ def draft_feed(files: FeedFiles, digest: Digest, prefix: str) -> Draft:
         Files or columns are missing.
     """
     tables = Tables(files, digest.is_utf8, Notebook(prefix))
-    check_tables(tables)
+    check_complete(tables)
     _find_odd_files(tables)
     tables = replace(tables, legacy=legacy_codec(read_languages(tables)))
     agencies = read_agencies(tables)

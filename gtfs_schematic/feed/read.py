@@ -14,7 +14,6 @@ from __future__ import annotations
 
 import datetime as dt
 import gc
-from collections import Counter
 from collections.abc import Iterator, Sequence
 from concurrent.futures import ThreadPoolExecutor
 from contextlib import ExitStack, contextmanager
@@ -38,7 +37,7 @@ from gtfs_schematic.feed.filters import (
     names_of_route,
     without_rare_routes,
 )
-from gtfs_schematic.feed.findings import Notebook
+from gtfs_schematic.feed.findings import Notebook, refuse_empty
 from gtfs_schematic.feed.info import read_attributions, read_stop_names
 from gtfs_schematic.feed.interned import Interned
 from gtfs_schematic.feed.join import join_timetables
@@ -102,11 +101,7 @@ def read_feed(
             progress.step()
     timetable = join_timetables(parts, unused)
     if not timetable.patterns:
-        reasons = Counter(item.reason for item in timetable.left_out)
-        told = "; ".join(f"{count} × {text}" for text, count in reasons.most_common(3))
-        raise FeedError(
-            f"Nothing is left to draw that runs {choice.when}. Left out: {told or 'nothing'}."
-        )
+        refuse_empty(timetable.left_out, timetable.findings, f"runs {choice.when}")
     return timetable
 
 
@@ -162,8 +157,7 @@ def _plans(
             unused.append(notes)
         progress.step()
     if not plans:
-        labels = ", ".join(draft.label for draft in drafts)
-        raise FeedError(f"No route of {labels} is left by the filters (modes, agencies, routes).")
+        refuse_empty([item for notes in notebooks for item in notes.left_out], (), "is asked for")
     return plans, unused
 
 
@@ -216,7 +210,8 @@ def _timetable(plan: Plan, choice: Choice, settings: FeedSettings) -> Timetable:
     routes = _running_routes(plan, patterns, running, choice.when)
     agency_ids = {route.agency_id for route in routes}
     for ident in plan.agencies.keys() - agency_ids:
-        tables.notebook.leave_out("agency", ident, f"none of its routes is drawn {choice.when}")
+        name = ident or plan.agencies[ident].name
+        tables.notebook.leave_out("agency", name, f"none of its routes is drawn {choice.when}")
     services = plan.trips.services_of_routes()
     return Timetable(
         _info(plan, choice, agency_ids, [route.id for route in routes]),

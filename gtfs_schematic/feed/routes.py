@@ -67,11 +67,16 @@ def read_routes(tables: Tables, agencies: dict[str, Agency]) -> dict[str, Route]
 
 
 def _agency_id(tables: Tables, cell: Cell, agencies: dict[str, Agency]) -> str:
-    if not cell.text and len(agencies) == 1:
-        return next(iter(agencies))
-    if cell.text not in agencies:
+    if cell.text in agencies:
+        return cell.text
+    sole = next(iter(agencies)) if len(agencies) == 1 else None
+    if sole is None:
         cell.found(tables.notebook, "warning", "agency is not in agency.txt")
-    return cell.text
+        return cell.text
+    if cell.text:
+        fault = "agency is not in agency.txt; the only one there is taken"
+        cell.found(tables.notebook, "warning", fault)
+    return sole
 
 
 def _mode(tables: Tables, cell: Cell) -> tuple[int, str]:

@@ -131,8 +131,8 @@ def validity_of(
     days = service_days(calendars, trips)
     if not days:
         raise FeedError(
-            f"{label} has no service on any date: no trip's service_id is switched on by "
-            "calendar.txt or calendar_dates.txt. Ask the feed's publisher, or widen the modes."
+            f"{label} has no service on any date: calendar.txt and calendar_dates.txt switch on "
+            "no service_id of the trips asked for. Ask the feed's publisher."
         )
     first, last = min(days), max(days)
     start, end = imprint.start or first, imprint.end or last

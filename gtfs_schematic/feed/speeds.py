@@ -89,8 +89,8 @@ def find_leaps(
 ) -> frozenset[str]:
     """Find hops that are impossibly fast, and give the stops that lie astray.
 
-    1. Suspect is a stop all of whose hops are leaps, and as long as five times the network's spread,
-       but at least 20 and at most 100 km.
+    1. Suspect is a stop all of whose hops are leaps, as long as five times the network's spread or
+       longer (but 20 km in the least spread, 100 km in the widest).
     2. Of two suspects side by side the one further from the median stop is at fault.
     3. It lies astray if some pattern that calls there is possible without all suspects: else the
        times may be wrong. If a hop is shorter than 100 km, all patterns that call there must also

@@ -26,6 +26,7 @@ _COLUMNS = (
     "platform_code",
 )
 _KINDS = {"": 0, **{str(n): n for n in range(5)}}
+_ODD_PLACES = {1: "a station", 2: "an entrance", 3: "a generic node", 4: "a boarding area"}
 _BOARDING: Mapping[str, Boarding] = {"": "unknown", "0": "unknown", "1": "yes", "2": "no"}
 
 
@@ -76,7 +77,12 @@ def read_stops(tables: Tables) -> StopTable:
         ident: _chain(tables, own, rows, ident) if stop.parent_id else ()
         for ident, stop in own.items()
     }
-    return StopTable(own, rows, chain, _placed(own, chain))
+    placed = _placed(own, chain)
+    for ident, stop in own.items():
+        if ident not in placed and stop.location_type == 0:
+            fault = "stop has no coordinates that count, nor has its station; it is left out"
+            notes.find("error", _FILE, fault, row=rows[ident], value=ident)
+    return StopTable(own, rows, chain, placed)
 
 
 def stops_of_timetable(tables: Tables, table: StopTable, called: Iterable[str]) -> tuple[Stop, ...]:
@@ -86,9 +92,12 @@ def stops_of_timetable(tables: Tables, table: StopTable, called: Iterable[str]) 
     (GTFS Schedule reference, stops.txt, wheelchair_boarding); every stop has coordinates.
     """
     wanted = set()
-    for ident in called:
+    for ident in sorted(called):
         wanted.add(ident)
         wanted.update(table.chain[ident][-1:])
+        if (kind := _ODD_PLACES.get(table.own[ident].location_type)) is not None:
+            fault = f"trips call at {kind}, which is no stop; it is taken for one"
+            tables.notebook.find("warning", _FILE, fault, row=table.rows[ident], value=ident)
     return tuple(_settled(tables, table, ident) for ident in sorted(wanted))
 
 

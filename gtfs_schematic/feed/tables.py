@@ -49,9 +49,6 @@ REQUIRED_COLUMNS: dict[str, tuple[str, ...]] = {
 MOST_ROWS = 500_000_000
 """Some ten times the stop_times.txt of the largest countries; more is a fault or an attack."""
 
-_NEEDED = ("agency.txt", "routes.txt", "stop_times.txt", "stops.txt", "trips.txt")
-_CALENDARS = ("calendar.txt", "calendar_dates.txt")
-
 
 @dataclass(frozen=True)
 class Tables:
@@ -114,14 +111,19 @@ class Tables:
                 if texts is not None:
                     yield number, texts
 
-    def header(self, name: str) -> list[str]:
-        """Give the column names of a table, stripped; empty if the file is empty."""
+    def beginning(self, name: str) -> tuple[list[str], bool]:
+        """Give the column names of a table, stripped, and whether it has any row.
+
+        No names if the file is empty.
+        """
         with (
             self.files.open(name) as raw,
             # Not to wait for the digest of a large file.
             io.TextIOWrapper(raw, "utf-8-sig", "surrogateescape", newline="") as text,
         ):
-            return self._header(name, csv.reader(text, strict=True))
+            reader = csv.reader(text, strict=True)
+            header = self._header(name, reader)
+            return header, any(row for _, row in self._records(name, reader, 2))
 
     def header_of(self, name: str, line: bytes) -> list[str]:
         """Give the column names that a table's first line holds."""
@@ -144,13 +146,9 @@ class Tables:
         except csv.Error as error:
             raise FeedError(f"cannot be read as CSV ({error}).", file=name, row=1) from error
         header = [shown(column) for column in header]
-        if header and header[0].startswith("\ufffd"):
-            raise FeedError(
-                "is not UTF-8 text. Save the file as UTF-8 (it looks like UTF-16).",
-                file=name,
-                row=1,
-                field=header[0],
-            )
+        if header and (header[0].startswith("\ufffd") or "\0" in header[0]):
+            fault = "is not UTF-8 text. Save the file as UTF-8 (it looks like UTF-16)."
+            raise FeedError(fault, file=name, row=1)
         doubled = sorted({c for c in header if c and header.count(c) > 1})
         if doubled:
             raise FeedError(
@@ -170,46 +168,12 @@ class Tables:
             for number, row in enumerate(reader, start=first):
                 yield number, row
         except csv.Error as error:
+            where = "a quote opens here and never ends" if "end of data" in str(error) else error
             raise FeedError(
-                f"cannot be read as CSV ({error}). A text that holds a quote needs quotes round "
+                f"cannot be read as CSV ({where}). A text that holds a quote needs quotes round "
                 "it and its own quotes doubled.",
                 file=name,
                 row=number + 1,
             ) from error
         if number > MOST_ROWS:
             raise FeedError(f"has more than {MOST_ROWS:,} rows, which no feed needs.", file=name)
-
-
-def check_tables(tables: Tables) -> None:
-    """Refuse a feed that lacks files or columns no diagram can do without, naming all of them.
-
-    Raises
-    ------
-    FeedError
-        What is missing, with the names found that differ from it by case only.
-    """
-    names = tables.files.names
-    missing = [_lacking(name, names) for name in _NEEDED if name not in names]
-    if not any(name in names for name in _CALENDARS):
-        missing.append(" or ".join(_lacking(name, names) for name in _CALENDARS))
-    for name, columns in REQUIRED_COLUMNS.items():
-        if name not in names:
-            continue
-        header = tables.header(name)
-        if header or name in _NEEDED:
-            missing += [
-                f"column {_lacking(column, tuple(header))} of {name}"
-                for column in columns
-                if column not in header
-            ]
-    if missing:
-        raise FeedError(
-            f"{tables.files.label} lacks {'; '.join(missing)}. "
-            "Names count letter by letter, capitals included; ask the feed's publisher."
-        )
-
-
-def _lacking(name: str, present: tuple[str, ...]) -> str:
-    """Give a missing name, with the one beside it that differs by case only."""
-    alike = [other for other in present if other.lower() == name.lower()]
-    return f"{name} (found {alike[0]!r})" if alike else name

@@ -149,7 +149,7 @@ def _choose(timetable: Timetable, sites: Sites, settings: NetworkSettings) -> _C
 
     kept: list[Calling] = []
     left_out = [
-        LeftOut("route", route.id, "none of its trips calls at two places with coordinates")
+        LeftOut("route", route.id, "none of its trips calls at two places that are drawn")
         for route in routes
         if route.id not in line_of
     ]

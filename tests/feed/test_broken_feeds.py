@@ -13,7 +13,7 @@ from gtfs_schematic.network.model import NetworkSettings
 
 REFUSED = {
     "au-sydney-entrances": "lacks routes.txt; stop_times.txt; trips.txt",
-    "empty_file": "lacks column agency_name of agency.txt",
+    "empty_file": "lacks a header in agency.txt",
     "missing_agency": "lacks agency.txt",
     "missing_calendar": "lacks calendar.txt or calendar_dates.txt",
     "missing_column": "lacks column agency_name of agency.txt",

@@ -69,7 +69,7 @@ def test_names_that_no_feed_has_are_refused_with_the_nearest(read_town, changes)
         read_town(changes, agencies=("Lock Buses",))
     with pytest.raises(UsageError, match=r"No route has the id or name '99'\. There are 1, 7, "):
         read_town(changes, without_routes=("99",))
-    with pytest.raises(FeedError, match=r"No route of town\.zip is left by the filters"):
+    with pytest.raises(FeedError, match=r"Nothing is left to draw that is asked for\. 2 × route"):
         read_town(changes, agencies=("lok",), modes=("tram",))
 
 

@@ -6,6 +6,8 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
+from gtfs_schematic.errors import FeedError
+
 TRIPS = "route_id,service_id,trip_id,trip_headsign,direction_id,shape_id\n"
 TIMES = "trip_id,arrival_time,departure_time,stop_id,stop_sequence"
 
@@ -226,9 +228,14 @@ def test_headsign_direction_and_shape_are_those_of_most_departures(read_town, ta
 
 
 def test_nothing_to_draw_is_an_error_with_the_reasons(read_town, table):
-    header = table("stop_times.txt").splitlines()[0] + "\n"
-    from gtfs_schematic.errors import FeedError  # noqa: PLC0415
-
-    told = r"Nothing is left to draw that runs on 2026-03-02.*4 × it has no row"
+    head, *rows = table("stop_times.txt").splitlines()
+    saturday = [row for row in rows if row.startswith("t1s")]
+    told = r"Nothing is left to draw that runs on 2026-03-02\. 4 × trip: it has no row"
     with pytest.raises(FeedError, match=told):
-        read_town({"stop_times.txt": header})
+        read_town({"stop_times.txt": "\n".join([head, *saturday]) + "\n"})
+
+
+def test_the_reasons_name_the_rows_at_fault(read_town, table):
+    stops = table("stops.txt").replace(",47.", ",147.")
+    with pytest.raises(FeedError, match=r"stops.txt, row 2: coordinate is not a number of degrees"):
+        read_town({"stops.txt": stops})

@@ -212,3 +212,21 @@ def test_holidays_neither_add_nor_remove_a_typical_weekday():
         "daily": frozenset(range(7)),
         "none": frozenset(),
     }
+
+
+def test_service_since_ever_starts_no_earlier_than_the_format(read_town, table):
+    text = table("calendar.txt").replace("20260302,20260329\nsa", "19000101,20260329\nsa")
+    timetable = read_town({"calendar.txt": text})
+    assert timetable.info.start_date == "2000-01-03"  # the first Monday
+    assert [(f.severity, f.row, f.field, f.value) for f in timetable.findings] == [
+        ("warning", 2, "start_date", "19000101")
+    ]
+    # The line still runs today, not only for the forty years after 1900.
+    assert read_town({"calendar.txt": text}, date="2026-03-11").patterns
+
+
+def test_absurd_numbers_of_departures_are_refused(read_town):
+    text = "trip_id,start_time,end_time,headway_secs\n" + "b7a,00:00:00,999:00:00,1\n" * 6
+    told = r"frequencies.txt, row 7, field headway_secs, value '1': adds up to more than 20,000,000"
+    with pytest.raises(FeedError, match=told):
+        read_town({"frequencies.txt": text})

@@ -50,7 +50,7 @@ def test_all_that_is_missing_is_named_at_once(town, read_town, table):
 
 
 def test_an_empty_file_lacks_all_its_columns(read_town):
-    with pytest.raises(FeedError, match=r"column stop_id of stops.txt"):
+    with pytest.raises(FeedError, match=r"lacks a header in stops.txt: its first row"):
         read_town({"stops.txt": ""})
     assert read_town({"transfers.txt": "", "shapes.txt": ""}).transfers == ()
 
