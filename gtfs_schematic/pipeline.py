@@ -43,6 +43,8 @@ from gtfs_schematic.edition.adjustments import Adjustments, plain
 from gtfs_schematic.edition.make import edition_of, sentence, stop_codes_of
 from gtfs_schematic.edition.model import Edition
 from gtfs_schematic.edition.save import to_json as edition_to_json
+from gtfs_schematic.edition.state import digest, state_of
+from gtfs_schematic.edition.state import to_json as state_to_json
 from gtfs_schematic.edition.unmet import unmet
 from gtfs_schematic.edition.wishes import Wishes
 from gtfs_schematic.errors import must_be_sound
@@ -91,6 +93,8 @@ class Result:
     drift: DriftReport
     unmet: tuple[Finding, ...] = ()
     """Wishes of a person that the drawing does not meet."""
+    state: bytes = b""
+    """What redrawing without the feed needs, as it is written."""
 
 
 def draw(
@@ -122,7 +126,7 @@ def draw(
     """
     settings = settings or Settings()
     timetable, network = inspect(paths, settings, progress=progress)
-    wanted, wishes = settings, Wishes()
+    raw, wanted, wishes = network, settings, Wishes()
     if adjustments is not None:
         found = adjust(network, adjustments, timetable, progress)
         network, wishes = found.network, found.wishes
@@ -131,19 +135,37 @@ def draw(
     labelled = _labelled(network, wanted, frames, progress)
 
     result = finish(timetable, labelled, settings, progress)
-    return with_adjustments(result, adjustments or Adjustments(), wishes, progress)
+    return completed(result, raw, (adjustments or Adjustments(), wishes), progress)
 
 
-def with_adjustments(
-    result: Result, adjustments: Adjustments, wishes: Wishes, progress: Progress
+def completed(
+    result: Result, raw: Network, said: tuple[Adjustments, Wishes], progress: Progress
 ) -> Result:
-    """Let the edition hold its adjustments, and say which of them the drawing does not meet."""
+    """Let the edition hold its adjustments, and say which of them the drawing does not meet.
+
+    Parameters
+    ----------
+    result
+        What was drawn.
+    raw
+        Its network before any adjustment.
+    said
+        Adjustments, and the wishes that came of them.
+    progress
+        Who hears of what is not met.
+    """
+    adjustments, wishes = said
     missed = unmet(wishes, result.labelled)
     for each in missed:
         progress.note(sentence(each))
-    findings = (*result.edition.findings, *map(sentence, missed))
-    edition = replace(result.edition, adjustments=plain(adjustments), findings=findings)
-    return replace(result, edition=edition, unmet=missed)
+    state = state_to_json(state_of(raw, result.timetable, result.labelled, result.drift))
+    edition = replace(
+        result.edition,
+        adjustments=plain(adjustments),
+        findings=(*result.edition.findings, *map(sentence, missed)),
+        state_sha256=digest(state),
+    )
+    return replace(result, edition=edition, unmet=missed, state=state)
 
 
 def adjust(
@@ -151,10 +173,15 @@ def adjust(
 ) -> Adjusted:
     """Apply adjustments, check what comes of it, and say which of them apply to nothing."""
     found = adjusted(network, adjustments, timetable)
+    tell_adjusted(found, progress)
+    return found
+
+
+def tell_adjusted(found: Adjusted, progress: Progress) -> None:
+    """Check an adjusted network, and say which adjustments apply to nothing."""
     must_be_sound("adjustments", network_check.faults(found.network))
     for stale in found.stale:
         progress.note(f"an adjustment applies to nothing and is kept: {stale}")
-    return found
 
 
 def finish(
@@ -234,17 +261,22 @@ def files_of(result: Result, limits: Sequence[Limit] | None = None) -> dict[str,
     judged = judge(result.drift, limits)
     dpi = result.settings.sheet.png_dpi
     image = {"diagram.png": to_png(result.drawing, dpi=dpi)} if dpi else {}
-    return image | {
-        "diagram.svg": svg,
-        "diagram.pdf": to_pdf(result.drawing, bleed_mm=result.settings.sheet.bleed_mm),
-        "diagram.txt": to_text(result.network, result.settings.drawing),
-        "edition.json": edition_to_json(result.edition),
-        "drift.json": drift_to_json(result.drift, judged),
-        "drift.csv": to_csv(result.drift),
-        "drift.html": to_html(
-            result.drift, result.edition, title=result.edition.title, limits=judged
-        ),
-    }
+    state = {"state.json": result.state} if result.state else {}
+    return (
+        image
+        | state
+        | {
+            "diagram.svg": svg,
+            "diagram.pdf": to_pdf(result.drawing, bleed_mm=result.settings.sheet.bleed_mm),
+            "diagram.txt": to_text(result.network, result.settings.drawing),
+            "edition.json": edition_to_json(result.edition),
+            "drift.json": drift_to_json(result.drift, judged),
+            "drift.csv": to_csv(result.drift),
+            "drift.html": to_html(
+                result.drift, result.edition, title=result.edition.title, limits=judged
+            ),
+        }
+    )
 
 
 def clearances_of(network: Network, bundles: BundleSettings, labels: LabelSettings) -> Clearances:

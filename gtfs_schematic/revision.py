@@ -3,20 +3,19 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, field, replace
 
 from gtfs_schematic.config import Settings, settings_of, with_wishes
 from gtfs_schematic.drawing.sheet import candidate_frames
-from gtfs_schematic.edition.adjustments import Adjustments, adjustments_of, plain
-from gtfs_schematic.edition.carry import carried_matches, names_of, with_carried_ids
+from gtfs_schematic.edition.adjustments import Adjustments, adjustments_of
 from gtfs_schematic.edition.change_list import to_pdf
 from gtfs_schematic.edition.change_page import to_html
 from gtfs_schematic.edition.change_pictures import Sheets
 from gtfs_schematic.edition.changes import ChangeSheet, change_sheet, to_csv, to_json
-from gtfs_schematic.edition.identity import Matches, match_edition
-from gtfs_schematic.edition.make import stop_codes_of
+from gtfs_schematic.edition.folder import Beside
+from gtfs_schematic.edition.identity import Matches
 from gtfs_schematic.edition.model import Edition
-from gtfs_schematic.edition.translated import translated
+from gtfs_schematic.edition.succession import succeed
 from gtfs_schematic.feed.model import Timetable
 from gtfs_schematic.layout import check as layout_check
 from gtfs_schematic.layout.model import Layout, SheetFrame
@@ -25,12 +24,13 @@ from gtfs_schematic.network.model import Network
 from gtfs_schematic.pipeline import (
     Result,
     StrPath,
-    adjust,
     clearances_of,
+    completed,
     files_of,
     finish,
     inspect,
     labelled_from,
+    tell_adjusted,
 )
 from gtfs_schematic.progress import Progress, Silent
 
@@ -52,7 +52,7 @@ def revise(
     paths: StrPath | Sequence[StrPath],
     settings: Settings | None = None,
     *,
-    sha256: str = "",
+    beside: Beside = Beside(),  # noqa: B008 - it has no state of its own
     adjustments: Adjustments | None = None,
     progress: Progress = Silent(),  # noqa: B008 - it has no state
 ) -> Revision:
@@ -69,8 +69,8 @@ def revise(
         The new feed; several are drawn as one network.
     settings
         What each room is told; None for what the edition was drawn with.
-    sha256
-        Of the earlier edition's file, for the new one to name.
+    beside
+        What its folder says of the earlier edition (`folder.load_beside`).
     adjustments
         What a person overrides, by ids of the edition; None for what holds in it.
     progress
@@ -83,7 +83,7 @@ def revise(
     """
     settings = settings or settings_of(before.settings, "settings of the edition")
     read = inspect(paths, settings, progress=progress)
-    told = Told(settings, adjustments, sha256)
+    told = Told(settings, adjustments, beside)
     return revise_network(before, read, told, progress=progress)
 
 
@@ -93,7 +93,7 @@ class Told:
 
     settings: Settings
     adjustments: Adjustments | None = None
-    sha256: str = ""
+    beside: Beside = field(default_factory=Beside)
 
 
 def revise_network(
@@ -104,30 +104,23 @@ def revise_network(
     progress: Progress = Silent(),  # noqa: B008 - it has no state
 ) -> Revision:
     """Draw a timetable and its network as the edition after another, as `revise` does."""
-    (timetable, network), settings = read, told.settings
+    timetable, settings = read[0], told.settings
     adjustments = told.adjustments
     if adjustments is None:
         adjustments = adjustments_of(before.adjustments, "adjustments of the edition")
-    codes = stop_codes_of(timetable, network)
-    found = match_edition(before, network, codes, adjustments)
-    now = adjust(network, _of_now(adjustments, before, network, found), timetable, progress)
-    # Matched again, now that what a person merged and renamed is as it was in the edition.
-    found = match_edition(before, now.network, codes, adjustments)
-    matches = carried_matches(now.network, before, found)
-    names, _ = names_of(now.network, before, found)
-    network = with_carried_ids(now.network, before, found)
-    sides = {names[key]: side for key, side in now.wishes.sides.items()}
-    pins = {names[key]: pin for key, pin in now.wishes.pins.items()}
-    wanted = with_wishes(settings, {"labels": {"sides": sides}, "layout": {"pins": pins}})
+    done = succeed(before, told.beside.state, read, adjustments)
+    network, wishes = done.adjusted.network, done.adjusted.wishes
+    tell_adjusted(done.adjusted, progress)
+    wanted = with_wishes(settings, wishes.by_room())
     layout = _layout(before, network, wanted, progress)
     if layout is None:
         progress.note("what is new finds no room beside what stands; laying out anew")
     labelled = labelled_from(layout, network, wanted, _sides(before), progress)
     result = finish(timetable, labelled, settings, progress)
-    edition = replace(result.edition, previous=told.sha256, adjustments=plain(adjustments))
-    result = replace(result, edition=edition)
-    sheet = change_sheet(before, result.edition, matches)
-    return Revision(result, matches, sheet, layout is None)
+    result = completed(result, done.raw, (done.adjustments, wishes), progress)
+    result = replace(result, edition=replace(result.edition, previous=told.beside.sha256))
+    sheet = change_sheet(before, result.edition, done.matches)
+    return Revision(result, done.matches, sheet, layout is None)
 
 
 def files_of_revision(
@@ -142,31 +135,6 @@ def files_of_revision(
         "changes.html": to_html(revision.sheet, sheets),
         "changes.pdf": to_pdf(revision.sheet),
     }
-
-
-def _of_now(
-    adjustments: Adjustments, before: Edition, network: Network, matches: Matches
-) -> Adjustments:
-    """Give adjustments by the ids of the new feed; what is gone keeps a name that nothing has."""
-    stations = {m.old_id: m.new_id for m in matches.stations.values()}
-    lines = {m.old_id: m.new_id for m in matches.lines.values()}
-    whole = {key: s.id for s in before.stations for key in (*s.stop_ids, s.id)}
-    line_of = {key: k.id for k in before.lines for key in (*k.route_ids, k.id)}
-    gone = "{} of the edition before"
-    found = translated(
-        adjustments,
-        {key: stations.get(s, gone.format(key)) for key, s in whole.items()},
-        {key: lines.get(k, gone.format(key)) for key, k in line_of.items()},
-    )
-    merges = []
-    for was, now in zip(adjustments.merge, found.merge, strict=True):
-        # What the edition has merged is one station there, and some in the new feed.
-        ids = {whole[key] for key in was.stations if key in whole}
-        parts = [m.new_id for m in matches.split_stations if m.old_id in ids]
-        known = [key for key in was.stations if key not in whole and key in network.station]
-        every = tuple(dict.fromkeys((*now.stations, *parts, *known)))
-        merges.append(now.model_copy(update={"stations": every}))
-    return found.model_copy(update={"merge": tuple(merges)})
 
 
 def _layout(

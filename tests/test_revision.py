@@ -14,8 +14,10 @@ import pytest
 from gtfs_schematic import pipeline
 from gtfs_schematic.config import Settings
 from gtfs_schematic.edition.adjustments import adjustments_of
+from gtfs_schematic.edition.folder import Beside
 from gtfs_schematic.edition.identity import match_edition
 from gtfs_schematic.edition.model import Edition
+from gtfs_schematic.edition.state import from_json
 from gtfs_schematic.layout.check import faults
 from gtfs_schematic.revision import Revision, files_of_revision, revise
 
@@ -140,10 +142,14 @@ def _shuffle_ids(source: Path, target: Path) -> None:
 
 
 ADJUSTED = {
-    "stations": {"183": {"name": "Mulg Halt", "label_side": "S"}, "406": {"note": "as agreed"}},
+    "stations": {
+        "183": {"name": "Mulg Halt", "label_side": "S"},
+        "335-1": {"hide": True},
+        "406": {"note": "as agreed"},
+    },
+    "merge": [{"stations": ["331-1", "332-1"], "name": "Mlåt both"}],
     "lines": {"m1": {"color": "#225577"}},
 }
-MERGED = ADJUSTED | {"merge": [{"stations": ["331-1", "332-1"], "name": "Mlåt both"}]}
 
 
 def test_adjustments_outlive_a_change_of_all_ids(tmp_path):
@@ -153,12 +159,14 @@ def test_adjustments_outlive_a_change_of_all_ids(tmp_path):
     assert {s.id: s.name for s in before.stations}["183"] == "Mulg Halt"
     assert _names_and_colors(again.result.edition) == _names_and_colors(before)
     assert {c.kind for c in again.sheet.changes} <= {"renumbered", "stops"}
+    assert not {"335-1", "332-1"} & {s.id for s in again.result.edition.stations}
+    assert again.result.edition.adjustments == before.adjustments
     old, new = ({s.id: s for s in each.stations} for each in (before, again.result.edition))
     assert new["183"].label_side == old["183"].label_side
 
 
 def test_merges_outlive_a_revision():
-    before, again = _revised(MERGED, BEFORE)
+    before, again = _revised(ADJUSTED, BEFORE)
     names, _ = _names_and_colors(before)
     assert names["331-1"] == "Mlåt both"
     assert "332-1" not in names
@@ -169,8 +177,9 @@ def test_merges_outlive_a_revision():
 
 def _revised(said: dict[str, object], feed: Path) -> tuple[Edition, Revision]:
     adjustments = adjustments_of(said, "test")
-    before = pipeline.draw(BEFORE, SETTINGS, adjustments=adjustments).edition
-    return before, revise(before, feed, SETTINGS)
+    drawn = pipeline.draw(BEFORE, SETTINGS, adjustments=adjustments)
+    beside = Beside(state=from_json(drawn.state, drawn.edition))
+    return drawn.edition, revise(drawn.edition, feed, SETTINGS, beside=beside)
 
 
 def _names_and_colors(edition: Edition) -> tuple[dict[str, str], dict[str, str]]:
@@ -179,6 +188,6 @@ def _names_and_colors(edition: Edition) -> tuple[dict[str, str], dict[str, str]]
 
 def test_settings_of_the_edition_hold_again(before: Edition):
     assert before.settings == {"layout": {"effort": "quick"}}
-    again = revise(before, BEFORE, sha256="a" * 64)
+    again = revise(before, BEFORE, beside=Beside("a" * 64))
     assert again.result.settings == SETTINGS
     assert again.result.edition.previous == "a" * 64

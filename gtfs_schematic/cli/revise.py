@@ -54,7 +54,7 @@ def revise(
     adjustments = options.adjustments_from(given)
     from gtfs_schematic.edition.folder import (
         check_target,
-        digest_of_edition,
+        load_beside,
         load_edition,
         write_folder,
     )
@@ -71,10 +71,12 @@ def revise(
     from gtfs_schematic.revision import revise as run
 
     with listening(quiet=given["quiet"]) as progress:
-        sha256 = digest_of_edition(edition)
+        beside = load_beside(edition, before)
+        if beside.state is None:
+            progress.note("no state.json beside the edition: what was merged is found by ids only")
         revision = run(
-            before, feeds, settings, sha256=sha256, adjustments=adjustments, progress=progress
-        )
+            before, feeds, settings, beside=beside, adjustments=adjustments, progress=progress
+        )  # fmt: skip
         progress.phase("writing files")
         files = files_of_revision(revision, before, diagram)
     write_folder(out, files, overwrite=given["overwrite"])

@@ -111,6 +111,8 @@ class Part(_Table):
     stops: Annotated[tuple[Id, ...], Field(min_length=1)]
     name: str = ""
     """Name of the part; the feed's name of its first stop if empty."""
+    id: str = ""
+    """Id of the part; the least of its stops' if empty. The first part has the station's."""
 
 
 class Split(_Table):

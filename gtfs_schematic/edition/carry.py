@@ -7,14 +7,14 @@ from dataclasses import replace
 
 from gtfs_schematic.edition.identity import Match, Matches
 from gtfs_schematic.edition.model import Edition, EditionLine
-from gtfs_schematic.edition.roster import Roster
+from gtfs_schematic.edition.roster import Roster, RosterLine
 from gtfs_schematic.network.links import link_id
 from gtfs_schematic.network.model import Line, Link, Network, Station, Walk
 from gtfs_schematic.network.smooth import corridors_of
 from gtfs_schematic.network.transfers import walk_id
 
 
-def with_carried_ids(network: Network, edition: Edition, matches: Matches) -> Network:
+def with_carried_ids(network: Network, edition: Edition | Roster, matches: Matches) -> Network:
     """Rename stations and lines to the ids that they have in the edition.
 
     A new station or line whose id the edition uses for another gets a mark at its end. A line
@@ -159,7 +159,7 @@ def _line(line: Line, stations: Mapping[str, str], lines: Mapping[str, str]) -> 
     )
 
 
-def _colored(line: Line, known: Mapping[str, EditionLine]) -> Line:
+def _colored(line: Line, known: Mapping[str, EditionLine | RosterLine]) -> Line:
     """Keep the color of the edition where the feed has none, or one that will not do."""
     if line.color_from_feed or line.id not in known:
         return line

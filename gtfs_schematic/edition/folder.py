@@ -8,16 +8,23 @@ import os
 import shutil
 import tempfile
 from collections.abc import Mapping
+from dataclasses import dataclass
 from pathlib import Path
+from typing import TYPE_CHECKING
 
 from gtfs_schematic.edition.exchange import exchanged
 from gtfs_schematic.edition.model import Edition
 from gtfs_schematic.edition.save import from_json
 from gtfs_schematic.errors import EditionError, SchematicError, UsageError
 
+if TYPE_CHECKING:
+    from gtfs_schematic.edition.state import State
+
 StrPath = str | os.PathLike[str]
 
 EDITION_FILE = "edition.json"
+STATE_FILE = "state.json"
+"""What redrawing without the feed needs; editions of earlier versions have none."""
 
 FILES = (
     "diagram.svg",
@@ -30,7 +37,14 @@ FILES = (
 )
 """What an edition's folder holds."""
 
-FILES_IF_WANTED = ("diagram.png", "changes.html", "changes.pdf", "changes.csv", "changes.json")
+FILES_IF_WANTED = (
+    "diagram.png",
+    "changes.html",
+    "changes.pdf",
+    "changes.csv",
+    "changes.json",
+    STATE_FILE,
+)
 """What it may hold beside, and nothing else."""
 
 
@@ -134,6 +148,56 @@ def load_edition(path: StrPath) -> Edition:
         return from_json(data)
     except EditionError as error:
         raise EditionError(f"{file}: {str(error).removeprefix('edition.json: ')}") from error
+
+
+@dataclass(frozen=True, slots=True)
+class Beside:
+    """What the folder of an edition says of it."""
+
+    sha256: str = ""
+    """Of its `edition.json`, by which the next one names it; empty: unknown."""
+    state: State | None = None
+    """With it, what was merged, split and hidden is known again whatever became of the ids."""
+
+
+def load_beside(path: StrPath, edition: Edition) -> Beside:
+    """Load hash and state of an edition that was loaded from a folder or its `edition.json`.
+
+    Raises
+    ------
+    EditionError
+        As `load_state` and `digest_of_edition` do.
+    """
+    return Beside(digest_of_edition(path), load_state(path, edition))
+
+
+def load_state(path: StrPath, edition: Edition) -> State | None:
+    """Load what is kept beside an edition for redrawing it; None if nothing is.
+
+    Parameters
+    ----------
+    path
+        The folder or its `edition.json`.
+    edition
+        What stands there.
+
+    Raises
+    ------
+    EditionError
+        If it cannot be read, or is another edition's.
+    """
+    if not edition.state_sha256:
+        return None
+    from gtfs_schematic.edition.state import from_json as state_from_json  # noqa: PLC0415 - slow
+
+    file = Path(path)
+    file = (file if file.is_dir() else file.parent) / STATE_FILE
+    try:
+        return state_from_json(file.read_bytes(), edition)
+    except FileNotFoundError:
+        return None
+    except OSError as error:
+        raise EditionError(f"{file}: cannot be read ({error.strerror or error}).") from error
 
 
 def digest_of_edition(path: StrPath) -> str:

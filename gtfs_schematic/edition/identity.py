@@ -23,7 +23,7 @@ DOUBTFUL = 0.8
 """Less sure matches are for a person to look at."""
 _ROUNDS = 5
 """Stations and lines settle after two or three rounds."""
-_SAID = "an adjustment says so"
+SAID = "an adjustment says so"
 
 
 @dataclass(frozen=True, slots=True)
@@ -162,7 +162,7 @@ class _Said:
             elif b is None:
                 gone.add(a)
             else:
-                self.found[a] = (b, _SAID, 1.0)
+                self.found[a] = (b, SAID, 1.0)
         self.settled = ({*self.found, *gone}, {b for b, _, _ in self.found.values()})
 
     def turned(self, turned: bool) -> _Said:  # noqa: FBT001 - private, and its name says it

@@ -114,5 +114,7 @@ class Edition:
     """SHA-256 of the `edition.json` that this edition revises; empty for a first one."""
     settings: Mapping[str, Any] = field(default_factory=dict)
     """What was set other than by default, as nested tables."""
+    state_sha256: str = ""
+    """SHA-256 of the `state.json` beside it (see state.py); empty for none."""
     adjustments: Mapping[str, Any] = field(default_factory=dict)
     """What a person overrode, as nested tables (see adjustments.py)."""

@@ -133,6 +133,7 @@ class _Document(_Part):
     left_out: list[_LeftOut] = []
     findings: list[str] = []
     previous: Annotated[str, Field(pattern=r"^([0-9a-f]{64})?$")] = ""
+    state_sha256: Annotated[str, Field(pattern=r"^([0-9a-f]{64})?$")] = ""
     settings: dict[str, Any] = {}
     adjustments: dict[str, Any] = {}
 
@@ -156,6 +157,7 @@ def to_json(edition: Edition) -> bytes:
         "feed": _plain(edition.feed),
         "sheet": {"width_mm": edition.width_mm, "height_mm": edition.height_mm},
         "previous": edition.previous,
+        "state_sha256": edition.state_sha256,
         "settings": edition.settings,
         "adjustments": edition.adjustments,
     }
@@ -227,6 +229,7 @@ def _edition(document: _Document) -> Edition:
         walks=tuple(EditionWalk(**_frozen(part)) for part in document.walks),
         patterns=tuple(TimedPattern(**_frozen(part)) for part in document.patterns),
         previous=document.previous,
+        state_sha256=document.state_sha256,
         settings=document.settings,
         adjustments=document.adjustments,
     )

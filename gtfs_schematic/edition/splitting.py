@@ -54,7 +54,7 @@ def split_station(
         part_of[line.id] = trips.index(max(trips))
     ids = [key]
     for part in parts[1:]:
-        fresh = min(part.stops)
+        fresh = part.id or min(part.stops)
         while fresh in draft.stations:
             fresh += "+"
         ids.append(fresh)

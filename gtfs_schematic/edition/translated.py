@@ -9,6 +9,7 @@ from gtfs_schematic.edition.adjustments import (
     LineGroup,
     LinkAdjustment,
     Merge,
+    Part,
     Split,
     StationAdjustment,
 )
@@ -85,7 +86,12 @@ def _merge(told: Merge, station: Renamed) -> Merge:
 
 
 def _split(told: Split, station: Renamed, stop: Renamed) -> Split:
-    parts = tuple(
-        part.model_copy(update={"stops": tuple(map(stop, part.stops))}) for part in told.parts
-    )
+    parts = tuple(_part(part, stop) for part in told.parts)
     return told.model_copy(update={"station": station(told.station), "parts": parts})
+
+
+def _part(part: Part, stop: Renamed) -> Part:
+    """Give a part by other stops; it keeps the id that it had."""
+    stops = tuple(map(stop, part.stops))
+    key = part.id or min(part.stops)
+    return part.model_copy(update={"stops": stops, "id": key if key != min(stops) else ""})
