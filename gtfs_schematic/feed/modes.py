@@ -86,7 +86,7 @@ def refusal(route_type: int, mode: str, wanted: tuple[str, ...]) -> str | None:
         among them, whatever their own mode: they follow the lines they stand in for.
     """
     if route_type in REPLACEMENT_TYPES:
-        return None if REPLACEMENT in wanted else "replacement service"
+        return None if REPLACEMENT in wanted else "replacement service, a mode to be asked for"
     if wanted and mode not in wanted:
         return f"mode {mode} is not among those asked for"
     return None

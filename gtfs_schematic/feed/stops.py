@@ -51,6 +51,7 @@ def read_stops(tables: Tables) -> StopTable:
     """
     own: dict[str, Stop] = {}
     rows: dict[str, int] = {}
+    blank: set[str] = set()
     notes = tables.notebook
     for row, texts in tables.rows(_FILE, _COLUMNS):
         ident, name, code, lat, lon, type_, parent, boarding, platform = texts
@@ -59,6 +60,8 @@ def read_stops(tables: Tables) -> StopTable:
         if not plain and not is_usable_id(notes, at("stop_id", ident), rows):
             continue
         rows[ident] = row
+        if not lon and not lat:
+            blank.add(ident)
         place = _place(notes, row, lon, lat)
         own[ident] = Stop(
             ident,
@@ -78,9 +81,9 @@ def read_stops(tables: Tables) -> StopTable:
         for ident, stop in own.items()
     }
     placed = _placed(own, chain)
-    for ident, stop in own.items():
-        if ident not in placed and stop.location_type == 0:
-            fault = "stop has no coordinates that count, nor has its station; it is left out"
+    for ident in sorted(blank - placed.keys(), key=rows.__getitem__):
+        if own[ident].location_type == 0:
+            fault = "stop has no coordinates, nor has its station; it is left out"
             notes.find("error", _FILE, fault, row=rows[ident], value=ident)
     return StopTable(own, rows, chain, placed)
 

@@ -168,12 +168,20 @@ class Tables:
             for number, row in enumerate(reader, start=first):
                 yield number, row
         except csv.Error as error:
-            where = "a quote opens here and never ends" if "end of data" in str(error) else error
-            raise FeedError(
-                f"cannot be read as CSV ({where}). A text that holds a quote needs quotes round "
-                "it and its own quotes doubled.",
-                file=name,
-                row=number + 1,
-            ) from error
+            raise FeedError(_csv_fault(str(error)), file=name, row=number + 1) from error
         if number > MOST_ROWS:
             raise FeedError(f"has more than {MOST_ROWS:,} rows, which no feed needs.", file=name)
+
+
+def _csv_fault(told: str) -> str:
+    """Say for a person what the csv module says."""
+    if "field limit" in told:
+        return (
+            f"holds a value of more than {csv.field_size_limit():,} characters; no feed needs it."
+        )
+    if "end of data" in told:
+        told = "a quote opens here and never ends"
+    return (
+        f"cannot be read as CSV ({told}). A text that holds a quote needs quotes round it and its "
+        "own quotes doubled."
+    )

@@ -50,7 +50,7 @@ def test_replacement_services_are_left_out_unless_asked_for(read_town, table, ro
     changes = {"routes.txt": table("routes.txt").replace("bus,3", f"bus,{route_type}")}
     timetable = read_town(changes)
     assert [route.id for route in timetable.routes] == ["t1"]
-    assert ("route", "b7", "replacement service") in {
+    assert ("route", "b7", "replacement service, a mode to be asked for") in {
         (item.kind, item.id, item.reason) for item in timetable.left_out
     }
     assert [r.id for r in read_town(changes, modes=("tram", "rail", "bus")).routes] == ["t1"]
