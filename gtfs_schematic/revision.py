@@ -17,9 +17,9 @@ from gtfs_schematic.edition.identity import Matches
 from gtfs_schematic.edition.model import Edition
 from gtfs_schematic.edition.succession import succeed
 from gtfs_schematic.feed.model import Timetable
-from gtfs_schematic.layout import check as layout_check
-from gtfs_schematic.layout.model import Layout, SheetFrame
-from gtfs_schematic.layout.revise import revise_layout
+from gtfs_schematic.layout.keep import Standing
+from gtfs_schematic.layout.model import SheetFrame
+from gtfs_schematic.layout.revise import Revised, revise_layout
 from gtfs_schematic.network.model import Network
 from gtfs_schematic.pipeline import (
     Result,
@@ -112,9 +112,10 @@ def revise_network(
     network, wishes = done.adjusted.network, done.adjusted.wishes
     tell_adjusted(done.adjusted, progress)
     wanted = with_wishes(settings, wishes.by_room())
-    layout = _layout(before, network, wanted, progress)
-    if layout is None:
+    revised = _layout(before, network, wanted, progress)
+    if revised is None:
         progress.note("what is new finds no room beside what stands; laying out anew")
+    layout = None if revised is None else revised.layout
     labelled = labelled_from(layout, network, wanted, _sides(before), progress)
     result = finish(timetable, labelled, settings, progress)
     result = completed(result, done.raw, (done.adjustments, wishes), progress)
@@ -139,18 +140,18 @@ def files_of_revision(
 
 def _layout(
     before: Edition, network: Network, settings: Settings, progress: Progress
-) -> Layout | None:
+) -> Revised | None:
     """Lay the network out beside what stands, on the same sheet; None if there is no room."""
     positions = {s.id: (s.x_mm, s.y_mm) for s in before.stations}
     paths = {link.id: link.path_mm for link in before.links}
     paths |= {walk.id: walk.path_mm for walk in before.walks}
     clearances = clearances_of(network, settings.bundles, settings.labels)
     for frame in _frames(before, network, settings):
-        layout = revise_layout(network, positions, paths, clearances, frame, progress=progress)
-        # A course that breaks a guarantee, or stands where a new pin wants to, is none.
+        standing = Standing(positions, paths, frame)
         pins = settings.layout.pins
-        if layout is not None and not layout_check.faults(layout, clearances, pins):
-            return layout
+        found = revise_layout(network, standing, clearances, pins=pins, progress=progress)
+        if found is not None:
+            return found
     return None
 
 

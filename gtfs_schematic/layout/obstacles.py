@@ -17,6 +17,8 @@ from gtfs_schematic.layout.places import point_of
 
 _TOUCH_M = 30.0
 """Distance on the ground below which a crossing and a near miss are not told apart, metres."""
+_THIN_MM = 0.1
+"""Distance that is enough for now where others will give way."""
 
 
 @dataclass(frozen=True)
@@ -46,12 +48,11 @@ class Obstacles:
     half: NDArray[np.float64]
     shared: NDArray[np.bool_]
     """Edges that end at an end of the new course."""
-    must: NDArray[np.bool_]
-    """Edges that the course crosses on the ground."""
-    may: NDArray[np.bool_]
-    """Edges that it may cross or not: on the ground they nearly touch."""
-    where: NDArray[np.int64]
-    """Per edge that must be crossed the number of the chain's edge that crosses it."""
+    events: tuple[tuple[int, int], ...]
+    """What the course crosses on the ground, in that order: number of the edge that stands, and
+    of the chain's edge that crosses it."""
+    unsure: tuple[tuple[int, int], ...]
+    """What it may cross or not, likewise: on the ground they nearly touch."""
     markers: NDArray[np.object_]
     own: NDArray[np.bool_]
     width: float
@@ -75,31 +76,15 @@ class Obstacles:
         edges = [edge for edge, _ in placed]
         lines = np.array([shapely.LineString(path) for _, path in placed], dtype=object)
         ends = {chain.stations[0], chain.stations[-1]}
-        shared = np.array([bool({e.start, e.end} & ends) for e in edges], dtype=bool)
-        course = shapely.LineString([ground[s] for s in chain.stations])
-        courses = np.array(
-            [shapely.LineString([ground[e.start], ground[e.end]]) for e in edges],
-            dtype=object,
-        )
-        crosses = np.asarray(shapely.crosses(courses, course), dtype=bool) & ~shared
         stations = sorted(at)
-        points = np.array([ground[s] for s in chain.stations])
-        tips = [
-            min(
-                float(shapely.distance(shapely.points(ground[s]), course)) for s in (e.start, e.end)
-            )
-            for e in edges
-        ]
-        reach = shapely.distance(shapely.points(points)[:, None], courses[None, :]).min(axis=0)
-        unsure = (np.minimum(np.array(tips), reach) < _TOUCH_M) & ~shared
+        events, unsure = _crossings(chain, edges, ground)
         return Obstacles(
             frame,
             lines,
             np.array([clearances.half_width_mm(e.lines) for e in edges]),
-            shared,
-            crosses & ~unsure,
+            np.array([bool({e.start, e.end} & ends) for e in edges], dtype=bool),
+            events,
             unsure,
-            _crossed_by(chain, courses, ground),
             shapely.points([at[s] for s in stations]),
             np.array([s in ends for s in stations], dtype=bool),
             max(clearances.half_width_mm(e.lines) for e in chain.edges),
@@ -107,34 +92,64 @@ class Obstacles:
             clearances.marker_mm / 2.0,
         )
 
-    def stations_along(self, path: tuple[Point, ...], count: int) -> list[float] | None:
+    @property
+    def must(self) -> NDArray[np.bool_]:
+        """Edges that the course crosses on the ground."""
+        return np.isin(np.arange(len(self.lines)), [k for k, _ in self.events])
+
+    @property
+    def may(self) -> NDArray[np.bool_]:
+        """Edges that it may cross or not."""
+        return np.isin(np.arange(len(self.lines)), [k for k, _ in self.unsure])
+
+    def stations_along(
+        self, path: tuple[Point, ...], count: int, *, thin: bool = False
+    ) -> list[float] | None:
         """Share a path out among `count` edges, each of which crosses what it must.
 
         Gives the lengths along the path at which the chain's stations stand, ends included,
-        millimetres; None if the path crosses what it must not, or in the wrong order.
+        millimetres; None if the path crosses what it must not, or in the wrong order. On a `thin`
+        path stations may stand near each other: room is made later.
         """
         line = shapely.LineString(path)
         crossing = np.asarray(shapely.crosses(self.lines, line), dtype=bool)
-        if (self.must & ~crossing).any() or (crossing & ~(self.must | self.may)).any():
+        must = self.must
+        if (must & ~crossing).any() or (crossing & ~(must | self.may)).any():
             return None
         low, high = np.zeros(count + 1), np.full(count + 1, line.length)
         number = np.arange(count + 1)
-        margin = self.marker + self.width
-        for k in np.flatnonzero(self.must):
-            meeting = self.lines[k].intersection(line)
-            if meeting.geom_type != "Point":
+        margin = _THIN_MM if thin else self.marker + self.width
+        for k in np.flatnonzero(crossing):
+            meetings = shapely.get_parts(self.lines[k].intersection(line))
+            if any(meeting.geom_type != "Point" for meeting in meetings):
                 return None
-            t, e = float(line.project(meeting)), int(self.where[k])
-            room = margin + float(self.half[k])
-            low = np.where(number > e, np.maximum(low, t + room), low)
-            high = np.where(number <= e, np.minimum(high, t - room), high)
+            lengths = sorted(map(line.project, meetings))
+            owners = self._owners(int(k), lengths, line.length / count)
+            if owners is None:
+                return None
+            room = margin + (0.0 if thin else float(self.half[k]))
+            for t, e in zip(lengths, owners, strict=True):
+                low = np.where(number > e, np.maximum(low, t + room), low)
+                high = np.where(number <= e, np.minimum(high, t - room), high)
         even = np.linspace(0.0, line.length, count + 1)
         stops = np.clip(even, low, high)
         stops[0], stops[-1] = 0.0, line.length
         gaps = np.diff(stops)
-        if (low[1:-1] > high[1:-1]).any() or (gaps < 2.0 * self.marker + self.clear).any():
+        least = _THIN_MM if thin else 2.0 * self.marker + self.clear
+        if (low[1:-1] > high[1:-1]).any() or (gaps < least).any():
             return None
         return [float(stop) for stop in stops]
+
+    def _owners(self, k: int, lengths: list[float], share: float) -> list[int] | None:
+        """Edges of the chain that cross an edge at lengths along the course; None if none may."""
+        must = [e for edge, e in self.events if edge == k]
+        may = [e for edge, e in self.unsure if edge == k]
+        free = len(lengths) - len(must)
+        if not 0 <= free <= len(may):
+            return None
+        # Where the stations would stand evenly, these would be nearest to the crossings.
+        away = {e: min(abs((e + 0.5) * share - t) for t in lengths) for e in may}
+        return sorted([*must, *sorted(may, key=lambda e: (round(away[e], 6), e))[:free]])
 
     def allow(self, course: Course) -> bool:
         """Whether a course keeps the sheet, its distances, and its own shape."""
@@ -156,13 +171,24 @@ class Obstacles:
         return not (tight & ~crossing & ~self.shared).any()
 
 
-def _crossed_by(
-    chain: Chain, courses: NDArray[np.object_], ground: Mapping[str, Point]
-) -> NDArray[np.int64]:
-    """Give the number of the chain's first edge that crosses each course on the ground."""
-    where = np.zeros(len(courses), dtype=np.int64)
-    steps = list(itertools.pairwise(chain.stations))
-    for e, (a, b) in reversed(list(enumerate(steps))):
-        crosses = shapely.crosses(courses, shapely.LineString([ground[a], ground[b]]))
-        where[np.asarray(crosses, dtype=bool)] = e
-    return where
+def _crossings(
+    chain: Chain, edges: Sequence[Edge], ground: Mapping[str, Point]
+) -> tuple[tuple[tuple[int, int], ...], tuple[tuple[int, int], ...]]:
+    """Give what a chain crosses on the ground, in order, and with what that is not sure."""
+    courses = shapely.linestrings([(ground[e.start], ground[e.end]) for e in edges])
+    tips = shapely.points([(ground[e.start], ground[e.end]) for e in edges])
+    events: list[tuple[int, int]] = []
+    doubts: list[tuple[int, int]] = []
+    for number, (a, b) in enumerate(itertools.pairwise(chain.stations)):
+        step = shapely.LineString([ground[a], ground[b]])
+        apart = np.array([not {a, b} & {e.start, e.end} for e in edges], dtype=bool)
+        reach = shapely.distance(tips, step).min(axis=1)
+        for end in (a, b):
+            reach = np.minimum(reach, shapely.distance(courses, shapely.Point(ground[end])))
+        unsure = apart & (reach < _TOUCH_M)
+        doubts += [(int(k), number) for k in np.flatnonzero(unsure)]
+        crossed = np.flatnonzero(apart & ~unsure & shapely.crosses(courses, step))
+        meetings = shapely.intersection(courses[crossed], step)
+        along = shapely.line_locate_point(step, meetings)
+        events += [(int(crossed[i]), number) for i in np.argsort(along, kind="stable")]
+    return tuple(events), tuple(doubts)

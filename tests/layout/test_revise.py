@@ -13,6 +13,7 @@ from hypothesis import strategies as st
 from gtfs_schematic.layout.check import faults
 from gtfs_schematic.layout.detour import STEPS, courses_between
 from gtfs_schematic.layout.engine import lay_out
+from gtfs_schematic.layout.keep import Standing
 from gtfs_schematic.layout.model import Clearances, Layout, LayoutSettings, SheetFrame
 from gtfs_schematic.layout.revise import revise_layout
 from gtfs_schematic.network.model import Network
@@ -34,8 +35,10 @@ def old() -> Layout:
 
 def revised(old: Layout, network: Network) -> Layout:
     paths = {**old.paths, **old.walk_paths}
-    new = revise_layout(network, old.positions, paths, CLEARANCES, FRAME)
-    assert new is not None
+    found = revise_layout(network, Standing(old.positions, paths, FRAME), CLEARANCES)
+    assert found is not None
+    assert found.moved == ()
+    new = found.layout
     assert faults(new, CLEARANCES) == ()
     kept = [s for s in new.positions if s in old.positions]
     assert all(new.positions[s] == old.positions[s] for s in kept)
@@ -93,9 +96,9 @@ def test_links_added_to_a_radial_network(seed: int, first: int, second: int):
     places = {s.id: (s.lon / 0.009, s.lat / 0.009) for s in base.stations}
     network = network_of(places, [*courses, [a, b]])
     paths = {**layout.paths, **layout.walk_paths}
-    new = revise_layout(network, layout.positions, paths, CLEARANCES, FRAME)
+    found = revise_layout(network, Standing(layout.positions, paths, FRAME), CLEARANCES)
     # No room is an honest answer; what is drawn keeps every guarantee.
-    assert new is None or faults(new, CLEARANCES) == ()
+    assert found is None or faults(found.layout, CLEARANCES) == ()
 
 
 @given(st.integers(-4000, 4000), st.integers(-4000, 4000))
