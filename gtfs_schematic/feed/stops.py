@@ -26,6 +26,8 @@ _COLUMNS = (
     "platform_code",
 )
 _KINDS = {"": 0, **{str(n): n for n in range(5)}}
+_MOST_ABOVE = 5
+"""More stations above one another than any feed needs: a boarding area has two."""
 _ODD_PLACES = {1: "a station", 2: "an entrance", 3: "a generic node", 4: "a boarding area"}
 _BOARDING: Mapping[str, Boarding] = {"": "unknown", "0": "unknown", "1": "yes", "2": "no"}
 
@@ -185,6 +187,8 @@ def _chain(
             fault = "parent station is not in stops.txt; it does not count"
         elif here.parent_id == ident or here.parent_id in chain:
             fault = "parent stations go round in a circle; it does not count"
+        elif len(chain) == _MOST_ABOVE:
+            fault = "parent stations go up without end, as in a circle; it does not count"
         if fault:
             if here.id == ident or "circle" in fault:  # else found at the row at fault
                 tables.notebook.find(

@@ -50,8 +50,12 @@ def route_groups(
         if (trunk := _trunk(route, grouping)) is not None:
             trunks[route.agency_id, route.mode, trunk].append(route.id)
     for ids in (*named.values(), *trunks.values()):
-        called = {i: {station for run in runs[i] for station in run} for i in ids}
-        graph.add_edges_from((a, b) for a, b in _pairs(ids) if called[a] & called[b])
+        met: dict[str, str] = {}
+        for route_id in ids:
+            called = {station for run in runs[route_id] for station in run}
+            graph.add_edges_from(
+                (met.setdefault(station, route_id), route_id) for station in called
+            )
     single = {route_id for route_id in known if not _runs_both_ways(runs[route_id])}
     for ids in colored.values():
         graph.add_edges_from(

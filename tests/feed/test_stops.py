@@ -129,3 +129,11 @@ def test_a_leap_is_found_where_no_vehicle_could_make_it(read_stops):
     assert [(f.severity, f.file, f.value) for f in far.findings] == [
         ("warning", "stops.txt", "parv, vend: 19 km in 360 s")
     ]
+
+
+def test_a_tower_of_parents_is_refused_in_good_time(read_town, table):
+    """Ten thousand stops, each above the next: every one of them would be followed to the top."""
+    tower = [f"s{n},Stop,,47.0,8.0,0,s{n + 1}," for n in range(10_000)]
+    timetable = read_town({"stops.txt": table("stops.txt") + "\n".join(tower) + "\n"})
+    assert {stop.id for stop in timetable.stops} == {stop.id for stop in read_town().stops}
+    assert any("go up without end" in finding.message for finding in timetable.findings)
