@@ -34,6 +34,9 @@ from gtfs_schematic.pipeline import (
 )
 from gtfs_schematic.progress import Progress, Silent
 
+_MOST_OUTSIDE_MM = 15.0
+"""What stands further outside its frame than this is laid out anew, not pushed in."""
+
 
 @dataclass(frozen=True, slots=True)
 class Revision:
@@ -156,19 +159,19 @@ def _layout(
 
 
 def _frames(before: Edition, network: Network, settings: Settings) -> list[SheetFrame]:
-    """Frames of the edition's sheet in which everything that stands has its place."""
+    """Frames of the edition's sheet, that first from which what stands sticks out least."""
     size = f"{before.width_mm:g}x{before.height_mm:g}"
     sheet = settings.sheet.model_copy(update={"size": size, "orientation": "auto"})
     x = [x for link in before.links for x, _ in link.path_mm]
     y = [y for link in before.links for _, y in link.path_mm]
-    return [
-        frame
-        for frame in candidate_frames(network, sheet, settings.drawing)
-        if frame.left_mm <= min(x) + 0.01
-        and max(x) - 0.01 <= frame.right_mm
-        and frame.top_mm <= min(y) + 0.01
-        and max(y) - 0.01 <= frame.bottom_mm
-    ]
+
+    def outside(frame: SheetFrame) -> float:
+        beside = (frame.left_mm - min(x), max(x) - frame.right_mm)
+        over = (frame.top_mm - min(y), max(y) - frame.bottom_mm)
+        return round(max(0.0, *beside, *over), 1)
+
+    frames = candidate_frames(network, sheet, settings.drawing)
+    return sorted((f for f in frames if outside(f) <= _MOST_OUTSIDE_MM), key=outside)
 
 
 def _sides(before: Edition) -> dict[str, str]:

@@ -22,13 +22,15 @@ from gtfs_schematic.layout.keep import Standing, keep
 from gtfs_schematic.layout.laying import lay_all
 from gtfs_schematic.layout.model import Clearances, Layout
 from gtfs_schematic.layout.strained import lift_strained
-from gtfs_schematic.layout.yielding import Free, give_way
+from gtfs_schematic.layout.yielding import OUTSIDE_MM, Free, give_way
 from gtfs_schematic.network.model import Network
 from gtfs_schematic.progress import Progress, Silent
 
 _REACHES = (0, 1, 2, 3, 5, 8, None)
 """Links from the change within which stations may give way, in turn; None: all."""
 _NEAR_MM = 0.01
+FRAME = "frame"
+"""Cause of moves where title, key and notes leave less room than before."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -38,7 +40,7 @@ class Moved:
     station_id: str
     length_mm: float
     because: str
-    """Link or walk that needed room, or pinned station; empty where all is evened out."""
+    """Link or walk that needed room, or pinned station; `FRAME`; empty where all is evened out."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -91,7 +93,7 @@ def revise_layout(
     for found in _drafts(draft, standing, old, wanted, even):
         layout = found.layout()
         if not check.faults(layout, clearances, wanted):
-            return Revised(layout, _moved(found, standing, wanted))
+            return Revised(layout, _moved(found, standing, wanted, _outside(draft)))
     return None
 
 
@@ -100,10 +102,11 @@ def _drafts(
 ) -> Iterator[Draft]:
     """Give the draft as it is if nothing lacks room, then ever wider neighbourhoods."""
     off = {s: place for s, place in pins.items() if draft.at.get(s) != place}
-    if not draft.thin and not off and even == 0.0:
+    outside = _outside(draft)
+    if not draft.thin and not off and not outside and even == 0.0:
         yield draft
     fresh = {key for key in draft.path if key not in old or key in draft.thin}
-    near = _near(draft, set(draft.thin) or fresh)
+    near = _near(draft, set(draft.thin) or fresh) | outside
     sources = {s for key in near | set(draft.thin) for s in _ends(draft, key)} | set(off)
     away = draft.hops(sources)
     for reach in _REACHES if even == 0.0 else (None,):
@@ -112,6 +115,14 @@ def _drafts(
         found = give_way(draft, free)
         if found is not None:
             yield found
+
+
+def _outside(draft: Draft) -> set[str]:
+    """Edges that leave the frame, which may be smaller than it was."""
+    frame = draft.frame
+    box = shapely.box(frame.left_mm, frame.top_mm, frame.right_mm, frame.bottom_mm)
+    wide = box.buffer(OUTSIDE_MM, join_style="mitre")
+    return {key for key, path in draft.path.items() if not wide.covers(shapely.LineString(path))}
 
 
 def _near(draft: Draft, keys: set[str]) -> set[str]:
@@ -136,9 +147,12 @@ def _ends(draft: Draft, key: str) -> tuple[str, str]:
     return draft.edges[key].start, draft.edges[key].end
 
 
-def _moved(draft: Draft, standing: Standing, pins: Mapping[str, Point]) -> tuple[Moved, ...]:
+def _moved(
+    draft: Draft, standing: Standing, pins: Mapping[str, Point], outside: set[str]
+) -> tuple[Moved, ...]:
     """Tell how far every station of the previous drawing moved, and which change is nearest."""
     causes = [(s, s) for s in sorted(pins)]
+    causes += [(s, FRAME) for key in sorted(outside) for s in _ends(draft, key)]
     causes += [(s, why) for key, why in sorted(draft.thin.items()) for s in _ends(draft, key)]
     away = {source: draft.hops([source]) for source in {s for s, _ in causes}}
     found = []

@@ -138,7 +138,7 @@ def _search(  # noqa: C901 - one loop that calls little, for speed
         for turn in range(-2, 3):
             if node == trip.start and turn != 0:
                 continue
-            e = (heading + turn) % 8
+            e = int((heading + turn) % 8)
             there, seen, price = _step(field, node, e, count)
             if there < 0:
                 continue

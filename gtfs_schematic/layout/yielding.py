@@ -35,6 +35,8 @@ and a new link shorter than a station spacing."""
 _LEEWAY_MM = 3.0
 _MOST_REPAIRS = 12
 _SLACK = 1e-4
+OUTSIDE_MM = 0.05
+"""What stands outside the frame by less is there for rounding."""
 _STILL_MM = 0.004
 """Moves below this are the solver's, not the drawing's."""
 
@@ -183,8 +185,10 @@ class _Programme:
             here = skeleton.points[:, axis]
             low, high = sides[axis]
             # What stands a little outside for rounding may stay there.
-            bounds[self.columns[axis], 0] = np.where(self.free, np.minimum(low, here), here)
-            bounds[self.columns[axis], 1] = np.where(self.free, np.maximum(high, here), here)
+            least = np.where(here > low - OUTSIDE_MM, np.minimum(low, here), low)
+            most = np.where(here < high + OUTSIDE_MM, np.maximum(high, here), high)
+            bounds[self.columns[axis], 0] = np.where(self.free, least, here)
+            bounds[self.columns[axis], 1] = np.where(self.free, most, here)
         for i, station in enumerate(self.figure.stations):
             if station in self.wish.pins:
                 x, y = self.wish.pins[station]
