@@ -101,3 +101,32 @@ def radial_network(seed: int, arms: int, rings: int, stations: int) -> Network:
         around = [arm_of[arm][step] for arm in range(arms)]
         courses.append([*around, around[0]])
     return network_of(places, courses)
+
+
+def star_network(seed: int, arms: int, stations: int = 2) -> Network:
+    """Make lines through one centre with any number of arms; an odd arm ends there."""
+    chance = np.random.default_rng(seed)
+    places = {"C": (0.0, 0.0)}
+    for arm in range(arms):
+        angle = 2 * np.pi * (arm + chance.normal(0, 0.1)) / arms
+        for step in range(1, stations + 1):
+            places[f"A{arm:02}N{step}"] = (1.2 * step * np.cos(angle), 1.2 * step * np.sin(angle))
+    arm_of = [[f"A{arm:02}N{step}" for step in range(1, stations + 1)] for arm in range(arms)]
+    half = arms // 2
+    courses = [[*reversed(arm_of[arm]), "C", *arm_of[arm + half]] for arm in range(half)]
+    if arms % 2:
+        courses.append([*reversed(arm_of[-1]), "C"])
+    return network_of(places, courses)
+
+
+def hub_network(side: int = 5) -> Network:
+    """Make a grid of lines with four more through the middle station: it has twelve arms."""
+    places = {f"G{x}{y}": (1.0 * x, 1.0 * y) for x in range(side) for y in range(side)}
+    courses = [[f"G{x}{y}" for y in range(side)] for x in range(side)]
+    courses += [[f"G{x}{y}" for x in range(side)] for y in range(side)]
+    m = side // 2
+    for (a, b), (c, d) in (
+        ((1, 1), (-1, 1)), ((1, -1), (-1, -1)), ((2, 1), (-2, -1)), ((1, -2), (-1, 2)),
+    ):  # fmt: skip
+        courses.append([f"G{m + a}{m + b}", f"G{m}{m}", f"G{m + c}{m + d}"])
+    return network_of(places, courses)

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from gtfs_schematic.bundles.check import count_order
+from gtfs_schematic.bundles.forks import with_forks, without_crossings
 from gtfs_schematic.bundles.junction import junctions
 from gtfs_schematic.bundles.model import BundledLayout, BundleSettings, OrderQuality
 from gtfs_schematic.bundles.offset import draw_courses
@@ -30,17 +31,20 @@ def bundle(
     progress
         Who is told about the components that are ordered.
     """
-    found = order_lines(layout, settings.orders, progress=progress)
-    nodes = junctions(layout)
-    slots = Slots(found.orders, settings)
+    forked = with_forks(layout)
+    found = order_lines(forked, settings.orders, progress=progress)
+    orders = without_crossings(layout, forked, found.orders)
+    nodes = junctions(forked)
+    slots = Slots(orders, settings)
     progress.phase("drawing lines side by side")
-    stretches = draw_courses(layout, nodes, slots)
-    crossings, separations = count_order(layout, found.orders)
+    stretches = draw_courses(forked, nodes, slots)
+    crossings, separations = count_order(forked, orders)
     return BundledLayout(
         layout=layout,
         settings=settings,
-        orders=found.orders,
+        orders=orders,
         stretches=stretches,
-        spans=find_spans(layout, nodes, slots, stretches),
+        spans=find_spans(forked, nodes, slots, stretches),
         quality=OrderQuality(crossings, separations, found.crossings_bound),
+        forked=forked,
     )

@@ -30,8 +30,9 @@ def faults(bundled: BundledLayout) -> tuple[str, ...]:
     5. Amid each straight piece of a link that is long enough, all lines stand in order, at their
        offsets from the centre line, and so a line's width and gap apart.
     6. Every station has a span, whose points lie on the courses of its lines.
+    7. Links that leave a station together share a stretch with all their lines; none is cut short.
     """
-    plain = (*_order_faults(bundled), *_coverage_faults(bundled))
+    plain = (*_order_faults(bundled), *_coverage_faults(bundled), *_fork_faults(bundled))
     if plain:
         # What is missing cannot be measured.
         return plain
@@ -108,7 +109,7 @@ def _views(
 
 
 def _order_faults(bundled: BundledLayout) -> Iterator[str]:
-    for link in bundled.layout.network.links:
+    for link in bundled.forked.network.links:
         if Counter(bundled.orders.get(link.id, ())) != Counter(link.lines):
             yield f"link {link.id}: its order does not hold each of its lines once"
 
@@ -117,16 +118,37 @@ def _coverage_faults(bundled: BundledLayout) -> Iterator[str]:
     drawn = Counter(
         (stretch.line_id, link_id) for stretch in bundled.stretches for link_id in stretch.link_ids
     )
-    wanted = {(m, link.id) for link in bundled.layout.network.links for m in link.lines}
+    wanted = {(m, link.id) for link in bundled.forked.network.links for m in link.lines}
     for line_id, link_id in sorted(wanted | set(drawn)):
         times = drawn[line_id, link_id]
         if times != ((line_id, link_id) in wanted):
             yield f"line {line_id}: drawn {times} times on link {link_id}"
 
 
+def _fork_faults(bundled: BundledLayout) -> Iterator[str]:
+    """Compare links with what they are cut into."""
+    whole, cut = bundled.layout, bundled.forked
+    stems = set(cut.network.link) - set(whole.network.link)
+    courses = {key: shapely.LineString(path) for key, path in cut.paths.items()}
+    carried: dict[str, set[str]] = {key: set() for key in stems}
+    for link in whole.network.links:
+        path = shapely.LineString(whole.paths[link.id])
+        along = sorted(k for k in stems if path.buffer(_TOLERANCE_MM).covers(courses[k]))
+        for key in along:
+            carried[key] |= set(link.lines)
+        parts = [courses[link.id], *(courses[key] for key in along)]
+        length = sum(part.length for part in parts)
+        lost = path.difference(shapely.union_all(parts).buffer(_TOLERANCE_MM))
+        if not lost.is_empty or abs(length - path.length) > _TOLERANCE_MM:
+            yield f"link {link.id}: it is not whole where it is cut at forks"
+    for key in sorted(stems):
+        if carried[key] != set(cut.network.link[key].lines):
+            yield f"link {key}: it does not have the lines of the links that run through it"
+
+
 def _quality_faults(bundled: BundledLayout) -> Iterator[str]:
     quality = bundled.quality
-    counted = count_order(bundled.layout, bundled.orders)
+    counted = count_order(bundled.forked, bundled.orders)
     if counted != (quality.crossings, quality.separations):
         yield f"order: {counted} crossings and separations, but {quality} is claimed"
     if quality.crossings < quality.crossings_bound:
@@ -188,17 +210,17 @@ def _offset_faults(
 ) -> Iterator[str]:
     pitch = bundled.settings.line_width_mm + bundled.settings.line_gap_mm
     widest: Counter[str] = Counter()
-    for link in bundled.layout.network.links:
+    for link in bundled.forked.network.links:
         for end in (link.start, link.end):
             widest[end] = max(widest[end], len(link.lines))
-    for link in bundled.layout.network.links:
+    for link in bundled.forked.network.links:
         order = bundled.orders[link.id]
         wanted = (np.arange(len(order)) - (len(order) - 1) / 2.0) * pitch
         # Joints and arcs take room at both ends, the more the wider the bundles that meet there;
         # a shorter piece may be all joint, and is not measured.
         room = (widest[link.start] + widest[link.end]) * pitch
         room += 2.0 * bundled.settings.corner_radius_mm
-        for p, q in itertools.pairwise(np.array(bundled.layout.paths[link.id])):
+        for p, q in itertools.pairwise(np.array(bundled.forked.paths[link.id])):
             length = float(np.hypot(*(q - p)))
             if length < room:
                 continue
@@ -226,10 +248,12 @@ def _span_faults(
     bundled: BundledLayout, courses: Mapping[tuple[str, str], shapely.LineString]
 ) -> Iterator[str]:
     own: dict[str, list[shapely.LineString]] = defaultdict(list)
-    calls = {station.id: set(station.lines) for station in bundled.layout.network.stations}
-    for link in bundled.layout.network.links:
+    calls = {station.id: set(station.lines) for station in bundled.forked.network.stations}
+    for link in bundled.forked.network.links:
         for station_id in (link.start, link.end):
-            own[station_id] += [courses[m, link.id] for m in link.lines if m in calls[station_id]]
+            own[station_id] += [
+                courses[m, link.id] for m in link.lines if m in calls.get(station_id, ())
+            ]
     for station_id in sorted(calls):
         span = bundled.spans.get(station_id)
         if span is None or not span.points_mm:

@@ -70,7 +70,10 @@ class BundledLayout:
     layout: Layout
     settings: BundleSettings
     orders: Mapping[str, tuple[str, ...]]
-    """Per link id the line ids from left to right as seen going from `start` to `end`."""
+    """Per link id of `forked` the lines from left to right as seen going from `start` to `end`."""
     stretches: tuple[Stretch, ...]
     spans: Mapping[str, StationSpan]
     quality: OrderQuality
+    forked: Layout
+    """The layout with forks where links part that left a station together; else the same. Orders
+    and stretches have its links."""

@@ -6,6 +6,9 @@
 4. The cyclic order of links round every station is that of the ground.
 5. Clearances and pins are kept, and everything lies on the sheet.
 
+Only at a station with more links and walks than there are directions, and only as far as they part,
+may two of them leave together.
+
 On the ground, stations nearer than a few metres to a foreign link touch it as far as anyone can
 tell; where the order or a crossing hangs on less than that, both outcomes are right.
 """
@@ -16,7 +19,6 @@ import itertools
 import math
 from collections import defaultdict
 from collections.abc import Mapping
-from dataclasses import dataclass
 
 import networkx as nx
 import numpy as np
@@ -25,24 +27,20 @@ from numpy.typing import NDArray
 from pyproj import Geod
 
 from gtfs_schematic.geometry import Point
+from gtfs_schematic.layout.check_stations import (
+    Edge,
+    common_start,
+    shares_needlessly,
+    wrong_order,
+)
 from gtfs_schematic.layout.model import Clearances, Layout
 from gtfs_schematic.network.model import Link, Walk
 
+_DIRECTIONS = 8
 _TOUCH_M = 30.0
 """Distance on the ground below which touching and missing are not told apart, metres."""
 _TOLERANCE_MM = 0.15
 """What clearances may lack for rounding to hundredths of a millimetre."""
-
-
-@dataclass(frozen=True)
-class _Edge:
-    """A link or walk: its stations and its path on the sheet, millimetres."""
-
-    id: str
-    start: str
-    end: str
-    lines: int
-    path: tuple[Point, ...]
 
 
 def faults(
@@ -66,17 +64,18 @@ def faults(
     ground = _ground(layout)
     found += _off_angle(edges)
     found += _wrong_crossings(layout, edges, ground)
-    found += _wrong_order(layout, edges, ground)
+    found += wrong_order(layout, edges, ground, _TOUCH_M)
+    found += shares_needlessly(edges, _DIRECTIONS)
     found += _too_close(layout, edges, clearances)
     found += _off_sheet(layout, edges)
     found += _off_pin(layout, pins or {})
     return tuple(found)
 
 
-def _edges(layout: Layout) -> tuple[_Edge, ...]:
+def _edges(layout: Layout) -> tuple[Edge, ...]:
     network = layout.network
-    links = [_Edge(k.id, k.start, k.end, len(k.lines), layout.paths[k.id]) for k in network.links]
-    walks = [_Edge(w.id, w.start, w.end, 0, layout.walk_paths[w.id]) for w in network.walks]
+    links = [Edge(k.id, k.start, k.end, len(k.lines), layout.paths[k.id]) for k in network.links]
+    walks = [Edge(w.id, w.start, w.end, 0, layout.walk_paths[w.id]) for w in network.walks]
     return tuple(links + walks)
 
 
@@ -117,7 +116,7 @@ def _missing(layout: Layout) -> list[str]:
     return found
 
 
-def _off_angle(edges: tuple[_Edge, ...]) -> list[str]:
+def _off_angle(edges: tuple[Edge, ...]) -> list[str]:
     found = []
     for edge in edges:
         for (ax, ay), (bx, by) in itertools.pairwise(edge.path):
@@ -131,7 +130,7 @@ def _off_angle(edges: tuple[_Edge, ...]) -> list[str]:
 
 
 def _wrong_crossings(
-    layout: Layout, edges: tuple[_Edge, ...], ground: Mapping[str, Point]
+    layout: Layout, edges: tuple[Edge, ...], ground: Mapping[str, Point]
 ) -> list[str]:
     found = []
     lines = np.array([shapely.LineString(edge.path) for edge in edges])
@@ -140,8 +139,10 @@ def _wrong_crossings(
     for i, j in sorted({(int(i), int(j)) for i, j in pairs if i < j}):
         shared = {edges[i].start, edges[i].end} & {edges[j].start, edges[j].end}
         ends = [shapely.Point(layout.positions[s]) for s in shared]
+        ends += [common_start(edges[i], edges[j], s) for s in shared]
+        near = shapely.union_all(ends).buffer(0.006)
         for part in shapely.get_parts(lines[i].intersection(lines[j])):
-            if part.geom_type == "Point" and any(part.distance(end) < 0.006 for end in ends):
+            if near.covers(part):
                 continue
             if part.geom_type != "Point":
                 found.append(f"{edges[i].id} and {edges[j].id} lie on each other.")
@@ -155,7 +156,7 @@ def _wrong_crossings(
 
 def _compare_crossings(
     layout: Layout,
-    edges: tuple[_Edge, ...],
+    edges: tuple[Edge, ...],
     courses: NDArray[np.object_],
     drawn: Mapping[tuple[int, int], int],
 ) -> list[str]:
@@ -184,40 +185,7 @@ def _compare_crossings(
     return found
 
 
-def _wrong_order(
-    layout: Layout, edges: tuple[_Edge, ...], ground: Mapping[str, Point]
-) -> list[str]:
-    """Compare, for every three links at a station, their turn on the ground and here."""
-    around: dict[str, list[tuple[float, float, float]]] = defaultdict(list)
-    for edge in edges:
-        for here, there, path in (
-            (edge.start, edge.end, edge.path),
-            (edge.end, edge.start, edge.path[::-1]),
-        ):
-            dx, dy = ground[there][0] - ground[here][0], ground[there][1] - ground[here][1]
-            doubt = math.asin(min(1.0, _TOUCH_M / max(math.hypot(dx, dy), 1e-9)))
-            drawn = math.atan2(-(path[1][1] - path[0][1]), path[1][0] - path[0][0])
-            around[here].append((math.atan2(dy, dx), drawn, doubt))
-    found = []
-    for station, ends in sorted(around.items()):
-        for a, b, c in itertools.combinations(ends, 3):
-            clear = all(
-                abs(math.remainder(p[0] - q[0], math.tau)) > p[2] + q[2]
-                for p, q in ((a, b), (b, c), (a, c))
-            )
-            if clear and _turn(a[0], b[0], c[0]) != _turn(a[1], b[1], c[1]):
-                name = layout.network.station[station].name
-                found.append(f"The order of links round {station} ({name}) is not the ground's.")
-                break
-    return found
-
-
-def _turn(a: float, b: float, c: float) -> bool:
-    """Whether three bearings follow each other counter-clockwise."""
-    return (b - a) % math.tau < (c - a) % math.tau
-
-
-def _too_close(layout: Layout, edges: tuple[_Edge, ...], clearances: Clearances) -> list[str]:
+def _too_close(layout: Layout, edges: tuple[Edge, ...], clearances: Clearances) -> list[str]:
     found = []
     pitch = clearances.line_width_mm + clearances.line_gap_mm
     half = np.array([(max(1, e.lines) * pitch - clearances.line_gap_mm) / 2 for e in edges])
@@ -244,7 +212,7 @@ def _too_close(layout: Layout, edges: tuple[_Edge, ...], clearances: Clearances)
     return found
 
 
-def _ways(layout: Layout, edges: tuple[_Edge, ...]) -> nx.Graph:
+def _ways(layout: Layout, edges: tuple[Edge, ...]) -> nx.Graph:
     """Graph of stations and crossings with the drawn lengths between them."""
     at: dict[str, list[Point]] = defaultdict(list)
     for crossing in layout.crossings:
@@ -261,7 +229,7 @@ def _ways(layout: Layout, edges: tuple[_Edge, ...]) -> nx.Graph:
     return ways
 
 
-def _converge(ways: nx.Graph, a: _Edge, b: _Edge, wanted: float) -> bool:
+def _converge(ways: nx.Graph, a: Edge, b: Edge, wanted: float) -> bool:
     """Whether two links belong to one bend or branching: a short way along the drawing joins them.
 
     Two links that leave a point at 45 degrees are `wanted` apart only where the way between them is
@@ -287,7 +255,7 @@ def _off_pin(layout: Layout, pins: Mapping[str, Point]) -> list[str]:
     ]
 
 
-def _off_sheet(layout: Layout, edges: tuple[_Edge, ...]) -> list[str]:
+def _off_sheet(layout: Layout, edges: tuple[Edge, ...]) -> list[str]:
     sheet = layout.sheet
     return [
         f"{edge.id} leaves the frame of the sheet."

@@ -6,29 +6,15 @@ import numpy as np
 import shapely
 from numpy.typing import NDArray
 
-from gtfs_schematic.errors import LayoutError
 from gtfs_schematic.layout.board import Board
-from gtfs_schematic.layout.lattice import BLOCKED, encloses
-from gtfs_schematic.layout.plane import PlaneGraph
+from gtfs_schematic.layout.lattice import BLOCKED, FREE, encloses
 
 _MARGINS = (1.0, 3.0, 8.0)
 _CLAIM_STEPS = 0.75
-
-
-def check_degrees(graph: PlaneGraph) -> None:
-    """Refuse a vertex with more pieces than there are directions.
-
-    Raises
-    ------
-    LayoutError
-        Naming the station.
-    """
-    for v, around in enumerate(graph.rotation):
-        if len(around) > 8:
-            raise LayoutError(
-                f"{graph.station_of[v]}: {len(around)} corridors meet at one station, more than "
-                "the eight directions of the diagram. Leave out a line or split the station."
-            )
+_MOST_BARS = 12
+_BEYOND_STEPS = 3.0
+_BAR = np.iinfo(np.int32).max
+"""Code of a node that is barred for one piece for a while."""
 
 
 def embed(board: Board) -> int | None:
@@ -86,14 +72,11 @@ def _true_course(board: Board, p: int) -> NDArray[np.float64]:
 
 def _claimed(board: Board, course: NDArray[np.float64]) -> NDArray[np.int64]:
     """Nodes that a course passes within a step, but for those near its ends."""
-    line = shapely.LineString(course)
-    x0, y0, x1, y1 = (int(side) for side in line.bounds)
-    grid = np.meshgrid(np.arange(x0 - 1, x1 + 3), np.arange(y0 - 1, y1 + 3))
-    x, y = (axis.ravel() for axis in grid)
-    near = shapely.dwithin(line, shapely.points(x, y), _CLAIM_STEPS)
+    x, y = _near(board, shapely.LineString(course))
+    far = np.ones(len(x), dtype=bool)
     for end in (course[0], course[-1]):
-        near &= np.maximum(abs(x - end[0]), abs(y - end[1])) > 1.5
-    return np.asarray(y[near] * board.width + x[near])
+        far &= np.maximum(abs(x - end[0]), abs(y - end[1])) > 1.5
+    return np.asarray(y[far] * board.width + x[far])
 
 
 def _insert(board: Board, p: int, course: NDArray[np.float64]) -> bool:
@@ -107,4 +90,65 @@ def _insert(board: Board, p: int, course: NDArray[np.float64]) -> bool:
         if not encloses(ring, vertices):
             board.lay(p, path)
             return True
-    return False
+    return _insert_between(board, p, course)
+
+
+def _insert_between(board: Board, p: int, course: NDArray[np.float64]) -> bool:
+    """Lay piece `p` past vertices on the side of its course, by bars on their far sides."""
+    bars = np.zeros(0, dtype=np.int64)
+    laid = False
+    for _ in range(_MOST_BARS):
+        cost, path = board.route(p, _MARGINS[-1])
+        if cost >= BLOCKED or len(np.unique(path)) != len(path):
+            break
+        ring = np.concatenate([board.xy(path), course[::-1]])
+        wrong = [xy for xy in board.xy(board.place) if encloses(ring, xy[None, :])]
+        if not wrong:
+            laid = True
+            break
+        fresh = np.unique(np.concatenate([_bar(board, xy, course, ring) for xy in wrong]))
+        fresh = fresh[board.lattice.occupied[fresh] == FREE]
+        if not len(fresh):
+            break
+        board.lattice.occupied[fresh] = _BAR
+        bars = np.concatenate([bars, fresh])
+    board.lattice.occupied[bars] = FREE
+    if laid:
+        board.lay(p, path)
+    return laid
+
+
+def _bar(
+    board: Board,
+    vertex: NDArray[np.float64],
+    course: NDArray[np.float64],
+    ring: NDArray[np.float64],
+) -> NDArray[np.int64]:
+    """Nodes from a vertex on, away from a course, to beyond a path that went round the vertex."""
+    line = shapely.LineString(course)
+    foot = line.interpolate(line.project(shapely.Point(vertex)))
+    away = vertex - [foot.x, foot.y]
+    length = float(np.hypot(*away))
+    if length < 1e-9:
+        return np.zeros(0, dtype=np.int64)
+    away = away / length
+    reach = float(np.hypot(*np.ptp(ring, axis=0)))
+    beyond = shapely.LineString([vertex, vertex + reach * away]).intersection(
+        shapely.LineString(ring)
+    )
+    reach = float(shapely.Point(vertex).hausdorff_distance(beyond)) if not beyond.is_empty else 0.0
+    bar = shapely.LineString([vertex, vertex + (reach + _BEYOND_STEPS) * away])
+    x, y = _near(board, bar)
+    return np.asarray(y * board.width + x)
+
+
+def _near(board: Board, line: shapely.LineString) -> tuple[NDArray[np.int64], NDArray[np.int64]]:
+    """Coordinates of the nodes that a line passes within a step."""
+    x0, y0, x1, y1 = (int(side) for side in line.bounds)
+    grid = np.meshgrid(
+        np.arange(max(0, x0 - 1), min(board.width, x1 + 3)),
+        np.arange(max(0, y0 - 1), min(board.height, y1 + 3)),
+    )
+    x, y = (axis.ravel() for axis in grid)
+    near = shapely.dwithin(line, shapely.points(x, y), _CLAIM_STEPS)
+    return x[near], y[near]

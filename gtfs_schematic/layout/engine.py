@@ -20,7 +20,7 @@ from gtfs_schematic.errors import LayoutError
 from gtfs_schematic.layout.anchors import anchor_points
 from gtfs_schematic.layout.asked import ask, kept_stations, relative_pins
 from gtfs_schematic.layout.board import Board
-from gtfs_schematic.layout.embed import check_degrees, embed
+from gtfs_schematic.layout.embed import embed
 from gtfs_schematic.layout.fit import (
     Sizes,
     link_least,
@@ -29,6 +29,7 @@ from gtfs_schematic.layout.fit import (
     pins_in_frame,
     wants_of,
 )
+from gtfs_schematic.layout.forks import fork
 from gtfs_schematic.layout.improve import improve
 from gtfs_schematic.layout.model import (
     Clearances,
@@ -48,6 +49,8 @@ from gtfs_schematic.network.model import Network
 from gtfs_schematic.progress import Progress, Silent
 
 _SWEEPS = {"quick": 2, "standard": 8, "thorough": 30}
+_PORTS = 8
+"""Directions in which pieces may leave a vertex."""
 _UNITS = (6, 9, 13, 20, 30, 45)
 """Lattice steps in a spacing, tried in turn; six let all anchors keep three steps' distance."""
 _ROOM = 1.1
@@ -106,15 +109,13 @@ def place(
     Raises
     ------
     LayoutError
-        If there is nothing to draw, a station has more than eight neighbours, or a pin names a
-        station that the network does not have.
+        If there is nothing to draw, or a pin names a station that the network does not have.
     """
     if not network.links:
         raise LayoutError("The network has no links: there is nothing to draw.")
     progress.phase("placing on the ground")
     graph = planarise(network, kept_stations(network, settings))
-    check_degrees(graph)
-    anchors = anchor_points(graph, settings.fidelity)
+    graph, anchors = fork(graph, anchor_points(graph, settings.fidelity), _PORTS)
     board = _board(graph, anchors, settings, progress)
     improve(board, _SWEEPS[settings.effort], progress)
     return Placement(network, settings, board.anchors[: graph.n_vertices], skeleton_of(board))

@@ -96,7 +96,11 @@ class Layout:
     positions: Mapping[str, Point]
     """Per station id its place."""
     paths: Mapping[str, tuple[Point, ...]]
-    """Per link id the centre line from `start` to `end`, every bend as a sharp corner."""
+    """Per link id the centre line from `start` to `end`, every bend as a sharp corner.
+
+    At a station with more links and walks than directions some leave together: their paths lie on
+    each other until they part.
+    """
     walk_paths: Mapping[str, tuple[Point, ...]]
     """Per walk id the same."""
     crossings: tuple[Crossing, ...]

@@ -36,6 +36,8 @@ class Piece:
     stations: tuple[str, ...]
     nodes: tuple[int, ...]
     lines: tuple[str, ...]
+    others: tuple[tuple[str, bool], ...] = ()
+    """Of a stem: what runs through it beside its part's owner, and whether from start to end."""
 
     @property
     def is_walk(self) -> bool:
@@ -53,7 +55,7 @@ class PlaneGraph:
     """A planar straight-line drawing of the network on the ground, local metres, y north.
 
     Vertices 0 … `n_vertices` − 1 come first among the points: kept stations (`station_of[v]` is
-    their id), then crossings (`station_of[v]` is None); smoothed stations follow.
+    their id), then crossings and forks (`station_of[v]` is None); smoothed stations follow.
     """
 
     points: NDArray[np.float64]
@@ -63,10 +65,12 @@ class PlaneGraph:
     """Per vertex the piece ends around it, counter-clockwise; end i of piece p is 2 p + i."""
     through: tuple[tuple[int, int, int, int], ...]
     """Per pair of piece ends that lines pass through: vertex, end, end, count of lines."""
+    forks: tuple[int, ...] = ()
+    """Vertices at which pieces part that left a station together."""
 
     @property
     def n_vertices(self) -> int:
-        """Count of vertices: kept stations and crossings."""
+        """Count of vertices: kept stations, crossings and forks."""
         return len(self.station_of)
 
     @cached_property

@@ -51,7 +51,8 @@ def restore(
         stops = _stops(corners, part_wants[p])
         at.update(zip(piece.stations, (place for place, _ in stops), strict=True))
         for part, run in zip(piece.parts, _cut(corners, stops), strict=True):
-            runs[part.owner].append(run if part.forward else run[::-1])
+            for owner, forward in ((part.owner, part.forward), *piece.others):
+                runs[owner].append(run if forward else run[::-1])
     positions = {station: _point(at[station]) for station in sorted(at)}
     paths = {link.id: _join(runs[link.id], at[link.start]) for link in network.links}
     walks = {walk.id: _join(runs[walk.id], at[walk.start]) for walk in network.walks}
@@ -157,7 +158,7 @@ def _crossings(skeleton: Skeleton, places: NDArray[np.int64]) -> tuple[Crossing,
     owners: dict[int, set[str]] = defaultdict(set)
     for piece in graph.pieces:
         for v, part in ((piece.ends[0], piece.parts[0]), (piece.ends[1], piece.parts[-1])):
-            if graph.station_of[v] is None:
+            if graph.station_of[v] is None and v not in graph.forks:
                 owners[v].add(part.owner)
     found = []
     for v in sorted(owners):

@@ -95,12 +95,6 @@ def test_a_walk_is_drawn_like_a_link_but_short():
     assert walk.length < shapely.LineString(layout.paths["C-D"]).length * 1.5
 
 
-def test_more_than_eight_neighbours_are_refused_by_name():
-    places = {"C": (0.0, 0.0)} | {f"N{i}": (1.0 + i, (i - 4.0) * 2) for i in range(9)}
-    with pytest.raises(LayoutError, match="C: 9 corridors"):
-        laid(network_of(places, [["C", f"N{i}"] for i in range(9)]))
-
-
 def test_a_sheet_too_small_is_refused_with_the_size_needed():
     network = radial_network(1, 8, 2, 9)
     with pytest.raises(LayoutError, match=r"needs at least \d+ × \d+ mm"):
