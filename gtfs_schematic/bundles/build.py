@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping, Sequence
+
 from gtfs_schematic.bundles.check import count_order
 from gtfs_schematic.bundles.forks import with_forks, without_crossings
 from gtfs_schematic.bundles.junction import junctions
@@ -18,6 +20,7 @@ def bundle(
     layout: Layout,
     settings: BundleSettings,
     *,
+    previous: Mapping[str, Sequence[str]] | None = None,
     progress: Progress = Silent(),  # noqa: B008 - it has no state
 ) -> BundledLayout:
     """Give a layout with its lines ordered, offset, and rounded at corners.
@@ -28,11 +31,14 @@ def bundle(
         An octilinear layout; sheet millimetres, y down.
     settings
         Width and gap of lines, radius of corners, millimetres.
+    previous
+        Per link id the order of lines in an earlier drawing, left to right: kept wherever that
+        costs no crossing more.
     progress
         Who is told about the components that are ordered.
     """
     forked = with_forks(layout)
-    found = order_lines(forked, settings.orders, progress=progress)
+    found = order_lines(forked, settings.orders, previous, progress=progress)
     orders = without_crossings(layout, forked, found.orders)
     nodes = junctions(forked)
     slots = Slots(orders, settings)

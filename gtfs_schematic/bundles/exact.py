@@ -16,8 +16,10 @@ from ortools.sat.python import cp_model
 from gtfs_schematic.bundles.greedy import Orders, left_of
 from gtfs_schematic.bundles.problem import OrderProblem, Pair, Twist
 
+_KEPT = 50_000
+"""A pair of lines changes places with an earlier drawing: the dearest after a crossing."""
 _SEPARATION = 10_000
-"""Two neighbours part: the dearest after a crossing."""
+"""Two neighbours part."""
 _SANDWICH = 1000
 """A line that ends stands between one that goes on and the bundle's edge."""
 _SWAP = 100
@@ -65,7 +67,8 @@ class ComponentModel:
         """Keep the crossings, and minimise what else looks unquiet."""
         apart = self._separations()
         self.model.minimize(
-            _SEPARATION * sum(apart)
+            _KEPT * self._exchanged()
+            + _SEPARATION * sum(apart)
             + _SANDWICH * sum(self._sandwiches())
             + _SWAP * sum(self.swaps)
             + _ROUTE_ORDER
@@ -122,6 +125,15 @@ class ComponentModel:
         for p, q in ((first, second), (~first, ~second)):
             self.model.add_bool_or(~p, ~q if twist.same else q, swap)
         return swap
+
+    def _exchanged(self) -> cp_model.LinearExpr:
+        """Count the pairs of lines that change places with an earlier drawing."""
+        costs = (
+            if_right + (if_left - if_right) * self.left[pair]
+            for pair, (if_left, if_right) in self.problem.kept.items()
+            if pair in self.left
+        )
+        return sum(costs, start=cp_model.LinearExpr.constant(0))
 
     def _separations(self) -> list[cp_model.IntVar]:
         """Give binaries that are 1 if the teams of a twist are neighbours on one side only."""

@@ -10,6 +10,8 @@ from gtfs_schematic.bundles.problem import OrderProblem, Pair, Twist
 Orders = list[list[int]]
 """Per chain its teams from left to right along the chain."""
 
+_KEPT = 20
+"""What a pair of lines costs that changes places with an earlier drawing."""
 _CROSSING = 100_000
 """What a crossing costs beside a pair out of route order on one chain, which costs 1."""
 _WISH = 10**12
@@ -76,9 +78,10 @@ def _own_cost(problem: OrderProblem, pair: Pair) -> tuple[int, int]:
     if_left, if_right = problem.leans.get(pair, (0, 0))
     ascending = problem.chains[pair[0]].ascending
     wanted = problem.wanted.get(pair)
+    moved_left, moved_right = problem.kept.get(pair, (0, 0))
     return (
-        if_left * _CROSSING + (not ascending) + _WISH * (wanted is False),
-        if_right * _CROSSING + ascending + _WISH * (wanted is True),
+        if_left * _CROSSING + (not ascending) + _KEPT * moved_left + _WISH * (wanted is False),
+        if_right * _CROSSING + ascending + _KEPT * moved_right + _WISH * (wanted is True),
     )
 
 

@@ -34,17 +34,19 @@ class LineOrder:
 def order_lines(
     layout: Layout,
     wanted: Mapping[str, Sequence[str]] | None = None,
+    previous: Mapping[str, Sequence[str]] | None = None,
     *,
     progress: Progress = Silent(),  # noqa: B008 - it has no state
 ) -> LineOrder:
     """Order the lines of every link of a layout.
 
     What a person asks for (`wanted`, see `problem.state_problem`) goes before everything else.
+    Lines stand as in the `previous` drawing, per link id, wherever that costs no crossing more.
 
     The pairwise bound and the greedy order come first; each component of chains that depend on
     each other is then solved exactly as far as a fixed amount of work allows.
     """
-    problem = state_problem(layout, wanted)
+    problem = state_problem(layout, wanted, previous)
     bounds, left = order_pairs(problem)
     orders = order_greedily(problem, left)
     components = _components(problem)
@@ -112,7 +114,13 @@ def _inner_orders(problem: OrderProblem) -> dict[tuple[int, int], bool]:
                     if other not in found:
                         found[other] = found[here] != flip
                         walk.append(other)
-            agreed = sum(problem.chains[i].ascending == truth for i, truth in found.items())
-            turned = 2 * agreed < len(found)
+            agreed = sum(
+                1 if problem.chains[i].ascending == truth else -1 for i, truth in found.items()
+            )
+            # What stood so before decides; where nothing did, how most chains read.
+            kept = sum(
+                problem.inner.get((i, team), 0) * (1 if truth else -1) for i, truth in found.items()
+            )
+            turned = (kept or agreed) < 0
             inner.update({(i, team): truth != turned for i, truth in found.items()})
     return inner

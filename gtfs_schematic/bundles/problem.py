@@ -76,6 +76,11 @@ class OrderProblem:
     """Crossings that every order has."""
     wanted: Mapping[Pair, bool] = field(default_factory=dict)
     """Per pair whether a person wants a left of b."""
+    kept: Mapping[Pair, tuple[int, int]] = field(default_factory=dict)
+    """Per pair how many pairs of lines change places, over all links of the chain, if a is left of
+    b, and how many if b is left of a."""
+    inner: Mapping[tuple[int, int], int] = field(default_factory=dict)
+    """Per chain and team how many more pairs of its lines stood in the team's order than not."""
 
 
 @dataclass
@@ -96,7 +101,9 @@ class _Draft:
 
 
 def state_problem(
-    layout: Layout, wanted: Mapping[str, Sequence[str]] | None = None
+    layout: Layout,
+    wanted: Mapping[str, Sequence[str]] | None = None,
+    previous: Mapping[str, Sequence[str]] | None = None,
 ) -> OrderProblem:
     """Give the ordering problem of a layout; links of a single line do not appear in it.
 
@@ -106,12 +113,17 @@ def state_problem(
         With links and their lines.
     wanted
         Per link id the order that a person asks for of some of its lines, left to right.
+    previous
+        Per link id the order of an earlier drawing, left to right.
     """
-    asked = wanted or {}
+    asked, old = wanted or {}, previous or {}
     nodes = junctions(layout)
     branches = find_branches(nodes)
     single = {line_id for lines in asked.values() for line_id in lines}
     teams = find_teams(layout, nodes, branches, single)
+    single |= {line_id for team in teams if _was_parted(team, old) for line_id in team}
+    teams = find_teams(layout, nodes, branches, single)
+    teams = tuple(_as_before(team, old) for team in teams)
     team_of = {line_id: i for i, members in enumerate(teams) for line_id in members}
     chains = find_chains(layout, nodes, branches, team_of)
     place = {link_id: (i, fwd) for i, chain in enumerate(chains) for link_id, fwd in chain.links}
@@ -130,7 +142,53 @@ def state_problem(
         stubs=tuple(draft.stubs),
         fixed=draft.fixed,
         wanted=_wanted(draft, asked),
+        kept=_kept(draft, old),
+        inner=_inner(draft, teams, old),
     )
+
+
+def _was_parted(team: tuple[str, ...], old: Mapping[str, Sequence[str]]) -> bool:
+    """Whether another line stood between two of a team."""
+    places = [[i for i, line in enumerate(order) if line in team] for order in old.values()]
+    return any(found and found[-1] - found[0] >= len(found) for found in places)
+
+
+def _as_before(team: tuple[str, ...], old: Mapping[str, Sequence[str]]) -> tuple[str, ...]:
+    """Give a team in the order, from either side, that it had where most of it was together."""
+    together = [tuple(line for line in old[key] if line in team) for key in sorted(old)]
+    most = max(together, key=len, default=())
+    known = most if most[:1] <= most[-1:] else most[::-1]
+    return (*known, *(line for line in team if line not in known))
+
+
+def _kept(draft: _Draft, old: Mapping[str, Sequence[str]]) -> dict[Pair, tuple[int, int]]:
+    """Count what changes places with each order of two teams."""
+    kept: dict[Pair, list[int]] = defaultdict(lambda: [0, 0])
+    for link_id in sorted(set(old) & set(draft.place)):
+        chain, forward = draft.place[link_id]
+        lines = old[link_id] if forward else old[link_id][::-1]
+        known = [draft.team_of[line_id] for line_id in lines if line_id in draft.team_of]
+        for one, other in itertools.combinations(known, 2):
+            if one != other:
+                kept[chain, min(one, other), max(one, other)][one < other] += 1
+    return {pair: (cost[0], cost[1]) for pair, cost in sorted(kept.items())}
+
+
+def _inner(
+    draft: _Draft, teams: tuple[tuple[str, ...], ...], old: Mapping[str, Sequence[str]]
+) -> dict[tuple[int, int], int]:
+    """Count how lines of one team stood along each chain."""
+    inner: Counter[tuple[int, int]] = Counter()
+    for link_id in sorted(set(old) & set(draft.place)):
+        chain, forward = draft.place[link_id]
+        lines = old[link_id] if forward else old[link_id][::-1]
+        known = [line_id for line_id in lines if line_id in draft.team_of]
+        for one, other in itertools.combinations(known, 2):
+            team = draft.team_of[one]
+            if team == draft.team_of[other]:
+                rank = teams[team].index
+                inner[chain, team] += 1 if rank(one) < rank(other) else -1
+    return dict(sorted(inner.items()))
 
 
 def _wanted(draft: _Draft, asked: Mapping[str, Sequence[str]]) -> dict[Pair, bool]:

@@ -157,6 +157,22 @@ def test_as_few_crossings_and_separations_as_brute_force(layout, brute_force):
     assert force.separations(found.orders) == fewest_apart
 
 
+@given(
+    layout=tree_networks(leaf_ends=False).filter(lambda k: _states(k) <= 1500),
+    number=st.integers(0, 1499),
+)
+@settings(max_examples=80, deadline=None)
+def test_an_order_that_stood_stays_unless_that_costs_a_crossing(layout, number, brute_force):
+    force = brute_force(layout)
+    every = list(force.all_orders())
+    link = max(layout.network.links, key=lambda k: len(k.lines))
+    before = order_lines(layout, {link.id: every[number % len(every)][link.id]})
+    found = order_lines(layout, previous=before.orders)
+    assert found.crossings == force.crossings(found.orders) == force.best()[0]
+    if force.crossings(before.orders) == force.best()[0]:
+        assert found.orders == before.orders
+
+
 @given(layout=tree_networks(leaf_ends=True).filter(lambda k: _states(k) <= 1500))
 @settings(max_examples=80, deadline=None)
 def test_pairwise_sum_is_the_optimum_for_distinct_leaf_ends(layout, brute_force):
