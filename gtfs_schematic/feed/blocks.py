@@ -23,6 +23,7 @@ from numpy.typing import NDArray
 
 from gtfs_schematic.errors import FeedError
 from gtfs_schematic.feed import kernels
+from gtfs_schematic.feed.interned import Interned
 from gtfs_schematic.feed.kernels import Bytes, Ints, Places
 from gtfs_schematic.feed.picker import Picker
 from gtfs_schematic.feed.tables import MOST_ROWS, Tables
@@ -31,6 +32,7 @@ _SIZE = 1 << 21
 _ROWS = 1 << 16
 _LONGEST = 1 << 26
 _LF = 10
+_NONE: Places = np.empty(0, dtype=np.int32)
 
 Masks = NDArray[Any]
 """One truth per row or per thing."""
@@ -55,6 +57,8 @@ class Block:
     """What kind of row each is; only the fields of regular ones are known."""
     first_row: int
     """Number of the first row; the header is row 1."""
+    numbers: Places
+    """Number of each row's first wanted field among the texts given; empty if none were."""
 
     @property
     def rows(self) -> Ints:
@@ -106,11 +110,22 @@ def whole_lines(stream: io.BufferedIOBase, name: str, size: int = _SIZE) -> Iter
 
 
 def read_in_blocks(
-    tables: Tables, name: str, columns: tuple[str, ...], bulk: Bulk, single: Single
+    tables: Tables,
+    name: str,
+    columns: tuple[str, ...],
+    bulk: Bulk,
+    single: Single,
+    *,
+    known: Interned | None = None,
 ) -> None:
     """Read a table, if the feed has it; a column that it lacks is empty.
 
     Within a block, `bulk` is called first, then `single` in order of row for what it left.
+
+    Parameters
+    ----------
+    known
+        Texts among which the first column's are looked up while the block before is used.
 
     Raises
     ------
@@ -127,7 +142,7 @@ def read_in_blocks(
         if header is None:
             rest, behind = _chained(first, 0, pieces), None
         else:
-            splitter = _Splitter(name, header, columns)
+            splitter = _Splitter(name, header, columns, known)
             picker = Picker(tables, name, header, columns)
             row = 2
             with closing(_ahead(splitter.blocks(first, len(line), pieces))) as coming:
@@ -156,8 +171,14 @@ def _ahead(items: Iterator[Block]) -> Generator[Block]:
 class _Splitter:
     """Splits the pieces of one table into blocks."""
 
-    def __init__(self, name: str, header: tuple[str, ...], columns: tuple[str, ...]) -> None:
-        self._name = name
+    def __init__(
+        self,
+        name: str,
+        header: tuple[str, ...],
+        columns: tuple[str, ...],
+        known: Interned | None,
+    ) -> None:
+        self._name, self._known = name, known
         numbers = [columns.index(c) if c in columns else -1 for c in header]
         self._columns = np.array(numbers, dtype=np.int64)
         # Taken in turns: one is filled while the other is used.
@@ -184,9 +205,11 @@ class _Splitter:
                 if row + count > MOST_ROWS:
                     fault = f"has more than {MOST_ROWS:,} rows, which no feed has."
                     raise FeedError(fault, file=self._name)
-                yield Block(
-                    piece, start, end, starts[:, :count], ends[:, :count], kinds[:count], row
-                )
+                starts, ends = starts[:, :count], ends[:, :count]
+                numbers = _NONE
+                if self._known is not None:
+                    numbers = self._known.find((piece, starts[0], ends[0]))
+                yield Block(piece, start, end, starts, ends, kinds[:count], row, numbers)
                 row += count
                 if end < len(piece) and count < _ROWS:
                     self.left = piece, end

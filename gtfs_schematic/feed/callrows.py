@@ -109,7 +109,7 @@ class CallReader:
 
     def bulk(self, block: Block) -> Masks:
         """Take what is regular; see `read_in_blocks`."""
-        trips = self._wanted.trips.find(block.column(0))
+        trips = block.numbers
         trip = self._today[trips]
         here = block.regular & (trip != NOT_TODAY)
         rest: Masks = (trips == UNKNOWN) & block.regular

@@ -21,7 +21,7 @@ def read_calls(tables: Tables, wanted: Wanted) -> Calls:
     order of its calls is unknown, if it has no time, or if fewer than two calls remain.
     """
     reader = CallReader(tables.notebook, wanted)
-    read_in_blocks(tables, FILE, COLUMNS, reader.bulk, reader.single)
+    read_in_blocks(tables, FILE, COLUMNS, reader.bulk, reader.single, known=wanted.trips)
     calls = reader.calls()
     ids = wanted.trip_id
     for trip in sorted(reader.broken):

@@ -68,7 +68,7 @@ def read_stops(tables: Tables) -> StopTable:
         own[ident] = Stop(
             ident,
             name if is_clean(name) else name_of(notes, at("stop_name", name)),
-            clean_name(code),
+            clean_name(code) if code else "",
             place[0] if place else None,
             place[1] if place else None,
             _KINDS[type_] if type_ in _KINDS else _kind(notes, at("location_type", type_)),
@@ -76,7 +76,7 @@ def read_stops(tables: Tables) -> StopTable:
             _BOARDING[boarding]
             if boarding in _BOARDING
             else _boarding(notes, at("wheelchair_boarding", boarding)),
-            platform_code=clean_name(platform),
+            platform_code=clean_name(platform) if platform else "",
         )
     chain = {
         ident: _chain(tables, own, rows, ident) if stop.parent_id else ()
@@ -157,15 +157,17 @@ def _boarding(notebook: Notebook, cell: Cell) -> Boarding:
 def _place(notebook: Notebook, row: int, lon: str, lat: str) -> tuple[float, float] | None:
     if not lon and not lat:
         return None
-    degrees = []
-    for field_name, text, limit in (("stop_lon", lon, 180.0), ("stop_lat", lat, 90.0)):
-        try:
-            degrees.append(parse_degrees(text, limit))
-        except ValueError:
-            fault = "coordinate is not a number of degrees within its range; it does not count"
-            Cell(_FILE, row, field_name, text).found(notebook, "error", fault)
-            return None
-    place = degrees[0], degrees[1]
+    try:
+        place = parse_degrees(lon, 180.0), parse_degrees(lat, 90.0)
+    except ValueError:
+        for name, text, limit in (("stop_lon", lon, 180.0), ("stop_lat", lat, 90.0)):
+            try:
+                parse_degrees(text, limit)
+            except ValueError:
+                fault = "coordinate is not a number of degrees within its range; it does not count"
+                Cell(_FILE, row, name, text).found(notebook, "error", fault)
+                break
+        return None
     if is_nowhere(*place):
         fault = "coordinates near 0, 0 or at a pole stand for none; they do not count"
         Cell(_FILE, row, "stop_lat", lat).found(notebook, "error", fault)
