@@ -2,8 +2,10 @@
 
 from __future__ import annotations
 
+import itertools
 from collections import defaultdict
 from collections.abc import Mapping, Sequence
+from collections.abc import Set as AbstractSet
 from dataclasses import dataclass
 
 from gtfs_schematic.errors import FeedError
@@ -17,6 +19,7 @@ from gtfs_schematic.network.describe import (
     described_lines,
     merge_findings,
 )
+from gtfs_schematic.network.junctions import junctions_of, named_junctions
 from gtfs_schematic.network.kinds import kinds_of
 from gtfs_schematic.network.likeness import sites_of
 from gtfs_schematic.network.lines import route_groups
@@ -26,7 +29,7 @@ from gtfs_schematic.network.links import (
     links_of,
     steps_of,
 )
-from gtfs_schematic.network.model import Link, Network, NetworkSettings, Station, Walk
+from gtfs_schematic.network.model import Junction, Link, Network, NetworkSettings, Station, Walk
 from gtfs_schematic.network.patterns import (
     Calling,
     Ids,
@@ -91,13 +94,14 @@ def build_network(
             file="stop_times.txt",
         )
     progress.phase("Joining stations by links")
-    expansion = _expand(timetable, sites, chosen, settings)
+    expansion, junctions = _expand(timetable, sites, chosen, settings)
     ways = _ways(chosen, expansion)
     links = links_of({line: [course for _, course in pairs] for line, pairs in ways.items()})
-    drawn = {station for link in links for station in (link.start, link.end)}
+    ends = {end for link in links for end in (link.start, link.end)}
+    drawn = ends - {junction.id for junction in junctions}
     footways, far_walks = footways_of(timetable, sites, settings)
-    walks = walks_between(footways, drawn, {frozenset((k.start, k.end)) for k in links})
-    stations = _stations(sites, links, walks, ways)
+    walks = walks_between(footways, drawn, _joined(ways, drawn))
+    stations = _stations(sites, drawn, links, walks, ways)
     known = Known(timetable, chosen.groups, sites.site_of)
     lines = described_lines(known, ways, _runs(chosen, expansion))
     undrawn = tuple(
@@ -118,7 +122,17 @@ def build_network(
         left_out=tuple(
             sorted({*timetable.left_out, *left_out}, key=lambda o: (o.kind, o.id, o.reason))
         ),
+        junctions=tuple(junction for junction in junctions if junction.id in ends),
     )
+
+
+def _joined(
+    ways: Mapping[str, Sequence[tuple[Ids, Ids]]], stations: AbstractSet[str]
+) -> set[frozenset[str]]:
+    """Stations between which some line runs without another."""
+    courses = (course for pairs in ways.values() for _, course in pairs)
+    called = ([node for node in course if node in stations] for course in courses)
+    return {frozenset(step) for course in called for step in itertools.pairwise(course)}
 
 
 def _sites(timetable: Timetable, settings: NetworkSettings) -> Sites:
@@ -164,14 +178,21 @@ def _choose(timetable: Timetable, sites: Sites, settings: NetworkSettings) -> _C
 
 def _expand(
     timetable: Timetable, sites: Sites, chosen: _Chosen, settings: NetworkSettings
-) -> Expansion:
+) -> tuple[Expansion, tuple[Junction, ...]]:
     at = {site_id: site.at for site_id, site in sites.sites.items()}
     tracks = _tracks(timetable, sites, chosen)
     way_of = {line_id: way_of_mode(group[0].mode) for line_id, group in chosen.groups.items()}
     sections = sections_by_pair(tracks)
     over = expresses(steps_of(tracks, sections, way_of), at, settings)
     courses = {pair: course for pair, (course, _) in sections.items()}
-    return Expansion(over | passed_alongside(tracks, courses, way_of, at, over, settings))
+    over |= passed_alongside(tracks, courses, way_of, at, over, settings)
+    if settings.corridors == "stations":
+        return Expansion(over), ()
+    found = junctions_of(tracks, Expansion(over), way_of, at, settings)
+    junctions = named_junctions(found.places, sites.ground, sites.sites)
+    names = {key: junction.id for key, junction in junctions.items()}
+    ways = {hop: tuple(names.get(node, node) for node in way) for hop, way in found.over.items()}
+    return Expansion(over | ways), tuple(sorted(junctions.values(), key=lambda j: j.id))
 
 
 def _tracks(timetable: Timetable, sites: Sites, chosen: _Chosen) -> tuple[Track, ...]:
@@ -212,11 +233,12 @@ def _runs(chosen: _Chosen, expansion: Expansion) -> dict[str, list[Run]]:
 
 def _stations(
     sites: Sites,
+    drawn: AbstractSet[str],
     links: Sequence[Link],
     walks: Sequence[Walk],
     ways: Mapping[str, Sequence[tuple[Ids, Ids]]],
 ) -> tuple[Station, ...]:
-    calls: dict[str, set[str]] = {s: set() for k in links for s in (k.start, k.end)}
+    calls: dict[str, set[str]] = {station: set() for station in drawn}
     for line_id, pairs in ways.items():
         for itinerary, _ in pairs:
             for station in itinerary:

@@ -23,19 +23,22 @@ def faults(network: Network) -> tuple[str, ...]:
 
     1. Ids are unique and sorted; every id that is named exists.
     2. Links join two different stations, once, in sorted order, and carry lines.
-    3. Every step of every course is a link that carries the line, and every line on a link has
+    3. Junctions are no stations, and at least three links meet there; nothing calls there or walks
+       there, and between two neighbouring stations all lines run over the same ones.
+    4. Every step of every course is a link that carries the line, and every line on a link has
        such a step; calls and courses agree.
-    4. Corridors hold every link exactly once, carry its lines, run only through stations of
+    5. Corridors hold every link exactly once, carry its lines, run only through stations of
        degree two without a walk, and could not be longer.
-    5. Groups are what the walks join, named by their least station.
-    6. Lines have colors, trips and times in order; the trips of their periods add up.
-    7. Links of part service carry the line; merges say why, and how surely.
+    6. Groups are what the walks join, named by their least station.
+    7. Lines have colors, trips and times in order; the trips of their periods add up.
+    8. Links of part service carry the line; merges say why, and how surely.
     """
     return (
         *_ids(network),
         *_stations(network),
         *_merges(network),
         *_links(network),
+        *_junctions(network),
         *(fault for line in network.lines for fault in _courses(network, line)),
         *_coverage(network),
         *_corridors(network),
@@ -50,6 +53,7 @@ def _ids(network: Network) -> Iterator[str]:
         ("links", network.links),
         ("walks", network.walks),
         ("lines", network.lines),
+        ("junctions", network.junctions),
         ("corridors", network.corridors),
     )
     for kind, things in kinds:
@@ -99,10 +103,11 @@ def _links(network: Network) -> Iterator[str]:
     for edge in edges:
         if not edge.start < edge.end:
             yield f"{edge.id}: start {edge.start} does not sort before end {edge.end}"
+        known = network.station.keys() | (network.junction.keys() if edge in network.links else ())
         yield from (
             f"{edge.id}: station {end} is missing"
             for end in (edge.start, edge.end)
-            if end not in network.station
+            if end not in known
         )
         pairs[frozenset((edge.start, edge.end))] += 1
     yield from (
@@ -118,6 +123,38 @@ def _links(network: Network) -> Iterator[str]:
             for line in link.lines
             if line not in network.line
         )
+
+
+def _junctions(network: Network) -> Iterator[str]:
+    degree = Counter(end for link in network.links for end in (link.start, link.end))
+    for junction in network.junctions:
+        where = f"junction {junction.id}"
+        if junction.id in network.station:
+            yield f"{where}: is the id of a station"
+        if not (-180.0 <= junction.lon <= 180.0 and -90.0 <= junction.lat <= 90.0):
+            yield f"{where}: {junction.lon}, {junction.lat} is no place on Earth"
+        if degree[junction.id] < 3:
+            yield f"{where}: only {degree[junction.id]} links meet"
+    ways: dict[frozenset[str], set[tuple[str, ...]]] = {}
+    for line in network.lines:
+        called = {station for itinerary in line.itineraries for station in itinerary}
+        yield from (
+            f"junction {j}: line {line.id} calls" for j in sorted(called & network.junction.keys())
+        )
+        for course in line.courses:
+            before: list[str] = []
+            for node in course:
+                before.append(node)
+                if node in network.station:
+                    way = tuple(before) if before[0] < node else tuple(reversed(before))
+                    ways.setdefault(frozenset((before[0], node)), set()).add(way)
+                    before = [node]
+    yield from (
+        f"lines run from {way[0]} to {way[-1]} over different junctions"
+        for some in ways.values()
+        if len(some) > 1
+        for way in sorted(some)[:1]
+    )
 
 
 def _courses(network: Network, line: Line) -> Iterator[str]:

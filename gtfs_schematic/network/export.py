@@ -19,14 +19,20 @@ _NO_CHAR = re.compile("[^\t\n\r\x20-\ud7ff\ue000-\ufffd\U00010000-\U0010ffff]")
 
 
 def to_geojson(network: Network) -> bytes:
-    """Give one FeatureCollection of links, walks and stations (RFC 7946).
+    """Give one FeatureCollection of links, walks, stations and junctions (RFC 7946).
 
     Coordinates are lon and lat in degrees (WGS 84). Every feature has the property `layer`:
-    "link", "walk" or "station"; features are sorted by layer, then id. Same network, same bytes.
+    "link", "walk", "station" or "junction"; features are sorted by layer, then id. Same network,
+    same bytes.
     """
     features = [
         feature
-        for layer in (links_layer(network), walks_layer(network), stations_layer(network))
+        for layer in (
+            links_layer(network),
+            walks_layer(network),
+            stations_layer(network),
+            junctions_layer(network),
+        )
         if len(layer)
         for feature in json.loads(layer.to_json(drop_id=True))["features"]
     ]
@@ -35,10 +41,11 @@ def to_geojson(network: Network) -> bytes:
 
 
 def to_graphml(network: Network) -> bytes:
-    """Give the network as a graph of stations, joined by links and walks (GraphML, 2002).
+    """Give the network as a graph (GraphML, 2002).
 
-    Nodes have lon and lat in degrees (WGS 84); every edge has the attribute `layer`: "link" or
-    "walk", and its length on the ground. Same network, same bytes.
+    Nodes are stations and junctions, with lon and lat in degrees (WGS 84); edges are links and
+    walks, with the attribute `layer`: "link" or "walk", and their length on the ground. Same
+    network, same bytes.
     """
     graph = nx.Graph()
     geod = Geod(ellps="WGS84")
@@ -53,10 +60,13 @@ def to_graphml(network: Network) -> bytes:
             lines=_names(network, station.lines),
             stop_ids=_xml(" ".join(station.stop_ids)),
         )
+    for junction in network.junctions:
+        graph.add_node(_xml(junction.id), lon=junction.lon, lat=junction.lat, kind="junction")
+    places = _places(network)
     edges: tuple[Link | Walk, ...] = (*network.links, *network.walks)
     for edge in edges:
-        ends = [network.station[edge.start], network.station[edge.end]]
-        length = geod.line_length([s.lon for s in ends], [s.lat for s in ends])
+        lons, lats = zip(places[edge.start], places[edge.end], strict=True)
+        length = geod.line_length(lons, lats)
         lines: tuple[str, ...] = edge.lines if isinstance(edge, Link) else ()
         graph.add_edge(
             _xml(edge.start),
@@ -101,7 +111,7 @@ def stations_layer(network: Network) -> gpd.GeoDataFrame:
 
 
 def links_layer(network: Network) -> gpd.GeoDataFrame:
-    """Give the links as straight lines from station to station, one row each."""
+    """Give the links as straight lines from end to end, one row each."""
     rows = [
         {
             "layer": "link",
@@ -113,7 +123,10 @@ def links_layer(network: Network) -> gpd.GeoDataFrame:
         }
         for link in network.links
     ]
-    return _frame(rows, [_between(network, link.start, link.end) for link in network.links])
+    places = _places(network)
+    return _frame(
+        rows, [shapely.LineString([places[k.start], places[k.end]]) for k in network.links]
+    )
 
 
 def walks_layer(network: Network) -> gpd.GeoDataFrame:
@@ -122,12 +135,22 @@ def walks_layer(network: Network) -> gpd.GeoDataFrame:
         {"layer": "walk", "id": walk.id, "from": walk.start, "to": walk.end}
         for walk in network.walks
     ]
-    return _frame(rows, [_between(network, walk.start, walk.end) for walk in network.walks])
+    places = _places(network)
+    return _frame(
+        rows, [shapely.LineString([places[w.start], places[w.end]]) for w in network.walks]
+    )
 
 
-def _between(network: Network, start: str, end: str) -> shapely.LineString:
-    ends = (network.station[start], network.station[end])
-    return shapely.LineString([(station.lon, station.lat) for station in ends])
+def junctions_layer(network: Network) -> gpd.GeoDataFrame:
+    """Give the junctions as points, one row each."""
+    rows = [{"layer": "junction", "id": junction.id} for junction in network.junctions]
+    return _frame(rows, [shapely.Point(j.lon, j.lat) for j in network.junctions])
+
+
+def _places(network: Network) -> dict[str, tuple[float, float]]:
+    """Give lon and lat of all ends of links and walks."""
+    places = {station.id: (station.lon, station.lat) for station in network.stations}
+    return places | {j.id: (j.lon, j.lat) for j in network.junctions}
 
 
 def _frame(rows: list[dict[str, str]], shapes: list[shapely.Geometry]) -> gpd.GeoDataFrame:

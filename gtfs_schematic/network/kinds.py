@@ -37,7 +37,7 @@ def kinds_of(
     walked
         Stations with a walk.
     ways
-        Per line its (itinerary, course) pairs.
+        Per line its (itinerary, course) pairs; junctions on courses are passed over.
     """
     around: dict[str, list[frozenset[str]]] = defaultdict(list)
     for link in links:
@@ -70,7 +70,8 @@ def _express_calls(
     """Stations beside a row of at least two that a line passes and others call at."""
     found: set[str] = set()
     for line, pairs in ways.items():
-        for _, course in pairs:
+        for _, nodes in pairs:
+            course = [node for node in nodes if node in calls]
             called = [i for i, station in enumerate(course) if line in calls[station]]
             for i, j in itertools.pairwise(called):
                 if j - i > _EXPRESS:

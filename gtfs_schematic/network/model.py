@@ -13,6 +13,7 @@ from gtfs_schematic.feed.model import Boarding, FeedInfo, Finding, LeftOut
 StationKind = Literal["stop", "interchange", "terminus"]
 ServicePattern = Literal["all-day", "peak", "night", "some-days"]
 LineGrouping = Literal["route", "color", "network"]
+Corridors = Literal["shapes", "stations"]
 Period = Literal["early", "morning peak", "midday", "afternoon peak", "evening", "night"]
 
 
@@ -41,6 +42,9 @@ class NetworkSettings(BaseModel):
     """Greatest angle between two courses on one way, either way round, degrees."""
     alongside_min_m: float = Field(default=300.0, ge=0.0)
     """Courses must stay together for this long to be one way, metres."""
+    corridors: Corridors = "stations"
+    """Whether buses and trams that run along one street share its links from where they join to
+    where they part ("shapes"), or from station to station only ("stations")."""
     group_lines: LineGrouping = "route"
     """What makes several routes one line: their name ("route"), or also their color (trunk lines),
     or the network that the feed puts them in."""
@@ -73,6 +77,16 @@ class Station:
 
 
 @dataclass(frozen=True, slots=True)
+class Junction:
+    """Where lines join or part between stations; lon and lat in degrees (WGS 84)."""
+
+    id: str
+    """Is no station's id."""
+    lon: float
+    lat: float
+
+
+@dataclass(frozen=True, slots=True)
 class PeriodService:
     """How often a line runs in one part of the day."""
 
@@ -100,7 +114,8 @@ class Line:
     itineraries: tuple[tuple[str, ...], ...]
     """Ids of the stations called at, in order; one direction only where the other is its mirror."""
     courses: tuple[tuple[str, ...], ...]
-    """As `itineraries`, index by index, with the stations that are passed without a call."""
+    """As `itineraries`, index by index, with the stations that are passed without a call, and
+    with junctions."""
     trips: int
     """Trips on the service date, both directions."""
     service: ServicePattern
@@ -121,7 +136,7 @@ class Line:
 
 @dataclass(frozen=True, slots=True)
 class Link:
-    """Two neighbouring stations joined by at least one line; `start` sorts before `end`."""
+    """Two neighbouring stations or junctions that a line joins; `start` sorts before `end`."""
 
     id: str
     start: str
@@ -144,8 +159,8 @@ class Walk:
 class Corridor:
     """A chain of links through stations of degree two that all carry the same lines.
 
-    `station_ids` holds both ends and everything between; ``link_ids[i]`` joins
-    ``station_ids[i]`` and ``station_ids[i + 1]``, so unfolding is exact.
+    `station_ids` holds both ends, which may be junctions, and everything between;
+    ``link_ids[i]`` joins ``station_ids[i]`` and ``station_ids[i + 1]``, so unfolding is exact.
     """
 
     id: str
@@ -167,11 +182,17 @@ class Network:
     corridors: tuple[Corridor, ...]
     findings: tuple[Finding, ...]
     left_out: tuple[LeftOut, ...]
+    junctions: tuple[Junction, ...] = ()
 
     @cached_property
     def station(self) -> dict[str, Station]:
         """Stations by id."""
         return {station.id: station for station in self.stations}
+
+    @cached_property
+    def junction(self) -> dict[str, Junction]:
+        """Junctions by id."""
+        return {junction.id: junction for junction in self.junctions}
 
     @cached_property
     def link(self) -> dict[str, Link]:
@@ -185,7 +206,7 @@ class Network:
 
     @cached_property
     def link_between(self) -> dict[frozenset[str], Link]:
-        """Links by the set of their two station ids."""
+        """Links by the set of their two ends."""
         return {frozenset((link.start, link.end)): link for link in self.links}
 
     @property
