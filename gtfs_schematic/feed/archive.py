@@ -81,6 +81,10 @@ def open_feed(path: Path) -> Iterator[FeedFiles]:
         return
     if not path.exists():
         raise FeedError(f"There is no file or folder {str(path)!r}. Check the path.")
+    if not path.is_file():
+        raise FeedError(
+            f"{str(path)!r} is neither a file nor a folder. Give a GTFS zip or a folder."
+        )
     try:
         archive = zipfile.ZipFile(path)
     except (zipfile.BadZipFile, OSError, NotImplementedError) as error:
@@ -99,12 +103,15 @@ def _buffered(archive: zipfile.ZipFile, member: zipfile.ZipInfo) -> io.BufferedR
 
 
 def _walk(root: Path) -> list[str]:
-    """List files below a folder, as paths with "/", without following links to folders."""
+    """List files below a folder, as paths with "/", without following links to folders.
+
+    What is no file to read, such as a pipe or a device, is left out: it might never end.
+    """
     found = []
     for folder, folders, files in os.walk(root):
         relative = Path(folder).relative_to(root)
         folders[:] = sorted(folders) if len(relative.parts) < _MAX_DEPTH else []
-        found += [(relative / file).as_posix() for file in files]
+        found += [(relative / file).as_posix() for file in files if Path(folder, file).is_file()]
     return sorted(found)
 
 
@@ -160,7 +167,7 @@ def _pick(
     if not candidates:
         zips = [name for name in found if name.lower().endswith(".zip")]
         hint = (
-            f"It holds other zips ({', '.join(zips[:5])}): unpack it and give one of those."
+            f"It holds other zips ({', '.join(zips[:5])}): give one of those by its own path."
             if zips
             else f"A feed has at least {', '.join(CORE_FILES)}."
         )

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import os
 import zipfile
 from collections.abc import Callable
 from pathlib import Path
@@ -149,3 +150,12 @@ def test_no_path_no_feed_and_zips_in_a_zip_are_told_apart(tmp_path, pack):
     zips = pack({"in/bus.zip": "x"})
     with pytest.raises(FeedError, match=r"other zips \(in/bus.zip\)"), open_feed(zips):
         pass
+
+
+def test_pipes_are_no_files_and_nobody_waits_for_them(town_files, tmp_path):
+    for name, text in town_files.items():
+        (tmp_path / name).write_text(text, "utf-8")
+    os.mkfifo(tmp_path / "levels.txt")
+    assert read_feed([tmp_path], FeedSettings()).patterns
+    with pytest.raises(FeedError, match="neither a file nor a folder"):
+        read_feed([tmp_path / "levels.txt"], FeedSettings())

@@ -119,3 +119,13 @@ def test_routes_without_trips_and_without_names_are_told(read_town, table):
 def test_operating_days_are_those_of_the_routes_services(read_town):
     days = read_town().operating_days
     assert days == {"t1": frozenset({0, 1, 2, 3, 4, 5}), "b7": frozenset({0, 1, 2, 3, 4})}
+
+
+def test_the_only_agency_stands_in_for_one_that_is_missing(read_town, table):
+    changes = {"routes.txt": table("routes.txt").replace("b7,oulm", "b7,olum")}
+    timetable = read_town(changes)
+    assert {route.agency_id for route in timetable.routes} == {"oulm"}
+    assert [(f.row, f.field, f.value) for f in timetable.findings] == [(3, "agency_id", "olum")]
+    two = table("agency.txt") + "lok,Locks Buses,https://lok.example,Europe/Zurich,en\n"
+    both = read_town({**changes, "agency.txt": two})
+    assert {route.id: route.agency_id for route in both.routes}["b7"] == "olum"

@@ -137,3 +137,32 @@ def test_a_tower_of_parents_is_refused_in_good_time(read_town, table):
     timetable = read_town({"stops.txt": table("stops.txt") + "\n".join(tower) + "\n"})
     assert {stop.id for stop in timetable.stops} == {stop.id for stop in read_town().stops}
     assert any("go up without end" in finding.message for finding in timetable.findings)
+
+
+@pytest.mark.parametrize(
+    ("kind", "parent", "told"),
+    [
+        ("1", "", "a station"),
+        ("2", "gate", "an entrance"),
+        ("3", "gate", "a generic node"),
+        ("4", "gate1", "a boarding area"),
+    ],
+)
+def test_calls_at_what_is_no_stop_are_found_and_count(read_town, table, kind, parent, told):
+    stops = table("stops.txt") + f"odd,Odd place,,47.0001,8.0001,{kind},{parent},\n"
+    times = table("stop_times.txt").replace("gate1", "odd")
+    timetable = read_town({"stops.txt": stops, "stop_times.txt": times})
+    assert "odd" in timetable.patterns[1].stop_ids
+    assert [(f.severity, f.row, f.value) for f in timetable.findings] == [("warning", 8, "odd")]
+    assert told in timetable.findings[0].message
+    (stop,) = (stop for stop in timetable.stops if stop.id == "odd")
+    assert stop.parent_id == ("gate" if parent else None)
+
+
+def test_a_stop_without_coordinates_is_found_once(read_town, table):
+    text = table("stops.txt").replace("47.010,8.000", ",")
+    timetable = read_town({"stops.txt": text})
+    assert [(f.severity, f.row, f.value) for f in timetable.findings] == [("error", 5, "tams")]
+    assert "tams" in {item.id for item in timetable.left_out if item.kind == "stop"}
+    bad = read_town({"stops.txt": table("stops.txt").replace("47.010,8.000", "north,east")})
+    assert [(f.row, f.field) for f in bad.findings] == [(5, "stop_lon")]

@@ -135,3 +135,32 @@ def test_a_systematic_fault_is_listed_a_few_times_and_counted(read_town, table):
     told = [f.message for f in timetable.findings if f.field == "stop_lat"]
     assert len(told) == 21
     assert any("so in 50 places" in message for message in told)
+
+
+def test_a_header_that_stands_again_is_no_row(read_town, table):
+    """As where files were put together."""
+    names = ("stops.txt", "stop_times.txt", "trips.txt", "calendar.txt", "shapes.txt")
+    changes = {name: table(name) + table(name).splitlines()[0] + "\n" for name in names}
+    timetable = read_town(changes)
+    assert timetable.patterns == read_town().patterns
+    assert timetable.left_out == read_town().left_out
+    rows = {name: len(text.splitlines()) for name, text in changes.items()}
+    # A shape is asked for by its id only, so that other rows of shapes.txt are not looked at.
+    assert {(f.file, f.row) for f in timetable.findings} == {
+        (name, row) for name, row in rows.items() if name != "shapes.txt"
+    }
+
+
+@pytest.mark.parametrize("name", ["stops.txt", "stop_times.txt"])
+def test_a_value_without_end_is_refused(read_town, table, name):
+    head, row, *rest = table(name).splitlines()
+    ragged = "\n".join([f"{head},note", f"{row},{'x' * 10_000_000}", *rest]) + "\n"
+    told = rf"{name}, row 2: holds a value of more than 131,072 characters"
+    with pytest.raises(FeedError, match=told):
+        read_town({name: ragged})
+
+
+def test_a_quote_that_never_ends_is_told_as_such(read_town, table):
+    text = table("stops.txt").replace("Vendrick", '"Vendrick')
+    with pytest.raises(FeedError, match=r"stops.txt, row 6: .*a quote opens here and never ends"):
+        read_town({"stops.txt": text})

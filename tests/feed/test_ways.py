@@ -136,3 +136,23 @@ def test_credits_are_those_of_the_feed_and_of_what_is_drawn(read_town):
     assert weekday.info.attributions == ("Bus Data", "Oulm Region", "Tram Data")
     saturday = read_town({"attributions.txt": rows}, date="2026-03-07")
     assert saturday.info.attributions == ("Oulm Region", "Tram Data")
+
+
+def test_a_language_that_the_feed_lacks_is_told_with_those_that_it_has(read_town):
+    (finding,) = read_town({"translations.txt": OLD}, language="it").findings
+    assert (finding.file, finding.value) == ("translations.txt", "it")
+    assert finding.message.endswith("; there is fr")
+    (none,) = read_town(language="it").findings
+    assert none.message.endswith("; there is no other")
+
+
+@pytest.mark.parametrize(
+    "row", ["stops,stop_name,,X,tams,", "stops,stop_name,fr,,tams,", ",,fr,X,,"]
+)
+def test_translations_that_say_nothing_are_found(read_town, row):
+    head = "table_name,field_name,language,translation,record_id,field_value\n"
+    good = "stops,stop_name,fr,Tamselle,tams,\n"
+    timetable = read_town({"translations.txt": f"{head}{good}{row}\n"}, language="fr")
+    assert second_names(timetable)["tams"] == "Tamselle"
+    expected = [] if row.startswith(",,") else [("translations.txt", 3)]
+    assert [(f.file, f.row) for f in timetable.findings] == expected
