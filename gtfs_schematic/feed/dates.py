@@ -9,6 +9,7 @@ from dataclasses import dataclass, replace
 
 from gtfs_schematic.errors import FeedError, UsageError
 from gtfs_schematic.feed.service import Validity
+from gtfs_schematic.feed.usual import usual_of
 
 DEFAULT = "typical-weekday"
 NAMED: Mapping[str, tuple[str, frozenset[int]]] = {
@@ -26,11 +27,6 @@ LATE = (EARLY[0] + _DAY, EARLY[1] + _DAY)
 are out, and the first of the morning are not (common practice, no source). Feeds put them before
 a date's morning, or after its evening, past 24:00."""
 EVER = (-(10**9), 10**9)
-_RARE = 0.25
-_VERY_RARE = 0.05
-_FEW, _MANY = 3, 10
-_NEARLY = 0.98
-_POOR = 0.5
 _WEEKDAYS = ("Monday", "Tuesday", "Wednesday", "Thursday", "Friday", "Saturday", "Sunday")
 _MONTHS = (
     *("January", "February", "March", "April", "May", "June", "July"),
@@ -82,14 +78,9 @@ def choose_dates(feeds: Sequence[Validity], wanted: str) -> Choice:
 
     Notes
     -----
-    Of several feeds only dates count on which most of them run. A typical Saturday is found so: the
-    number of trips is wanted that is as high as possible and yet usual, which it is if nearly
-    (98 %) as many or more run on a quarter of the Saturdays with at least half as many, on a
-    twentieth of all Saturdays (or ten), and on three (half of them, if there are fewer than six).
-    The earliest Saturday with that number is taken. So neither a holiday nor an event nor a period
-    of thin service is typical, but term time is. A typical weekday is found likewise among Mondays
-    to Fridays, where a quarter is more than one of five: late trips on Fridays alone are not
-    typical. Without any, the busiest date is taken. The shares are our own choice.
+    Of several feeds only dates count on which most of them run. What is typical among the
+    Saturdays, the Sundays, the nights, or the dates from Monday to Friday, `usual.usual_of` tells;
+    without any service from Monday to Friday, the busiest date is taken.
     """
     if wanted == "busiest":
         return _busiest(feeds, "")
@@ -164,40 +155,22 @@ def _typical(feeds: Sequence[Validity], wanted: str) -> Choice:
     if not totals:
         if wanted == DEFAULT:
             return _busiest(feeds, "There is no service from Monday to Friday. ")
-        nights = sorted({date for feed in feeds for date in feed.days})
+        first = min(date for feed in feeds for date in feed.days)
         raise FeedError(
             f"No trip runs on a {name.split()[-1]} {span}. The first date with service is "
-            f"{nights[0]}; give a date, or {DEFAULT}."
+            f"{first}; give a date, or {DEFAULT}."
         )
-    usual = _usual(list(totals.values()))
-    date = min(date for date, total in totals.items() if total == usual)
-    kind = "date from Monday to Friday" if wanted == DEFAULT else _WEEKDAYS[date.weekday()]
+    usual = usual_of(totals)
+    kind = "date from Monday to Friday" if wanted == DEFAULT else _WEEKDAYS[usual.date.weekday()]
     if len(totals) == 1:
-        return _one(
-            date,
-            f"{_spoken(date)} is the only {kind} with service {span}; it has {_trips(usual)}.",
-        )
-    kind = kind.replace("date", "dates") if wanted == DEFAULT else f"{kind}s"
-    alike = sum(_NEARLY * usual <= n <= usual / _NEARLY for n in totals.values())
-    told = "all" if alike == len(totals) else f"{alike:,}"
-    more = sum(n > usual / _NEARLY for n in totals.values())
-    apart = f"; {more} with more trips {'is' if more == 1 else 'are'} not typical" if more else ""
+        told = f"is the only {kind} with service {span}; it has {_trips(usual.trips)}."
+        return _one(usual.date, f"{_spoken(usual.date)} {told}")
+    kinds = "dates from Monday to Friday" if wanted == DEFAULT else f"{kind}s"
     return _one(
-        date,
-        f"{_spoken(date)} is the busiest {name}: it has {_trips(usual)}, and of the "
-        f"{len(totals):,} {kind} with service {span}, {told} have about as many{apart}.",
+        usual.date,
+        f"{_spoken(usual.date)} is the busiest {name}: it has {_trips(usual.trips)}, and of the "
+        f"{len(totals):,} {kinds} with service {span}, {usual.told}.",
     )
-
-
-def _usual(totals: Sequence[int]) -> int:
-    """Give the highest number of trips that is not rare; see `choose_dates`."""
-    few = min(_FEW, len(totals) / 2)
-    for total in sorted(set(totals), reverse=True):
-        alike = sum(other >= _NEARLY * total for other in totals)
-        similar = sum(other >= _POOR * total for other in totals)
-        if alike >= max(_RARE * similar, min(_VERY_RARE * len(totals), _MANY), few):
-            return total
-    return max(totals)
 
 
 def _busiest(feeds: Sequence[Validity], before: str) -> Choice:
@@ -233,17 +206,21 @@ def _night(feeds: Sequence[Validity]) -> Choice:
             f"No trip starts in the night, from 01:00 to before 04:00, from {start} to {end}. "
             f"Give a date, or {DEFAULT}."
         )
-    date = min(inside, key=lambda d: (-inside[d], d))
-    windows = [Window(date, *LATE)]
-    if date < dt.date.max:
-        windows.append(Window(date + dt.timedelta(days=1), *EARLY, shift=_DAY))
+    usual = usual_of(inside)
+    windows = [Window(usual.date, *LATE)]
+    if usual.date < dt.date.max:
+        windows.append(Window(usual.date + dt.timedelta(days=1), *EARLY, shift=_DAY))
+    hours = "from 01:00 to before 04:00"
+    starts = f"{_trips(usual.trips)} {'starts' if usual.trips == 1 else 'start'} {hours}"
+    among = f"of the {len(inside):,} nights with such trips from {start} to {end}, {usual.told}"
+    if len(inside) == 1:
+        among = f"no other night has any from {start} to {end}"
     return Choice(
-        date,
+        usual.date,
         (tuple(windows),),
-        f"in the night after {date}",
-        f"The night after {_spoken(date)} has the most trips that start from 01:00 to before "
-        f"04:00, {inside[date]:,}, of the {len(inside):,} nights with such trips from {start} to "
-        f"{end}.",
+        f"in the night after {usual.date}",
+        f"The night after {_spoken(usual.date)} is the busiest typical night: {starts}, and "
+        f"{among}.",
     )
 
 

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import datetime as dt
 from collections import Counter
+from dataclasses import replace
 
 import pytest
 from hypothesis import given
@@ -162,7 +163,8 @@ def test_the_night_joins_one_evening_and_the_next_morning(read_town, table):
     timetable = read_town(changes, date="night")
     # Monday's late trips (t1b at 25:00:30 and n3) with Tuesday's early one: more than any Saturday.
     assert timetable.info.service_date == "2026-03-02"
-    assert "The night after Monday 2 March 2026 has the most trips" in timetable.info.service_reason
+    told = "The night after Monday 2 March 2026 is the busiest typical night: "
+    assert told in timetable.info.service_reason
     assert sorted(t for p in timetable.patterns for t in p.departures_s) == [
         25 * 3600 + 30,
         25 * 3600 + 15 * 60,
@@ -170,6 +172,19 @@ def test_the_night_joins_one_evening_and_the_next_morning(read_town, table):
     ]
     reasons = {item.id: item.reason for item in timetable.left_out if item.kind == "route"}
     assert reasons == {"b7": "does not run in the night after 2026-03-02"}
+
+
+def test_an_event_is_no_typical_night_but_weekends_are():
+    """Some night service every night, more on Fridays and Saturdays, most of all once."""
+    counts = [10, 10, 10, 10, 15, 15, 10] * 6
+    counts[30] = 40
+    plain = validity([100] * len(counts))
+    late = {date.isoformat(): n for date, n in zip(sorted(plain.days), counts, strict=True)}
+    choice = choose_dates([replace(plain, late=late)], "night")
+    assert choice.date == dt.date(2026, 3, 6)
+    assert "15 trips start from 01:00 to before 04:00" in choice.reason
+    assert "of the 42 nights" in choice.reason
+    assert choice.reason.endswith("12 have about as many; 1 with more trips is not typical.")
 
 
 def test_headway_trips_run_at_night_only_for_its_hours(read_town, table):
