@@ -16,6 +16,7 @@ if TYPE_CHECKING:
 
 _MANY_LINES = 30
 _FEW_TRIPS = 5
+_LISTED = 5
 _STEPS = (5, 10, 20, 30, 40, 60, 80, 100, 150, 200)
 """More lines than a key can hold, and the numbers of trips to try instead; our own choice."""
 
@@ -59,7 +60,12 @@ def suggestions(network: Network) -> list[str]:
             f"{_FEW_TRIPS}, or --without-route for school runs and the like."
         )
     if len(network.agencies) > 1 and len(network.lines) > _MANY_LINES:
-        told.append(f"{count(len(network.agencies), 'agency')}: consider --agency.")
+        few = ", ".join(network.agencies[:_LISTED])
+        more = ", …" if len(network.agencies) > _LISTED else ""
+        told.append(
+            f"{count(len(network.agencies), 'agency')}: consider --agency to keep only some of "
+            f"{few}{more}."
+        )
     if len(network.findings) and any(item.severity == "error" for item in network.findings):
         told.append("Errors in the feed may hide lines or stops: tell its publisher.")
     return told

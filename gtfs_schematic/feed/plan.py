@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import datetime as dt
 from collections.abc import Mapping
 from dataclasses import dataclass, replace
 
@@ -29,6 +30,9 @@ from gtfs_schematic.feed.routes import read_agencies, read_routes
 from gtfs_schematic.feed.service import Validity, validity_of
 from gtfs_schematic.feed.tables import REQUIRED_COLUMNS, Tables
 from gtfs_schematic.feed.trips import Trips, read_trips
+
+_GAP = dt.timedelta(days=13)
+"""As long as service may pause without being missed: two weeks of holidays."""
 
 
 @dataclass(frozen=True)
@@ -108,7 +112,7 @@ def plan_feed(draft: Draft, routes: Mapping[str, Route], settings: FeedSettings)
     if not counts:
         raise FeedError(f"{draft.label} has no trip on any of the routes asked for.")
     validity = validity_of(draft.label, calendars, imprint, counts)
-    _find_empty_validity(tables.notebook, validity, imprint)
+    _find_odd_validity(tables.notebook, validity, imprint)
     firsts = None
     if settings.date == "night":
         firsts = first_departures(tables, trips)
@@ -153,7 +157,7 @@ def _find_odd_files(tables: Tables) -> None:
             notes.find("info", name, "the file is not UTF-8 text; it is not used")
 
 
-def _find_empty_validity(notes: Notebook, validity: Validity, imprint: Imprint) -> None:
+def _find_odd_validity(notes: Notebook, validity: Validity, imprint: Imprint) -> None:
     if (imprint.start or validity.start, imprint.end or validity.end) != (
         validity.start,
         validity.end,
@@ -164,3 +168,8 @@ def _find_empty_validity(notes: Notebook, validity: Validity, imprint: Imprint) 
             "no service between feed_start_date and feed_end_date; the calendars' dates count",
             value=f"{imprint.start or ''} to {imprint.end or ''}",
         )
+        return
+    last = max(validity.days)
+    if validity.end - last > _GAP:
+        fault = "the last date with service is long before feed_end_date; ask for a newer feed"
+        notes.find("warning", "feed_info.txt", fault, field="feed_end_date", value=f"{last}")

@@ -52,6 +52,6 @@ def test_agencies_and_errors_are_pointed_at():
     told = suggestions(network([("bus", 500)] * 40, ("Oulm", "Locks"), findings))
     assert told[0] == "40 bus lines: consider --route to keep only some."
     assert told[1:] == [
-        "2 agencies: consider --agency.",
+        "2 agencies: consider --agency to keep only some of Oulm, Locks.",
         "Errors in the feed may hide lines or stops: tell its publisher.",
     ]

@@ -140,6 +140,17 @@ def test_the_range_of_feed_info_bounds_the_choice(read_town):
     assert [(f.severity, f.file) for f in outside.findings] == [("warning", "feed_info.txt")]
 
 
+@pytest.mark.parametrize(("end", "rows"), [("20260410", 0), ("20260630", 1)])
+def test_a_feed_that_outlives_its_service_is_told(read_town, end, rows):
+    """The last Saturday is 28 March."""
+    head = "feed_publisher_name,feed_publisher_url,feed_lang,feed_start_date,feed_end_date"
+    text = f"{head}\nO,https://o.example,en,20260301,{end}\n"
+    found = read_town({"feed_info.txt": text}).findings
+    assert [(f.file, f.field, f.value) for f in found] == [
+        ("feed_info.txt", "feed_end_date", "2026-03-28")
+    ] * rows
+
+
 def test_bad_calendar_rows_are_found_and_the_others_count(read_town, table):
     text = table("calendar.txt") + (
         "sa,yes,0,0,0,0,1,0,20260302,20260329\n"
