@@ -40,7 +40,7 @@ def neighbors_of(bundled: BundledLayout, sites: Sequence[Site]) -> tuple[Neighbo
     found = []
     for link in sorted(bundled.layout.network.links, key=lambda link: link.id):
         path = [point for point, _ in itertools.groupby(bundled.layout.paths[link.id])]
-        if len(path) < 2:
+        if len(path) < 2 or not {link.start, link.end} <= index.keys():
             continue
         first, second = index[link.start], index[link.end]
         through = all(sites[i].run != "node" for i in (first, second))

@@ -64,7 +64,7 @@ def obstacles_of(bundled: BundledLayout, settings: LabelSettings) -> Obstacles:
         for _, path in sorted(bundled.layout.walk_paths.items())
         if len(set(path)) > 1
     ]
-    stations = tuple(sorted(bundled.layout.positions))
+    stations = tuple(sorted(bundled.layout.network.station))
     markers = [marker_outline(bundled, settings, station_id) for station_id in stations]
     radii = [marker_radius(bundled, settings, station_id) for station_id in stations]
     hulls = [shapely.MultiPoint(span_points(bundled, key)).convex_hull for key in stations]

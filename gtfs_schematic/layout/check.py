@@ -81,7 +81,7 @@ def _edges(layout: Layout) -> tuple[Edge, ...]:
 
 def _ground(layout: Layout) -> dict[str, Point]:
     """Metres east and north of the first station, by forward geodesics (a second projection)."""
-    stations = layout.network.stations
+    stations = layout.network.nodes
     geod = Geod(ellps="WGS84")
     count = len(stations)
     lon = float(np.mean([station.lon for station in stations]))
@@ -101,6 +101,11 @@ def _missing(layout: Layout) -> list[str]:
         f"Station {station.id} ({station.name}) is not placed."
         for station in network.stations
         if station.id not in layout.positions
+    ]
+    found += [
+        f"Junction {junction.id} is not placed."
+        for junction in network.junctions
+        if junction.id not in layout.positions
     ]
     paths = {**layout.paths, **layout.walk_paths}
     edges: list[Link | Walk] = [*network.links, *network.walks]

@@ -78,7 +78,8 @@ def wrong_order(
                 for p, q in ((a, b), (b, c), (a, c))
             )
             if clear and _turn(a[0], b[0], c[0]) != _turn(a[1], b[1], c[1]):
-                name = layout.network.station[station].name
+                known = layout.network.station.get(station)
+                name = "a junction" if known is None else known.name
                 found.append(f"The order of links round {station} ({name}) is not the ground's.")
                 break
     return found

@@ -43,10 +43,10 @@ class Draft:
         for edge in self.edges.values():
             self.around[edge.start].append(edge)
             self.around[edge.end].append(edge)
-        stations = self.network.stations
-        metres = project([(station.lon, station.lat) for station in stations])
+        nodes = self.network.nodes
+        metres = project([(node.lon, node.lat) for node in nodes])
         self.ground = {
-            s.id: (float(x), float(y)) for s, (x, y) in zip(stations, metres, strict=True)
+            node.id: (float(x), float(y)) for node, (x, y) in zip(nodes, metres, strict=True)
         }
 
     def copy(self) -> Draft:
@@ -224,7 +224,7 @@ class Draft:
         return Layout(
             self.network,
             self.frame,
-            {s.id: self.at[s.id] for s in self.network.stations},
+            {node.id: self.at[node.id] for node in self.network.nodes},
             {k.id: self.path[k.id] for k in self.network.links},
             {w.id: self.path[w.id] for w in self.network.walks},
             tuple(sorted(crossings, key=lambda c: (c.first, c.second, c.at_mm))),

@@ -180,12 +180,12 @@ def link_wishes(network: Network, requests: tuple[RoomRequest, ...]) -> dict[str
 
 
 def _between_ends(graph: PlaneGraph, clearances: Clearances) -> NDArray[np.float64]:
-    """Least length of each piece for what stands at its ends: a marker, or a bundle it crosses."""
+    """Least length of each piece for what stands at its ends: a marker, or another bundle."""
     pitch = clearances.line_width_mm + clearances.line_gap_mm
     ends = np.zeros(len(graph.pieces))
     for p, piece in enumerate(graph.pieces):
         for i, v in enumerate(piece.ends):
-            if graph.station_of[v] is not None:
+            if graph.station_of[v] is not None and graph.station_of[v] not in graph.junctions:
                 ends[p] += clearances.marker_mm / 2.0
             else:
                 crossed = max(

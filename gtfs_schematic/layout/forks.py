@@ -274,6 +274,7 @@ class _Growth:
             rotation=tuple(tuple(self.rotation[v]) for v in vertices),
             through=tuple(through),
             forks=tuple(sorted(int(new[v]) for v in self.stems)),
+            junctions=self.graph.junctions,
         )
         return graph, np.array(self.places)[order]
 

@@ -25,7 +25,7 @@ class Standing:
 def keep(draft: Draft, standing: Standing) -> None:
     """Take over places and paths; join the paths of closed stations, divide for opened."""
     positions = standing.positions
-    draft.at = {s.id: positions[s.id] for s in draft.network.stations if s.id in positions}
+    draft.at = {n.id: positions[n.id] for n in draft.network.nodes if n.id in positions}
     old = ways_of(positions, standing.paths)
     gone = set(old) - set(draft.at)
     for edge in draft.edges.values():

@@ -94,7 +94,7 @@ class Layout:
     network: Network
     sheet: SheetFrame
     positions: Mapping[str, Point]
-    """Per station id its place."""
+    """Per station and junction id its place."""
     paths: Mapping[str, tuple[Point, ...]]
     """Per link id the centre line from `start` to `end`, every bend as a sharp corner.
 

@@ -18,19 +18,21 @@ _TOGETHER_M = 2.0
 _ASIDE_M = 6.0
 _LEAST_SHARE = 0.5
 """Share of a spacing that each part of a crossed link gets: crossings need room, too."""
+_JUNCTION_SHARE = 0.6
+"""Share of a spacing that a link gets at a junction: no marker and no name stands there."""
 
 
 def planarise(network: Network, keep: Collection[str] = ()) -> PlaneGraph:
     """Draw the network with straight links on the ground and put vertices where they cross.
 
-    Vertices are the stations at which corridors or walks end, and the crossings. A corridor
+    Vertices are the stations and junctions at which corridors or walks end, and the crossings. A corridor
     that would join two vertices a second time, or a vertex to itself, keeps stations as
     vertices until the graph is simple where it can be; so do the stations to `keep`.
     """
-    ids = [station.id for station in network.stations]
-    index = {station_id: i for i, station_id in enumerate(ids)}
+    ids = [node.id for node in network.nodes]
+    index = {node_id: i for i, node_id in enumerate(ids)}
     points = _general_position(
-        project([(station.lon, station.lat) for station in network.stations]),
+        project([(node.lon, node.lat) for node in network.nodes]),
         np.array([(index[k.start], index[k.end]) for k in network.links], dtype=np.int64),
     )
     chains = _chains(network)
@@ -154,6 +156,8 @@ def _split_chains(
             forward = starts[owner] == chain.station_ids[i]
             stops = cuts.get(owner, [])
             share = max(1.0 / (len(stops) + 1), _LEAST_SHARE) if stops else 1.0
+            if not network.junction.keys().isdisjoint(chain.station_ids[i : i + 2]):
+                share *= _JUNCTION_SHARE
             for _, node in stops if forward else reversed(stops):
                 close([*nodes, node], [*parts, Part(owner, share, forward)], stations)
                 nodes, parts, stations = [node], [], []
@@ -200,6 +204,7 @@ def _assemble(
         pieces=pieces,
         rotation=rotation,
         through=_through(network, pieces, station_of),
+        junctions=frozenset(network.junction),
     )
 
 

@@ -67,6 +67,8 @@ class PlaneGraph:
     """Per pair of piece ends that lines pass through: vertex, end, end, count of lines."""
     forks: tuple[int, ...] = ()
     """Vertices at which pieces part that left a station together."""
+    junctions: frozenset[str] = frozenset()
+    """Ids among `station_of` that are no stations, but junctions of the network."""
 
     @property
     def n_vertices(self) -> int:

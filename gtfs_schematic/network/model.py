@@ -189,6 +189,11 @@ class Network:
         """Stations by id."""
         return {station.id: station for station in self.stations}
 
+    @property
+    def nodes(self) -> tuple[Station | Junction, ...]:
+        """What links join: stations, then junctions."""
+        return (*self.stations, *self.junctions)
+
     @cached_property
     def junction(self) -> dict[str, Junction]:
         """Junctions by id."""
