@@ -67,7 +67,9 @@ def give_way(draft: Draft, free: Free) -> Draft | None:
     figure = programme.figure
     still = np.abs(points - figure.skeleton.points).max(axis=1) < _STILL_MM
     points[still] = figure.skeleton.points[still]
-    for fixed in (still | ~programme.free, ~programme.free):
+    pinned = np.zeros(len(points), dtype=bool)
+    pinned[: len(figure.stations)] = [s in free.pins for s in figure.stations]
+    for fixed in (still | pinned | ~programme.free, pinned | ~programme.free):
         try:
             units = snap(figure.skeleton, points, frozenset(np.flatnonzero(fixed).tolist()))
         except InternalFaultError:
