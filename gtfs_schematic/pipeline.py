@@ -327,11 +327,15 @@ def labelled_from(
     progress: Progress,
 ) -> LabelledLayout:
     """Bundle and label a layout that stands, names on the sides that they had; None: lay it out."""
+    wanted = settings.layout
+    if layout is not None and layout_check.drifted_too_far(layout, wanted):
+        progress.note("stations would drift beyond their limits; laying out anew")
+        layout = None
     if layout is None:
         frames = candidate_frames(network, settings.sheet, settings.drawing)
         return _labelled(network, settings, frames, progress)
     clearances = clearances_of(network, settings.bundles, settings.labels)
-    must_be_sound("layout", layout_check.faults(layout, clearances, settings.layout.pins))
+    must_be_sound("layout", layout_check.faults(layout, clearances, wanted.pins, wanted))
     bundled = bundle(layout, settings.bundles, progress=progress)
     must_be_sound("bundles", bundles_check.faults(bundled))
     kept = {key: side for key, side in sides.items() if key in network.station}
@@ -360,7 +364,8 @@ def _labelled_on_sheet(
     tries: list[LabelledLayout] = []
     for _ in range(1 + ROUNDS):
         layout = fit_sheet(placement, clearances, frames, requests=requests, progress=progress)
-        must_be_sound("layout", layout_check.faults(layout, clearances, settings.layout.pins))
+        wanted = settings.layout
+        must_be_sound("layout", layout_check.faults(layout, clearances, wanted.pins, wanted))
 
         bundled = bundle(layout, settings.bundles, progress=progress)
         must_be_sound("bundles", bundles_check.faults(bundled))

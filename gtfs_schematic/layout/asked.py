@@ -32,7 +32,7 @@ def kept_stations(network: Network, settings: LayoutSettings) -> frozenset[str]:
     Raises
     ------
     LayoutError
-        If a pin names a station that the network does not have.
+        If a pin or a drift limit names a station that the network does not have.
     """
     pinned = {*settings.pins, *settings.pins_from}
     pinned |= {other for other, _, _ in settings.pins_from.values()}
@@ -41,6 +41,12 @@ def kept_stations(network: Network, settings: LayoutSettings) -> frozenset[str]:
         raise LayoutError(
             f"Pinned stations that the network does not have: {', '.join(strangers)}. Station ids "
             "are those of edition.json."
+        )
+    unknown = sorted(set(settings.drift_limits_m) - set(network.station))
+    if unknown:
+        raise LayoutError(
+            f"Drift limits for stations that the network does not have: {', '.join(unknown)}. "
+            "Station ids are those of edition.json."
         )
     links = [network.link[key] for key in settings.directions if key in network.link]
     ends = {end for link in links for end in (link.start, link.end)}

@@ -4,7 +4,7 @@
 2. Every segment runs at an exact multiple of 45 degrees.
 3. Links and walks cross where they cross on the ground, and nowhere else.
 4. The cyclic order of links round every station is that of the ground.
-5. Clearances and pins are kept, and everything lies on the sheet.
+5. Clearances, pins and limits on the drift are kept, and everything lies on the sheet.
 
 Only at a station with more links and walks than there are directions, and only as far as they part,
 may two of them leave together.
@@ -33,7 +33,7 @@ from gtfs_schematic.layout.check_stations import (
     shares_needlessly,
     wrong_order,
 )
-from gtfs_schematic.layout.model import Clearances, Layout
+from gtfs_schematic.layout.model import Clearances, Layout, LayoutSettings
 from gtfs_schematic.network.model import Link, Walk
 
 _DIRECTIONS = 8
@@ -44,7 +44,10 @@ _TOLERANCE_MM = 0.15
 
 
 def faults(
-    layout: Layout, clearances: Clearances, pins: Mapping[str, Point] | None = None
+    layout: Layout,
+    clearances: Clearances,
+    pins: Mapping[str, Point] | None = None,
+    settings: LayoutSettings | None = None,
 ) -> tuple[str, ...]:
     """Name everything in which a layout breaks its guarantees; empty if all are kept.
 
@@ -56,6 +59,8 @@ def faults(
         Widths and distances that were asked for, millimetres.
     pins
         Places that stations must keep, millimetres.
+    settings
+        What else was asked for: limits on the drift.
     """
     found = list(_missing(layout))
     if found:
@@ -69,7 +74,35 @@ def faults(
     found += _too_close(layout, edges, clearances)
     found += _off_sheet(layout, edges)
     found += _off_pin(layout, pins or {})
+    found += drifted_too_far(layout, settings or LayoutSettings())
     return tuple(found)
+
+
+def drifted_too_far(layout: Layout, settings: LayoutSettings) -> list[str]:
+    """Name stations that are drawn further from their true places than their limits allow.
+
+    Where a true place is on the sheet tells the least-squares fit of scale and shift to all
+    stations, solved by numpy.
+    """
+    ids = [station.id for station in layout.network.stations]
+    limits = [settings.drift_limits_m.get(key, settings.drift_limit_m) for key in ids]
+    if not any(limits) and not settings.drift_limit_mm:
+        return []
+    ground = _ground(layout)
+    east_north = np.array([ground[key] for key in ids])
+    drawn = np.array([layout.positions[key] for key in ids]) * [1.0, -1.0]
+    # Unknown: millimetres to the metre, and where the first station's meridian and parallel meet.
+    rows = np.zeros((2 * len(ids), 3))
+    rows[:, 0] = east_north.ravel()
+    rows[0::2, 1] = rows[1::2, 2] = 1.0
+    (scale, *middle), *_ = np.linalg.lstsq(rows, drawn.ravel(), rcond=None)
+    away = np.hypot(*(drawn - middle - max(scale, 0.0) * east_north).T)
+    return [
+        f"Station {key} is drawn {mm:.2f} mm from its true place, further than its limit."
+        for key, metres, mm in zip(ids, limits, away.tolist(), strict=True)
+        if (metres and mm > metres * scale + _TOLERANCE_MM)
+        or (settings.drift_limit_mm and mm > settings.drift_limit_mm + _TOLERANCE_MM)
+    ]
 
 
 def _edges(layout: Layout) -> tuple[Edge, ...]:

@@ -20,6 +20,7 @@ from gtfs_schematic.errors import LayoutError
 from gtfs_schematic.layout.anchors import anchor_points
 from gtfs_schematic.layout.asked import ask, kept_stations, relative_pins
 from gtfs_schematic.layout.board import Board
+from gtfs_schematic.layout.drift_limits import anchor_price, anchors_keep, are_limited
 from gtfs_schematic.layout.embed import embed
 from gtfs_schematic.layout.fit import (
     Sizes,
@@ -41,8 +42,14 @@ from gtfs_schematic.layout.model import (
 from gtfs_schematic.layout.objective import Weights
 from gtfs_schematic.layout.planarise import planarise
 from gtfs_schematic.layout.plane import PlaneGraph
+from gtfs_schematic.layout.refine import at_stations
 from gtfs_schematic.layout.restore import restore
-from gtfs_schematic.layout.settle import NoRoomError, PinsCollideError, settle
+from gtfs_schematic.layout.settle import (
+    DriftLimitsCollideError,
+    NoRoomError,
+    PinsCollideError,
+    settle,
+)
 from gtfs_schematic.layout.skeleton import Skeleton, build, skeleton_of
 from gtfs_schematic.layout.snap import UNITS_PER_MM, snap
 from gtfs_schematic.network.model import Network
@@ -60,6 +67,9 @@ _LOOSEST = 3.0
 _MAGNIFIED = 1.25
 """How much a settled drawing may be enlarged as it is, whatever the spacing then becomes."""
 _NO_LENGTH_MM = 0.02
+_ANCHORS_SHARE = 0.8
+_MORE_FIDELITY = 0.15
+"""Limits on the drift raise the fidelity in such steps until anchors keep this share of them."""
 _FILLINGS = 4
 _FULL = 1.06
 """How often the scale is raised to fill the sheet, and when it is full: sheet over drawing."""
@@ -115,10 +125,30 @@ def place(
         raise LayoutError("The network has no links: there is nothing to draw.")
     progress.phase("placing on the ground")
     graph = planarise(network, kept_stations(network, settings))
-    graph, anchors = fork(graph, anchor_points(graph, settings.fidelity), _PORTS)
+    settings, anchors = _anchors(graph, settings, progress)
+    graph, anchors = fork(graph, anchors, _PORTS)
     board = _board(graph, anchors, settings, progress)
     improve(board, _SWEEPS[settings.effort], progress)
-    return Placement(network, settings, board.anchors[: graph.n_vertices], skeleton_of(board))
+    skeleton = skeleton_of(board)
+    if are_limited(settings):
+        # A limit needs a station that the programme of lengths can hold.
+        skeleton = at_stations(skeleton)
+    anchors = board.anchors[: skeleton.graph.n_vertices]
+    return Placement(network, settings, anchors, skeleton)
+
+
+def _anchors(
+    graph: PlaneGraph, settings: LayoutSettings, progress: Progress
+) -> tuple[LayoutSettings, NDArray[np.float64]]:
+    """Give anchors, at a fidelity that is raised as far as limits on the drift ask."""
+    anchors = anchor_points(graph, settings.fidelity)
+    wanted = settings.fidelity
+    while wanted < 1.0 and not anchors_keep(graph, anchors, settings, _ANCHORS_SHARE):
+        wanted = min(1.0, round(wanted + _MORE_FIDELITY, 6))
+        anchors = anchor_points(graph, wanted)
+    if wanted > settings.fidelity:
+        progress.note(f"for the drift limits the fidelity is {wanted:g} here")
+    return settings.model_copy(update={"fidelity": wanted}), anchors
 
 
 def fit_sheet(
@@ -177,8 +207,9 @@ def _board(
     """Lay the graph on the coarsest lattice that holds it."""
     progress.phase("laying lines", len(_UNITS))
     stuck = 0
+    weights = Weights(anchor=anchor_price(graph, settings, Weights().anchor))
     for unit in _UNITS:
-        board = Board(graph, anchors, Weights(), unit)
+        board = Board(graph, anchors, weights, unit)
         ask(board, settings)
         failed = embed(board)
         progress.step()
@@ -202,7 +233,7 @@ def _first_that_holds(
     for each in tries[:-1]:
         try:
             return each, _on_sheet(skeleton, each, frames)
-        except (NoRoomError, PinsCollideError) as error:
+        except (NoRoomError, PinsCollideError, DriftLimitsCollideError) as error:
             # What is in the way may be a wish; pins that collide without one are an error.
             if isinstance(error, PinsCollideError) and not each.relative:
                 raise
@@ -240,7 +271,7 @@ def _on_sheet(
             break
         scale = min(scale * 0.98 * grow, _LOOSEST * spacing)
         skeleton, points, pairs = _settled(skeleton, sizes, scale, box, pairs)
-    if not sizes.pinned:
+    if not sizes.pinned and not sizes.settings.drift_limit_mm:
         points = points * _magnified(points, box, _LOOSEST * spacing / scale)
     return skeleton, points, frame
 

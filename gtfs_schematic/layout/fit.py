@@ -12,6 +12,7 @@ from numpy.typing import NDArray
 from gtfs_schematic.errors import LayoutError
 from gtfs_schematic.geometry import Point
 from gtfs_schematic.layout.asked import Relative
+from gtfs_schematic.layout.drift_limits import limits_of
 from gtfs_schematic.layout.model import Clearances, LayoutSettings, RoomRequest, SheetFrame
 from gtfs_schematic.layout.plane import Part, Piece, PlaneGraph
 from gtfs_schematic.layout.settle import Wants
@@ -101,6 +102,7 @@ def wants_of(
         room=np.zeros((len(owner), 8)) if tight else _label_room(skeleton, clearances),
         pinned=sizes.pinned,
         relative=sizes.relative,
+        limits=limits_of(graph, sizes.settings),
         jogs=np.where(jog, 3.0 * lines, 0.0),
         spread=2.0 if tight else 0.0,
     )

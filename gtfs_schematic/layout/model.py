@@ -6,7 +6,7 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 from typing import Literal
 
-from pydantic import BaseModel, ConfigDict, Field
+from pydantic import BaseModel, ConfigDict, Field, NonNegativeFloat
 
 from gtfs_schematic.geometry import Point
 from gtfs_schematic.network.model import Network
@@ -33,6 +33,13 @@ class LayoutSettings(BaseModel):
     """Per link id where it is to lead from its start, N up the sheet; a strong wish."""
     straights: Mapping[str, tuple[str, ...]] = Field(default_factory=dict)
     """Per station id the lines that are to pass it straight; a strong wish."""
+    drift_limit_m: float = Field(default=0.0, ge=0.0)
+    """How far any station may be drawn from its true place, by the best fit with north up, in
+    metres on the ground; 0 for no limit."""
+    drift_limit_mm: float = Field(default=0.0, ge=0.0)
+    """The same in millimetres on the sheet; both hold if both are set."""
+    drift_limits_m: Mapping[str, NonNegativeFloat] = Field(default_factory=dict)
+    """Per station id the limit in metres that it has instead; 0 for none."""
 
 
 @dataclass(frozen=True, slots=True)

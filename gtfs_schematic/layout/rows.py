@@ -34,6 +34,16 @@ class Rows:
         self.right.append(np.broadcast_to(np.asarray(right, dtype=np.float64), size))
         self.count += size
 
+    def add_one(
+        self, columns: NDArray[np.int64], values: NDArray[np.float64], right: float = 0.0
+    ) -> None:
+        """Add one row: Σ value · x[column] ≤ or = right."""
+        self.rows.append(np.full(len(columns), self.count))
+        self.columns.append(np.asarray(columns, dtype=np.int64))
+        self.values.append(np.asarray(values, dtype=np.float64))
+        self.right.append(np.array([right]))
+        self.count += 1
+
     def matrix(self, width: int) -> tuple[sp.csc_matrix, NDArray[np.float64]]:
         """Give the matrix and the right-hand side."""
         if not self.count:

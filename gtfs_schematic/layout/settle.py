@@ -8,7 +8,6 @@ but fixed by the drawing at hand.
 
 from __future__ import annotations
 
-import itertools
 from collections.abc import Mapping
 from dataclasses import dataclass, replace
 
@@ -21,9 +20,17 @@ from scipy.optimize import linprog
 from gtfs_schematic.errors import InternalFaultError, LayoutError
 from gtfs_schematic.geometry import Point
 from gtfs_schematic.layout.asked import Relative, hold_relative
+from gtfs_schematic.layout.columns import (
+    Columns,
+    Runs,
+    bound_lengths,
+    keep_directions,
+    piece_lengths,
+)
+from gtfs_schematic.layout.drift_limits import DriftLimits, colliding, hold_drift
 from gtfs_schematic.layout.rows import Rows
 from gtfs_schematic.layout.separation import Separations, near_pairs, separate
-from gtfs_schematic.layout.skeleton import STEP, Skeleton
+from gtfs_schematic.layout.skeleton import Skeleton
 
 _MOST_REPAIRS = 20
 _INFEASIBLE = 2
@@ -41,6 +48,10 @@ _SLACK = 1e-4
 
 class NoRoomError(LayoutError):
     """The least lengths do not fit the box."""
+
+
+class DriftLimitsCollideError(LayoutError):
+    """Drift limits that cannot all be kept; the message names them."""
 
 
 class PinsCollideError(LayoutError):
@@ -76,6 +87,8 @@ class Wants:
     """Weight of the length of each segment that is better gone, shape (m,)."""
     relative: tuple[Relative, ...] = ()
     """Places that vertices keep as seen from others."""
+    limits: DriftLimits | None = None
+    """How far stations may be from their true places."""
 
 
 def settle(
@@ -109,6 +122,8 @@ def settle(
         If the box is too small.
     PinsCollideError
         If the pins cannot all be kept.
+    DriftLimitsCollideError
+        If the drift limits cannot all be kept, though without them there is a drawing.
     """
     if pairs is None:
         lengths = np.hypot(*np.diff(skeleton.points[skeleton.segments], axis=1)[:, 0].T)
@@ -149,26 +164,21 @@ def _solve(
     loosened: bool = False,
 ) -> NDArray[np.float64]:
     """Solve the programme; `loosened`, pins only draw their stations, but strongly."""
-    runs = _Runs.of(skeleton)
-    columns = _Columns.of(skeleton, len(apart.first))
+    runs = Runs.of(skeleton)
+    limits = wants.limits
+    held = len(limits.stations) if limits is not None else 0
+    columns = Columns.of(skeleton, len(_GRADES), len(apart.first), held)
     equal, most = Rows(), Rows()
-    _keep_directions(equal, runs, columns)
+    keep_directions(equal, runs, columns)
     hold_relative(equal, (columns.x, columns.y), wants.relative if not loosened else ())
-    _bound_lengths(most, runs, columns, wants)
+    bound_lengths(most, runs, columns, wants.least)
     _reach_anchors(most, columns, wants)
+    if limits is not None:
+        hold_drift(equal, most, columns, limits)
     _keep_apart(most, skeleton, columns, wants, apart)
     for axis, nodes in enumerate((columns.x, columns.y)):
         most.add([(nodes, 1.0), (np.full(len(nodes), columns.extent[axis]), -1.0)], 0.0)
-    bounds = np.zeros((columns.count, 2))
-    bounds[:, 1] = np.inf
-    for grade, (share, _) in zip(columns.slack, _GRADES, strict=True):
-        bounds[grade, 1] = share * wants.piece_goal
-    if box is not None:
-        bounds[columns.extent, 1] = box
-    for v, place in wants.pinned.items():
-        if not loosened:
-            bounds[[columns.x[v], columns.y[v]]] = np.array(place)[:, None]
-    blocks, rights = _piece_lengths(runs, columns, wants)
+    blocks, rights = piece_lengths(runs, columns, wants.piece_least, wants.piece_goal)
     upper, right = most.matrix(columns.count)
     matrix, zero = equal.matrix(columns.count)
     solution = linprog(
@@ -177,10 +187,12 @@ def _solve(
         b_ub=np.concatenate([right, *rights]),
         A_eq=matrix,
         b_eq=zero,
-        bounds=bounds,
+        bounds=_bounds(columns, wants, box, loosened=loosened),
         method="highs-ipm",
     )
     if solution.status == _INFEASIBLE:
+        if limits is not None and limits.loose is None:
+            raise DriftLimitsCollideError(_missed_limits(skeleton, wants, apart, box))
         if (wants.pinned or wants.relative) and not loosened:
             raise PinsCollideError(_collisions(skeleton, wants, apart, box))
         raise NoRoomError("The drawing does not fit its box.")
@@ -190,94 +202,26 @@ def _solve(
     return np.round(np.column_stack([solution.x[columns.x], solution.x[columns.y]]), 6)
 
 
-@dataclass(frozen=True)
-class _Runs:
-    """The segments: their ends, steps, the axis they are measured along, and their piece."""
-
-    start: NDArray[np.int64]
-    end: NDArray[np.int64]
-    steps: NDArray[np.int64]
-    upright: NDArray[np.bool_]
-    forward: NDArray[np.float64]
-    """+1 or −1 by which the measured coordinate grows along the segment."""
-    stretch: NDArray[np.float64]
-    """Length per unit of the measured coordinate: 1 or √2."""
-    piece: NDArray[np.int64]
-
-    @staticmethod
-    def of(skeleton: Skeleton) -> _Runs:
-        start, end = skeleton.segments.T
-        steps = STEP[skeleton.directions]
-        upright = steps[:, 0] == 0
-        forward = np.where(upright, steps[:, 1], steps[:, 0]).astype(np.float64)
-        stretch = np.hypot(steps[:, 0], steps[:, 1])
-        return _Runs(start, end, steps, upright, forward, stretch, skeleton.piece_of)
+def _bounds(
+    columns: Columns, wants: Wants, box: tuple[float, float] | None, *, loosened: bool
+) -> NDArray[np.float64]:
+    """Least and most of every variable, shape (count, 2)."""
+    bounds = np.zeros((columns.count, 2))
+    bounds[:, 1] = np.inf
+    if wants.limits is not None:
+        bounds[columns.excess, 1] = 0.0
+        bounds[columns.excess[sorted(wants.limits.loose or ())], 1] = np.inf
+    for grade, (share, _) in zip(columns.slack, _GRADES, strict=True):
+        bounds[grade, 1] = share * wants.piece_goal
+    if box is not None:
+        bounds[columns.extent, 1] = box
+    for v, place in wants.pinned.items():
+        if not loosened:
+            bounds[[columns.x[v], columns.y[v]]] = np.array(place)[:, None]
+    return bounds
 
 
-@dataclass(frozen=True)
-class _Columns:
-    """Places of the variables: all at least 0."""
-
-    x: NDArray[np.int64]
-    y: NDArray[np.int64]
-    slack: NDArray[np.int64]
-    """Per grade and piece, a part of how far the length is from the wanted one."""
-    away: NDArray[np.int64]
-    """Per vertex and axis, how far it is from its anchor, shape (2, n)."""
-    lack: NDArray[np.int64]
-    """Per separated pair, what is lacking of the wanted room."""
-    extent: NDArray[np.int64]
-    """Width and height of the drawing."""
-    count: int
-
-    @staticmethod
-    def of(skeleton: Skeleton, pairs: int) -> _Columns:
-        k, n, p = len(skeleton.points), skeleton.graph.n_vertices, len(skeleton.courses)
-        ends = np.cumsum([0, k, k, len(_GRADES) * p, 2 * n, pairs, 2])
-        x, y, slack, away, lack, extent = (
-            np.arange(a, b) for a, b in itertools.pairwise(ends.tolist())
-        )
-        return _Columns(x, y, slack.reshape(-1, p), away.reshape(2, n), lack, extent, int(ends[-1]))
-
-    def along(self, runs: _Runs, nodes: NDArray[np.int64]) -> NDArray[np.int64]:
-        """Give the column that measures each segment at one of its ends."""
-        return np.where(runs.upright, self.y[nodes], self.x[nodes])
-
-
-def _keep_directions(equal: Rows, runs: _Runs, columns: _Columns) -> None:
-    x, y = columns.x, columns.y
-    for kept, nodes in ((runs.steps[:, 1] == 0, y), (runs.upright, x)):
-        equal.add([(nodes[runs.end[kept]], 1.0), (nodes[runs.start[kept]], -1.0)], 0.0)
-    slope = (runs.steps != 0).all(axis=1)
-    a, b = runs.start[slope], runs.end[slope]
-    sign = (runs.steps[slope, 0] * runs.steps[slope, 1]).astype(np.float64)
-    equal.add([(y[b], 1.0), (y[a], -1.0), (x[b], -sign), (x[a], sign)], 0.0)
-
-
-def _bound_lengths(most: Rows, runs: _Runs, columns: _Columns, wants: Wants) -> None:
-    a, b = columns.along(runs, runs.start), columns.along(runs, runs.end)
-    most.add([(b, -runs.forward), (a, runs.forward)], -wants.least / runs.stretch)
-
-
-def _piece_lengths(
-    runs: _Runs, columns: _Columns, wants: Wants
-) -> tuple[list[sp.csr_matrix], list[NDArray[np.float64]]]:
-    """Give matrix blocks and right-hand sides for least and wanted lengths of whole pieces."""
-    grades, pieces = columns.slack.shape
-    shape = (pieces, columns.count)
-    a, b = columns.along(runs, runs.start), columns.along(runs, runs.end)
-    value = runs.forward * runs.stretch
-    entries = (np.concatenate([runs.piece, runs.piece]), np.concatenate([b, a]))
-    length = sp.csr_matrix((np.concatenate([value, -value]), entries), shape=shape)
-    rows = np.tile(np.arange(pieces), grades)
-    slack = sp.csr_matrix((np.ones(len(rows)), (rows, columns.slack.ravel())), shape=shape)
-    return (
-        [-length, length - slack, -length - slack],
-        [-wants.piece_least, wants.piece_goal, -wants.piece_goal],
-    )
-
-
-def _reach_anchors(most: Rows, columns: _Columns, wants: Wants) -> None:
+def _reach_anchors(most: Rows, columns: Columns, wants: Wants) -> None:
     for axis, nodes in enumerate((columns.x, columns.y)):
         away = columns.away[axis]
         vertices, goal = nodes[: len(away)], wants.anchors[:, axis]
@@ -286,7 +230,7 @@ def _reach_anchors(most: Rows, columns: _Columns, wants: Wants) -> None:
 
 
 def _keep_apart(
-    most: Rows, skeleton: Skeleton, columns: _Columns, wants: Wants, apart: Separations
+    most: Rows, skeleton: Skeleton, columns: Columns, wants: Wants, apart: Separations
 ) -> None:
     normal = apart.normals()
     gap = wants.half_width[apart.first] + wants.half_width[apart.second]
@@ -324,7 +268,34 @@ def _collisions(
     )
 
 
-def _cost(runs: _Runs, columns: _Columns, wants: Wants, *, loosened: bool) -> NDArray[np.float64]:
+def _missed_limits(
+    skeleton: Skeleton, wants: Wants, apart: Separations, box: tuple[float, float] | None
+) -> str:
+    """Name drift limits that collide; a box or pins that leave no drawing at all are told first."""
+    limits = wants.limits
+    assert limits is not None  # noqa: S101 - asked only where limits are held
+    everyone = frozenset(range(len(limits.stations)))
+    _solve(skeleton, replace(wants, limits=replace(limits, loose=everyone)), apart, box)
+
+    def solve(some: DriftLimits) -> NDArray[np.float64] | None:
+        try:
+            return _solve(skeleton, replace(wants, limits=some), apart, box)
+        except LayoutError:
+            return None
+
+    names = skeleton.graph.station_of
+    found = colliding(limits, solve)
+    those = ", ".join(limits.written(i, names) for i in found)
+    pins = ", the pins where they are" if wants.pinned or wants.relative else ""
+    return (
+        f"{'This drift limit' if len(found) == 1 else 'Together these drift limits'} cannot be "
+        f"kept with every line at a multiple of 45 degrees, all distances kept{pins}: {those}. "
+        "If one of them were higher the others could hold. Raise one, raise the fidelity, allow a "
+        "larger sheet, or draw fewer lines."
+    )
+
+
+def _cost(runs: Runs, columns: Columns, wants: Wants, *, loosened: bool) -> NDArray[np.float64]:
     cost = np.zeros(columns.count)
     for grade, (_, price) in zip(columns.slack, _GRADES, strict=True):
         cost[grade] = price * wants.piece_weight
@@ -333,6 +304,7 @@ def _cost(runs: _Runs, columns: _Columns, wants: Wants, *, loosened: bool) -> ND
         cost[columns.away[:, sorted(wants.pinned)]] = _PIN_WEIGHT
     cost[columns.lack] = _LACK_WEIGHT
     cost[columns.extent] = wants.spread
+    cost[columns.excess] = _PIN_WEIGHT
     np.add.at(cost, columns.along(runs, runs.end), wants.jogs * runs.forward)
     np.add.at(cost, columns.along(runs, runs.start), -wants.jogs * runs.forward)
     return cost
