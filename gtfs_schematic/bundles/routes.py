@@ -30,7 +30,7 @@ def cut_into_routes(layout: Layout, nodes: Mapping[str, Junction]) -> tuple[Rout
     """Give the routes of all lines; every link of a line lies on exactly one of them.
 
     Where a line branches, the smoothest of its passes goes through, and the other branch ends
-    on it.
+    on it. At a junction, where no marker covers a gap, all branches that belong together do.
     """
     links: dict[str, list[str]] = {line.id: [] for line in layout.network.lines}
     for link in layout.network.links:
@@ -39,18 +39,39 @@ def cut_into_routes(layout: Layout, nodes: Mapping[str, Junction]) -> tuple[Rout
     ways: dict[str, _Ways] = defaultdict(dict)
     joins: dict[str, dict[tuple[str, str], Pass]] = defaultdict(dict)
     for junction in nodes.values():
+        bare = junction.station_id in layout.network.junction
+        ending = []
         for way in sorted(junction.passes, key=lambda way: _sharpness(junction, way)):
-            ends = ((way.first, junction.station_id), (way.second, junction.station_id))
+            ends = _ends(junction, way)
             through = ways[way.line_id]
-            if ends[0] not in through and ends[1] not in through:
+            if through.keys().isdisjoint(ends) and not (bare and _joins(junction, way, through)):
                 through[ends[0]], through[ends[1]] = way.second, way.first
             else:
-                for end in ends:
-                    joins[way.line_id].setdefault(end, way)
+                ending.append(way)
+        if bare:
+            ending.sort(key=lambda way: ways[way.line_id].keys().isdisjoint(_ends(junction, way)))
+        for way in ending:
+            for end in _ends(junction, way):
+                joins[way.line_id].setdefault(end, way)
     return tuple(
         route
         for line in layout.network.lines
         for route in _line_routes(layout, line.id, links[line.id], (ways[line.id], joins[line.id]))
+    )
+
+
+def _ends(junction: Junction, way: Pass) -> tuple[tuple[str, str], tuple[str, str]]:
+    return (way.first, junction.station_id), (way.second, junction.station_id)
+
+
+def _joins(junction: Junction, way: Pass, through: _Ways) -> bool:
+    """Whether the line passes from either link of a pass to one that it goes through already."""
+    links = {way.first, way.second}
+    return any(
+        other.line_id == way.line_id
+        and not links.isdisjoint((other.first, other.second))
+        and not through.keys().isdisjoint(_ends(junction, other))
+        for other in junction.passes
     )
 
 
