@@ -15,9 +15,13 @@ from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
 from pathlib import Path
 
+from gtfs_schematic.background.build import lay_background
+from gtfs_schematic.background.model import Background
+from gtfs_schematic.background.read import read_background
 from gtfs_schematic.bundles import check as bundles_check
 from gtfs_schematic.bundles.build import bundle
-from gtfs_schematic.bundles.model import BundledLayout, BundleSettings
+from gtfs_schematic.bundles.model import BundledLayout
+from gtfs_schematic.clearances import clearances_of
 from gtfs_schematic.config import Settings, with_wishes
 from gtfs_schematic.drawing import check as drawing_check
 from gtfs_schematic.drawing.compose import compose
@@ -52,13 +56,12 @@ from gtfs_schematic.feed import check as feed_check
 from gtfs_schematic.feed.model import Finding, Timetable
 from gtfs_schematic.feed.read import read_feed
 from gtfs_schematic.labels import check as labels_check
-from gtfs_schematic.labels.fonts import text_width_mm
 from gtfs_schematic.labels.model import LabelledLayout, LabelSettings
 from gtfs_schematic.labels.place import place_labels
 from gtfs_schematic.labels.room import room_requests
 from gtfs_schematic.layout import check as layout_check
 from gtfs_schematic.layout.engine import Placement, fit_sheet, place
-from gtfs_schematic.layout.model import Clearances, Layout, RoomRequest, SheetFrame
+from gtfs_schematic.layout.model import Layout, RoomRequest, SheetFrame
 from gtfs_schematic.network import check as network_check
 from gtfs_schematic.network.build import build_network
 from gtfs_schematic.network.model import Network
@@ -72,8 +75,6 @@ PATIENCE = 2
 
 LARGER_SHEETS = 1
 """How many larger sheets are tried before names are left without a place."""
-
-MM_PER_PT = 25.4 / 72.0
 
 StrPath = str | os.PathLike[str]
 
@@ -95,6 +96,8 @@ class Result:
     """Wishes of a person that the drawing does not meet."""
     state: bytes = b""
     """What redrawing without the feed needs, as it is written."""
+    background: Background = Background()
+    """What lies beneath the network."""
 
 
 def draw(
@@ -125,6 +128,7 @@ def draw(
         If a stage's check faults its output: a defect of this program.
     """
     settings = settings or Settings()
+    read_background(settings.background)  # what is wrong with it is told before the long work
     timetable, network = inspect(paths, settings, progress=progress)
     raw, wanted, wishes = network, settings, Wishes()
     if adjustments is not None:
@@ -191,7 +195,8 @@ def finish(
     bundled = labelled.bundled
     network = bundled.layout.network
     progress.phase("composing the sheet")
-    drawing = compose(labelled, settings.drawing)
+    background = lay_background(labelled, settings.background)
+    drawing = compose(labelled, settings.drawing, background)
     found = drawing_check.faults(
         drawing, network, unnamed=labelled.unplaced, said_as=labelled.abbreviated
     )
@@ -218,6 +223,7 @@ def finish(
         drawing,
         edition,
         drift,
+        background=background,
     )
 
 
@@ -276,29 +282,6 @@ def files_of(result: Result, limits: Sequence[Limit] | None = None) -> dict[str,
                 result.drift, result.edition, title=result.edition.title, limits=judged
             ),
         }
-    )
-
-
-def clearances_of(network: Network, bundles: BundleSettings, labels: LabelSettings) -> Clearances:
-    """Give the plain numbers by which the layout knows what will be drawn.
-
-    Neighbouring stations keep so far apart that a name fits between their names on one side, and
-    that two large markers do not touch.
-    """
-    height = labels.size_pt * labels.leading * MM_PER_PT
-    large = 2.0 * labels.interchange_radius_mm
-    widths = {}
-    for station in network.stations:
-        plain = station.kind == "stop"
-        size = (labels.size_pt if plain else labels.interchange_size_pt) * MM_PER_PT
-        widths[station.id] = text_width_mm(station.name, size, bold=not plain)
-    return Clearances(
-        line_width_mm=bundles.line_width_mm,
-        line_gap_mm=bundles.line_gap_mm,
-        marker_mm=2.0 * labels.marker_radius_mm,
-        label_height_mm=height,
-        spacing_mm=max(height + 2.0 * labels.clearance_mm, large + bundles.line_width_mm),
-        label_width_mm=widths,
     )
 
 

@@ -10,11 +10,17 @@ from __future__ import annotations
 import itertools
 import math
 from collections.abc import Sequence
-
-from ortools.sat.python import cp_model
+from typing import TYPE_CHECKING
 
 from gtfs_schematic.bundles.greedy import Orders, left_of
 from gtfs_schematic.bundles.problem import OrderProblem, Pair, Twist
+from gtfs_schematic.lazily import lazily
+
+if TYPE_CHECKING:
+    from ortools.sat.python import cp_model
+else:
+    # Its import takes longer than most commands.
+    cp_model = lazily("ortools.sat.python.cp_model")
 
 _KEPT = 50_000
 """A pair of lines changes places with an earlier drawing: the dearest after a crossing."""

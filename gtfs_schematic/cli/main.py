@@ -10,6 +10,7 @@ from importlib.metadata import version
 
 import click
 
+from gtfs_schematic.cli.adjust import adjust
 from gtfs_schematic.cli.changes import changes
 from gtfs_schematic.cli.demo import demo
 from gtfs_schematic.cli.draw import draw
@@ -48,7 +49,7 @@ def cli() -> None:
     """Draw transit network diagrams from GTFS feeds, and measure their drift from geography."""
 
 
-for command in (inspect, draw, drift, revise, changes, editions, review, demo):
+for command in (inspect, draw, drift, revise, adjust, changes, editions, review, demo):
     cli.add_command(command)
 
 

@@ -9,6 +9,7 @@ from functools import cache
 
 from pydantic import TypeAdapter, ValidationError
 
+from gtfs_schematic.bundles.forks import with_forks
 from gtfs_schematic.bundles.model import (
     BundledLayout,
     BundleSettings,
@@ -91,7 +92,6 @@ def state_of(
     drift
         What was measured.
     """
-    bundled = labelled.bundled
     drawn = {station for s in network.stations for station in s.stop_ids}
     routes = {route for line in network.lines for route in line.route_ids}
     return State(
@@ -103,12 +103,18 @@ def state_of(
             key: tuple(sorted(timetable.operating_days[key]))
             for key in sorted(timetable.operating_days)
         },
-        Drawn(
-            bundled.layout.sheet, bundled.layout.crossings, bundled.orders, bundled.stretches,
-            bundled.spans, bundled.quality, labelled.labels, labelled.unplaced,
-            labelled.abbreviated, labelled.run_badges,
-        ),
+        drawn_of(labelled),
         drift,
+    )
+
+
+def drawn_of(labelled: LabelledLayout) -> Drawn:
+    """Gather what of a labelled layout its edition does not say."""
+    bundled = labelled.bundled
+    return Drawn(
+        bundled.layout.sheet, bundled.layout.crossings, bundled.orders, bundled.stretches,
+        bundled.spans, bundled.quality, labelled.labels, labelled.unplaced,
+        labelled.abbreviated, labelled.run_badges,
     )  # fmt: skip
 
 
@@ -129,8 +135,9 @@ def labelled_of(
 ) -> LabelledLayout:
     """Give the labelled layout that was drawn, for `layout_of` its edition."""
     bundled = BundledLayout(
-        layout, bundles, drawn.orders, drawn.stretches, drawn.spans, drawn.quality
-    )
+        layout, bundles, drawn.orders, drawn.stretches, drawn.spans, drawn.quality,
+        with_forks(layout),
+    )  # fmt: skip
     return LabelledLayout(
         bundled, labels, drawn.labels, drawn.unplaced, drawn.abbreviated,
         drawn.run_badges,

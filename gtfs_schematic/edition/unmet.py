@@ -19,7 +19,8 @@ Told = Iterator[tuple[str, str, str]]
 
 def unmet(wishes: Wishes, labelled: LabelledLayout) -> tuple[Finding, ...]:
     """Look at the drawing itself, whatever the rooms meant to do; sorted by where it is said."""
-    told = [*_labels(wishes, labelled), *_places(wishes, labelled), *_links(wishes, labelled)]
+    layout = labelled.bundled.layout
+    told = [*_labels(wishes, labelled), *unmet_places(wishes, layout), *_orders(wishes, labelled)]
     found = [
         Finding("warning", "adjustments", f"{why}, so the wish is not met", field=said)
         for name, key, why in told
@@ -39,15 +40,25 @@ def _labels(wishes: Wishes, labelled: LabelledLayout) -> Told:
             if name == "sides" and label.side != wanted:
                 yield name, key, f"the name found no place there and stands {label.side}"
             if name == "angles" and -label.angle_deg != wanted:
-                yield name, key, f"the name found no place so and rises by {-label.angle_deg:g}°"
+                yield (
+                    name,
+                    key,
+                    f"the name found no place so and rises by {0.0 - label.angle_deg:g}°",
+                )
             if name == "rows" and rows != wanted:
                 yield name, key, f"the label says {' / '.join(rows)}"
             if name == "short_names" and "".join(rows).replace(" ", "") != wanted.replace(" ", ""):
                 yield name, key, f"the label says {' '.join(rows)}"
 
 
-def _places(wishes: Wishes, labelled: LabelledLayout) -> Told:
-    at = labelled.bundled.layout.positions
+def unmet_places(wishes: Wishes, layout: Layout) -> Told:
+    """Tell which wishes for places and directions a layout does not meet."""
+    yield from _places(wishes, layout)
+    yield from _links(wishes, layout)
+
+
+def _places(wishes: Wishes, layout: Layout) -> Told:
+    at = layout.positions
     for key, pin in wishes.pins.items():
         if not _same(at[key], pin):
             yield "pins", key, f"the station stands at {at[key][0]:g}, {at[key][1]:g} mm"
@@ -61,8 +72,7 @@ def _places(wishes: Wishes, labelled: LabelledLayout) -> Told:
             )
 
 
-def _links(wishes: Wishes, labelled: LabelledLayout) -> Told:
-    layout = labelled.bundled.layout
+def _links(wishes: Wishes, layout: Layout) -> Told:
     for key, way in wishes.directions.items():
         path = layout.paths[key]
         if not all(_leads(a, b, way) for a, b in itertools.pairwise(path)):
@@ -78,6 +88,9 @@ def _links(wishes: Wishes, labelled: LabelledLayout) -> Told:
             if not any(OPPOSITE.get(a) == b for a, b in passes):
                 ways = " and ".join(f"from {a} to {b}" for a, b in passes)
                 yield "straights", station, f"line {line} runs {ways}"
+
+
+def _orders(wishes: Wishes, labelled: LabelledLayout) -> Told:
     for key, wanted in wishes.orders.items():
         order = [line for line in labelled.bundled.orders[key] if line in wanted]
         if tuple(order) != wanted:

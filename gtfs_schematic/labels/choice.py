@@ -11,8 +11,16 @@ from collections import defaultdict
 from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
 from functools import cached_property
+from typing import TYPE_CHECKING
 
-from ortools.sat.python import cp_model
+from gtfs_schematic.lazily import lazily
+
+if TYPE_CHECKING:
+    from ortools.sat.python import cp_model
+else:
+    # Its import takes longer than most commands.
+    cp_model = lazily("ortools.sat.python.cp_model")
+
 
 UNPLACED = 100_000
 """Cost of a station without a label."""

@@ -52,7 +52,7 @@ def place_labels(
     if short != sites:
         chosen = _widen(short, entries, chosen, (obstacles, neighbors, settings))
     progress.step()
-    labels = {station_id: _label(chosen[station_id]) for station_id in sorted(chosen)}
+    labels = {station_id: label_at(chosen[station_id]) for station_id in sorted(chosen)}
     return LabelledLayout(
         bundled=bundled,
         settings=settings,
@@ -129,7 +129,7 @@ def _around(problem: Problem, stations: Sequence[int]) -> set[int]:
     return found
 
 
-def _label(entry: Entry) -> Label:
+def label_at(entry: Entry) -> Label:
     """Give the label that stands at an entry's place."""
     candidate = entry.candidate
     lines, badges = candidate.block.moved(candidate.origin)

@@ -20,6 +20,8 @@ class Standing:
     paths: Mapping[str, tuple[Point, ...]]
     """Paths of its links and walks, by any ids: their ends say what they join."""
     frame: SheetFrame
+    reach: int | None = None
+    """Links from a change within which stations may give way at most; None: all."""
 
 
 def keep(draft: Draft, standing: Standing) -> None:

@@ -109,7 +109,9 @@ def _drafts(
     near = _near(draft, set(draft.thin) or fresh) | outside
     sources = {s for key in near | set(draft.thin) for s in _ends(draft, key)} | set(off)
     away = draft.hops(sources)
-    for reach in _REACHES if even == 0.0 else (None,):
+    most = standing.reach
+    reaches = [r for r in _REACHES if most is None or (r is not None and r <= most)]
+    for reach in reaches if even == 0.0 else (None,):
         stations = {s for s in draft.at if reach is None or away.get(s, reach) < reach}
         free = Free(stations, near, fresh, standing.positions, off, even)
         found = give_way(draft, free)

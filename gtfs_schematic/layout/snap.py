@@ -3,14 +3,21 @@
 from __future__ import annotations
 
 from collections.abc import Collection, Sequence
+from typing import TYPE_CHECKING
 
 import numpy as np
 from numpy.typing import NDArray
-from ortools.sat.python import cp_model
 
 from gtfs_schematic.errors import InternalFaultError
 from gtfs_schematic.layout.asked import Relative
 from gtfs_schematic.layout.skeleton import STEP, Skeleton
+from gtfs_schematic.lazily import lazily
+
+if TYPE_CHECKING:
+    from ortools.sat.python import cp_model
+else:
+    # Its import takes longer than most commands.
+    cp_model = lazily("ortools.sat.python.cp_model")
 
 UNITS_PER_MM = 100
 _WINDOWS = (8, 32, 128)
