@@ -17,7 +17,7 @@ from gtfs_schematic.labels.model import LabelledLayout, LabelSettings
 def labelled(layout) -> LabelledLayout:
     """Give a layout with its lines in reversed order and no labels."""
     orders = {link.id: tuple(reversed(link.lines)) for link in layout.network.links}
-    bundled = BundledLayout(layout, BundleSettings(), orders, (), {}, OrderQuality(0, 0, 0))
+    bundled = BundledLayout(layout, BundleSettings(), orders, (), {}, OrderQuality(0, 0, 0), layout)
     return LabelledLayout(bundled, LabelSettings(), {}, ())
 
 

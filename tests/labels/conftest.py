@@ -49,6 +49,7 @@ def plain_bundle(layout: Layout) -> BundledLayout:
         stretches=tuple(stretches),
         spans={key: StationSpan(key, tuple(sorted(covered[key]))) for key in sorted(covered)},
         quality=OrderQuality(0, 0, 0),
+        forked=layout,
     )
 
 
