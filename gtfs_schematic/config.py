@@ -11,6 +11,7 @@ from typing import Any
 from pydantic import BaseModel, ConfigDict, ValidationError
 from pydantic_core import ErrorDetails
 
+from gtfs_schematic.background.model import BackgroundSettings
 from gtfs_schematic.bundles.model import BundleSettings
 from gtfs_schematic.drawing.model import DrawingSettings, SheetSettings
 from gtfs_schematic.drift.model import DriftSettings
@@ -31,6 +32,7 @@ class Settings(BaseModel):
     layout: LayoutSettings = LayoutSettings()
     bundles: BundleSettings = BundleSettings()
     labels: LabelSettings = LabelSettings()
+    background: BackgroundSettings = BackgroundSettings()
     drawing: DrawingSettings = DrawingSettings()
     sheet: SheetSettings = SheetSettings()
     drift: DriftSettings = DriftSettings()

@@ -44,6 +44,7 @@ def in_frame(layout: Layout, frame: SheetFrame) -> Layout:
         positions={key: (x + dx, y + dy) for key, (x, y) in layout.positions.items()},
         paths={key: moved(path) for key, path in layout.paths.items()},
         walk_paths={key: moved(path) for key, path in layout.walk_paths.items()},
+        crossings=tuple(replace(each, at_mm=moved((each.at_mm,))[0]) for each in layout.crossings),
     )
 
 
@@ -69,6 +70,7 @@ def naive_bundle(layout: Layout) -> BundledLayout:
         stretches=tuple(stretches),
         spans={key: StationSpan(key, (at,)) for key, at in layout.positions.items()},
         quality=OrderQuality(0, 0, 0),
+        forked=layout,
     )
 
 

@@ -128,6 +128,7 @@ def describe(
         *_short_names(result),
         *_letters(result),
         *_contrast(result),
+        *_background(result),
         _GUARANTEES,
         *words.drift(result.drift),
         *words.limits(limits),
@@ -172,6 +173,17 @@ def _letters(result: Result) -> list[str]:
         return []
     head = f"Typeface: {words.count(len(rows), 'name')} with characters that it lacks"
     return [head, *words.first_few(rows, everything=False, where="they are drawn as boxes")]
+
+
+def _background(result: Result) -> list[str]:
+    """Say what lies beneath the network, and what does not although it was asked for."""
+    background = result.background
+    if not background.settings.files:
+        return []
+    drawn = words.count(len(background.shapes), "shape")
+    rows = [f"{left.what}: {left.reason}" for left in background.left_out]
+    head = f"Background: {drawn} drawn" + (f", {len(rows)} left out" if rows else "")
+    return [head, *words.first_few(rows, everything=False, where="the others likewise")]
 
 
 def _contrast(result: Result) -> list[str]:

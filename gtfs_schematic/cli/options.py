@@ -30,6 +30,7 @@ SETTINGS = {
     "effort": "layout.effort",
     "title": "drawing.title",
     "attribution": "drawing.attribution",
+    "background": "background.files",
 }
 """Which setting each option changes."""
 
@@ -96,6 +97,12 @@ _DRAW_OPTIONS = (
     click.option("--effort", metavar="LEVEL", help="quick, standard or thorough."),
     click.option("--title", metavar="TEXT", help="Title on the sheet."),
     click.option("--attribution", metavar="TEXT", help="Credit that the feed's licence asks for."),
+    click.option(
+        "--background",
+        multiple=True,
+        metavar="FILE",
+        help="GeoJSON of water, parks and boundaries to lie beneath; repeatable.",
+    ),
 )
 
 

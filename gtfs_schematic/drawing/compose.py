@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from gtfs_schematic.background.model import Background
+from gtfs_schematic.drawing.backdrop import backdrop_groups
 from gtfs_schematic.drawing.furniture import key_group, notes_group, title_group
 from gtfs_schematic.drawing.lines import line_groups, name_groups, walk_groups
 from gtfs_schematic.drawing.model import Drawing, DrawingSettings, Group
@@ -11,10 +13,12 @@ from gtfs_schematic.drawing.stations import marker_look, station_groups
 from gtfs_schematic.drawing.style import line_styles
 from gtfs_schematic.drawing.words import description, sheet_title
 from gtfs_schematic.labels.model import LabelledLayout
-from gtfs_schematic.layout.model import Layout
+from gtfs_schematic.layout.model import Layout, SheetFrame
 
 
-def compose(labelled: LabelledLayout, settings: DrawingSettings) -> Drawing:
+def compose(
+    labelled: LabelledLayout, settings: DrawingSettings, background: Background | None = None
+) -> Drawing:
     """Give the whole sheet as a scene, sheet millimetres, y down.
 
     Parameters
@@ -24,6 +28,8 @@ def compose(labelled: LabelledLayout, settings: DrawingSettings) -> Drawing:
         `candidate_frames` gave for the same network and settings.
     settings
         Colours and words.
+    background
+        What lies beneath the network.
     """
     bundled = labelled.bundled
     layout = bundled.layout
@@ -39,6 +45,7 @@ def compose(labelled: LabelledLayout, settings: DrawingSettings) -> Drawing:
         background=settings.background,
         groups=(
             title_group(page, settings),
+            *_backdrop(background, layout.sheet, settings),
             *_grid(page, settings),
             Group("walks", tuple(walk_groups(layout, settings))),
             Group("lines", tuple(line_groups(labelled, styles, settings.background))),
@@ -49,6 +56,15 @@ def compose(labelled: LabelledLayout, settings: DrawingSettings) -> Drawing:
             notes_group(page, settings),
         ),
     )
+
+
+def _backdrop(
+    background: Background | None, frame: SheetFrame, settings: DrawingSettings
+) -> tuple[Group, ...]:
+    """Give the background if there is one."""
+    if background is None or not background.shapes:
+        return ()
+    return (Group("background", tuple(backdrop_groups(background, frame, settings))),)
 
 
 def _grid(page: Page, settings: DrawingSettings) -> tuple[Group, ...]:

@@ -80,6 +80,12 @@ class DrawingSettings(BaseModel):
     """Credit and licence line that the feed's publisher asks for."""
     background: str = Field(default="#FFFFFF", pattern=r"^#[0-9A-Fa-f]{6}$")
     ink: str = Field(default="#1B1F24", pattern=r"^#[0-9A-Fa-f]{6}$")
+    water: str = Field(default="#D7E8F3", pattern=r"^#[0-9A-Fa-f]{6}$")
+    """Colour of water in the background."""
+    park: str = Field(default="#E0EDD7", pattern=r"^#[0-9A-Fa-f]{6}$")
+    """Colour of parks in the background."""
+    boundary: str = Field(default="#9AA3AB", pattern=r"^#[0-9A-Fa-f]{6}$")
+    """Colour of boundaries in the background."""
     colors: Literal["auto", "feed", "distinct"] = "auto"
     """"feed" keeps the feed's colours, "distinct" gives every line its own, "auto" replaces
     those that more than half of the lines share or that look like another."""

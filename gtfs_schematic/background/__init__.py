@@ -1,0 +1,1 @@
+"""Water, parks and boundaries under the network, carried through its deformation."""
