@@ -54,10 +54,10 @@ def anchor_points(graph: PlaneGraph, fidelity: float) -> NDArray[np.float64]:
     ground, lengths = _in_spacings(graph)
     vectors = _wanted_vectors(graph, ground, lengths, fidelity)
     targets = _targets(graph, ground, lengths, vectors, fidelity)
-    moved = _guarded_move(graph, ground, targets)
+    moved = guarded_move(graph, ground, targets)
     if fidelity < _TRUE:
         targets, directions = straightened(graph, moved, fidelity)
-        moved = _guarded_move(graph, moved, targets)
+        moved = guarded_move(graph, moved, targets)
         vectors = directions * np.hypot(vectors[:, 0], vectors[:, 1])[:, None]
     return np.round(spread(moved, graph.segments, vectors, _LEAST_CLEARANCE), 6)
 
@@ -70,7 +70,9 @@ def _in_spacings(
     lengths = np.hypot(*(graph.points[a] - graph.points[b]).T)
     spacing = float(np.median(lengths / graph.segment_shares)) if len(lengths) else 1.0
     ground = (graph.points - graph.points.mean(axis=0)) / max(spacing, 1e-9)
-    return np.round(ground, 9), np.round(np.maximum(lengths / max(spacing, 1e-9), 1e-6), 9)
+    return np.round(ground, 9), np.round(
+        np.maximum(lengths / max(spacing, 1e-9), 1e-6), 9
+    )
 
 
 def _wanted_vectors(
@@ -109,7 +111,7 @@ def _targets(
     return np.round(np.asarray(spsolve(normal, right)).reshape(n, 2), 6)
 
 
-def _guarded_move(
+def guarded_move(
     graph: PlaneGraph, start: NDArray[np.float64], targets: NDArray[np.float64]
 ) -> NDArray[np.float64]:
     """Walk from `start` to `targets`; give way, but never cross, where links come near."""
@@ -118,7 +120,9 @@ def _guarded_move(
     if not len(segments):
         return points
     # Start at the targets' scale, so that the first steps are not all spent on shrinking.
-    points = points * (np.ptp(targets, axis=0).max() / max(np.ptp(points, axis=0).max(), 1e-9))
+    points = points * (
+        np.ptp(targets, axis=0).max() / max(np.ptp(points, axis=0).max(), 1e-9)
+    )
     points = np.round(points + targets.mean(axis=0) - points.mean(axis=0), 9)
     for _ in range(_STEPS):
         radii = free_radii(points, segments)

@@ -10,13 +10,14 @@ stations back.
 from __future__ import annotations
 
 import dataclasses
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
 
 from gtfs_schematic.errors import LayoutError
+from gtfs_schematic.geometry import Point
 from gtfs_schematic.layout.anchors import anchor_points
 from gtfs_schematic.layout.asked import ask, kept_stations, relative_pins
 from gtfs_schematic.layout.board import Board
@@ -43,6 +44,7 @@ from gtfs_schematic.layout.objective import Weights
 from gtfs_schematic.layout.planarise import planarise
 from gtfs_schematic.layout.plane import PlaneGraph
 from gtfs_schematic.layout.refine import at_stations
+from gtfs_schematic.layout.remembered import remembered
 from gtfs_schematic.layout.restore import restore
 from gtfs_schematic.layout.settle import (
     DriftLimitsCollideError,
@@ -103,6 +105,7 @@ def place(
     network: Network,
     settings: LayoutSettings,
     *,
+    previous: Mapping[str, Point] | None = None,
     progress: Progress = Silent(),  # noqa: B008 - stateless
 ) -> Placement:
     """Choose the direction of everything; the sheet and its sizes play no part yet.
@@ -113,6 +116,8 @@ def place(
         Stations, links, walks and corridors.
     settings
         Fidelity to the ground, and effort.
+    previous
+        Places of stations in an earlier drawing that this one should resemble, millimetres.
     progress
         Told what is going on.
 
@@ -126,8 +131,9 @@ def place(
     progress.phase("placing on the ground")
     graph = planarise(network, kept_stations(network, settings))
     settings, anchors = _anchors(graph, settings, progress)
+    anchors = remembered(graph, anchors, previous or {})
     graph, anchors = fork(graph, anchors, _PORTS)
-    board = _board(graph, anchors, settings, progress)
+    board = _board(graph, anchors, settings, progress, remembers=bool(previous))
     improve(board, _SWEEPS[settings.effort], progress)
     skeleton = skeleton_of(board)
     if are_limited(settings):
@@ -194,7 +200,9 @@ def fit_sheet(
         link_wishes(network, requests),
         relative=relative_pins(placement.skeleton.graph, placement.settings),
     )
-    sizes, (skeleton, points, frame) = _first_that_holds(placement.skeleton, sizes, frames)
+    sizes, (skeleton, points, frame) = _first_that_holds(
+        placement.skeleton, sizes, frames
+    )
     pinned = pins_in_frame(skeleton.graph, sizes.settings, frame)
     units = snap(skeleton, points, frozenset(pinned), sizes.relative)
     places = _on_paper(units, frame, centred=not pinned)
@@ -202,12 +210,19 @@ def fit_sheet(
 
 
 def _board(
-    graph: PlaneGraph, anchors: NDArray[np.float64], settings: LayoutSettings, progress: Progress
+    graph: PlaneGraph,
+    anchors: NDArray[np.float64],
+    settings: LayoutSettings,
+    progress: Progress,
+    *,
+    remembers: bool,
 ) -> Board:
     """Lay the graph on the coarsest lattice that holds it."""
     progress.phase("laying lines", len(_UNITS))
     stuck = 0
-    weights = Weights(anchor=anchor_price(graph, settings, Weights().anchor))
+    plain = Weights()
+    anchor = plain.previous if remembers else plain.anchor
+    weights = Weights(anchor=anchor_price(graph, settings, anchor))
     for unit in _UNITS:
         board = Board(graph, anchors, weights, unit)
         ask(board, settings)
@@ -247,8 +262,14 @@ def _on_sheet(
     spacing = sizes.clearances.spacing_mm
     skeleton, points, pairs = _settled(skeleton, sizes, spacing, None)
     width, height = np.ptp(points, axis=0)
-    fits = [f for f in frames if _inner(f)[0] >= width * _ROOM and _inner(f)[1] >= height * _ROOM]
-    fits = fits or [f for f in frames if _inner(f)[0] >= width and _inner(f)[1] >= height]
+    fits = [
+        f
+        for f in frames
+        if _inner(f)[0] >= width * _ROOM and _inner(f)[1] >= height * _ROOM
+    ]
+    fits = fits or [
+        f for f in frames if _inner(f)[0] >= width and _inner(f)[1] >= height
+    ]
     if not fits:
         largest = frames[-1]
         raise LayoutError(
@@ -259,12 +280,16 @@ def _on_sheet(
         )
     frame = _best_of_size(fits, width, height)
     box, scale = _inner(frame), spacing
-    sizes = dataclasses.replace(sizes, pinned=pins_in_frame(skeleton.graph, sizes.settings, frame))
+    sizes = dataclasses.replace(
+        sizes, pinned=pins_in_frame(skeleton.graph, sizes.settings, frame)
+    )
     skeleton = dataclasses.replace(skeleton, points=points)
     for _ in range(_FILLINGS):
         # What has no more room in one direction still grows in the other, the less the more the
         # drawing is to be true to the ground.
-        spare = np.maximum(1.0, np.asarray(box) / np.maximum(np.ptp(points, axis=0), 1e-9))
+        spare = np.maximum(
+            1.0, np.asarray(box) / np.maximum(np.ptp(points, axis=0), 1e-9)
+        )
         fidelity = sizes.settings.fidelity
         grow = float(spare.min() ** fidelity * spare.max() ** (1.0 - fidelity))
         if not sizes.pinned and (grow < _FULL or scale >= _LOOSEST * spacing):
@@ -276,7 +301,9 @@ def _on_sheet(
     return skeleton, points, frame
 
 
-def _magnified(points: NDArray[np.float64], box: tuple[float, float], most: float) -> float:
+def _magnified(
+    points: NDArray[np.float64], box: tuple[float, float], most: float
+) -> float:
     """Give the factor by which a settled drawing is enlarged as it is, to fill its box.
 
     It keeps every direction and only adds to every distance, so no guarantee can suffer.
@@ -287,7 +314,11 @@ def _magnified(points: NDArray[np.float64], box: tuple[float, float], most: floa
 
 def _best_of_size(fits: list[SheetFrame], width: float, height: float) -> SheetFrame:
     """Of the least sheets, upright or not, the one that the drawing can fill best."""
-    least = [f for f in fits if f.width_mm * f.height_mm <= fits[0].width_mm * fits[0].height_mm]
+    least = [
+        f
+        for f in fits
+        if f.width_mm * f.height_mm <= fits[0].width_mm * fits[0].height_mm
+    ]
     wide, high = max(width, 1e-9), max(height, 1e-9)
     return max(least, key=lambda f: min(_inner(f)[0] / wide, _inner(f)[1] / high))
 
@@ -314,7 +345,9 @@ def _settled(
         skeleton, pairs = _without(skeleton, points, gone), None
 
 
-def _without(skeleton: Skeleton, points: NDArray[np.float64], gone: NDArray[np.bool_]) -> Skeleton:
+def _without(
+    skeleton: Skeleton, points: NDArray[np.float64], gone: NDArray[np.bool_]
+) -> Skeleton:
     """Drop segments without length; their neighbours run on as one."""
     routes = []
     for p in range(len(skeleton.courses)):
@@ -327,13 +360,21 @@ def _without(skeleton: Skeleton, points: NDArray[np.float64], gone: NDArray[np.b
     return build(skeleton.graph, points[: skeleton.graph.n_vertices], routes)
 
 
-def _on_paper(units: NDArray[np.int64], frame: SheetFrame, *, centred: bool) -> NDArray[np.int64]:
+def _on_paper(
+    units: NDArray[np.int64], frame: SheetFrame, *, centred: bool
+) -> NDArray[np.int64]:
     """Turn y down and put the drawing into its frame: centred, or as its pins have it."""
     if not centred:
-        left, bottom = (round(side * UNITS_PER_MM) for side in (frame.left_mm, frame.bottom_mm))
+        left, bottom = (
+            round(side * UNITS_PER_MM) for side in (frame.left_mm, frame.bottom_mm)
+        )
         return np.column_stack([units[:, 0] + left, bottom - units[:, 1]])
     low, high = units.min(axis=0), units.max(axis=0)
-    centre = np.array([frame.left_mm + frame.right_mm, frame.top_mm + frame.bottom_mm]) / 2.0
+    centre = (
+        np.array([frame.left_mm + frame.right_mm, frame.top_mm + frame.bottom_mm]) / 2.0
+    )
     shift = np.rint(centre * UNITS_PER_MM).astype(np.int64)
     middle = (low + high) // 2
-    return np.column_stack([units[:, 0] - middle[0] + shift[0], middle[1] - units[:, 1] + shift[1]])
+    return np.column_stack(
+        [units[:, 0] - middle[0] + shift[0], middle[1] - units[:, 1] + shift[1]]
+    )

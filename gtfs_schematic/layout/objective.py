@@ -40,6 +40,8 @@ class Weights:
     """Per lattice step onto the course of a piece that is not laid yet."""
     anchor: int = 120
     """Per square spacing between a vertex and its anchor."""
+    previous: int = 600
+    """The same where the anchor is the vertex's place in the drawing before."""
     port: tuple[int, int, int, int, int] = (0, 150, 900, 2500, 4000)
     """Per piece end leaving at 0, 45, 90, 135, 180 degrees from its true bearing."""
 
