@@ -70,9 +70,7 @@ def _in_spacings(
     lengths = np.hypot(*(graph.points[a] - graph.points[b]).T)
     spacing = float(np.median(lengths / graph.segment_shares)) if len(lengths) else 1.0
     ground = (graph.points - graph.points.mean(axis=0)) / max(spacing, 1e-9)
-    return np.round(ground, 9), np.round(
-        np.maximum(lengths / max(spacing, 1e-9), 1e-6), 9
-    )
+    return np.round(ground, 9), np.round(np.maximum(lengths / max(spacing, 1e-9), 1e-6), 9)
 
 
 def _wanted_vectors(
@@ -120,9 +118,7 @@ def guarded_move(
     if not len(segments):
         return points
     # Start at the targets' scale, so that the first steps are not all spent on shrinking.
-    points = points * (
-        np.ptp(targets, axis=0).max() / max(np.ptp(points, axis=0).max(), 1e-9)
-    )
+    points = points * (np.ptp(targets, axis=0).max() / max(np.ptp(points, axis=0).max(), 1e-9))
     points = np.round(points + targets.mean(axis=0) - points.mean(axis=0), 9)
     for _ in range(_STEPS):
         radii = free_radii(points, segments)

@@ -200,9 +200,7 @@ def fit_sheet(
         link_wishes(network, requests),
         relative=relative_pins(placement.skeleton.graph, placement.settings),
     )
-    sizes, (skeleton, points, frame) = _first_that_holds(
-        placement.skeleton, sizes, frames
-    )
+    sizes, (skeleton, points, frame) = _first_that_holds(placement.skeleton, sizes, frames)
     pinned = pins_in_frame(skeleton.graph, sizes.settings, frame)
     units = snap(skeleton, points, frozenset(pinned), sizes.relative)
     places = _on_paper(units, frame, centred=not pinned)
@@ -262,14 +260,8 @@ def _on_sheet(
     spacing = sizes.clearances.spacing_mm
     skeleton, points, pairs = _settled(skeleton, sizes, spacing, None)
     width, height = np.ptp(points, axis=0)
-    fits = [
-        f
-        for f in frames
-        if _inner(f)[0] >= width * _ROOM and _inner(f)[1] >= height * _ROOM
-    ]
-    fits = fits or [
-        f for f in frames if _inner(f)[0] >= width and _inner(f)[1] >= height
-    ]
+    fits = [f for f in frames if _inner(f)[0] >= width * _ROOM and _inner(f)[1] >= height * _ROOM]
+    fits = fits or [f for f in frames if _inner(f)[0] >= width and _inner(f)[1] >= height]
     if not fits:
         largest = frames[-1]
         raise LayoutError(
@@ -280,16 +272,12 @@ def _on_sheet(
         )
     frame = _best_of_size(fits, width, height)
     box, scale = _inner(frame), spacing
-    sizes = dataclasses.replace(
-        sizes, pinned=pins_in_frame(skeleton.graph, sizes.settings, frame)
-    )
+    sizes = dataclasses.replace(sizes, pinned=pins_in_frame(skeleton.graph, sizes.settings, frame))
     skeleton = dataclasses.replace(skeleton, points=points)
     for _ in range(_FILLINGS):
         # What has no more room in one direction still grows in the other, the less the more the
         # drawing is to be true to the ground.
-        spare = np.maximum(
-            1.0, np.asarray(box) / np.maximum(np.ptp(points, axis=0), 1e-9)
-        )
+        spare = np.maximum(1.0, np.asarray(box) / np.maximum(np.ptp(points, axis=0), 1e-9))
         fidelity = sizes.settings.fidelity
         grow = float(spare.min() ** fidelity * spare.max() ** (1.0 - fidelity))
         if not sizes.pinned and (grow < _FULL or scale >= _LOOSEST * spacing):
@@ -301,9 +289,7 @@ def _on_sheet(
     return skeleton, points, frame
 
 
-def _magnified(
-    points: NDArray[np.float64], box: tuple[float, float], most: float
-) -> float:
+def _magnified(points: NDArray[np.float64], box: tuple[float, float], most: float) -> float:
     """Give the factor by which a settled drawing is enlarged as it is, to fill its box.
 
     It keeps every direction and only adds to every distance, so no guarantee can suffer.
@@ -314,11 +300,7 @@ def _magnified(
 
 def _best_of_size(fits: list[SheetFrame], width: float, height: float) -> SheetFrame:
     """Of the least sheets, upright or not, the one that the drawing can fill best."""
-    least = [
-        f
-        for f in fits
-        if f.width_mm * f.height_mm <= fits[0].width_mm * fits[0].height_mm
-    ]
+    least = [f for f in fits if f.width_mm * f.height_mm <= fits[0].width_mm * fits[0].height_mm]
     wide, high = max(width, 1e-9), max(height, 1e-9)
     return max(least, key=lambda f: min(_inner(f)[0] / wide, _inner(f)[1] / high))
 
@@ -345,9 +327,7 @@ def _settled(
         skeleton, pairs = _without(skeleton, points, gone), None
 
 
-def _without(
-    skeleton: Skeleton, points: NDArray[np.float64], gone: NDArray[np.bool_]
-) -> Skeleton:
+def _without(skeleton: Skeleton, points: NDArray[np.float64], gone: NDArray[np.bool_]) -> Skeleton:
     """Drop segments without length; their neighbours run on as one."""
     routes = []
     for p in range(len(skeleton.courses)):
@@ -360,21 +340,13 @@ def _without(
     return build(skeleton.graph, points[: skeleton.graph.n_vertices], routes)
 
 
-def _on_paper(
-    units: NDArray[np.int64], frame: SheetFrame, *, centred: bool
-) -> NDArray[np.int64]:
+def _on_paper(units: NDArray[np.int64], frame: SheetFrame, *, centred: bool) -> NDArray[np.int64]:
     """Turn y down and put the drawing into its frame: centred, or as its pins have it."""
     if not centred:
-        left, bottom = (
-            round(side * UNITS_PER_MM) for side in (frame.left_mm, frame.bottom_mm)
-        )
+        left, bottom = (round(side * UNITS_PER_MM) for side in (frame.left_mm, frame.bottom_mm))
         return np.column_stack([units[:, 0] + left, bottom - units[:, 1]])
     low, high = units.min(axis=0), units.max(axis=0)
-    centre = (
-        np.array([frame.left_mm + frame.right_mm, frame.top_mm + frame.bottom_mm]) / 2.0
-    )
+    centre = np.array([frame.left_mm + frame.right_mm, frame.top_mm + frame.bottom_mm]) / 2.0
     shift = np.rint(centre * UNITS_PER_MM).astype(np.int64)
     middle = (low + high) // 2
-    return np.column_stack(
-        [units[:, 0] - middle[0] + shift[0], middle[1] - units[:, 1] + shift[1]]
-    )
+    return np.column_stack([units[:, 0] - middle[0] + shift[0], middle[1] - units[:, 1] + shift[1]])
