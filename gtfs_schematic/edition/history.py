@@ -1,12 +1,20 @@
-"""List the editions of a folder, each after the one that it revises."""
+"""List the editions of a folder, each after the one that it revises, and go back to one."""
 
 from __future__ import annotations
 
-from collections.abc import Iterable
-from dataclasses import dataclass
+import os
+from collections.abc import Iterable, Sequence
+from dataclasses import dataclass, replace
 from pathlib import Path
 
-from gtfs_schematic.edition.folder import EDITION_FILE, digest_of_edition, load_edition
+from gtfs_schematic.edition.folder import (
+    EDITION_FILE,
+    FILES,
+    FILES_IF_WANTED,
+    digest_of_edition,
+    load_edition,
+)
+from gtfs_schematic.edition.save import from_json, to_json
 from gtfs_schematic.errors import EditionError, UsageError
 
 
@@ -57,6 +65,61 @@ def editions_in(folder: Path) -> tuple[tuple[Listed, ...], tuple[str, ...]]:
         except EditionError as error:
             faults.append(str(error))
     return _in_order(found), tuple(faults)
+
+
+def latest(listed: Sequence[Listed]) -> Listed:
+    """Give the edition that none revises, the last of them in order if they are several."""
+    revised = {each.previous for each in listed}
+    return [each for each in listed if each.sha256 not in revised][-1]
+
+
+def gone_back_to(folder: Path, name: str) -> tuple[dict[str, bytes], Listed]:
+    """Give the files of an edition like an earlier one, that follows the latest of a folder.
+
+    Nothing is taken away: the editions in between stay, and so does the way to them.
+
+    Parameters
+    ----------
+    folder
+        Of editions.
+    name
+        Folder name of the earlier one.
+
+    Returns
+    -------
+    tuple
+        Its files by name, without a change sheet, and the latest edition, which it names as the
+        one before.
+
+    Raises
+    ------
+    UsageError
+        If there is no such edition, or it is the latest.
+    EditionError
+        If it cannot be read.
+    """
+    listed, faults = editions_in(folder)
+    names = {each.name: each for each in listed}
+    if name not in names:
+        broken = next((fault for fault in faults if f"{folder / name}{os.sep}" in fault), None)
+        if broken:
+            raise EditionError(broken)
+        known = ", ".join(names) or "none"
+        raise UsageError(f"{folder / name}: no edition. Editions there: {known}.")
+    last = latest(listed)
+    if last.name == name:
+        raise UsageError(f"{folder / name} is the latest edition of the folder already.")
+    source = folder / name
+    try:
+        files = {
+            file: (source / file).read_bytes()
+            for file in (*FILES, *FILES_IF_WANTED)
+            if (source / file).is_file() and not file.startswith("changes.")
+        }
+    except OSError as error:
+        raise EditionError(f"{source}: cannot be read ({error.strerror or error}).") from error
+    edition = replace(from_json(files[EDITION_FILE]), previous=last.sha256)
+    return files | {EDITION_FILE: to_json(edition)}, last
 
 
 def _listed(file: Path) -> Listed:
