@@ -132,7 +132,7 @@ def describe(network: Network, *, everything: bool) -> list[str]:
         f"Modes: {_modes(network)}",
         f"Network: {words.size(network)}",
         "Lines:",
-        *(f"  {_line(line, network)}" for line in network.lines),
+        *(f"  {_line(line, network)}" for line in sorted(network.lines, key=_rank)),
         *words.left_out(network.left_out, everything=everything, where=where),
         *words.findings(network.findings, everything=everything, where=where),
         *(f"Suggestion: {each}" for each in advice.suggestions(network)),
@@ -142,6 +142,14 @@ def describe(network: Network, *, everything: bool) -> list[str]:
 def _modes(network: Network) -> str:
     modes = Counter(line.mode for line in network.lines)
     return ", ".join(f"{mode} ({words.count(modes[mode], 'line')})" for mode in sorted(modes))
+
+
+def _rank(line: Line) -> tuple[object, ...]:
+    """Give what lines are sorted by for people: mode, the feed's wish, name."""
+    from gtfs_schematic.network.naming import natural_key
+
+    wish = (1, 0) if line.sort_order is None else (0, line.sort_order)
+    return (line.mode, wish, natural_key(line.name), line.id)
 
 
 def _line(line: Line, network: Network) -> str:

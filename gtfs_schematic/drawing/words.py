@@ -95,7 +95,8 @@ def _filled(text: str, width: float, size: float, *, bold: bool) -> tuple[str, .
 def natural(text: str) -> tuple[tuple[int, int, str], ...]:
     """Give a sort key that puts line 2 before line 10."""
     return tuple(
-        (0, int(part), "") if part.isdecimal() else (1, 0, part.casefold())
+        # Python turns no text of thousands of digits into a number.
+        (0, int(part), "") if part.isdecimal() and len(part) < 19 else (1, 0, part.casefold())
         for part in _NATURAL.split(text)
         if part
     )

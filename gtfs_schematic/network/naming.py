@@ -48,4 +48,5 @@ def loose_key(name: str) -> str:
 def natural_key(text: str) -> tuple[tuple[int, int, str], ...]:
     """Give a sort key under which "9" comes before "10", and "10" before "10A"."""
     parts = re.findall(r"\d+|\D+", text)
-    return tuple((0, int(p), "") if p.isdecimal() else (1, 0, p) for p in parts)
+    # Python turns no text of thousands of digits into a number.
+    return tuple((0, int(p), "") if p.isdecimal() and len(p) < 19 else (1, 0, p) for p in parts)

@@ -275,3 +275,4 @@ def test_names_that_only_look_alike():
 
 def test_natural_order():
     assert sorted(["10", "9", "10A", "X1", "1"], key=natural_key) == ["1", "9", "10", "10A", "X1"]
+    assert natural_key("9" * 5000) > natural_key("10")
