@@ -14,6 +14,7 @@ import numpy as np
 from gtfs_schematic.drift.ground import local_metres
 from gtfs_schematic.drift.placed import TimedPattern
 from gtfs_schematic.feed.model import Pattern, Timetable
+from gtfs_schematic.network.between import from_station_to_station
 from gtfs_schematic.network.model import Network
 
 _ON_FOOT = frozenset([0, 1, 2])
@@ -81,7 +82,7 @@ class _Drawn:
         self._at = {s.id: complex(p) for s, p in zip(network.stations, places, strict=True)}
         self._tracks: dict[str, nx.Graph] = {line.id: nx.Graph() for line in network.lines}
         self._known: dict[tuple[str, str, str], bool] = {}
-        for link in network.links:
+        for link in from_station_to_station(network):
             length = abs(self._at[link.start] - self._at[link.end])
             for line in link.lines:
                 self._tracks[line].add_edge(link.start, link.end, length=length)

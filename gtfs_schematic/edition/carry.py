@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Collection, Mapping
 from dataclasses import replace
 
+from gtfs_schematic.drift.ground import local_metres
 from gtfs_schematic.edition.identity import Match, Matches
 from gtfs_schematic.edition.model import Edition, EditionLine
 from gtfs_schematic.edition.roster import Roster, RosterLine
@@ -12,6 +13,9 @@ from gtfs_schematic.network.links import link_id
 from gtfs_schematic.network.model import Line, Link, Network, Station, Walk
 from gtfs_schematic.network.smooth import corridors_of
 from gtfs_schematic.network.transfers import walk_id
+
+_SAME_JUNCTION_M = 150.0
+"""A junction no further off than this is the one that the edition has, metres."""
 
 
 def with_carried_ids(network: Network, edition: Edition | Roster, matches: Matches) -> Network:
@@ -21,8 +25,9 @@ def with_carried_ids(network: Network, edition: Edition | Roster, matches: Match
     whose color this program chose keeps the one that riders know.
     """
     stations, lines = names_of(network, edition, matches)
+    nodes = stations | _junction_names(network, edition)
     known = {line.id: line for line in edition.lines}
-    links = _links(network, stations, lines)
+    links = _links(network, nodes, lines)
     walks = _walks(network, stations)
     groups: dict[str, str] = {}
     for station in network.stations:
@@ -37,10 +42,38 @@ def with_carried_ids(network: Network, edition: Edition | Roster, matches: Match
         links=links,
         walks=walks,
         lines=tuple(
-            sorted((_colored(_line(k, stations, lines), known) for k in network.lines), key=_id)
+            sorted((_colored(_line(k, nodes, lines), known) for k in network.lines), key=_id)
         ),
         corridors=corridors_of(renamed, links),
+        junctions=tuple(
+            sorted((replace(j, id=nodes[j.id]) for j in network.junctions), key=lambda j: j.id)
+        ),
     )
+
+
+def _junction_names(network: Network, edition: Edition | Roster) -> dict[str, str]:
+    """Give junctions the ids that the nearest have in the edition, if they are the same place."""
+    old = edition.junctions if isinstance(edition, Edition) else ()
+    places = [(j.lon, j.lat) for j in old] + [(j.lon, j.lat) for j in network.junctions]
+    metres = [complex(at) for at in local_metres(places)] if places else []
+    pairs = sorted(
+        (abs(p - q), a.id, b.id)
+        for a, p in zip(old, metres, strict=False)
+        for b, q in zip(network.junctions, metres[len(old) :], strict=True)
+    )
+    names: dict[str, str] = {}
+    for gap, was, now in pairs:
+        if gap <= _SAME_JUNCTION_M and now not in names and was not in names.values():
+            names[now] = was
+    taken = {s.id for s in (*edition.stations, *network.stations)} | {j.id for j in old}
+    for junction in network.junctions:
+        if junction.id not in names:
+            name = junction.id
+            while name in taken:
+                name += "+"
+            names[junction.id] = name
+            taken.add(name)
+    return names
 
 
 def names_of(

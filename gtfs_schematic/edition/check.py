@@ -14,11 +14,14 @@ _NEAR_MM = 0.01
 def faults(edition: Edition) -> tuple[str, ...]:
     """List what contradicts itself in an edition; empty if nothing does."""
     stations = {station.id: station for station in edition.stations}
+    places = edition.places
     lines = {line.id for line in edition.lines}
     paths: tuple[EditionLink | EditionWalk, ...] = (*edition.links, *edition.walks)
     found = [
         *_repeated("station", (station.id for station in edition.stations)),
-        *_repeated("link", (joined.id for joined in paths)),
+        *_repeated("link", (joined.id for joined in (*paths, *edition.parts))),
+        *_repeated("junction", [each.id for each in edition.junctions]),
+        *(f"junction {j.id} is a station, too" for j in edition.junctions if j.id in stations),
         *_repeated("line", (line.id for line in edition.lines)),
     ]
     for station in edition.stations:
@@ -27,7 +30,15 @@ def faults(edition: Edition) -> tuple[str, ...]:
         if station.group not in stations:
             found.append(f"station {station.id}: group {station.group} is no station")
         found += _unknown(f"station {station.id}", "line", station.lines, lines)
-    for link in edition.links:
+    for link in (*edition.links, *edition.parts):
+        found += _unknown(
+            f"link {link.id}", "junction", link.via, (j.id for j in edition.junctions)
+        )
+        found += [
+            f"link {link.id}: its path does not lead through junction {key}"
+            for key in link.via
+            if key in places and all(math.dist(places[key], p) > _NEAR_MM for p in link.path_mm)
+        ]
         found += _unknown(f"link {link.id}", "line", link.lines, lines)
         found += _repeated(f"link {link.id}: line", link.lines)
     for line in edition.lines:
@@ -38,8 +49,10 @@ def faults(edition: Edition) -> tuple[str, ...]:
         missing = _unknown(f"link {joined.id}", "station", (joined.start, joined.end), stations)
         found += missing
         if not missing:
-            ends = [(stations[end].x_mm, stations[end].y_mm) for end in (joined.start, joined.end)]
-            found += _loose(joined, ends)
+            found += _loose(joined, [places[joined.start], places[joined.end]])
+    for part in edition.parts:
+        missing = _unknown(f"part {part.id}", "end", (part.start, part.end), places)
+        found += missing or _loose(part, [places[part.start], places[part.end]])
     return tuple(found)
 
 

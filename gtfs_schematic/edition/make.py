@@ -5,11 +5,12 @@ from __future__ import annotations
 from collections.abc import Iterable, Mapping, Sequence
 
 from gtfs_schematic.drift.timing import Timing
+from gtfs_schematic.edition.links import links_of, parts_of
 from gtfs_schematic.edition.model import (
     Edition,
     EditionFeed,
+    EditionJunction,
     EditionLine,
-    EditionLink,
     EditionStation,
     EditionWalk,
 )
@@ -58,15 +59,18 @@ def edition_of(
         width_mm=layout.sheet.width_mm,
         height_mm=layout.sheet.height_mm,
         stations=_stations(labelled, timing, stop_codes or {}),
-        links=tuple(
-            EditionLink(k.id, k.start, k.end, bundled.orders[k.id], _path(layout.paths[k.id]))
-            for k in network.links
-        ),
+        links=links_of(layout, bundled.orders, _path),
         lines=tuple(_line(line) for line in network.lines),
         left_out=tuple((item.kind, item.id, item.reason) for item in network.left_out),
         findings=tuple(sentence(finding) for finding in network.findings),
         walks=_walks(layout),
         patterns=timing.patterns,
+        junctions=tuple(
+            EditionJunction(j.id, j.lon, j.lat, *_path([layout.positions[j.id]])[0])
+            for j in network.junctions
+        ),
+        parts=parts_of(layout, bundled.orders, _path),
+        rotation_deg=layout.rotation_deg,
     )
 
 

@@ -57,6 +57,19 @@ class EditionLink:
     end: str
     lines: tuple[str, ...]
     path_mm: tuple[Point, ...]
+    via: tuple[str, ...] = ()
+    """Ids of the junctions on it; its path leads through them."""
+
+
+@dataclass(frozen=True, slots=True)
+class EditionJunction:
+    """Where lines join or part between stations; nothing is drawn there but they."""
+
+    id: str
+    lon: float
+    lat: float
+    x_mm: float
+    y_mm: float
 
 
 @dataclass(frozen=True, slots=True)
@@ -103,6 +116,8 @@ class Edition:
     height_mm: float
     stations: tuple[EditionStation, ...]
     links: tuple[EditionLink, ...]
+    """From station to station; those that run together lie on each other from junction to
+    junction."""
     lines: tuple[EditionLine, ...]
     left_out: tuple[tuple[str, str, str], ...] = ()
     """(kind, id, reason) of everything in the feed that the diagram does not show."""
@@ -118,3 +133,20 @@ class Edition:
     """SHA-256 of the `state.json` beside it (see state.py); empty for none."""
     adjustments: Mapping[str, Any] = field(default_factory=dict)
     """What a person overrode, as nested tables (see adjustments.py)."""
+    junctions: tuple[EditionJunction, ...] = ()
+    parts: tuple[EditionLink, ...] = ()
+    """What links over junctions are made of: from a station or junction to a junction, each once
+    and with all its lines."""
+    rotation_deg: float = 0.0
+    """Counter-clockwise turn of the ground on the sheet: so far left of the top is north."""
+
+    @property
+    def drawn(self) -> tuple[EditionLink, ...]:
+        """What is drawn, each once: links over no junction, and the parts of the others."""
+        return (*(link for link in self.links if not link.via), *self.parts)
+
+    @property
+    def places(self) -> dict[str, Point]:
+        """Per station and junction its place on the sheet, millimetres."""
+        stations = {station.id: (station.x_mm, station.y_mm) for station in self.stations}
+        return stations | {each.id: (each.x_mm, each.y_mm) for each in self.junctions}

@@ -8,6 +8,7 @@ from collections.abc import Sequence
 from dataclasses import dataclass, field, replace
 
 from gtfs_schematic.errors import UsageError
+from gtfs_schematic.network.between import agreed
 from gtfs_schematic.network.kinds import kinds_of
 from gtfs_schematic.network.links import links_of
 from gtfs_schematic.network.model import Line, Network, Station, Walk
@@ -111,13 +112,15 @@ def rebuilt(network: Network, draft: Draft) -> Network:
     kept = {line: draft.ways[line] for line in sorted(draft.lines)}
     # A station at which nothing calls any more is no station.
     called = {s for some in kept.values() for calls, _ in some if len(calls) > 1 for s in calls}
+    called |= network.junction.keys()
     ways = {line: _trimmed(some, called) for line, some in kept.items()}
-    ways = {line: some for line, some in ways.items() if some}
+    ways = agreed({line: some for line, some in ways.items() if some}, network.junction)
     if not ways:
         raise UsageError("The adjustments hide every line: nothing is left to draw.")
     links = links_of({line: [course for _, course in some] for line, some in ways.items()})
     linked = {frozenset((k.start, k.end)) for k in links}
-    calls: dict[str, set[str]] = {s: set() for k in links for s in (k.start, k.end)}
+    ends = {end for k in links for end in (k.start, k.end)}
+    calls: dict[str, set[str]] = {s: set() for s in ends - network.junction.keys()}
     for line, some in ways.items():
         for itinerary, _ in some:
             for station in itinerary:
@@ -146,6 +149,7 @@ def rebuilt(network: Network, draft: Draft) -> Network:
         walks=tuple(sorted(walks, key=lambda walk: walk.id)),
         lines=tuple(_line(draft.lines[key], some) for key, some in ways.items()),
         corridors=corridors_of(stations, links),
+        junctions=tuple(j for j in network.junctions if j.id in ends),
     )
 
 

@@ -8,6 +8,7 @@ from dataclasses import dataclass
 from functools import cached_property
 
 from gtfs_schematic.edition.model import Edition
+from gtfs_schematic.network.between import from_station_to_station
 from gtfs_schematic.network.model import Network
 
 
@@ -156,6 +157,6 @@ def roster_of_network(
             )
             for k in network.lines
         ),
-        tuple((k.start, k.end, k.lines) for k in network.links),
+        tuple((k.start, k.end, k.lines) for k in from_station_to_station(network)),
         tuple((w.start, w.end, w.time_s) for w in network.walks),
     )  # fmt: skip

@@ -14,6 +14,7 @@ from gtfs_schematic.edition.check import faults
 from gtfs_schematic.edition.model import (
     Edition,
     EditionFeed,
+    EditionJunction,
     EditionLine,
     EditionLink,
     EditionStation,
@@ -22,7 +23,15 @@ from gtfs_schematic.edition.model import (
 from gtfs_schematic.errors import EditionError
 
 Row = dict[str, Any]
-_Row = EditionFeed | EditionStation | EditionLine | EditionLink | EditionWalk | TimedPattern
+_Row = (
+    EditionFeed
+    | EditionStation
+    | EditionLine
+    | EditionLink
+    | EditionWalk
+    | EditionJunction
+    | TimedPattern
+)
 
 FORMAT = "gtfs-schematic/edition"
 VERSION = 1
@@ -54,6 +63,7 @@ class _Feed(_Part):
 class _Sheet(_Part):
     width_mm: float = Field(gt=0.0)
     height_mm: float = Field(gt=0.0)
+    rotation_deg: float = 0.0
 
 
 class _Station(_Part):
@@ -80,6 +90,15 @@ class _Link(_Part):
     end: str = Field(alias="to")
     lines: list[str]
     path_mm: PathMm
+    via: list[str] = []
+
+
+class _Junction(_Part):
+    id: str
+    lon: Degrees
+    lat: Annotated[float, Field(ge=-90.0, le=90.0)]
+    x_mm: float
+    y_mm: float
 
 
 class _Walk(_Part):
@@ -129,6 +148,8 @@ class _Document(_Part):
     links: list[_Link]
     lines: list[_Line]
     walks: list[_Walk] = []
+    junctions: list[_Junction] = []
+    parts: list[_Link] = []
     patterns: list[_Pattern] = []
     left_out: list[_LeftOut] = []
     findings: list[str] = []
@@ -155,7 +176,11 @@ def to_json(edition: Edition) -> bytes:
         "made_by": f"gtfs-schematic {version('gtfs-schematic')}",
         "title": edition.title,
         "feed": _plain(edition.feed),
-        "sheet": {"width_mm": edition.width_mm, "height_mm": edition.height_mm},
+        "sheet": {
+            "width_mm": edition.width_mm,
+            "height_mm": edition.height_mm,
+            **({"rotation_deg": edition.rotation_deg} if edition.rotation_deg else {}),
+        },
         "previous": edition.previous,
         "state_sha256": edition.state_sha256,
         "settings": edition.settings,
@@ -165,6 +190,8 @@ def to_json(edition: Edition) -> bytes:
         "stations": [_plain(station) for station in edition.stations],
         "links": [_plain(link) for link in edition.links],
         "walks": [_plain(walk) for walk in edition.walks],
+        "junctions": [_plain(junction) for junction in edition.junctions],
+        "parts": [_plain(part) for part in edition.parts],
         "lines": [_plain(line) for line in edition.lines],
         "patterns": [_plain(pattern) for pattern in edition.patterns],
         "left_out": [{"kind": k, "id": i, "reason": r} for k, i, r in edition.left_out],
@@ -221,6 +248,7 @@ def _edition(document: _Document) -> Edition:
         feed=EditionFeed(**document.feed.model_dump()),
         width_mm=document.sheet.width_mm,
         height_mm=document.sheet.height_mm,
+        rotation_deg=document.sheet.rotation_deg,
         stations=tuple(EditionStation(**_frozen(part)) for part in document.stations),
         links=tuple(EditionLink(**_frozen(part)) for part in document.links),
         lines=tuple(EditionLine(**_frozen(part)) for part in document.lines),
@@ -228,6 +256,8 @@ def _edition(document: _Document) -> Edition:
         findings=tuple(document.findings),
         walks=tuple(EditionWalk(**_frozen(part)) for part in document.walks),
         patterns=tuple(TimedPattern(**_frozen(part)) for part in document.patterns),
+        junctions=tuple(EditionJunction(**_frozen(part)) for part in document.junctions),
+        parts=tuple(EditionLink(**_frozen(part)) for part in document.parts),
         previous=document.previous,
         state_sha256=document.state_sha256,
         settings=document.settings,
@@ -250,8 +280,11 @@ def _tuples(value: Any) -> Any:  # noqa: ANN401 - JSON holds any of its kinds
 
 
 def _plain(value: _Row) -> Row:
-    """Give a part's fields by name, `start` and `end` as "from" and "to"."""
-    return {_NAMES.get(part.name, part.name): getattr(value, part.name) for part in fields(value)}
+    """Give a part's fields by name, `start` and `end` as "from" and "to"; no empty `via`."""
+    row = {_NAMES.get(part.name, part.name): getattr(value, part.name) for part in fields(value)}
+    if row.get("via") == ():
+        del row["via"]
+    return row
 
 
 def _dump(value: object) -> str:

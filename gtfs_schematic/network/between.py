@@ -3,8 +3,8 @@
 from __future__ import annotations
 
 import itertools
-from collections import defaultdict
-from collections.abc import Collection, Container, Iterable, Sequence
+from collections import Counter, defaultdict
+from collections.abc import Collection, Container, Iterable, Mapping, Sequence
 from dataclasses import dataclass
 
 from gtfs_schematic.network.links import link_id
@@ -58,6 +58,53 @@ def cut_at_stations(course: Sequence[str], junctions: Container[str]) -> list[Id
     """Cut a course at its stations; every part begins and ends at one."""
     cuts = [i for i, node in enumerate(course) if node not in junctions]
     return [tuple(course[i : j + 1]) for i, j in itertools.pairwise(cuts)]
+
+
+def agreed(
+    ways: Mapping[str, Sequence[tuple[Ids, Ids]]], junctions: Container[str]
+) -> dict[str, tuple[tuple[Ids, Ids], ...]]:
+    """Let all lines run over the same junctions between two stations, and over no idle ones.
+
+    Parameters
+    ----------
+    ways
+        Per line id its (itinerary, course) pairs.
+    junctions
+        Which nodes of the courses are junctions.
+    """
+    while True:
+        courses = [course for some in ways.values() for _, course in some]
+        count = Counter(
+            part if part[0] < part[-1] else part[::-1]
+            for course in courses
+            for part in cut_at_stations(course, junctions)
+        )
+        best: dict[tuple[str, str], Ids] = {}
+        for part in sorted(count, key=lambda part: (-count[part], len(part), part)):
+            best.setdefault((part[0], part[-1]), part)
+        named = {node for course in courses for node in course if node in junctions}
+        idle = idle_junctions([best[part[0], part[-1]] for part in count], named)
+        fresh = {
+            line: tuple((calls, _over(course, best, idle, junctions)) for calls, course in some)
+            for line, some in ways.items()
+        }
+        if fresh == ways:
+            return fresh
+        ways = fresh
+
+
+def _over(
+    course: Ids,
+    best: Mapping[tuple[str, str], Ids],
+    idle: Container[str],
+    junctions: Container[str],
+) -> Ids:
+    """Write a course over the best way from station to station, without idle junctions."""
+    over = [course[0]]
+    for part in cut_at_stations(course, junctions):
+        a, b = part[0], part[-1]
+        over += (best[a, b] if a < b else best[b, a][::-1])[1:]
+    return tuple(node for node in over if node not in idle)
 
 
 def idle_junctions(courses: Iterable[Sequence[str]], junctions: Collection[str]) -> frozenset[str]:
