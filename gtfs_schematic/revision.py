@@ -145,8 +145,8 @@ def _layout(
     before: Edition, network: Network, settings: Settings, progress: Progress
 ) -> Revised | None:
     """Lay the network out beside what stands, on the same sheet; None if there is no room."""
-    positions = {s.id: (s.x_mm, s.y_mm) for s in before.stations}
-    paths = {link.id: link.path_mm for link in before.links}
+    positions = before.places
+    paths = {link.id: link.path_mm for link in before.drawn}
     paths |= {walk.id: walk.path_mm for walk in before.walks}
     clearances = clearances_of(network, settings.bundles, settings.labels)
     for frame in _frames(before, network, settings):

@@ -123,8 +123,8 @@ def layout_of(edition: Edition, drawn: Drawn, network: Network) -> Layout:
     return Layout(
         network,
         drawn.sheet,
-        {s.id: (s.x_mm, s.y_mm) for s in edition.stations},
-        {k.id: k.path_mm for k in edition.links},
+        edition.places,
+        {k.id: k.path_mm for k in edition.drawn},
         {w.id: w.path_mm for w in edition.walks},
         drawn.crossings,
     )
