@@ -6,6 +6,7 @@ from collections.abc import Mapping
 from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING
 
+from gtfs_schematic.background.model import Background
 from gtfs_schematic.config import Settings, settings_of, with_wishes
 from gtfs_schematic.drawing import check as drawing_check
 from gtfs_schematic.drawing.compose import compose
@@ -39,11 +40,13 @@ from gtfs_schematic.progress import Progress, Silent
 
 if TYPE_CHECKING:
     from gtfs_schematic import replacing
+    from gtfs_schematic.background import build as backdrop
     from gtfs_schematic.drawing import png
     from gtfs_schematic.drift import measure
 else:
     # What most adjustments do not need is loaded when it is.
     replacing = lazily("gtfs_schematic.replacing")
+    backdrop = lazily("gtfs_schematic.background.build")
     measure = lazily("gtfs_schematic.drift.measure")
     png = lazily("gtfs_schematic.drawing.png")
 
@@ -115,7 +118,10 @@ def adjust_edition(
     labelled = _labelled(before, state, (old, new), settings, progress)
 
     progress.phase("composing the sheet")
-    drawing = compose(labelled, settings.drawing)
+    background = Background()
+    if settings.background.files:
+        background = backdrop.lay_background(labelled, settings.background)
+    drawing = compose(labelled, settings.drawing, background)
     found = drawing_check.faults(
         drawing, new.network, unnamed=labelled.unplaced, said_as=labelled.abbreviated
     )

@@ -68,6 +68,7 @@ def replaced(
         layout.positions,
         {**layout.paths, **layout.walk_paths},
         layout.sheet,
+        rotation_deg=layout.rotation_deg,
     )
     mover = _Mover(network, wishes, clearances, progress)
     frames = _frames(layout, (old, network), settings)
@@ -119,12 +120,11 @@ class _Mover:
         found = self._revised(standing, pins, _NEAR if off else None)
         if found is None and off:
             # With its links laid anew a station often needs nobody else to move.
-            tries = (
-                lambda: self._relaid(standing, off, _NEAR),
-                lambda: self._revised(standing, pins, None),
-                lambda: self._relaid(standing, off, None),
-            )
-            found = next((layout for each in tries if (layout := each()) is not None), None)
+            found = self._relaid(standing, off, _NEAR)
+            if found is None:
+                found = self._revised(standing, pins, None)
+            if found is None:
+                found = self._relaid(standing, off, None)
         return found
 
     def turned(self, layout: Layout) -> Layout:
@@ -146,7 +146,10 @@ class _Mover:
                 continue
             tried += 1
             standing = Standing(
-                layout.positions, {**layout.paths, **layout.walk_paths}, layout.sheet
+                layout.positions,
+                {**layout.paths, **layout.walk_paths},
+                layout.sheet,
+                rotation_deg=layout.rotation_deg,
             )
             found = self._relaid(standing, {station: place}, _NEAR)
             worse = found is None or any(
@@ -190,7 +193,7 @@ class _Mover:
             for key, path in standing.paths.items()
             if not ends.get(key, set()) & set(places)
         }
-        moved = Standing({**standing.positions, **places}, paths, standing.frame)
+        moved = replace(standing, positions={**standing.positions, **places}, paths=paths)
         pins = self._pins(moved.positions) | dict(places)
         return self._revised(moved, pins, reach)
 
