@@ -162,17 +162,19 @@ def _short_names(result: Result) -> list[str]:
 
 def _letters(result: Result) -> list[str]:
     """Say which names hold characters that the typeface lacks."""
-    from gtfs_schematic.labels.fonts import missing_characters
+    from gtfs_schematic.labels.fonts import advice_on, missing_characters
 
-    rows = []
+    rows, lacking = [], set()
     for station in result.network.stations:
         missing = missing_characters(station.name + station.second_name)
         if missing:
             rows.append(f"{station.name} ({station.id}): {' '.join(missing)}")
+            lacking.update(missing)
     if not rows:
         return []
     head = f"Typeface: {words.count(len(rows), 'name')} with characters that it lacks"
-    return [head, *words.first_few(rows, everything=False, where="they are drawn as boxes")]
+    listed = words.first_few(rows, everything=False, where="they are drawn as boxes")
+    return [head, *listed, *filter(None, [advice_on(sorted(lacking))])]
 
 
 def _background(result: Result) -> list[str]:

@@ -8,14 +8,16 @@ Scripts that the typeface lacks come from its sisters; `missing_characters` tell
 from __future__ import annotations
 
 import atexit
+import importlib.util
 import itertools
 import tempfile
-from collections.abc import Iterator
+from collections.abc import Iterable, Iterator
 from dataclasses import dataclass
 from functools import lru_cache
 from pathlib import Path
 from typing import Any
 
+import fontpkg_heebo
 import fontpkg_noto_sans
 import fontpkg_noto_sans_arabic
 import fontpkg_noto_sans_khmer
@@ -24,23 +26,29 @@ import fontpkg_noto_sans_telugu
 import fontpkg_noto_sans_thai
 import uharfbuzz as hb
 
-from gtfs_schematic.labels.scripts import Run, runs_of
+from gtfs_schematic.labels.scripts import Run, runs_of, script_of
 
 FAMILY = "Noto Sans"
 """The CSS family name."""
 REGULAR_WEIGHT = 400.0
 BOLD_WEIGHT = 700.0
 
-_FILES = (
+_VARIABLE = (
     (FAMILY, fontpkg_noto_sans.ROOT / "files" / "NotoSans[wdth,wght].ttf"),
     ("Noto Sans Arabic", fontpkg_noto_sans_arabic.ROOT / "files" / "NotoSansArabic[wdth,wght].ttf"),
     ("Noto Sans Khmer", fontpkg_noto_sans_khmer.ROOT / "files" / "NotoSansKhmer[wdth,wght].ttf"),
     ("Noto Sans Tamil", fontpkg_noto_sans_tamil.ROOT / "files" / "NotoSansTamil[wdth,wght].ttf"),
     ("Noto Sans Telugu", fontpkg_noto_sans_telugu.ROOT / "files" / "NotoSansTelugu[wdth,wght].ttf"),
     ("Noto Sans Thai", fontpkg_noto_sans_thai.ROOT / "files" / "NotoSansThai[wdth,wght].ttf"),
+    ("Heebo", fontpkg_heebo.ROOT / "files" / "Heebo[wght].ttf"),
 )
-"""The typeface, and its sisters in the order in which they are asked for what it lacks."""
-FAMILIES = tuple(family for family, _ in _FILES)
+"""The typeface, and its sisters in the order in which they are asked for what it lacks; each holds
+all weights. Heebo is for Hebrew letters."""
+_CJK = "Noto Sans CJK JP"
+"""Han, Kana and Hangul: asked last, if the extra is installed, in a file per weight."""
+_CJK_PACKAGES = ("noto_cjk_sans_jp_regular", "noto_cjk_sans_jp_bold")
+_CJK_SCRIPTS = frozenset({"Hani", "Hira", "Kana", "Hang", "Bopo"})
+FAMILIES = (*(family for family, _ in _VARIABLE), _CJK)
 """CSS family names; a font is known by its index here."""
 _REGULAR_TO_BOLD = ("Regular".encode("utf-16-be"), "Bold".encode("utf-16-be"))
 
@@ -77,10 +85,12 @@ class Metrics:
     x_height: float
 
 
-@lru_cache(maxsize=2 * len(_FILES))
+@lru_cache(maxsize=2 * len(FAMILIES))
 def font_data(*, bold: bool = False, font: int = 0) -> bytes:
-    """Give the TrueType file of one weight, cut from the variable font in memory."""
-    face = hb.Face(hb.Blob.from_file_path(str(_FILES[font][1])))
+    """Give the font file of one weight: as it is, or cut from the variable font in memory."""
+    if font == len(_VARIABLE):
+        return _cjk_files()[bold].read_bytes()
+    face = hb.Face(hb.Blob.from_file_path(str(_VARIABLE[font][1])))
     wanted = hb.SubsetInput()
     wanted.keep_everything()
     weight = BOLD_WEIGHT if bold else REGULAR_WEIGHT
@@ -89,6 +99,17 @@ def font_data(*, bold: bool = False, font: int = 0) -> bytes:
         wanted.pin_axis_location(face, axis.tag, value)
     data = bytes(hb.subset(face, wanted).blob.data)
     return _named_bold(data) if bold else data
+
+
+@lru_cache(maxsize=1)
+def _cjk_files() -> tuple[Path, ...]:
+    """Give the files of Han, Kana and Hangul, regular and bold; none if they are not installed."""
+    files: list[Path] = []
+    for package in _CJK_PACKAGES:
+        spec = importlib.util.find_spec(package)
+        if spec is not None and spec.origin is not None:
+            files += sorted(Path(spec.origin).parent.glob("*.otf"))[:1]
+    return tuple(files) if len(files) == len(_CJK_PACKAGES) else ()
 
 
 def _named_bold(data: bytes) -> bytes:
@@ -163,11 +184,13 @@ def _by_font(run: Run, *, bold: bool) -> Iterator[tuple[int, Run]]:
 
 def _font_for(character: str, *, bold: bool) -> int:
     """Give the first font that has a character, the typeface itself if none has."""
-    return next((i for i in range(len(_FILES)) if _has(i, character, bold=bold)), 0)
+    return next((i for i in range(len(FAMILIES)) if _has(i, character, bold=bold)), 0)
 
 
 @lru_cache(maxsize=65536)
 def _has(font: int, character: str, *, bold: bool) -> bool:
+    if font == len(_VARIABLE) and not _cjk_files():
+        return False
     return bool(_font(font, bold=bold).get_nominal_glyph(ord(character)))
 
 
@@ -219,9 +242,17 @@ def missing_characters(text: str, *, bold: bool = False) -> tuple[str, ...]:
             character
             for character in set(text)
             if not character.isspace()
-            and not any(_has(i, character, bold=bold) for i in range(len(_FILES)))
+            and not any(_has(i, character, bold=bold) for i in range(len(FAMILIES)))
         )
     )
+
+
+def advice_on(characters: Iterable[str]) -> str:
+    """Say what to install for characters that no font has; "" if nothing is known to help."""
+    wanted = any(script_of(character) in _CJK_SCRIPTS for character in characters)
+    if wanted and not _cjk_files():
+        return 'Han, Kana and Hangul need their fonts: pip install "gtfs-schematic[cjk]"'
+    return ""
 
 
 @lru_cache(maxsize=1)
@@ -232,13 +263,13 @@ def _folder() -> tempfile.TemporaryDirectory[str]:
     return folder
 
 
-@lru_cache(maxsize=2 * len(_FILES))
+@lru_cache(maxsize=2 * len(FAMILIES))
 def _font(font: int, *, bold: bool) -> Any:  # noqa: ANN401 - the library ships no types
     """Give the shaper's font of one weight."""
     return hb.Font(hb.Face(font_data(bold=bold, font=font)))
 
 
-@lru_cache(maxsize=2 * len(_FILES))
+@lru_cache(maxsize=2 * len(FAMILIES))
 def _em(font: int, *, bold: bool) -> float:
     """Give the font units per em."""
     return float(_font(font, bold=bold).face.upem)

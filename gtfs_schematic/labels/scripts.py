@@ -99,15 +99,15 @@ def _sides(text: str, *, whole: bool) -> Sequence[bool | None]:
 def _scripts(text: str) -> Sequence[str | None]:
     """Give the script of every character; neutral ones join the run before."""
     found: list[str | None] = []
-    current: str | None = next((s for s in map(_script, text) if s is not None), None)
+    current: str | None = next((s for s in map(script_of, text) if s is not None), None)
     for character in text:
-        current = _script(character) or current
+        current = script_of(character) or current
         found.append(current)
     return found
 
 
 @lru_cache(maxsize=4096)
-def _script(character: str) -> str | None:
+def script_of(character: str) -> str | None:
     """Give the script of a character as the shaper knows it, None if it serves any script."""
     buffer = hb.Buffer()
     buffer.add_str(character)

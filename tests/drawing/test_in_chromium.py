@@ -32,7 +32,15 @@ NS = "{http://www.w3.org/2000/svg}"
 def drawing() -> Drawing:
     layout = drawn_networks.ribbon()
     stations = layout.network.stations
-    names = ("محطة الرملة", "สถานีกลาง", "هلال 12 Port", "நகரம்", "Gare هلال")
+    names = (
+        "محطة الرملة",
+        "สถานีกลาง",
+        "هلال 12 Port",
+        "நகரம்",
+        "Gare هلال",
+        "תל אביב",
+        "大崎 서울역",
+    )
     renamed = (replace(s, name=name) for s, name in zip(stations, names, strict=False))
     network = replace(layout.network, stations=(*renamed, *stations[len(names) :]))
     layout = drawn_sheets.on_page(replace(layout, network=network), "A4")

@@ -103,7 +103,18 @@ def small(*texts: str) -> Drawing:
 
 
 @pytest.mark.parametrize(
-    "text", ["Affenfels", "Schifflände", "Fluß am Hof", "Ελληνικό", "Жуковка", "Ōsaki Nguyễn"]
+    "text",
+    [
+        "Affenfels",
+        "Schifflände",
+        "Fluß am Hof",
+        "Ελληνικό",
+        "Жуковка",
+        "Ōsaki Nguyễn",
+        "大崎",
+        "みなとみらい",
+        "서울역",
+    ],
 )
 def test_ligatures_and_other_alphabets_read_back_letter_by_letter(text: str):
     page = pypdf.PdfReader(io.BytesIO(to_pdf(small(text)))).pages[0]

@@ -82,11 +82,52 @@ def test_names_beyond_latin_are_covered_and_others_reported():
         "محطة الرملة",
         "สถานีกลาง",
         "நகரம்",
+        "תל אביב–השלום ת״א",
+        "東京駅",
+        "みなとみらい",
+        "서울역",
+        "臺北車站",
     ):
         assert fonts.missing_characters(name) == ()
         assert all(glyph.glyph_id != 0 for glyph in glyphs(name))
-    assert fonts.missing_characters("東 Port 京東") == ("京", "東")
-    assert glyphs("東")[0].glyph_id == 0
+    assert fonts.missing_characters("አዲ Port አ") == ("አ", "ዲ")
+    assert glyphs("አ")[0].glyph_id == 0
+    assert fonts.advice_on("አ") == ""
+
+
+def test_without_the_extra_it_is_said_what_to_install(monkeypatch):
+    """As on a machine where the large fonts are not installed."""
+    forget = (fonts._has, fonts.shaped, fonts._cjk_files)
+    monkeypatch.setattr(fonts, "_CJK_PACKAGES", ("no_such_fonts",))
+    for each in forget:
+        each.cache_clear()
+    try:
+        assert fonts.missing_characters("東 Port 京東") == ("京", "東")
+        assert glyphs("東")[0].glyph_id == 0
+        for text in ("東", "ひ", "カ", "역"):
+            assert "[cjk]" in fonts.advice_on(text)
+        assert fonts.advice_on("ж") == ""
+    finally:
+        monkeypatch.undo()
+        for each in forget:
+            each.cache_clear()
+
+
+@WEIGHTS
+@pytest.mark.parametrize("name", ["東京駅", "みなとみらい", "서울역", "תל אביב"])
+def test_other_letters_are_as_wide_as_their_fonts_tables_say(name: str, bold: bool):  # noqa: FBT001
+    """A second reading of the same files: fontTools' metrics table, no kerning in these names."""
+    (run,) = fonts.shaped(name, bold=bold)
+    font = TTFont(io.BytesIO(fonts.font_data(bold=bold, font=run.font)))
+    characters, widths = font.getBestCmap(), font["hmtx"].metrics
+    expected = sum(widths[characters[ord(c)]][0] for c in name) / font["head"].unitsPerEm
+    assert fonts.text_width_mm(name, 10.0, bold=bold) == pytest.approx(10.0 * expected, rel=0.02)
+
+
+def test_hebrew_runs_from_the_right():
+    (run,) = fonts.shaped("תל אביב")
+    assert run.rtl
+    assert [glyph.cluster for glyph in run.glyphs] == list(range(6, -1, -1))
 
 
 def test_devanagari_is_shaped_also_after_latin():
