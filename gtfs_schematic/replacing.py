@@ -6,6 +6,7 @@ import itertools
 import math
 from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import replace
+from typing import TYPE_CHECKING
 
 import shapely
 
@@ -25,9 +26,15 @@ from gtfs_schematic.labels.beside import place_beside
 from gtfs_schematic.labels.model import Label, LabelledLayout
 from gtfs_schematic.layout.keep import Standing
 from gtfs_schematic.layout.model import Clearances, Layout, SheetFrame
-from gtfs_schematic.layout.revise import revise_layout
+from gtfs_schematic.lazily import lazily
 from gtfs_schematic.network.model import Link, Network, Walk
 from gtfs_schematic.progress import Progress
+
+if TYPE_CHECKING:
+    from gtfs_schematic.layout import revise
+else:
+    # Only what moves needs it.
+    revise = lazily("gtfs_schematic.layout.revise")
 
 _NEAR = 2
 """Within how many links others may give way at first."""
@@ -200,7 +207,7 @@ class _Mover:
     def _revised(
         self, standing: Standing, pins: Mapping[str, Point], reach: int | None
     ) -> Layout | None:
-        found = revise_layout(
+        found = revise.revise_layout(
             self.network,
             replace(standing, reach=reach),
             self.clearances,
