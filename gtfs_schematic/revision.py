@@ -150,7 +150,7 @@ def _layout(
     paths |= {walk.id: walk.path_mm for walk in before.walks}
     clearances = clearances_of(network, settings.bundles, settings.labels)
     for frame in _frames(before, network, settings):
-        standing = Standing(positions, paths, frame)
+        standing = Standing(positions, paths, frame, rotation_deg=before.rotation_deg)
         pins = settings.layout.pins
         found = revise_layout(network, standing, clearances, pins=pins, progress=progress)
         if found is not None:

@@ -8,6 +8,7 @@ from gtfs_schematic.drawing.furniture import key_group, notes_group, title_group
 from gtfs_schematic.drawing.lines import line_groups, name_groups, walk_groups
 from gtfs_schematic.drawing.model import Drawing, DrawingSettings, Group
 from gtfs_schematic.drawing.page import Page, plan_of_frame
+from gtfs_schematic.drawing.north import north_groups
 from gtfs_schematic.drawing.register import grid_group, reference, register_group
 from gtfs_schematic.drawing.stations import marker_look, station_groups
 from gtfs_schematic.drawing.style import line_styles
@@ -45,6 +46,7 @@ def compose(
         background=settings.background,
         groups=(
             title_group(page, settings),
+            *north_groups(page, layout.rotation_deg, settings),
             *_backdrop(background, layout.sheet, settings),
             *_grid(page, settings),
             Group("walks", tuple(walk_groups(layout, settings))),

@@ -127,6 +127,7 @@ def layout_of(edition: Edition, drawn: Drawn, network: Network) -> Layout:
         {k.id: k.path_mm for k in edition.drawn},
         {w.id: w.path_mm for w in edition.walks},
         drawn.crossings,
+        edition.rotation_deg,
     )
 
 

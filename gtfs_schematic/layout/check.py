@@ -82,14 +82,16 @@ def drifted_too_far(layout: Layout, settings: LayoutSettings) -> list[str]:
     """Name stations that are drawn further from their true places than their limits allow.
 
     Where a true place is on the sheet tells the least-squares fit of scale and shift to all
-    stations, solved by numpy.
+    stations, with the ground turned as the layout says, solved by numpy.
     """
     ids = [station.id for station in layout.network.stations]
     limits = [settings.drift_limits_m.get(key, settings.drift_limit_m) for key in ids]
     if not any(limits) and not settings.drift_limit_mm:
         return []
     ground = _ground(layout)
-    east_north = np.array([ground[key] for key in ids])
+    turn = np.exp(1j * math.radians(layout.rotation_deg))
+    as_drawn = np.array([complex(*ground[key]) for key in ids]) * turn
+    east_north = np.column_stack([as_drawn.real, as_drawn.imag])
     drawn = np.array([layout.positions[key] for key in ids]) * [1.0, -1.0]
     # Unknown: millimetres to the metre, and where the first station's meridian and parallel meet.
     rows = np.zeros((2 * len(ids), 3))

@@ -54,12 +54,14 @@ from gtfs_schematic.layout.settle import (
 )
 from gtfs_schematic.layout.skeleton import Skeleton, build, skeleton_of
 from gtfs_schematic.layout.snap import UNITS_PER_MM, snap
+from gtfs_schematic.layout.turn import best_turn, turned
 from gtfs_schematic.network.model import Network
 from gtfs_schematic.progress import Progress, Silent
 
 _SWEEPS = {"quick": 2, "standard": 8, "thorough": 30}
 _PORTS = 8
-"""Directions in which pieces may leave a vertex."""
+_STEP_DEG = 45.0
+"""Directions in which pieces may leave a vertex, and the angle between two of them."""
 _UNITS = (6, 9, 13, 20, 30, 45)
 """Lattice steps in a spacing, tried in turn; six let all anchors keep three steps' distance."""
 _ROOM = 1.1
@@ -86,6 +88,8 @@ class Placement:
     anchors: NDArray[np.float64]
     """Anchors of the vertices in station spacings, y north, shape (n, 2)."""
     skeleton: Skeleton
+    rotation_deg: float = 0.0
+    """Counter-clockwise turn of the ground."""
 
 
 def lay_out(
@@ -130,6 +134,8 @@ def place(
         raise LayoutError("The network has no links: there is nothing to draw.")
     progress.phase("placing on the ground")
     graph = planarise(network, kept_stations(network, settings))
+    turn = best_turn(graph, settings.fidelity, _STEP_DEG) if settings.north == "best" else 0.0
+    graph = turned(graph, turn)
     settings, anchors = _anchors(graph, settings, progress)
     anchors = remembered(graph, anchors, previous or {})
     graph, anchors = fork(graph, anchors, _PORTS)
@@ -140,7 +146,7 @@ def place(
         # A limit needs a station that the programme of lengths can hold.
         skeleton = at_stations(skeleton)
     anchors = board.anchors[: skeleton.graph.n_vertices]
-    return Placement(network, settings, anchors, skeleton)
+    return Placement(network, settings, anchors, skeleton, turn)
 
 
 def _anchors(
@@ -204,7 +210,8 @@ def fit_sheet(
     pinned = pins_in_frame(skeleton.graph, sizes.settings, frame)
     units = snap(skeleton, points, frozenset(pinned), sizes.relative)
     places = _on_paper(units, frame, centred=not pinned)
-    return restore(network, skeleton, places, frame, part_wants(skeleton.graph, sizes))
+    layout = restore(network, skeleton, places, frame, part_wants(skeleton.graph, sizes))
+    return dataclasses.replace(layout, rotation_deg=placement.rotation_deg)
 
 
 def _board(

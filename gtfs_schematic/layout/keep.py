@@ -22,6 +22,8 @@ class Standing:
     frame: SheetFrame
     reach: int | None = None
     """Links from a change within which stations may give way at most; None: all."""
+    rotation_deg: float = 0.0
+    """Counter-clockwise turn of its ground."""
 
 
 def keep(draft: Draft, standing: Standing) -> None:

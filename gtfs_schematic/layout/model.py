@@ -33,6 +33,8 @@ class LayoutSettings(BaseModel):
     """Per link id where it is to lead from its start, N up the sheet; a strong wish."""
     straights: Mapping[str, tuple[str, ...]] = Field(default_factory=dict)
     """Per station id the lines that are to pass it straight; a strong wish."""
+    north: Literal["up", "best"] = "up"
+    """Whether north is up, or the ground is turned so that links lie near the directions."""
     drift_limit_m: float = Field(default=0.0, ge=0.0)
     """How far any station may be drawn from its true place, by the best fit with north up, in
     metres on the ground; 0 for no limit."""
@@ -111,3 +113,5 @@ class Layout:
     walk_paths: Mapping[str, tuple[Point, ...]]
     """Per walk id the same."""
     crossings: tuple[Crossing, ...]
+    rotation_deg: float = 0.0
+    """Counter-clockwise turn of the ground on the sheet: so far left of the top is north."""

@@ -11,7 +11,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Iterator, Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import shapely
 
@@ -91,7 +91,7 @@ def revise_layout(
         return None
     wanted = pins or {}
     for found in _drafts(draft, standing, old, wanted, even):
-        layout = found.layout()
+        layout = replace(found.layout(), rotation_deg=standing.rotation_deg)
         if not check.faults(layout, clearances, wanted):
             return Revised(layout, _moved(found, standing, wanted, _outside(draft)))
     return None
