@@ -95,7 +95,7 @@ class _KeyArtist:
         row = placed.row
         body = self.type.body
         if row.kind == "heading":
-            text = run(row.bold_text, (x, y + body), body * 1.1, self.settings.ink, bold=True)
+            text = run(row.bold_text[0], (x, y + body), body * 1.1, self.settings.ink, bold=True)
             return Group("key-heading", (text,))
         middle = y + 0.5 * keys.badge_height(self.type)
         start = x + keys.sample_offset(self.key, self.type)
@@ -130,9 +130,7 @@ class _KeyArtist:
     def _words(self, row: KeyRow, at: Point) -> tuple[TextShape, ...]:
         body, ink = self.type.body, self.settings.ink
         base = at[1] + fonts.metrics().cap_height * body / 2.0
-        texts = [(text, False) for text in row.text]
-        if row.bold_text:
-            texts.insert(0, (row.bold_text, True))
+        texts = [(text, True) for text in row.bold_text] + [(text, False) for text in row.text]
         return tuple(
             run(text, (at[0], base + i * LEADING * body), body, ink, bold=bold)
             for i, (text, bold) in enumerate(texts)

@@ -52,7 +52,8 @@ class KeyRow:
     id: str
     name: str
     """What stands in the badge; empty: no badge."""
-    bold_text: str
+    bold_text: tuple[str, ...]
+    """Lines of a heading, or of a line's name that does not fit a badge; before the text."""
     text: tuple[str, ...]
     height: float
 
@@ -157,7 +158,7 @@ def badge_text_width(name: str, type_: TypeScale) -> float:
 
 
 def _heading(text: str, type_: TypeScale) -> KeyRow:
-    return KeyRow("heading", text, "", text, (), 2.0 * type_.body)
+    return KeyRow("heading", text, "", (text,), (), 2.0 * type_.body)
 
 
 def _line_row(line: Line, network: Network, settings: DrawingSettings, type_: TypeScale) -> KeyRow:
@@ -168,20 +169,20 @@ def _line_row(line: Line, network: Network, settings: DrawingSettings, type_: Ty
     often = how_often(line) if settings.show_headways else ""
     words = sentence((title, SERVICE_NOTES[line.service], often))
     text = wrap(words, _MOST_TEXT * type_.body, type_.body)
-    count = len(text) + (0 if in_badge else 1)
+    bold = () if in_badge else wrap(line.name, _MOST_TEXT * type_.body, type_.body, bold=True)
     return KeyRow(
         kind="line",
         id=line.id,
         name=line.name if in_badge else "",
-        bold_text="" if in_badge else line.name,
+        bold_text=bold,
         text=text,
-        height=_row_height(count, type_),
+        height=_row_height(len(bold) + len(text), type_),
     )
 
 
 def _sign_row(sign: str, type_: TypeScale) -> KeyRow:
     text = wrap(SIGNS[sign], _MOST_TEXT * type_.body, type_.body)
-    return KeyRow("sign", sign, "", "", text, _row_height(len(text), type_))
+    return KeyRow("sign", sign, "", (), text, _row_height(len(text), type_))
 
 
 def _row_height(lines: int, type_: TypeScale) -> float:
@@ -195,9 +196,10 @@ def _badge_width(rows: Sequence[KeyRow], type_: TypeScale) -> float:
 
 def _column_width(rows: Sequence[KeyRow], type_: TypeScale) -> float:
     texts = [
-        fonts.text_width_mm(text, type_.body, bold=text == row.bold_text)
+        fonts.text_width_mm(text, type_.body, bold=bold)
         for row in rows
-        for text in (*row.text, row.bold_text)
+        for texts, bold in ((row.bold_text, True), (row.text, False))
+        for text in texts
     ]
     badge = _badge_width(rows, type_)
     before = badge + (0.5 * _GAP if badge else 0.0) * type_.body + (_SAMPLE + _GAP) * type_.body

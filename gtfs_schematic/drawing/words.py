@@ -2,11 +2,12 @@
 
 from __future__ import annotations
 
+import bisect
 import datetime as dt
 import math
 import re
 import unicodedata
-from collections.abc import Sequence
+from collections.abc import Iterator, Sequence
 
 from gtfs_schematic.drawing.model import DrawingSettings, TextShape
 from gtfs_schematic.labels import fonts
@@ -66,24 +67,40 @@ def run(
 def wrap(text: str, width: float, size: float, *, bold: bool = False) -> tuple[str, ...]:
     """Break a text at blanks into as few lines as fit `width` millimetres, about equally long.
 
-    Words stay whole, even where one is wider.
+    Words stay whole, but for those that are wider.
     """
-    best = _filled(text, width, size, bold=bold)
+    words = [
+        part for word in _WORDS.findall(text) for part in _broken(word, width, size, bold=bold)
+    ]
+    best = _filled(words, width, size, bold=bold)
     if len(best) < 2:
         return best
     # Set again ever narrower, as long as that takes no further line.
     for twentieths in range(19, 9, -1):
-        narrower = _filled(text, width * twentieths / 20.0, size, bold=bold)
+        narrower = _filled(words, width * twentieths / 20.0, size, bold=bold)
         if len(narrower) > len(best):
             break
         best = narrower
     return best
 
 
-def _filled(text: str, width: float, size: float, *, bold: bool) -> tuple[str, ...]:
-    """Break a text at blanks, each line as full as `width` allows."""
+def _broken(word: str, width: float, size: float, *, bold: bool) -> Iterator[str]:
+    """Break a word into parts that fit, if it is too wide, and a letter fits."""
+    while len(word) > 1 and fonts.text_width_mm(word, size, bold=bold) > width:
+        fits = bisect.bisect_right(
+            range(1, len(word)),
+            width,
+            key=lambda letters: fonts.text_width_mm(word[:letters], size, bold=bold),
+        )
+        yield word[: max(fits, 1)]
+        word = word[max(fits, 1) :]
+    yield word
+
+
+def _filled(words: Sequence[str], width: float, size: float, *, bold: bool) -> tuple[str, ...]:
+    """Set words in lines, each as full as `width` allows."""
     lines: list[str] = []
-    for word in _WORDS.findall(text):
+    for word in words:
         longer = f"{lines[-1]} {word}" if lines else word
         if lines and fonts.text_width_mm(longer, size, bold=bold) <= width:
             lines[-1] = longer
