@@ -3,12 +3,12 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Container
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import TypeVar
 
 from gtfs_schematic.feed.findings import Notebook
 from gtfs_schematic.feed.model import Severity
-from gtfs_schematic.feed.values import clean_name, parse_whole
+from gtfs_schematic.feed.values import LONGEST_NAME, clean_name, parse_whole
 
 T = TypeVar("T")
 
@@ -44,13 +44,15 @@ def is_usable_id(notebook: Notebook, cell: Cell, seen: Container[str]) -> bool:
 def name_of(notebook: Notebook, cell: Cell) -> str:
     """Give a name that a person reads, cleaned; what had to be cleaned is found."""
     cleaned = clean_name(cell.text)
-    if cleaned != cell.text:
-        cell.found(
-            notebook,
-            "info",
+    if len(cell.text) > LONGEST_NAME and cleaned.endswith("…"):
+        fault = f"text is longer than {LONGEST_NAME} characters; the rest is cut off"
+        replace(cell, text=cleaned).found(notebook, "warning", fault)
+    elif cleaned != cell.text:
+        fault = (
             "text holds line ends, tabs, double spaces or control characters; "
-            "each run of them is taken as one space",
+            "each run of them is taken as one space"
         )
+        cell.found(notebook, "info", fault)
     return cleaned
 
 

@@ -10,6 +10,9 @@ import datetime as dt
 import re
 import unicodedata
 
+LONGEST_NAME = 250
+"""What is longer is no name that a sheet could hold; the rest is cut off."""
+
 _TIME = re.compile(r"(\d{1,3}):([0-5]\d):([0-5]\d)", re.ASCII)
 _DATE = re.compile(r"(\d{4})(\d{2})(\d{2})", re.ASCII)
 _COLOR = re.compile(r"[0-9A-Fa-f]{6}", re.ASCII)
@@ -69,11 +72,11 @@ def is_nowhere(lon: float, lat: float) -> bool:
 
 def is_clean(text: str) -> bool:
     """Tell whether `clean_name` would certainly leave a stripped text as it is."""
-    return text.isprintable() and "  " not in text
+    return len(text) <= LONGEST_NAME and text.isprintable() and "  " not in text
 
 
 def clean_name(text: str) -> str:
-    """Give `text` with every run of white space as one space and no control characters.
+    """Give `text` with white space as single spaces, no control characters, and not too long.
 
     The reference forbids tabs and line ends in values; control characters are not even allowed
     in an XML file. Characters that shape text (zero-width joiners, direction marks) stay.
@@ -81,7 +84,8 @@ def clean_name(text: str) -> str:
     if is_clean(text):
         return text.strip()
     spaced = (" " if char.isspace() else char for char in text)
-    return " ".join("".join(char for char in spaced if not _is_control(char)).split())
+    clean = " ".join("".join(char for char in spaced if not _is_control(char)).split())
+    return clean if len(clean) <= LONGEST_NAME else clean[: LONGEST_NAME - 1].rstrip() + "…"
 
 
 def _is_control(char: str) -> bool:

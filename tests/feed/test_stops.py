@@ -166,3 +166,18 @@ def test_a_stop_without_coordinates_is_found_once(read_town, table):
     assert "tams" in {item.id for item in timetable.left_out if item.kind == "stop"}
     bad = read_town({"stops.txt": table("stops.txt").replace("47.010,8.000", "north,east")})
     assert [(f.row, f.field) for f in bad.findings] == [(5, "stop_lon")]
+
+
+def test_a_name_that_no_sheet_could_hold_is_cut_and_found(read_town, table):
+    text = table("stops.txt").replace("Tamselby", "Tam " * 1000).replace("Parvinholm", "P" * 250)
+    timetable = read_town({"stops.txt": text})
+    names = {stop.id: stop.name for stop in timetable.stops}
+    assert names["parv"] == "P" * 250
+    assert len(names["tams"]) <= 250
+    assert names["tams"].startswith("Tam Tam ")
+    assert names["tams"].endswith("…")
+    assert [(f.severity, f.row, f.value) for f in timetable.findings] == [
+        ("warning", 5, names["tams"])
+    ]
+    long = read_town({"stops.txt": table("stops.txt").replace("Tamselby", "P" * 251)})
+    assert {stop.id: stop.name for stop in long.stops}["tams"] == "P" * 249 + "…"
