@@ -26,6 +26,9 @@ _THIN = 0.1
 _LEAST_CLEARANCE = 0.75
 """Distance that it gets at least."""
 
+_SHORTEST = 0.02
+"""Length, in station spacings, below which a segment counts no more for being short."""
+
 _TRUE = 0.95
 """Fidelity from which on the ground itself is wanted, wherever it runs."""
 
@@ -60,6 +63,16 @@ def anchor_points(graph: PlaneGraph, fidelity: float) -> NDArray[np.float64]:
         moved = guarded_move(graph, moved, targets)
         vectors = directions * np.hypot(vectors[:, 0], vectors[:, 1])[:, None]
     return np.round(spread(moved, graph.segments, vectors, _LEAST_CLEARANCE), 6)
+
+
+def true_points(graph: PlaneGraph, fidelity: float) -> NDArray[np.float64]:
+    """Give where geography wants the points, whatever that does to the topology.
+
+    As `anchor_points`: station spacings, y north, shape (n, 2).
+    """
+    ground, lengths = _in_spacings(graph)
+    vectors = _wanted_vectors(graph, ground, lengths, fidelity)
+    return _targets(graph, ground, lengths, vectors, fidelity)
 
 
 def _in_spacings(
@@ -97,7 +110,7 @@ def _targets(
     a, b = graph.segments.T
     m, n = len(a), len(ground)
     wanted = np.hypot(vectors[:, 0], vectors[:, 1])
-    weights = 1.0 / wanted
+    weights = 1.0 / np.maximum(wanted, _SHORTEST)
     rows = np.repeat(np.arange(m), 2)
     columns = np.column_stack([a, b]).ravel()
     values = np.column_stack([-weights, weights]).ravel()

@@ -47,7 +47,7 @@ class Columns:
     slack: NDArray[np.int64]
     """Per grade and piece, a part of how far the length is from the wanted one."""
     away: NDArray[np.int64]
-    """Per vertex and axis, how far it is from its anchor, shape (2, n)."""
+    """Per grade, axis and vertex a part of how far it is from its anchor, shape (grades, 2, n)."""
     lack: NDArray[np.int64]
     """Per separated pair, what is lacking of the wanted room."""
     extent: NDArray[np.int64]
@@ -59,15 +59,18 @@ class Columns:
     count: int
 
     @staticmethod
-    def of(skeleton: Skeleton, grades: int, pairs: int, limits: int) -> Columns:
-        """Give every variable its place; without `limits` on the drift there is no fit."""
+    def of(skeleton: Skeleton, grades: tuple[int, int], pairs: int, limits: int) -> Columns:
+        """Give every variable its place; without `limits` on the drift there is no fit.
+
+        `grades` are those of lengths and of distances from anchors.
+        """
         k, n, p = len(skeleton.points), skeleton.graph.n_vertices, len(skeleton.courses)
-        sizes = [k, k, grades * p, 2 * n, pairs, 2, 3 if limits else 0, limits]
+        sizes = [k, k, grades[0] * p, grades[1] * 2 * n, pairs, 2, 3 if limits else 0, limits]
         ends = np.cumsum([0, *sizes])
         x, y, slack, away, lack, extent, fit, excess = (
             np.arange(a, b) for a, b in itertools.pairwise(ends.tolist())
         )
-        slack, away = slack.reshape(-1, p), away.reshape(2, n)
+        slack, away = slack.reshape(-1, p), away.reshape(-1, 2, n)
         return Columns(x, y, slack, away, lack, extent, fit, excess, int(ends[-1]))
 
     def along(self, runs: Runs, nodes: NDArray[np.int64]) -> NDArray[np.int64]:

@@ -57,12 +57,17 @@ class Sizes:
 
 
 def wants_of(
-    skeleton: Skeleton, sizes: Sizes, scale_mm: float, box: tuple[float, float] | None
+    skeleton: Skeleton,
+    sizes: Sizes,
+    scale_mm: float,
+    box: tuple[float, float] | None,
+    grown: float = 1.0,
 ) -> Wants:
     """Say what the lengths should be when a station spacing is `scale_mm` on the sheet.
 
     Without a `box` (width and height, millimetres) the least size is asked for instead: that is
-    how the sheet is chosen.
+    how the sheet is chosen. With one, the skeleton's points are millimetres, and the drawing is to
+    become `grown` times as large.
     """
     tight = box is None
     clearances = sizes.clearances
@@ -71,7 +76,9 @@ def wants_of(
     least = np.array([_part_leasts(graph, piece, sizes).sum() for piece in graph.pieces])
     lines = np.array([max(1, len(piece.lines)) for piece in graph.pieces])
     least = np.maximum(least, _between_ends(graph, clearances))
-    goal = _spans(skeleton, sizes.settings.fidelity) * scale_mm
+    fidelity = sizes.settings.fidelity
+    even = 1.0 if tight else 1.0 - 0.95 * fidelity**2
+    goal = _spans(skeleton, fidelity) * scale_mm
     goal[walk] = np.maximum(least[walk], _WALK_SHARE * scale_mm)
     if not tight:
         least = np.maximum(least, _wished_least(graph, sizes))
@@ -94,9 +101,9 @@ def wants_of(
         least=np.round(shortest, 6),
         piece_least=np.round(least, 6),
         piece_goal=np.round(least if tight else np.maximum(goal, least), 6),
-        piece_weight=np.where(walk, 2.0, np.where(asked, _WISH_WEIGHT, 1.0)) * weight,
-        anchors=_anchors_in_box(sizes, scale_mm, box),
-        anchor_weight=0.02 if tight else 0.05 + 3.0 * sizes.settings.fidelity**3,
+        piece_weight=np.where(walk, 2.0, np.where(asked, _WISH_WEIGHT, 1.0)) * weight * even,
+        anchors=_anchors(skeleton, sizes, scale_mm, box, grown),
+        anchor_weight=0.02 if tight else 0.05 + 3.0 * fidelity**3,
         half_width=half,
         clear=2.0 * clearances.line_gap_mm + 0.5,
         room=np.zeros((len(owner), 8)) if tight else _label_room(skeleton, clearances),
@@ -108,15 +115,33 @@ def wants_of(
     )
 
 
-def _anchors_in_box(
-    sizes: Sizes, scale_mm: float, box: tuple[float, float] | None
+def _anchors(
+    skeleton: Skeleton,
+    sizes: Sizes,
+    scale_mm: float,
+    box: tuple[float, float] | None,
+    grown: float,
 ) -> NDArray[np.float64]:
-    """Anchors to scale from the box's corner on, shrunk as a whole if they would leave it."""
-    places: NDArray[np.float64] = (sizes.anchors - sizes.anchors.min(axis=0)) * scale_mm
+    """Lay the anchors over the drawing that is to grow; to scale where there is none yet.
+
+    Only how stations stand to each other is true or not, so the middle of the anchors is that
+    of the drawing, or of the pins, and their mean distance from it the drawing's, unless they
+    would take more room than the box has.
+    """
     if box is None:
-        return places
-    shrink = np.min(np.asarray(box) / np.maximum(np.ptp(places, axis=0), 1e-9))
-    return np.asarray(places * min(1.0, float(shrink)))
+        return np.asarray((sizes.anchors - sizes.anchors.min(axis=0)) * scale_mm)
+    anchors = sizes.anchors - sizes.anchors.mean(axis=0)
+    places = skeleton.points[: len(anchors)]
+    middle = places.mean(axis=0)
+    spread = np.sqrt(((places - middle) ** 2).sum() / max(float((anchors**2).sum()), 1e-9))
+    most = np.sqrt(np.prod(np.asarray(box) / np.maximum(np.ptp(anchors, axis=0), 1e-3)))
+    laid = anchors * min(float(spread) * grown, float(most)) + middle * grown
+    if sizes.pinned:
+        laid += np.mean([sizes.pinned[v] - laid[v] for v in sorted(sizes.pinned)], axis=0)
+    else:
+        laid += np.maximum(0.0, -laid.min(axis=0))
+        laid -= np.maximum(0.0, laid.max(axis=0) - np.asarray(box))
+    return np.asarray(np.round(laid, 6))
 
 
 def pins_in_frame(

@@ -33,6 +33,10 @@ class Separations:
             np.concatenate([self.axis, other.axis]),
         )
 
+    def only(self, some: NDArray[np.int64]) -> Separations:
+        """Give some of the pairs, by number."""
+        return Separations(self.first[some], self.second[some], self.axis[some])
+
     def facing(self, skeleton: Skeleton) -> tuple[NDArray[np.int64], NDArray[np.int64]]:
         """Node of the first segment furthest back along the axis, and of the second furthest on."""
         normal = STEP[self.axis]

@@ -38,6 +38,9 @@ _INFEASIBLE = 2
 _GRADES = ((0.15, 0.4), (0.2, 1.0), (0.3, 2.0), (np.inf, 4.0))
 """Shares of the wanted length that may be missing or too much, each at its own price: rising
 prices spread what must give way over many pieces, instead of squeezing a few to the least."""
+_AWAY = ((1.5, 1.0), (np.inf, 3.0))
+"""Distances from its anchor, in typical wanted lengths, that a vertex may be off, at their prices:
+few far strays count for more than many near ones, as in the residual of a similarity."""
 _LACK_WEIGHT = 0.6
 """Price of a millimetre lacking to the wanted room, against one of wanted length."""
 _PIN_WEIGHT = 1000.0
@@ -167,7 +170,8 @@ def _solve(
     runs = Runs.of(skeleton)
     limits = wants.limits
     held = len(limits.stations) if limits is not None else 0
-    columns = Columns.of(skeleton, len(_GRADES), len(apart.first), held)
+    roomy = _roomy(wants, apart)
+    columns = Columns.of(skeleton, (len(_GRADES), len(_AWAY)), len(roomy), held)
     equal, most = Rows(), Rows()
     keep_directions(equal, runs, columns)
     hold_relative(equal, (columns.x, columns.y), wants.relative if not loosened else ())
@@ -176,6 +180,7 @@ def _solve(
     if limits is not None:
         hold_drift(equal, most, columns, limits)
     _keep_apart(most, skeleton, columns, wants, apart)
+    _give_room(most, skeleton, columns, wants, apart.only(roomy))
     for axis, nodes in enumerate((columns.x, columns.y)):
         most.add([(nodes, 1.0), (np.full(len(nodes), columns.extent[axis]), -1.0)], 0.0)
     blocks, rights = piece_lengths(runs, columns, wants.piece_least, wants.piece_goal)
@@ -213,6 +218,8 @@ def _bounds(
         bounds[columns.excess[sorted(wants.limits.loose or ())], 1] = np.inf
     for grade, (share, _) in zip(columns.slack, _GRADES, strict=True):
         bounds[grade, 1] = share * wants.piece_goal
+    for away, (share, _) in zip(columns.away, _AWAY, strict=True):
+        bounds[away, 1] = share * float(np.median(wants.piece_goal))
     if box is not None:
         bounds[columns.extent, 1] = box
     for v, place in wants.pinned.items():
@@ -223,29 +230,53 @@ def _bounds(
 
 def _reach_anchors(most: Rows, columns: Columns, wants: Wants) -> None:
     for axis, nodes in enumerate((columns.x, columns.y)):
-        away = columns.away[axis]
-        vertices, goal = nodes[: len(away)], wants.anchors[:, axis]
-        most.add([(vertices, 1.0), (away, -1.0)], goal)
-        most.add([(vertices, -1.0), (away, -1.0)], -goal)
+        away = [(grade, -1.0) for grade in columns.away[:, axis]]
+        vertices, goal = nodes[: len(wants.anchors)], wants.anchors[:, axis]
+        most.add([(vertices, 1.0), *away], goal)
+        most.add([(vertices, -1.0), *away], -goal)
 
 
 def _keep_apart(
     most: Rows, skeleton: Skeleton, columns: Columns, wants: Wants, apart: Separations
 ) -> None:
-    normal = apart.normals()
     gap = wants.half_width[apart.first] + wants.half_width[apart.second]
+    most.add(_apart(skeleton, columns, apart), -(gap + wants.clear))
+
+
+def _give_room(
+    most: Rows, skeleton: Skeleton, columns: Columns, wants: Wants, apart: Separations
+) -> None:
+    gap = wants.half_width[apart.first] + wants.half_width[apart.second]
+    lack = (columns.lack, np.full(len(gap), -1.0))
+    most.add([*_apart(skeleton, columns, apart), lack], -(gap + _room(wants, apart)))
+
+
+def _apart(
+    skeleton: Skeleton, columns: Columns, apart: Separations
+) -> list[tuple[NDArray[np.int64], NDArray[np.float64]]]:
+    """Give the terms of the negative distances of pairs along their axes."""
+    normal = apart.normals()
     i, j = apart.facing(skeleton)
-    terms = [
+    return [
         (columns.x[i], -normal[:, 0]),
         (columns.x[j], normal[:, 0]),
         (columns.y[i], -normal[:, 1]),
         (columns.y[j], normal[:, 1]),
     ]
-    most.add(terms, -(gap + wants.clear))
-    # Of two that face each other one can bear its names on the other side: the lesser wish holds.
+
+
+def _room(wants: Wants, apart: Separations) -> NDArray[np.float64]:
+    """Wanted distance of what is drawn along two segments.
+
+    Of two that face each other one can bear its names on the other side: the lesser wish holds.
+    """
     room = np.minimum(wants.room[apart.first, apart.axis], wants.room[apart.second, apart.axis])
-    wish = gap + np.maximum(wants.clear, room)
-    most.add([*terms, (columns.lack, np.full(len(gap), -1.0))], -wish)
+    return np.asarray(room)
+
+
+def _roomy(wants: Wants, apart: Separations) -> NDArray[np.int64]:
+    """Pairs that want more than they must have."""
+    return np.flatnonzero(_room(wants, apart) > wants.clear)
 
 
 def _collisions(
@@ -299,9 +330,10 @@ def _cost(runs: Runs, columns: Columns, wants: Wants, *, loosened: bool) -> NDAr
     cost = np.zeros(columns.count)
     for grade, (_, price) in zip(columns.slack, _GRADES, strict=True):
         cost[grade] = price * wants.piece_weight
-    cost[columns.away] = wants.anchor_weight
+    for away, (_, price) in zip(columns.away, _AWAY, strict=True):
+        cost[away] = price * wants.anchor_weight
     if loosened:
-        cost[columns.away[:, sorted(wants.pinned)]] = _PIN_WEIGHT
+        cost[columns.away[:, :, sorted(wants.pinned)]] = _PIN_WEIGHT
     cost[columns.lack] = _LACK_WEIGHT
     cost[columns.extent] = wants.spread
     cost[columns.excess] = _PIN_WEIGHT

@@ -104,6 +104,19 @@ def build(
     )
 
 
+def without(skeleton: Skeleton, points: NDArray[np.float64], gone: NDArray[np.bool_]) -> Skeleton:
+    """Drop segments without length; their neighbours run on as one."""
+    routes = []
+    for p in range(len(skeleton.courses)):
+        course = skeleton.courses[p]
+        route = [points[skeleton.segments[course[0], 0]]]
+        for k in course:
+            step = points[skeleton.segments[k, 1]] - points[skeleton.segments[k, 0]]
+            route.append(route[-1] if gone[k] else route[-1] + step)
+        routes.append(np.array(route))
+    return build(skeleton.graph, points[: skeleton.graph.n_vertices], routes)
+
+
 def _runs(route: NDArray[np.float64]) -> list[tuple[int, NDArray[np.float64]]]:
     """Straight runs of a route: (direction, end)."""
     runs: list[tuple[int, NDArray[np.float64]]] = []
