@@ -17,6 +17,9 @@ from gtfs_schematic.bundles.slots import SHIFT_SHARES, Slots, moved, right_norma
 from gtfs_schematic.geometry import Point, distance, unit_vector
 from gtfs_schematic.layout.model import Layout
 
+_JOIN_MM = 0.1
+"""How far before its own joint a branch begins at least, millimetres."""
+
 
 @dataclass(frozen=True)
 class _Plan:
@@ -77,7 +80,8 @@ def _bend_knots(plan: _Plan, line_id: str, link_id: str, *, forward: bool) -> li
             continue
         at = moved(path[i], right_normal(into), offset)
         at = moved(at, into, -offset * math.tan(turn / 2.0))
-        extra = half - offset if turn > 0.0 else half + offset
+        inner = plan.slots.inner(link_id, line_id)
+        extra = half - inner if turn > 0.0 else half + inner
         knots.append(Knot(at, into, out, ("bend", link_id, str(i)), extra))
     return knots if forward else [knot.turned() for knot in reversed(knots)]
 
@@ -104,7 +108,7 @@ def _join_point(plan: _Plan, junction: Junction, way: Pass, onto: str) -> Knot:
     """Give where a branch ends: on the other link, beyond all that its course does near here."""
     leg = junction.leg[onto]
     foot = plan.slots.foot(junction, leg, way.line_id)
-    furthest = 0.0
+    furthest = own = 0.0
     for other in junction.passes:
         if other.line_id != way.line_id or onto not in (other.first, other.second):
             continue
@@ -113,9 +117,12 @@ def _join_point(plan: _Plan, junction: Junction, way: Pass, onto: str) -> Knot:
             turn = turn_angle(knot.into, knot.out) if knot.into and knot.out else 0.5
             radius = plan.slots.settings.corner_radius_mm + knot.extra_mm
             furthest = max(furthest, along + radius * math.tan(abs(turn) / 2.0))
+            own = max(own, along) if other == way else own
     reach = plan.slots.reach(leg, way.line_id, SHIFT_SHARES)
     back = (-leg.direction[0], -leg.direction[1])
-    return Knot(moved(foot, leg.direction, min(furthest + 0.5, reach)), out=back)
+    # Short of its own joint it would have to run backwards; beside the other course nobody sees.
+    to_mm = max(min(furthest + 0.5, reach), own + _JOIN_MM)
+    return Knot(moved(foot, leg.direction, to_mm), out=back)
 
 
 def _closed_at_longest(knots: list[Knot]) -> list[Knot]:
