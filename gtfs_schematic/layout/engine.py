@@ -197,9 +197,9 @@ def fit_sheet(
         link_wishes(network, requests),
         relative=relative_pins(placement.skeleton.graph, placement.settings),
     )
-    sizes, (skeleton, points, frame) = first_that_holds(placement.skeleton, sizes, frames)
+    sizes, (skeleton, frame, _) = first_that_holds(placement.skeleton, sizes, frames)
     pinned = pins_in_frame(skeleton.graph, sizes.settings, frame)
-    units = snap(skeleton, points, frozenset(pinned), sizes.relative)
+    units = snap(skeleton, skeleton.points, frozenset(pinned), sizes.relative)
     places = _on_paper(units, frame, centred=not pinned)
     layout = restore(network, skeleton, places, frame, part_wants(skeleton.graph, sizes))
     return dataclasses.replace(layout, rotation_deg=placement.rotation_deg)

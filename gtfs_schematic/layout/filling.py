@@ -33,8 +33,12 @@ _FULL = 1.06
 
 def first_that_holds(
     skeleton: Skeleton, sizes: Sizes, frames: Sequence[SheetFrame]
-) -> tuple[Sizes, tuple[Skeleton, NDArray[np.float64], SheetFrame]]:
-    """Settle with all wishes; without places beside other stations, or without room, if need be."""
+) -> tuple[Sizes, tuple[Skeleton, SheetFrame, float]]:
+    """Settle with all wishes; without places beside other stations, or without room, if need be.
+
+    Gives what was asked in the end, the skeleton with its points in millimetres, the sheet, and
+    the length of a station spacing on it.
+    """
     tries = [sizes, dataclasses.replace(sizes, link_wishes={})]
     if sizes.relative:
         tries += [dataclasses.replace(each, relative=()) for each in tries]
@@ -50,23 +54,23 @@ def first_that_holds(
 
 def _on_sheet(
     skeleton: Skeleton, sizes: Sizes, frames: Sequence[SheetFrame]
-) -> tuple[Skeleton, NDArray[np.float64], SheetFrame]:
+) -> tuple[Skeleton, SheetFrame, float]:
     """Choose the sheet by the least size with some air, then fill it."""
     spacing = sizes.clearances.spacing_mm
-    skeleton, points, pairs = _settled(skeleton, sizes, (spacing, 1.0), None)
+    skeleton, points, pairs = settled(skeleton, sizes, spacing, None)
     width, height = np.ptp(points, axis=0)
-    fits = [f for f in frames if _inner(f)[0] >= width * _ROOM and _inner(f)[1] >= height * _ROOM]
-    fits = fits or [f for f in frames if _inner(f)[0] >= width and _inner(f)[1] >= height]
+    fits = [f for f in frames if inner(f)[0] >= width * _ROOM and inner(f)[1] >= height * _ROOM]
+    fits = fits or [f for f in frames if inner(f)[0] >= width and inner(f)[1] >= height]
     if not fits:
         largest = frames[-1]
         raise LayoutError(
             f"The drawing needs at least {width:.0f} × {height:.0f} mm, but the largest sheet "
             f"allowed ({largest.width_mm:.0f} × {largest.height_mm:.0f} mm) leaves "
-            f"{_inner(largest)[0]:.0f} × {_inner(largest)[1]:.0f} mm. Allow a larger sheet, "
+            f"{inner(largest)[0]:.0f} × {inner(largest)[1]:.0f} mm. Allow a larger sheet, "
             "smaller type or thinner lines, or draw fewer lines."
         )
     frame = _best_of_size(fits, width, height)
-    box, scale = _inner(frame), spacing
+    box, scale = inner(frame), spacing
     sizes = dataclasses.replace(sizes, pinned=pins_in_frame(skeleton.graph, sizes.settings, frame))
     skeleton = dataclasses.replace(skeleton, points=points)
     for _ in range(_FILLINGS):
@@ -79,11 +83,12 @@ def _on_sheet(
             break
         grown = min(0.98 * grow, _LOOSEST * spacing / scale)
         scale *= grown
-        skeleton, points, pairs = _settled(skeleton, sizes, (scale, grown), box, pairs)
+        skeleton, points, pairs = settled(skeleton, sizes, scale, box, pairs, grown)
         skeleton = dataclasses.replace(skeleton, points=points)
     if not sizes.pinned and not sizes.settings.drift_limit_mm:
-        points = points * _magnified(points, box, _LOOSEST * spacing / scale)
-    return skeleton, points, frame
+        larger = _magnified(points, box, _LOOSEST * spacing / scale)
+        points, scale = points * larger, scale * larger
+    return dataclasses.replace(skeleton, points=points), frame, scale
 
 
 def _magnified(points: NDArray[np.float64], box: tuple[float, float], most: float) -> float:
@@ -99,25 +104,27 @@ def _best_of_size(fits: list[SheetFrame], width: float, height: float) -> SheetF
     """Of the least sheets, upright or not, the one that the drawing can fill best."""
     least = [f for f in fits if f.width_mm * f.height_mm <= fits[0].width_mm * fits[0].height_mm]
     wide, high = max(width, 1e-9), max(height, 1e-9)
-    return max(least, key=lambda f: min(_inner(f)[0] / wide, _inner(f)[1] / high))
+    return max(least, key=lambda f: min(inner(f)[0] / wide, inner(f)[1] / high))
 
 
-def _inner(frame: SheetFrame) -> tuple[float, float]:
+def inner(frame: SheetFrame) -> tuple[float, float]:
+    """Give width and height of what a drawing may fill, millimetres."""
     return frame.right_mm - frame.left_mm, frame.bottom_mm - frame.top_mm
 
 
-def _settled(
+def settled(
     skeleton: Skeleton,
     sizes: Sizes,
-    scale_mm: tuple[float, float],
+    scale_mm: float,
     box: tuple[float, float] | None,
     pairs: NDArray[np.int64] | None = None,
+    grown: float = 1.0,
 ) -> tuple[Skeleton, NDArray[np.float64], NDArray[np.int64] | None]:
     """Settle, then take out bends that have shrunk to nothing: the places are right without them.
 
-    `scale_mm` is the wanted spacing and how much larger it is than before.
+    `scale_mm` is the wanted spacing, `grown` how much larger it is than before.
     """
-    wants = wants_of(skeleton, sizes, scale_mm[0], box, scale_mm[1])
+    wants = wants_of(skeleton, sizes, scale_mm, box, grown)
     points, pairs = settle(skeleton, wants, box, pairs)
     lengths = np.hypot(*np.diff(points[skeleton.segments], axis=1)[:, 0].T)
     gone = lengths < _NO_LENGTH_MM
