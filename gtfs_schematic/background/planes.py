@@ -105,7 +105,7 @@ def _add_pieces(planes: Planes, bundled: BundledLayout) -> None:
         along = sorted(_met_at(here, segments[other]) for _, other in cuts)
         bounds = [0.0, *along, 1.0]
         stops = [0.0, *(at for at, _ in cuts), path.length]
-        half = ((lines or 1) * (width + gap) - gap) / 2.0
+        half = ((lines or 1) * (width + gap) - gap) / 2.0 + abs(bundled.asides.get(owner, 0.0))
         for i in range(len(stops) - 1):
             planes.pieces.append(
                 Piece(

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 
+from gtfs_schematic.bundles.aside import asides
 from gtfs_schematic.bundles.check import count_order
 from gtfs_schematic.bundles.forks import with_forks, without_crossings
 from gtfs_schematic.bundles.junction import junctions
@@ -41,7 +42,8 @@ def bundle(
     found = order_lines(forked, settings.orders, previous, progress=progress)
     orders = without_crossings(layout, forked, found.orders)
     nodes = junctions(forked)
-    slots = Slots(orders, settings)
+    moved = asides(forked, nodes, Slots(orders, settings))
+    slots = Slots(orders, settings, moved)
     progress.phase("drawing lines side by side")
     stretches = draw_courses(forked, nodes, slots)
     crossings, separations = count_order(forked, orders)
@@ -53,4 +55,5 @@ def bundle(
         spans=find_spans(forked, nodes, slots, stretches),
         quality=OrderQuality(crossings, separations, found.crossings_bound),
         forked=forked,
+        asides=moved,
     )

@@ -216,6 +216,7 @@ def _offset_faults(
     for link in bundled.forked.network.links:
         order = bundled.orders[link.id]
         wanted = (np.arange(len(order)) - (len(order) - 1) / 2.0) * pitch
+        wanted = wanted + bundled.asides.get(link.id, 0.0)
         # Joints and arcs take room at both ends, the more the wider the bundles that meet there;
         # a shorter piece may be all joint, and is not measured.
         room = (widest[link.start] + widest[link.end]) * pitch

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
 from pydantic import BaseModel, ConfigDict, Field
 
@@ -77,3 +77,6 @@ class BundledLayout:
     forked: Layout
     """The layout with forks where links part that left a station together; else the same. Orders
     and stretches have its links."""
+    asides: Mapping[str, float] = field(default_factory=dict)
+    """Per link id of `forked` how far its bundle is moved off the middle to the right, seen from
+    `start` to `end`, millimetres; 0 where it does not say."""

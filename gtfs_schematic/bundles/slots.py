@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
 from gtfs_schematic.bundles.junction import Junction, Leg
 from gtfs_schematic.bundles.model import BundleSettings
@@ -39,11 +39,13 @@ class Slots:
     """Offsets of lines from centre lines, millimetres, positive to the right.
 
     With k lines of width w and gap g, line i of the order (0 leftmost) has the offset
-    (i − (k − 1) / 2) (w + g): the bundle is centred.
+    (i − (k − 1) / 2) (w + g), and the bundle's aside beside.
     """
 
     orders: Mapping[str, tuple[str, ...]]
     settings: BundleSettings
+    asides: Mapping[str, float] = field(default_factory=dict)
+    """Per link id how far its bundle is moved to the right, seen from start to end."""
 
     @property
     def pitch(self) -> float:
@@ -52,11 +54,15 @@ class Slots:
 
     def offset(self, link_id: str, line_id: str) -> float:
         """Offset as seen going from the link's start to its end."""
+        return self.inner(link_id, line_id) + self.asides.get(link_id, 0.0)
+
+    def inner(self, link_id: str, line_id: str) -> float:
+        """Offset from the middle of the bundle, likewise."""
         order = self.orders[link_id]
         return (order.index(line_id) - (len(order) - 1) / 2.0) * self.pitch
 
     def half_width(self, link_id: str) -> float:
-        """Offset of the outermost line."""
+        """Offset of the outermost line from the middle of the bundle."""
         return (len(self.orders[link_id]) - 1) / 2.0 * self.pitch
 
     def outward(self, leg: Leg, line_id: str) -> float:

@@ -54,7 +54,8 @@ def _axis(junction: Junction, slots: Slots) -> shapely.LineString:
     across = right_normal(widest.direction)
     if len(junction.legs) == 2:
         across = right_normal(unit_vector(junction.legs[1].direction, junction.legs[0].direction))
-    reach = 1.3 * slots.half_width(widest.link_id) + slots.pitch
+    aside = max(abs(slots.asides.get(leg.link_id, 0.0)) for leg in junction.legs)
+    reach = 1.3 * slots.half_width(widest.link_id) + slots.pitch + aside
     return shapely.LineString(
         [moved(junction.at_mm, across, -reach), moved(junction.at_mm, across, reach)]
     )
