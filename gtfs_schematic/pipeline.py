@@ -55,8 +55,9 @@ from gtfs_schematic.errors import must_be_sound
 from gtfs_schematic.feed import check as feed_check
 from gtfs_schematic.feed.model import Finding, Timetable
 from gtfs_schematic.feed.read import read_feed
+from gtfs_schematic.geometry import Point
 from gtfs_schematic.labels import check as labels_check
-from gtfs_schematic.labels.model import LabelledLayout, LabelSettings
+from gtfs_schematic.labels.model import LabelledLayout
 from gtfs_schematic.labels.place import place_labels
 from gtfs_schematic.labels.room import room_requests
 from gtfs_schematic.layout import check as layout_check
@@ -286,10 +287,14 @@ def files_of(result: Result, limits: Sequence[Limit] | None = None) -> dict[str,
 
 
 def _labelled(
-    network: Network, settings: Settings, frames: tuple[SheetFrame, ...], progress: Progress
+    network: Network,
+    settings: Settings,
+    frames: tuple[SheetFrame, ...],
+    progress: Progress,
+    previous: Mapping[str, Point] | None = None,
 ) -> LabelledLayout:
     """Lay out, bundle and label; on a larger sheet where names find no place on a smaller."""
-    placement = place(network, settings.layout, progress=progress)
+    placement = place(network, settings.layout, previous=previous, progress=progress)
     best = _labelled_on_sheet(placement, settings, frames, progress)
     for _ in range(LARGER_SHEETS):
         area = _area(best.bundled.layout.sheet)
@@ -302,36 +307,15 @@ def _labelled(
     return best
 
 
-def labelled_from(
-    layout: Layout | None,
-    network: Network,
-    settings: Settings,
-    sides: Mapping[str, str],
-    progress: Progress,
+def labelled_anew(
+    network: Network, settings: Settings, previous: Mapping[str, Point], progress: Progress
 ) -> LabelledLayout:
-    """Bundle and label a layout that stands, names on the sides that they had; None: lay it out."""
-    wanted = settings.layout
-    if layout is not None and layout_check.drifted_too_far(layout, wanted):
-        progress.note("stations would drift beyond their limits; laying out anew")
-        layout = None
-    if layout is None:
-        frames = candidate_frames(network, settings.sheet, settings.drawing)
-        return _labelled(network, settings, frames, progress)
-    clearances = clearances_of(network, settings.bundles, settings.labels)
-    must_be_sound("layout", layout_check.faults(layout, clearances, wanted.pins, wanted))
-    bundled = bundle(layout, settings.bundles, progress=progress)
-    must_be_sound("bundles", bundles_check.faults(bundled))
-    kept = {key: side for key, side in sides.items() if key in network.station}
-    # Without any wish names fall as they did, if nothing near them changed: to the letter.
-    labelled = place_labels(bundled, settings.labels, progress=progress)
-    fallen = {key: labelled.labels[key].side for key in kept if key in labelled.labels}
-    if fallen != kept:
-        asked = LabelSettings.model_validate(
-            settings.labels.model_dump() | {"sides": kept | settings.labels.sides}
-        )
-        labelled = place_labels(bundled, asked, progress=progress)
-    must_be_sound("labels", labels_check.faults(labelled))
-    return labelled
+    """Lay out, bundle and label so that the drawing resembles one of before.
+
+    `previous` are the places that it had, by station id, millimetres.
+    """
+    frames = candidate_frames(network, settings.sheet, settings.drawing)
+    return _labelled(network, settings, frames, progress, previous)
 
 
 def _labelled_on_sheet(

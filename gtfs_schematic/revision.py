@@ -5,9 +5,11 @@ from __future__ import annotations
 from collections.abc import Sequence
 from dataclasses import dataclass, field, replace
 
-from gtfs_schematic.config import Settings, settings_of, with_wishes
+from gtfs_schematic.clearances import clearances_of
+from gtfs_schematic.config import Settings, settings_of, with_values, with_wishes
 from gtfs_schematic.drawing.sheet import candidate_frames
 from gtfs_schematic.edition.adjustments import Adjustments, adjustments_of
+from gtfs_schematic.edition.because import because
 from gtfs_schematic.edition.change_list import to_pdf
 from gtfs_schematic.edition.change_page import to_html
 from gtfs_schematic.edition.change_pictures import Sheets
@@ -17,6 +19,8 @@ from gtfs_schematic.edition.identity import Matches
 from gtfs_schematic.edition.model import Edition
 from gtfs_schematic.edition.succession import succeed
 from gtfs_schematic.feed.model import Timetable
+from gtfs_schematic.following import labelled_after
+from gtfs_schematic.layout import check as layout_check
 from gtfs_schematic.layout.keep import Standing
 from gtfs_schematic.layout.model import SheetFrame
 from gtfs_schematic.layout.revise import Revised, revise_layout
@@ -24,18 +28,20 @@ from gtfs_schematic.network.model import Network
 from gtfs_schematic.pipeline import (
     Result,
     StrPath,
-    clearances_of,
     completed,
     files_of,
     finish,
     inspect,
-    labelled_from,
+    labelled_anew,
     tell_adjusted,
 )
 from gtfs_schematic.progress import Progress, Silent
 
 _MOST_OUTSIDE_MM = 15.0
 """What stands further outside its frame than this is laid out anew, not pushed in."""
+_KEY_SHARES = (1.0, 0.95, 0.9, 0.85)
+"""Shares of its type size that the key may take, if with more lines it leaves too little room."""
+_MOST_FRAMES = 2
 
 
 @dataclass(frozen=True, slots=True)
@@ -115,16 +121,22 @@ def revise_network(
     network, wishes = done.adjusted.network, done.adjusted.wishes
     tell_adjusted(done.adjusted, progress)
     wanted = with_wishes(settings, wishes.by_room())
-    revised = _layout(before, network, wanted, progress)
+    revised, body_pt = _layout(before, network, wanted, progress)
+    if body_pt < settings.drawing.body_size_pt:
+        progress.note(f"the key holds all lines at {body_pt:g} points, on the same sheet")
+        settings = with_values(settings, {"drawing.body_size_pt": body_pt}, "type of the key")
     if revised is None:
         progress.note("what is new finds no room beside what stands; laying out anew")
-    layout = None if revised is None else revised.layout
-    labelled = labelled_from(layout, network, wanted, _sides(before), progress)
+        labelled = labelled_anew(network, wanted, before.places, progress)
+    else:
+        labels = told.beside.state.drawn.labels if told.beside.state is not None else None
+        labelled = labelled_after(revised.layout, wanted, before, labels, progress)
     result = finish(timetable, labelled, settings, progress)
     result = completed(result, done.raw, (done.adjustments, wishes), progress)
     result = replace(result, edition=replace(result.edition, previous=told.beside.sha256))
-    sheet = change_sheet(before, result.edition, done.matches)
-    return Revision(result, done.matches, sheet, layout is None)
+    why = because(revised, network)
+    sheet = change_sheet(before, result.edition, done.matches, moved=why)
+    return Revision(result, done.matches, sheet, revised is None)
 
 
 def files_of_revision(
@@ -143,36 +155,47 @@ def files_of_revision(
 
 def _layout(
     before: Edition, network: Network, settings: Settings, progress: Progress
-) -> Revised | None:
-    """Lay the network out beside what stands, on the same sheet; None if there is no room."""
+) -> tuple[Revised | None, float]:
+    """Lay the network out beside what stands, on the same sheet; None if there is no room.
+
+    Also gives the type size of the key with which there is.
+    """
     positions = before.places
     paths = {link.id: link.path_mm for link in before.drawn}
     paths |= {walk.id: walk.path_mm for walk in before.walks}
     clearances = clearances_of(network, settings.bundles, settings.labels)
-    for frame in _frames(before, network, settings):
+    for body_pt, frame in _frames(before, network, settings)[:_MOST_FRAMES]:
         standing = Standing(positions, paths, frame, rotation_deg=before.rotation_deg)
         pins = settings.layout.pins
         found = revise_layout(network, standing, clearances, pins=pins, progress=progress)
+        if found is not None and layout_check.drifted_too_far(found.layout, settings.layout):
+            progress.note("stations would drift beyond their limits")
+            break
         if found is not None:
-            return found
-    return None
+            return found, body_pt
+    return None, settings.drawing.body_size_pt
 
 
-def _frames(before: Edition, network: Network, settings: Settings) -> list[SheetFrame]:
-    """Frames of the edition's sheet, that first from which what stands sticks out least."""
+def _frames(
+    before: Edition, network: Network, settings: Settings
+) -> list[tuple[float, SheetFrame]]:
+    """Frames of the edition's sheet, each with the type size of the key that leaves it.
+
+    First those from which nothing of what stands sticks out, the largest type before; then those
+    from which least does.
+    """
     size = f"{before.width_mm:g}x{before.height_mm:g}"
     sheet = settings.sheet.model_copy(update={"size": size, "orientation": "auto"})
     x = [x for link in before.links for x, _ in link.path_mm]
     y = [y for link in before.links for _, y in link.path_mm]
-
-    def outside(frame: SheetFrame) -> float:
-        beside = (frame.left_mm - min(x), max(x) - frame.right_mm)
-        over = (frame.top_mm - min(y), max(y) - frame.bottom_mm)
-        return round(max(0.0, *beside, *over), 1)
-
-    frames = candidate_frames(network, sheet, settings.drawing)
-    return sorted((f for f in frames if outside(f) <= _MOST_OUTSIDE_MM), key=outside)
-
-
-def _sides(before: Edition) -> dict[str, str]:
-    return {s.id: s.label_side for s in before.stations if s.label_side}
+    found: list[tuple[float, float, int, SheetFrame]] = []
+    for share in _KEY_SHARES:
+        body_pt = round(settings.drawing.body_size_pt * share, 2)
+        drawing = settings.drawing.model_copy(update={"body_size_pt": body_pt})
+        for frame in candidate_frames(network, sheet, drawing):
+            beside = (frame.left_mm - min(x), max(x) - frame.right_mm)
+            over = (frame.top_mm - min(y), max(y) - frame.bottom_mm)
+            outside = round(max(0.0, *beside, *over), 1)
+            if outside <= _MOST_OUTSIDE_MM:
+                found.append((outside, -body_pt, len(found), frame))
+    return [(-size, frame) for _, size, _, frame in sorted(found, key=lambda each: each[:3])]

@@ -210,6 +210,38 @@ def extend(changed: Changed, chance: Random) -> Changed:
     return _with_stops(_with_patterns(changed, patterns, what), fresh, "…")
 
 
+def new_line(changed: Changed, chance: Random) -> Changed:
+    """Begin a line between two places of the network, with new stations on the way."""
+    table = changed.timetable
+    stop = {s.id: s for s in table.stops}
+    pattern = chance.choice([p for p in table.patterns if len(p.stop_ids) > 3])
+    route = next(r for r in table.routes if r.id == pattern.route_id)
+    others = [p for p in table.patterns if p.route_id != route.id] or list(table.patterns)
+    a = stop[chance.choice(pattern.stop_ids)]
+    # The nearest stop of another route that is some stations away.
+    gap = 3.0 * math.dist(*((stop[s].lon, stop[s].lat) for s in pattern.stop_ids[:2]))
+    far = {s for p in others for s in p.stop_ids if _away(a, stop[s]) > gap}
+    b = stop[min(sorted(far) or [pattern.stop_ids[0]], key=lambda s: _away(a, stop[s]))]
+    fresh = [_new_stop(a, b, share, 0.1, chance) for share in (0.33, 0.67)]
+    name = f"N{chance.randrange(1000)}"
+    ids = (a.id, *(s.id for s in fresh), b.id)
+    twin = replace(route, id=name, short_name=name, long_name=_name(chance))
+    there = replace(pattern, route_id=name, stop_ids=ids, offsets_s=(0, 120, 240, 360))
+    days = dict(table.operating_days)
+    if route.id in days:
+        days[name] = days[route.id]
+    routes = tuple(sorted((*table.routes, twin), key=lambda r: r.id))
+    table = replace(table, routes=routes, operating_days=days)
+    what = f"began {name} from {a.id} to {b.id}"
+    begun = replace(changed, timetable=table)
+    return _with_stops(_with_patterns(begun, (*table.patterns, there), what), fresh, "…")
+
+
+def _away(a: Stop, b: Stop) -> float:
+    assert None not in (a.lon, a.lat, b.lon, b.lat)
+    return math.hypot(b.lon - a.lon, b.lat - a.lat)
+
+
 def withdraw(changed: Changed, chance: Random) -> Changed:
     """Withdraw a route."""
     routes = sorted({p.route_id for p in changed.timetable.patterns})

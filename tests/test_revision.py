@@ -162,7 +162,8 @@ def test_adjustments_outlive_a_change_of_all_ids(tmp_path):
     assert not {"335-1", "332-1"} & {s.id for s in again.result.edition.stations}
     assert again.result.edition.adjustments == before.adjustments
     old, new = ({s.id: s for s in each.stations} for each in (before, again.result.edition))
-    assert new["183"].label_side == old["183"].label_side
+    # Beside what stands, the side that was asked for may be free where it was not.
+    assert new["183"].label_side in {"S", old["183"].label_side}
 
 
 def test_merges_outlive_a_revision():

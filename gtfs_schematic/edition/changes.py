@@ -5,7 +5,8 @@ from __future__ import annotations
 import csv
 import io
 import json
-from collections.abc import Iterator
+import math
+from collections.abc import Iterator, Mapping
 from dataclasses import asdict, dataclass, replace
 
 from gtfs_schematic.edition import changes_check
@@ -43,6 +44,17 @@ class Side:
 
 
 @dataclass(frozen=True, slots=True)
+class Moved:
+    """A station that stands elsewhere on the sheet."""
+
+    station: str
+    name: str
+    mm: float
+    because: str
+    """Empty where nobody knows, as when two editions are compared."""
+
+
+@dataclass(frozen=True, slots=True)
 class ChangeSheet:
     """All differences of two rosters in which the same ids are the same things."""
 
@@ -61,6 +73,8 @@ class ChangeSheet:
     """How many of them stand elsewhere on the sheet."""
     stability: Stability | None = None
     """What of the drawing stayed; None where feeds alone are compared."""
+    moved: tuple[Moved, ...] = ()
+    """Stations of both that stand elsewhere on the sheet, how far, and because of what."""
 
     @property
     def large(self) -> tuple[Change, ...]:
@@ -74,7 +88,12 @@ class ChangeSheet:
 
 
 def change_sheet(
-    before: Edition, after: Edition, matches: Matches, limits: ChangeLimits | None = None
+    before: Edition,
+    after: Edition,
+    matches: Matches,
+    limits: ChangeLimits | None = None,
+    *,
+    moved: Mapping[str, str] | None = None,
 ) -> ChangeSheet:
     """Compare two editions; the later has the ids of the earlier where things are the same.
 
@@ -86,15 +105,19 @@ def change_sheet(
         By the ids of the later edition (`carry.carried_matches`).
     limits
         What is small.
+    moved
+        Per station that had to move the reason, where that is known.
     """
     sheet = roster_changes(roster_of_edition(before), roster_of_edition(after), matches, limits)
-    drawn = tuple(_drawn(before, after))
+    gone = tuple(_moved(before, after, moved or {}))
+    drawn = tuple(_drawn(before, after, {each.station: each for each in gone}))
     touched = {s for c in sheet.large if c.kind in _SEEN or c.subject != "line" for s in c.places}
     return replace(
         sheet,
         changes=(*sheet.changes, *drawn),
         moved_on_sheet=len(drawn),
         stability=stability_of(before, after, touched),
+        moved=gone,
     )
 
 
@@ -182,11 +205,21 @@ def _doubts(old: Roster, new: Roster, matches: Matches) -> Iterator[str]:
     yield from matches.unknown
 
 
-def _drawn(before: Edition, after: Edition) -> Iterator[Change]:
-    """Tell which stations of both stand elsewhere on the sheet."""
+def _moved(before: Edition, after: Edition, why: Mapping[str, str]) -> Iterator[Moved]:
+    """Give the stations of both that stand elsewhere on the sheet."""
     old = {s.id: s for s in before.stations}
     for s in after.stations:
         was = old.get(s.id)
         if was is not None and (was.x_mm, was.y_mm) != (s.x_mm, s.y_mm):
-            there, here = (f"{each.x_mm:g}, {each.y_mm:g} mm" for each in (was, s))
-            yield Change("drawing", "drawn anew", s.id, s.name, there, here, (s.id,))
+            length = math.dist((was.x_mm, was.y_mm), (s.x_mm, s.y_mm))
+            yield Moved(s.id, s.name, round(length, 2), why.get(s.id, ""))
+
+
+def _drawn(before: Edition, after: Edition, moved: Mapping[str, Moved]) -> Iterator[Change]:
+    """Tell which stations of both stand elsewhere on the sheet."""
+    old = {s.id: s for s in before.stations}
+    for s in after.stations:
+        if s.id in moved:
+            there, here = (f"{each.x_mm:g}, {each.y_mm:g} mm" for each in (old[s.id], s))
+            why = f": {moved[s.id].because}" * bool(moved[s.id].because)
+            yield Change("drawing", "drawn anew", s.id, s.name, there, here + why, (s.id,))

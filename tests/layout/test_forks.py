@@ -23,7 +23,7 @@ from gtfs_schematic.layout.model import Clearances, Layout, LayoutSettings, Shee
 from gtfs_schematic.layout.planarise import planarise
 from gtfs_schematic.layout.plane import PlaneGraph
 from gtfs_schematic.network.model import Network
-from gtfs_schematic.pipeline import labelled_from
+from gtfs_schematic.pipeline import labelled_anew
 from gtfs_schematic.progress import Silent
 
 CLEARANCES = Clearances(1.6, 0.35, 2.6, 3.2, 5.5, {})
@@ -64,7 +64,7 @@ def test_eight_links_leave_in_directions_of_their_own():
 def test_a_busy_hub_is_drawn_from_end_to_end(network: Network):
     # Every stage is checked on the way; what a check faults is an error.
     wanted = Settings(layout=QUICK)
-    labelled = labelled_from(None, network, wanted, {}, Silent())
+    labelled = labelled_anew(network, wanted, {}, Silent())
     drawing = compose(labelled, wanted.drawing)
     assert drawing_check.faults(drawing, network, unnamed=labelled.unplaced) == ()
     bundled = labelled.bundled

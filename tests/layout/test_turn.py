@@ -25,7 +25,7 @@ from gtfs_schematic.layout.model import Clearances, LayoutSettings, SheetFrame
 from gtfs_schematic.layout.planarise import planarise
 from gtfs_schematic.layout.turn import best_turn, turned
 from gtfs_schematic.network.model import Network
-from gtfs_schematic.pipeline import labelled_from
+from gtfs_schematic.pipeline import labelled_anew
 from gtfs_schematic.progress import Silent
 
 CLEARANCES = Clearances(1.6, 0.35, 2.6, 3.2, 5.5, {})
@@ -83,7 +83,7 @@ def test_a_turned_layout_says_by_how_much_and_keeps_its_limits_turned():
 def test_an_arrow_points_north_and_the_edition_keeps_the_turn(turn_deg: float):
     network = grid(turn_deg)
     wanted = Settings(layout=BEST)
-    labelled = labelled_from(None, network, wanted, {}, Silent())
+    labelled = labelled_anew(network, wanted, {}, Silent())
     drawing = compose(labelled, wanted.drawing)
     [arrow] = [g for g in drawing.groups if isinstance(g, Group) and g.css_class == "north"]
     shaft = next(shape for shape in arrow.children if isinstance(shape, PathShape))
@@ -97,6 +97,6 @@ def test_an_arrow_points_north_and_the_edition_keeps_the_turn(turn_deg: float):
 
 
 def test_north_up_has_no_arrow():
-    labelled = labelled_from(None, grid(20.0), Settings(), {}, Silent())
+    labelled = labelled_anew(grid(20.0), Settings(), {}, Silent())
     drawing = compose(labelled, Settings().drawing)
     assert all(group.css_class != "north" for group in drawing.groups)
