@@ -31,7 +31,7 @@ if TYPE_CHECKING:
     from gtfs_schematic.feed.read import read_feed
     from gtfs_schematic.labels.model import LabelledLayout
     from gtfs_schematic.labels.place import place_labels
-    from gtfs_schematic.labels.room import room_requests
+    from gtfs_schematic.labels.room import name_rooms
     from gtfs_schematic.layout.engine import lay_out
     from gtfs_schematic.layout.model import Layout
     from gtfs_schematic.network.build import build_network
@@ -63,9 +63,9 @@ __all__ = [
     "lay_out",
     "load_edition",
     "measure_edition",
+    "name_rooms",
     "place_labels",
     "read_feed",
-    "room_requests",
     "settings_from_toml",
     "to_geojson",
     "to_pdf",
@@ -96,7 +96,7 @@ _HOMES = {
     "feed.read": ("read_feed",),
     "labels.model": ("LabelledLayout",),
     "labels.place": ("place_labels",),
-    "labels.room": ("room_requests",),
+    "labels.room": ("name_rooms",),
     "layout.engine": ("lay_out",),
     "layout.model": ("Layout",),
     "network.build": ("build_network",),

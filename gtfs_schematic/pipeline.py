@@ -59,20 +59,22 @@ from gtfs_schematic.geometry import Point
 from gtfs_schematic.labels import check as labels_check
 from gtfs_schematic.labels.model import LabelledLayout
 from gtfs_schematic.labels.place import place_labels
-from gtfs_schematic.labels.room import room_requests
+from gtfs_schematic.labels.room import name_rooms
 from gtfs_schematic.layout import check as layout_check
-from gtfs_schematic.layout.engine import Placement, fit_sheet, place
-from gtfs_schematic.layout.model import Layout, RoomRequest, SheetFrame
+from gtfs_schematic.layout.engine import Placement, fit, place
+from gtfs_schematic.layout.model import Layout, NameRoom, SheetFrame
+from gtfs_schematic.layout.refit import refit
 from gtfs_schematic.network import check as network_check
 from gtfs_schematic.network.build import build_network
 from gtfs_schematic.network.model import Network
 from gtfs_schematic.progress import Progress, Silent
 
-ROUNDS = 4
+ROUNDS = 3
 """How often the layout may be asked for more room before a larger sheet is tried."""
 
-PATIENCE = 2
-"""After how many rounds that place no more names no further room is asked for."""
+PLAIN = 2
+"""In how many rounds names are set at their usual places alone, and ask for room if need be;
+after these also further out, in more rows and smaller."""
 
 LARGER_SHEETS = 1
 """How many larger sheets are tried before names are left without a place."""
@@ -323,32 +325,34 @@ def _labelled_on_sheet(
 ) -> LabelledLayout:
     """Settle, bundle and label on the first sheet that holds the drawing.
 
-    Again with more room where names found no place, until all have one, room no longer helps, or
-    the rounds are over.
+    Again with room for all names where they stand or are to stand, until all have a place or the
+    rounds are over.
     """
     clearances = clearances_of(placement.network, settings.bundles, settings.labels)
-    requests: tuple[RoomRequest, ...] = ()
-    tries: list[LabelledLayout] = []
-    for _ in range(1 + ROUNDS):
-        layout = fit_sheet(placement, clearances, frames, requests=requests, progress=progress)
+
+    def named(layout: Layout, *, widen: bool) -> LabelledLayout:
         wanted = settings.layout
         must_be_sound("layout", layout_check.faults(layout, clearances, wanted.pins, wanted))
-
         bundled = bundle(layout, settings.bundles, progress=progress)
         must_be_sound("bundles", bundles_check.faults(bundled))
-
-        labelled = place_labels(bundled, settings.labels, progress=progress)
+        labelled = place_labels(bundled, settings.labels, widen=widen, progress=progress)
         must_be_sound("labels", labels_check.faults(labelled))
+        return labelled
 
-        tries.append(labelled)
-        helped = min(map(_unplaced, tries[-PATIENCE:])) < min(
-            map(_unplaced, tries[:-PATIENCE]), default=len(labelled.labels) + 1
-        )
-        if not labelled.unplaced or not helped:
+    fitted = fit(placement, clearances, frames, progress=progress)
+    best = named(fitted.layout, widen=False)
+    asked: tuple[NameRoom, ...] = ()
+    for turn in range(1, 1 + ROUNDS):
+        if not best.unplaced:
             break
-        progress.note(f"{_names(labelled)} found no place; asking for more room")
-        requests = _joined(requests, room_requests(labelled))
-    return min(tries, key=_unplaced)
+        progress.note(f"{_names(best)} found no place; asking for more room")
+        rooms = name_rooms(best, asked)
+        asked += tuple(room for room in rooms if not room.stands)
+        again = refit(fitted, rooms, progress=progress)
+        labelled = named(again.layout, widen=turn >= PLAIN)
+        if _unplaced(labelled) <= _unplaced(best):
+            fitted, best = again, labelled
+    return best
 
 
 def _unplaced(labelled: LabelledLayout) -> int:
@@ -361,11 +365,3 @@ def _names(labelled: LabelledLayout) -> str:
 
 def _area(frame: SheetFrame) -> float:
     return frame.width_mm * frame.height_mm
-
-
-def _joined(old: tuple[RoomRequest, ...], new: tuple[RoomRequest, ...]) -> tuple[RoomRequest, ...]:
-    """Keep the larger request of each station, so that room once given is not taken back."""
-    wanted: dict[str, float] = {}
-    for request in (*old, *new):
-        wanted[request.station_id] = max(request.length_mm, wanted.get(request.station_id, 0.0))
-    return tuple(RoomRequest(key, wanted[key]) for key in sorted(wanted))

@@ -29,7 +29,7 @@ from gtfs_schematic.edition.folder import FILES, load_edition, write_folder
 from gtfs_schematic.edition.save import from_json
 from gtfs_schematic.errors import InternalFaultError, LayoutError
 from gtfs_schematic.labels.model import LabelledLayout
-from gtfs_schematic.layout.model import RoomRequest
+from gtfs_schematic.layout.model import NameRoom
 from gtfs_schematic.progress import Silent
 
 ROOT = Path(__file__).parent.parent
@@ -171,24 +171,33 @@ class Rounds:
 
     def __init__(self, unplaced: list[int | None], result: pipeline.Result) -> None:
         self.unplaced, self.result = unplaced, result
-        self.asked: list[tuple[RoomRequest, ...]] = []
+        self.asked: list[tuple[NameRoom, ...]] = []
+        self.widened: list[bool] = []
 
-    def fit_sheet(self, *_: object, requests: tuple[RoomRequest, ...], **__: object) -> object:
+    def fit(self, *_: object, **__: object) -> object:
         """Refuse where the list says None."""
-        self.asked.append(requests)
-        if self.unplaced[len(self.asked) - 1] is None:
+        if self.unplaced[0] is None:
             raise LayoutError("no room")
-        return self.result.layout
+        return SimpleNamespace(layout=self.result.layout)
 
-    def place_labels(self, *_: object, **__: object) -> LabelledLayout:
+    def refit(self, fitted: object, rooms: tuple[NameRoom, ...], **_: object) -> object:
+        """Keep what was asked for."""
+        self.asked.append(rooms)
+        return fitted
+
+    def place_labels(self, *_: object, widen: bool, **__: object) -> LabelledLayout:
         """Leave as many names out as the list says."""
-        missing = self.unplaced[len(self.asked) - 1]
+        missing = self.unplaced[len(self.widened)]
+        self.widened.append(widen)
         ids = tuple(station.id for station in self.result.network.stations[:missing])
         return replace(self.result.labelled, unplaced=ids)
 
-    def wishes(self, labelled: LabelledLayout) -> tuple[RoomRequest, ...]:
-        """Ask for room that grows from round to round."""
-        return tuple(RoomRequest(key, 10.0 * len(self.asked)) for key in labelled.unplaced)
+    def wishes(
+        self, labelled: LabelledLayout, before: tuple[NameRoom, ...]
+    ) -> tuple[NameRoom, ...]:
+        """Ask for the names without a place, told what was asked before."""
+        assert before == tuple(room for asked in self.asked for room in asked)
+        return tuple(NameRoom(key, (), stands=False) for key in labelled.unplaced)
 
 
 @pytest.mark.parametrize(
@@ -196,10 +205,9 @@ class Rounds:
     [
         ([0], 0, 1),
         ([3, 0], 0, 2),
-        ([3, 2, 1, 1, 1], 1, 5),
-        ([5, 4, 3, 2, 1, 0], 1, 5),
-        ([3, 3, 3], 3, 3),
-        ([2, 5, 2], 2, 3),
+        ([3, 2, 1, 1, 0], 1, 4),
+        ([3, 3, 3, 3], 3, 4),
+        ([2, 5, 2, 4], 2, 4),
         ([3, 3, 1, 0], 0, 4),
     ],
 )
@@ -208,17 +216,21 @@ def test_room_is_asked_for_while_it_helps(unplaced, left, rounds, result, monkey
     monkeypatch.setattr(
         pipeline, "place", lambda network, *_, **__: SimpleNamespace(network=network)
     )
-    monkeypatch.setattr(pipeline, "fit_sheet", stand_in.fit_sheet)
+    monkeypatch.setattr(pipeline, "fit", stand_in.fit)
+    monkeypatch.setattr(pipeline, "refit", stand_in.refit)
     monkeypatch.setattr(pipeline, "bundle", lambda *_, **__: result.bundled)
     monkeypatch.setattr(pipeline, "place_labels", stand_in.place_labels)
-    monkeypatch.setattr(pipeline, "room_requests", stand_in.wishes)
+    monkeypatch.setattr(pipeline, "name_rooms", stand_in.wishes)
     for room in ("layout", "bundles", "labels"):
         monkeypatch.setattr(f"gtfs_schematic.{room}.check.faults", lambda *_: ())
     labelled = pipeline._labelled(result.network, QUICK, (), Silent())
     assert len(labelled.unplaced) == left
-    assert len(stand_in.asked) == rounds
-    sizes = [sum(request.length_mm for request in asked) for asked in stand_in.asked]
-    assert sizes == sorted(sizes), "room once given is not taken back"
+    assert len(stand_in.widened) == rounds
+    assert len(stand_in.asked) == rounds - 1
+    assert stand_in.widened == sorted(stand_in.widened), "usual places come first"
+    # What is asked for is what the best so far lacks.
+    best = [min(unplaced[: i + 1]) for i in range(rounds - 1)]
+    assert [len(asked) for asked in stand_in.asked] == best
 
 
 def test_a_layout_that_fails_at_once_is_an_error(result, monkeypatch):
@@ -226,7 +238,7 @@ def test_a_layout_that_fails_at_once_is_an_error(result, monkeypatch):
     monkeypatch.setattr(
         pipeline, "place", lambda network, *_, **__: SimpleNamespace(network=network)
     )
-    monkeypatch.setattr(pipeline, "fit_sheet", stand_in.fit_sheet)
+    monkeypatch.setattr(pipeline, "fit", stand_in.fit)
     with pytest.raises(LayoutError, match="no room"):
         pipeline._labelled(result.network, QUICK, (), Silent())
 

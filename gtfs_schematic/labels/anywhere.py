@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
+
 import numpy as np
 from numpy.typing import NDArray
 
@@ -30,6 +32,16 @@ def anywhere(
     -------
     The candidates, not pushed, and the corners of their boxes, shape (N, 4, 2).
     """
+    return around(site, settings, reach, lambda corners: ~obstacles.blocked(corners))
+
+
+def around(
+    site: Site,
+    settings: LabelSettings,
+    reach: Reach,
+    is_wanted: Callable[[Floats], NDArray[np.bool_]],
+) -> tuple[list[Candidate], Floats]:
+    """Give the wanted places of the lattice, told by their corners; as `anywhere` does."""
     candidates: list[Candidate] = []
     boxes: list[Floats] = [np.empty((0, 4, 2))]
     for scale in reach.scales:
@@ -39,9 +51,9 @@ def anywhere(
                 block = set_block(wording, align)
                 origins, octants = _lattice(site, block, align, reach.around_mm)
                 corners = _corners(origins, block)
-                free = np.flatnonzero(~obstacles.blocked(corners))
-                boxes.append(corners[free])
-                for i in free.tolist():
+                wanted = np.flatnonzero(is_wanted(corners))
+                boxes.append(corners[wanted])
+                for i in wanted.tolist():
                     at = (float(origins[i, 0]), float(origins[i, 1]))
                     side: Side = OCTANTS[int(octants[i])]
                     candidate = Candidate(

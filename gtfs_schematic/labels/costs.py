@@ -81,7 +81,7 @@ def candidate_costs(
 
     A label misleads if it lies off its own marker and clearly nearer to a foreign one.
     """
-    costs = np.array([_own_cost(candidate, settings) for candidate in candidates])
+    costs = np.array([own_cost(candidate, settings) for candidate in candidates])
     if not len(costs):
         return costs
     index = {station_id: i for i, station_id in enumerate(obstacles.stations)}
@@ -91,7 +91,9 @@ def candidate_costs(
     off = np.maximum(0.0, own_distance - usual)
     costs += DISTANCE * (off + off**2 / 2.0)
     costs += _ambiguity(boxes, own, own_distance, obstacles)
-    costs += _foreign_lines(candidates, boxes, own, obstacles)
+    cost, cut = _foreign_lines(candidates, boxes, own, obstacles)
+    costs += cost
+    costs[cut & (own_distance > _OFF_MM)] = np.inf
     return costs
 
 
@@ -109,7 +111,7 @@ def side_cost(candidate: Candidate) -> float:
     return cost
 
 
-def _own_cost(candidate: Candidate, settings: LabelSettings) -> float:
+def own_cost(candidate: Candidate, settings: LabelSettings) -> float:
     """Give the cost that follows from the candidate alone."""
     cost = side_cost(candidate) + SLIDE * abs(candidate.slide)
     widest = max(line.width_mm for line in candidate.block.lines)
@@ -151,11 +153,14 @@ def _ambiguity(
 
 def _foreign_lines(
     candidates: Sequence[Candidate], boxes: Shapes, own: NDArray[np.int64], obstacles: Obstacles
-) -> NDArray[np.float64]:
-    """Give the cost of lines that do not call at the station, near or in between."""
-    cost = np.zeros(len(boxes))
+) -> tuple[NDArray[np.float64], NDArray[np.bool_]]:
+    """Give the cost of lines that do not call at the station, near or in between.
+
+    And whether a line that does not even pass the station lies in between.
+    """
+    cost, far = np.zeros(len(boxes)), np.zeros(len(boxes), dtype=bool)
     if not obstacles.piece_lines:
-        return cost
+        return cost, far
     reach = obstacles.half_width + _LINE_MM
     nearest = np.full(len(boxes), np.inf)
     box, piece = obstacles.piece_tree.query(boxes, predicate="dwithin", distance=reach)
@@ -168,7 +173,13 @@ def _foreign_lines(
     box, piece = obstacles.piece_tree.query(leaders, predicate="intersects")
     cut = np.unique(box[_not_calling(candidates, box, piece, obstacles)])
     cost[cut] += CUT_OFF
-    return cost
+    strange = [
+        i
+        for i, j in zip(box.tolist(), piece.tolist(), strict=True)
+        if obstacles.piece_lines[j] not in candidates[i].site.passing
+    ]
+    far[strange] = True
+    return cost, far
 
 
 def _not_calling(

@@ -12,21 +12,22 @@ from gtfs_schematic.labels.mend import mended
 from gtfs_schematic.labels.model import Label, LabelledLayout, LabelSettings
 from gtfs_schematic.labels.neighbors import Neighbors, neighbors_of
 from gtfs_schematic.labels.obstacles import Obstacles, obstacles_of
-from gtfs_schematic.labels.problem import Entry, entries_of, state_problem
+from gtfs_schematic.labels.problem import ROW_SPACE_MM, Entry, entries_of, state_problem
 from gtfs_schematic.labels.reach import ANYWHERE, FAR, NEAR
 from gtfs_schematic.labels.site import Site, sites_of
 from gtfs_schematic.progress import Progress, Silent
 
 _SILENT = Silent()
-_ROW_SPACE_MM = 0.7
-"""What two names above each other are kept apart more, so that they do not read as one; given up
-where a name finds no place."""
 _WORK = (1.0, 2.0)
 """Limits of the first and the second solve in CP-SAT's deterministic seconds."""
 
 
 def place_labels(
-    bundled: BundledLayout, settings: LabelSettings, *, progress: Progress = _SILENT
+    bundled: BundledLayout,
+    settings: LabelSettings,
+    *,
+    widen: bool = True,
+    progress: Progress = _SILENT,
 ) -> LabelledLayout:
     """Place the name of every station.
 
@@ -42,13 +43,13 @@ def place_labels(
     entries = entries_of(sites, obstacles, settings, NEAR)
     progress.step()
     groups = [entries[site.station_id] for site in sites]
-    problem, listed = state_problem(groups, neighbors, (settings.clearance_mm, _ROW_SPACE_MM))
+    problem, listed = state_problem(groups, neighbors, (settings.clearance_mm, ROW_SPACE_MM))
     choice = solve(problem, mended(problem, greedy(problem)), work=_WORK[0])
     progress.step()
     chosen = _chosen(sites, choice, listed)
-    if len(chosen) < len(sites):
+    if widen and len(chosen) < len(sites):
         chosen = _widen(sites, entries, chosen, (obstacles, neighbors, settings))
-    short = _shortened(sites, chosen, settings)
+    short = _shortened(sites, chosen, settings) if widen else sites
     if short != sites:
         chosen = _widen(short, entries, chosen, (obstacles, neighbors, settings))
     progress.step()

@@ -23,10 +23,15 @@ from gtfs_schematic.labels.site import OCTANTS, Site
 
 _UNITS = 10.0
 """Whole numbers per unit of cost."""
+ROW_SPACE_MM = 0.7
+"""What two names above each other are kept apart more, so that they do not read as one; given up
+where a name finds no place."""
+BOLD_SPACE = 3.0
+"""The same of bold names, in multiples."""
 _PER_STATION = 120
 """Candidates kept per station in the end."""
 
-_WORD_SPACE_MM = 0.5
+WORD_SPACE_MM = 0.5
 """Half of what two names in one row are kept apart beyond the clearance."""
 
 
@@ -117,7 +122,10 @@ def _conflicts(
         return []
     clearance, between_rows = clearances_mm
     boxes = np.array([entry.box for entry in entries], dtype=object)
-    boxes = _grown(boxes, along_mm=_WORD_SPACE_MM, across_mm=between_rows / 2.0)
+    corners = shapely.get_coordinates(boxes).reshape(len(boxes), 5, 2)[:, :4]
+    bold = np.array([entry.candidate.site.bold for entry in entries])
+    across = between_rows / 2.0 * np.where(bold, BOLD_SPACE, 1.0)
+    boxes = shapely.polygons(grown_corners(corners, WORD_SPACE_MM, across))
     first, second = _near_pairs(boxes, clearance)
     foreign = owner[first] != owner[second]
     first, second = first[foreign], second[foreign]
@@ -145,15 +153,21 @@ def _near_pairs(boxes: Shapes, distance: float) -> tuple[NDArray[np.int64], NDAr
     return first[near], second[near]
 
 
-def _grown(boxes: Shapes, *, along_mm: float, across_mm: float) -> Shapes:
-    """Give boxes that reach further, along and across the text, so that names read apart."""
-    corners = shapely.get_coordinates(boxes).reshape(len(boxes), 5, 2)[:, :4]
+def row_space(*, bold: bool) -> float:
+    """Give what names are kept apart above each other beyond the clearance, millimetres."""
+    return ROW_SPACE_MM * (BOLD_SPACE if bold else 1.0)
+
+
+def grown_corners(
+    corners: NDArray[np.float64], along_mm: float, across_mm: NDArray[np.float64] | float
+) -> NDArray[np.float64]:
+    """Give boxes (N, 4, 2) that reach further along and across the text."""
     along, across = corners[:, 1] - corners[:, 0], corners[:, 3] - corners[:, 0]
     along *= along_mm / np.linalg.norm(along, axis=1)[:, None]
-    across *= across_mm / np.linalg.norm(across, axis=1)[:, None]
+    across *= (across_mm / np.linalg.norm(across, axis=1))[:, None]
     ends, edges = np.array([-1.0, 1.0, 1.0, -1.0]), np.array([-1.0, -1.0, 1.0, 1.0])
     moves = ends[None, :, None] * along[:, None, :] + edges[None, :, None] * across[:, None, :]
-    grown: Shapes = shapely.polygons(corners + moves)
+    grown: NDArray[np.float64] = corners + moves
     return grown
 
 

@@ -47,6 +47,8 @@ class Site:
     run: Run
     lines: frozenset[str]
     """Ids of the lines that call."""
+    passing: frozenset[str]
+    """Ids of the lines on the links that meet there, calling or not."""
     shortened: bool = False
     """Whether the name is a short form."""
     rows: tuple[str, ...] = ()
@@ -80,6 +82,10 @@ def sites_of(bundled: BundledLayout, settings: LabelSettings) -> tuple[Site, ...
     network = bundled.layout.network
     ends = line_ends(network) if settings.line_badges else {}
     directions = _directions(bundled)
+    passing: dict[str, frozenset[str]] = defaultdict(frozenset)
+    for link in network.links:
+        for end in (link.start, link.end):
+            passing[end] |= frozenset(link.lines)
     sites = []
     for station in sorted(network.stations, key=lambda station: station.id):
         octants = tuple(sorted(directions[station.id]))
@@ -99,6 +105,7 @@ def sites_of(bundled: BundledLayout, settings: LabelSettings) -> tuple[Site, ...
                 directions=octants,
                 run=_run(octants),
                 lines=frozenset(station.lines),
+                passing=passing[station.id] | frozenset(station.lines),
                 shortened=said != name,
                 rows=rows,
                 angle=settings.angles.get(station.id),

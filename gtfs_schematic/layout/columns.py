@@ -56,22 +56,27 @@ class Columns:
     """Scale of the drawing, millimetres to the kilometre, and where it has the ground's middle."""
     excess: NDArray[np.int64]
     """Per drift limit, by how much it is missed, millimetres."""
+    crowd: NDArray[np.int64]
+    """Per distance that a name keeps, what is lacking of it."""
     count: int
 
     @staticmethod
-    def of(skeleton: Skeleton, grades: tuple[int, int], pairs: int, limits: int) -> Columns:
+    def of(
+        skeleton: Skeleton, grades: tuple[int, int], pairs: int, limits: int, names: int = 0
+    ) -> Columns:
         """Give every variable its place; without `limits` on the drift there is no fit.
 
         `grades` are those of lengths and of distances from anchors.
         """
         k, n, p = len(skeleton.points), skeleton.graph.n_vertices, len(skeleton.courses)
         sizes = [k, k, grades[0] * p, grades[1] * 2 * n, pairs, 2, 3 if limits else 0, limits]
+        sizes.append(names)
         ends = np.cumsum([0, *sizes])
-        x, y, slack, away, lack, extent, fit, excess = (
+        x, y, slack, away, lack, extent, fit, excess, crowd = (
             np.arange(a, b) for a, b in itertools.pairwise(ends.tolist())
         )
         slack, away = slack.reshape(-1, p), away.reshape(-1, 2, n)
-        return Columns(x, y, slack, away, lack, extent, fit, excess, int(ends[-1]))
+        return Columns(x, y, slack, away, lack, extent, fit, excess, crowd, int(ends[-1]))
 
     def along(self, runs: Runs, nodes: NDArray[np.int64]) -> NDArray[np.int64]:
         """Give the column that measures each segment at one of its ends."""

@@ -79,6 +79,18 @@ class Placement:
     """Counter-clockwise turn of the ground."""
 
 
+@dataclass(frozen=True)
+class Fitted:
+    """A layout on its sheet, and what it takes to settle it again with room for names."""
+
+    layout: Layout
+    sizes: Sizes
+    skeleton: Skeleton
+    """Settled: its points are millimetres."""
+    scale_mm: float
+    """Length of a station spacing."""
+
+
 def lay_out(
     network: Network,
     settings: LayoutSettings,
@@ -162,6 +174,18 @@ def fit_sheet(
     requests: tuple[RoomRequest, ...] = (),
     progress: Progress = Silent(),  # noqa: B008 - stateless
 ) -> Layout:
+    """Settle a placement on the first sheet that holds it: see `fit`."""
+    return fit(placement, clearances, frames, requests=requests, progress=progress).layout
+
+
+def fit(
+    placement: Placement,
+    clearances: Clearances,
+    frames: Sequence[SheetFrame],
+    *,
+    requests: tuple[RoomRequest, ...] = (),
+    progress: Progress = Silent(),  # noqa: B008 - stateless
+) -> Fitted:
     """Settle a placement on the first sheet that holds it.
 
     Parameters
@@ -179,8 +203,8 @@ def fit_sheet(
 
     Returns
     -------
-    Layout
-        Every guarantee of `layout.check` kept.
+    Fitted
+        Its layout keeps every guarantee of `layout.check`.
 
     Raises
     ------
@@ -197,12 +221,13 @@ def fit_sheet(
         link_wishes(network, requests),
         relative=relative_pins(placement.skeleton.graph, placement.settings),
     )
-    sizes, (skeleton, frame, _) = first_that_holds(placement.skeleton, sizes, frames)
+    sizes, (skeleton, frame, scale) = first_that_holds(placement.skeleton, sizes, frames)
     pinned = pins_in_frame(skeleton.graph, sizes.settings, frame)
     units = snap(skeleton, skeleton.points, frozenset(pinned), sizes.relative)
-    places = _on_paper(units, frame, centred=not pinned)
+    places = on_paper(units, frame, centred=not pinned)
     layout = restore(network, skeleton, places, frame, part_wants(skeleton.graph, sizes))
-    return dataclasses.replace(layout, rotation_deg=placement.rotation_deg)
+    layout = dataclasses.replace(layout, rotation_deg=placement.rotation_deg)
+    return Fitted(layout, dataclasses.replace(sizes, pinned=pinned), skeleton, scale)
 
 
 def _board(
@@ -234,7 +259,7 @@ def _board(
     )
 
 
-def _on_paper(units: NDArray[np.int64], frame: SheetFrame, *, centred: bool) -> NDArray[np.int64]:
+def on_paper(units: NDArray[np.int64], frame: SheetFrame, *, centred: bool) -> NDArray[np.int64]:
     """Turn y down and put the drawing into its frame: centred, or as its pins have it."""
     if not centred:
         left, bottom = (round(side * UNITS_PER_MM) for side in (frame.left_mm, frame.bottom_mm))

@@ -12,8 +12,15 @@ from numpy.typing import NDArray
 from gtfs_schematic.errors import LayoutError
 from gtfs_schematic.geometry import Point
 from gtfs_schematic.layout.asked import Relative
+from gtfs_schematic.layout.crowding import Crowding, crowding
 from gtfs_schematic.layout.drift_limits import limits_of
-from gtfs_schematic.layout.model import Clearances, LayoutSettings, RoomRequest, SheetFrame
+from gtfs_schematic.layout.model import (
+    Clearances,
+    LayoutSettings,
+    NameRoom,
+    RoomRequest,
+    SheetFrame,
+)
 from gtfs_schematic.layout.plane import Part, Piece, PlaneGraph
 from gtfs_schematic.layout.settle import Wants
 from gtfs_schematic.layout.skeleton import Skeleton
@@ -23,6 +30,8 @@ _WALK_SHARE = 0.75
 """Length of a walk in shares of a station spacing: short, so that it reads as one place."""
 
 _AIR_MM = 0.2
+_NAME_CLEAR_MM = 0.8
+"""What names are kept clear of lines and each other."""
 _MOST_WISHED_MM = 14.0
 """Length up to which a wish binds, millimetres; beyond, it is weighed against the others."""
 
@@ -54,6 +63,8 @@ class Sizes:
     """Per pinned vertex its place, millimetres from the frame's lower left corner, y north."""
     relative: tuple[Relative, ...] = ()
     """Places that vertices keep as seen from others."""
+    names: tuple[NameRoom, ...] = ()
+    """Room for names; only once the drawing has been settled."""
 
 
 def wants_of(
@@ -112,6 +123,7 @@ def wants_of(
         limits=limits_of(graph, sizes.settings),
         jogs=np.where(jog, 3.0 * lines, 0.0),
         spread=2.0 if tight else 0.0,
+        crowding=_crowding(skeleton, sizes, half),
     )
 
 
@@ -167,6 +179,16 @@ def pins_in_frame(
             )
         pinned[v] = (round(x - frame.left_mm, 2), round(frame.bottom_mm - y, 2))
     return pinned
+
+
+def _crowding(skeleton: Skeleton, sizes: Sizes, half: NDArray[np.float64]) -> Crowding | None:
+    """Say what names keep clear of; markers reach over the outer lines of a bundle."""
+    if not sizes.names:
+        return None
+    clearances = sizes.clearances
+    over = (clearances.marker_mm - clearances.line_width_mm) / 2.0
+    wants = part_wants(skeleton.graph, sizes)
+    return crowding(skeleton, sizes.names, wants, half + over, _NAME_CLEAR_MM)
 
 
 def _label_room(skeleton: Skeleton, clearances: Clearances) -> NDArray[np.float64]:

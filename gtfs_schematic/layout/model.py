@@ -88,6 +88,17 @@ class RoomRequest:
 
 
 @dataclass(frozen=True, slots=True)
+class NameRoom:
+    """Where a name stands or is to stand beside its station: room that should be left free."""
+
+    station_id: str
+    outline_mm: tuple[Point, ...]
+    """Corners as seen from the station's place, millimetres, y down."""
+    stands: bool
+    """Whether it stands there already; otherwise it has no place yet."""
+
+
+@dataclass(frozen=True, slots=True)
 class Crossing:
     """Two links (or walks) that cross on the ground without a station, and on the sheet."""
 

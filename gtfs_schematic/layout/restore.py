@@ -48,7 +48,7 @@ def restore(
     runs: dict[str, list[list[_Place]]] = defaultdict(list)
     for p, piece in enumerate(graph.pieces):
         corners = [_place(places[node]) for node in skeleton.polyline(p)]
-        stops = _stops(corners, part_wants[p])
+        stops = stops_on(corners, part_wants[p])
         at.update(zip(piece.stations, (place for place, _ in stops), strict=True))
         for part, run in zip(piece.parts, _cut(corners, stops), strict=True):
             for owner, forward in ((part.owner, part.forward), *piece.others):
@@ -67,7 +67,7 @@ def _point(place: _Place) -> Point:
     return place[0] / UNITS_PER_MM, place[1] / UNITS_PER_MM
 
 
-def _stops(corners: list[_Place], wants: NDArray[np.float64]) -> list[tuple[_Place, int]]:
+def stops_on(corners: list[_Place], wants: NDArray[np.float64]) -> list[tuple[_Place, int]]:
     """Places of the stations on a piece, each with the number of the segment it stands on."""
     points = np.array(corners, dtype=np.float64)
     ends = np.concatenate([[0.0], np.cumsum(np.hypot(*np.diff(points, axis=0).T))])

@@ -27,6 +27,7 @@ from gtfs_schematic.layout.columns import (
     keep_directions,
     piece_lengths,
 )
+from gtfs_schematic.layout.crowding import Crowding
 from gtfs_schematic.layout.drift_limits import DriftLimits, colliding, hold_drift
 from gtfs_schematic.layout.rows import Rows
 from gtfs_schematic.layout.separation import Separations, near_pairs, separate
@@ -92,6 +93,8 @@ class Wants:
     """Places that vertices keep as seen from others."""
     limits: DriftLimits | None = None
     """How far stations may be from their true places."""
+    crowding: Crowding | None = None
+    """Room for names whose places are known."""
 
 
 def settle(
@@ -170,8 +173,10 @@ def _solve(
     runs = Runs.of(skeleton)
     limits = wants.limits
     held = len(limits.stations) if limits is not None else 0
+    crowding = wants.crowding
+    names = len(crowding.need) if crowding is not None else 0
     roomy = _roomy(wants, apart)
-    columns = Columns.of(skeleton, (len(_GRADES), len(_AWAY)), len(roomy), held)
+    columns = Columns.of(skeleton, (len(_GRADES), len(_AWAY)), len(roomy), held, names)
     equal, most = Rows(), Rows()
     keep_directions(equal, runs, columns)
     hold_relative(equal, (columns.x, columns.y), wants.relative if not loosened else ())
@@ -181,6 +186,8 @@ def _solve(
         hold_drift(equal, most, columns, limits)
     _keep_apart(most, skeleton, columns, wants, apart)
     _give_room(most, skeleton, columns, wants, apart.only(roomy))
+    if crowding is not None:
+        crowding.keep(most, (columns.x, columns.y), columns.crowd)
     for axis, nodes in enumerate((columns.x, columns.y)):
         most.add([(nodes, 1.0), (np.full(len(nodes), columns.extent[axis]), -1.0)], 0.0)
     blocks, rights = piece_lengths(runs, columns, wants.piece_least, wants.piece_goal)
@@ -335,6 +342,8 @@ def _cost(runs: Runs, columns: Columns, wants: Wants, *, loosened: bool) -> NDAr
     if loosened:
         cost[columns.away[:, :, sorted(wants.pinned)]] = _PIN_WEIGHT
     cost[columns.lack] = _LACK_WEIGHT
+    if wants.crowding is not None:
+        cost[columns.crowd] = wants.crowding.price
     cost[columns.extent] = wants.spread
     cost[columns.excess] = _PIN_WEIGHT
     np.add.at(cost, columns.along(runs, runs.end), wants.jogs * runs.forward)

@@ -19,7 +19,7 @@ from gtfs_schematic.labels.obstacles import obstacles_of
 from gtfs_schematic.labels.place import place_labels
 from gtfs_schematic.labels.problem import entries_of
 from gtfs_schematic.labels.reach import ANYWHERE
-from gtfs_schematic.labels.room import room_requests
+from gtfs_schematic.labels.room import name_rooms
 from gtfs_schematic.labels.site import sites_of
 
 NAMES = ("ribbon", "ring", "star", "walk_and_crossing")
@@ -37,7 +37,8 @@ def test_every_station_of_the_hand_drawn_networks_gets_a_sound_label(
 ):
     labelled = placed[name]
     assert labelled.unplaced == ()
-    assert room_requests(labelled) == ()
+    assert [room.station_id for room in name_rooms(labelled)] == sorted(labelled.labels)
+    assert all(room.stands for room in name_rooms(labelled))
     assert set(labelled.labels) == set(labelled.bundled.layout.positions)
     assert faults(labelled) == ()
 
@@ -113,14 +114,27 @@ def test_a_person_may_ask_for_a_side(straight: Straight):
     assert faults(labelled) == ()
 
 
-def test_a_name_without_any_room_is_listed_and_asks_for_some(straight: Straight):
+def test_a_name_without_any_room_is_listed_and_asks_for_none(straight: Straight):
     long_name = "Weitläufigkeitsbeschreibungsanstalt" * 4
     labelled = place_labels(straight(["Amsel", long_name, "Dorn"], (0.0, 15.0)), LabelSettings())
     assert labelled.unplaced == ("s01",)
     assert faults(labelled) == ()
-    (request,) = room_requests(labelled)
-    assert request.station_id == "s01"
-    assert request.length_mm > 15.0
+    assert [room.station_id for room in name_rooms(labelled)] == ["s00", "s02"]
+
+
+def test_a_crowded_name_asks_for_the_room_beside_its_own_line(straight: Straight):
+    names = [f"Unterer Grundweg {n}" for n in "ABCDEFGH"]
+    labelled = place_labels(straight(names * 3, (0.0, 1.0)), _plain(), widen=False)
+    asked = {room.station_id: room for room in name_rooms(labelled) if not room.stands}
+    assert sorted(asked) == sorted(labelled.unplaced)
+    assert asked
+    half = labelled.bundled.settings.line_width_mm / 2.0
+    for room in asked.values():
+        assert shapely.Polygon(room.outline_mm).distance(shapely.Point(0.0, 0.0)) < 6.0
+        assert min(abs(x) for x, _ in room.outline_mm) > half
+    before = tuple(asked.values())
+    again = {r.station_id: r for r in name_rooms(labelled, before) if not r.stands}
+    assert any(again[key].outline_mm != asked[key].outline_mm for key in asked)
 
 
 def test_second_names_stand_beneath_in_a_smaller_size(straight: Straight):
@@ -159,6 +173,28 @@ def test_the_order_of_the_input_does_not_matter(
     layout = replace(bundled.layout, network=shuffled)
     again = place_labels(replace(bundled, layout=layout), LabelSettings())
     assert again.labels == placed[name].labels
+
+
+@pytest.mark.parametrize("name", NAMES)
+def test_no_line_that_only_goes_by_parts_a_far_name_from_its_marker(
+    networks: Mapping[str, BundledLayout], name: str
+):
+    bundled, wanted = networks[name], LabelSettings()
+    obstacles = obstacles_of(bundled, wanted)
+    outlines = dict(zip(obstacles.stations, obstacles.markers, strict=True))
+    for site in sites_of(bundled, wanted):
+        strange = [
+            piece
+            for piece, line in zip(obstacles.pieces, obstacles.piece_lines, strict=True)
+            if not any(
+                line in link.lines and site.station_id in (link.start, link.end)
+                for link in bundled.layout.network.links
+            )
+        ]
+        lines = shapely.union_all(strange)
+        for entry in entries_of([site], obstacles, wanted, ANYWHERE)[site.station_id]:
+            leader = shapely.shortest_line(entry.box, outlines[site.station_id])
+            assert leader.length <= 2.0 or not leader.intersects(lines), site.station_id
 
 
 def _plain() -> LabelSettings:
