@@ -205,3 +205,32 @@ def test_a_feed_that_does_not_hold_today_is_told_apart_from_the_results(village,
     captured = capsys.readouterr()
     assert "expired" not in captured.out
     assert ("expired" in captured.err) or ("not valid yet" in captured.err)
+
+
+@pytest.mark.parametrize(
+    ("changes", "told"),
+    [
+        ({"stops.txt": None}, "village.zip lacks stops.txt"),
+        ({"stops.txt": "stop_id;stop_name\n"}, "separated by semicolons; they must be by commas"),
+        ({"trips.txt": "route_id,service_id,trip_id\n"}, "lacks rows in trips.txt"),
+        ({"routes.txt": "route_id,route_type\nr1,714\nr2,110\n"}, "2 × route: replacement service"),
+        ({"stops.txt": VILLAGE["stops.txt"].replace("Tarn", '"Tarn')}, "row 2: cannot be read as"),
+        ({"stops.txt": VILLAGE["stops.txt"].encode("utf-16")}, "looks like UTF-16"),
+        ({"calendar.txt": VILLAGE["calendar.txt"].replace("2026", "26")}, "no service on any date"),
+        ({"stops.txt": VILLAGE["stops.txt"].replace("47.0", "147.0")}, "not a number of degrees"),
+        ({"../stops.txt": ""}, "leads outside the zip"),
+        ({"shapes.txt": " " * 40 * 2**20}, "more than 200 times its packed size"),
+    ],
+)
+def test_what_cannot_be_used_is_one_error_of_one_line(tmp_path, capsys, changes, told):
+    path = tmp_path / "village.zip"
+    with zipfile.ZipFile(path, "w", zipfile.ZIP_DEFLATED) as archive:
+        for name, content in {**VILLAGE, **changes}.items():
+            if content is not None:
+                archive.writestr(name, content)
+    assert run(["inspect", str(path), "--quiet"]) == 3
+    captured = capsys.readouterr()
+    assert captured.out == ""
+    (line,) = captured.err.splitlines()
+    assert line.startswith("Error: ")
+    assert told in line
