@@ -53,19 +53,20 @@ def with_carried_ids(network: Network, edition: Edition | Roster, matches: Match
 
 def _junction_names(network: Network, edition: Edition | Roster) -> dict[str, str]:
     """Give junctions the ids that the nearest have in the edition, if they are the same place."""
-    old = edition.junctions if isinstance(edition, Edition) else ()
-    places = [(j.lon, j.lat) for j in old] + [(j.lon, j.lat) for j in network.junctions]
+    old = [(j.id, (j.lon, j.lat)) for j in edition.junctions]
+    places = [at for _, at in old] + [(j.lon, j.lat) for j in network.junctions]
     metres = [complex(at) for at in local_metres(places)] if places else []
     pairs = sorted(
-        (abs(p - q), a.id, b.id)
-        for a, p in zip(old, metres, strict=False)
+        (abs(p - q), was, b.id)
+        for (was, _), p in zip(old, metres, strict=False)
         for b, q in zip(network.junctions, metres[len(old) :], strict=True)
     )
     names: dict[str, str] = {}
     for gap, was, now in pairs:
         if gap <= _SAME_JUNCTION_M and now not in names and was not in names.values():
             names[now] = was
-    taken = {s.id for s in (*edition.stations, *network.stations)} | {j.id for j in old}
+    taken = {key for key, _ in old} | {s.id for s in network.stations}
+    taken |= {s.id for s in edition.stations}
     for junction in network.junctions:
         if junction.id not in names:
             name = junction.id

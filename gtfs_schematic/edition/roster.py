@@ -9,7 +9,7 @@ from functools import cached_property
 
 from gtfs_schematic.edition.model import Edition
 from gtfs_schematic.network.between import from_station_to_station
-from gtfs_schematic.network.model import Network
+from gtfs_schematic.network.model import Junction, Network
 
 
 @dataclass(frozen=True, slots=True)
@@ -61,6 +61,7 @@ class Roster:
     """(station, station, sorted ids of the lines between them)."""
     walks: tuple[tuple[str, str, int | None], ...] = ()
     """(station, station, seconds)."""
+    junctions: tuple[Junction, ...] = ()
 
     @cached_property
     def station(self) -> dict[str, RosterStation]:
@@ -117,6 +118,7 @@ def roster_of_edition(edition: Edition) -> Roster:
         ),
         tuple((k.start, k.end, tuple(sorted(k.lines))) for k in edition.links),
         tuple((w.start, w.end, w.time_s) for w in edition.walks),
+        tuple(Junction(j.id, j.lon, j.lat) for j in edition.junctions),
     )  # fmt: skip
 
 
@@ -159,4 +161,5 @@ def roster_of_network(
         ),
         tuple((k.start, k.end, k.lines) for k in from_station_to_station(network)),
         tuple((w.start, w.end, w.time_s) for w in network.walks),
+        network.junctions,
     )  # fmt: skip
