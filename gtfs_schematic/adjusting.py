@@ -7,10 +7,11 @@ from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING
 
 from gtfs_schematic.background.model import Background
-from gtfs_schematic.config import Settings, settings_of, with_wishes
+from gtfs_schematic.config import Settings, settings_of, with_marks, with_wishes
 from gtfs_schematic.drawing import check as drawing_check
 from gtfs_schematic.drawing.compose import compose
 from gtfs_schematic.drawing.listing import to_text
+from gtfs_schematic.drawing.marks import unshown, with_room
 from gtfs_schematic.drawing.model import Drawing
 from gtfs_schematic.drawing.pdf import to_pdf
 from gtfs_schematic.drawing.svg import to_svg
@@ -113,6 +114,7 @@ def adjust_edition(
         state.network, adjustments_of(before.adjustments, "the edition"), state.timetable
     )
     new = adjusted(state.network, adjustments, state.timetable)
+    marked = with_marks(settings, state.marks).drawing
     must_be_sound("adjustments", network_check.faults(new.network))
     same = _shape(old.network) == _shape(new.network)
     labelled = _labelled(before, state, (old, new), settings, progress)
@@ -121,7 +123,8 @@ def adjust_edition(
     background = Background()
     if settings.background.files:
         background = backdrop.lay_background(labelled, settings.background)
-    drawing = compose(labelled, settings.drawing, background)
+    shown = with_room(state.marks, labelled)
+    drawing = compose(labelled, marked, background, shown.closed)
     found = drawing_check.faults(
         drawing, new.network, unnamed=labelled.unplaced, said_as=labelled.abbreviated
     )
@@ -131,7 +134,7 @@ def adjust_edition(
     edition = replace(
         edition,
         adjustments=plain(adjustments),
-        findings=(*edition.findings, *map(sentence, missed)),
+        findings=(*edition.findings, *unshown(state.marks, shown), *map(sentence, missed)),
     )
     must_be_sound("edition", edition_check.faults(edition))
     drift = _drift(before, edition, state, settings)
@@ -179,7 +182,7 @@ def _labelled(
 ) -> LabelledLayout:
     """Redraw places, bundles and names as far as they are touched."""
     old, new = steps
-    wanted = with_wishes(settings, new.wishes.by_room())
+    wanted = with_marks(with_wishes(settings, new.wishes.by_room()), state.marks)
     same = _shape(old.network) == _shape(new.network)
     layout = layout_of(before, state.drawn, new.network)
     rooms = [each.wishes.by_room() for each in steps]

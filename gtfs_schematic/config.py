@@ -13,6 +13,7 @@ from pydantic_core import ErrorDetails
 
 from gtfs_schematic.background.model import BackgroundSettings
 from gtfs_schematic.bundles.model import BundleSettings
+from gtfs_schematic.drawing.marks import Marks
 from gtfs_schematic.drawing.model import DrawingSettings, SheetSettings
 from gtfs_schematic.drift.model import DriftSettings
 from gtfs_schematic.errors import UsageError
@@ -107,6 +108,16 @@ def with_wishes(
         after = {name: {**getattr(before, name), **table} for name, table in tables.items()}
         rooms[room] = before.model_copy(update=after)
     return settings.model_copy(update=rooms)
+
+
+def with_marks(settings: Settings, marks: Marks) -> Settings:
+    """Give settings in which labels and key hold the marks of a revised edition."""
+    marked = with_wishes(
+        settings,
+        {"labels": {"remarks": marks.stations}, "drawing": {"line_remarks": marks.lines}},
+    )
+    drawing = marked.drawing.model_copy(update={"closed_sign": marks.closed_sign})
+    return marked.model_copy(update={"drawing": drawing})
 
 
 def _plain(value: Any) -> Any:  # noqa: ANN401 - TOML holds any of its kinds

@@ -12,7 +12,7 @@ from __future__ import annotations
 
 import os
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, field, replace
 from pathlib import Path
 
 from gtfs_schematic.background.build import lay_background
@@ -22,10 +22,11 @@ from gtfs_schematic.bundles import check as bundles_check
 from gtfs_schematic.bundles.build import bundle
 from gtfs_schematic.bundles.model import BundledLayout
 from gtfs_schematic.clearances import clearances_of
-from gtfs_schematic.config import Settings, with_wishes
+from gtfs_schematic.config import Settings, with_marks, with_wishes
 from gtfs_schematic.drawing import check as drawing_check
 from gtfs_schematic.drawing.compose import compose
 from gtfs_schematic.drawing.listing import to_text
+from gtfs_schematic.drawing.marks import Marks, unshown, with_room
 from gtfs_schematic.drawing.model import Drawing
 from gtfs_schematic.drawing.palette import recolored
 from gtfs_schematic.drawing.pdf import to_pdf
@@ -99,7 +100,9 @@ class Result:
     """Wishes of a person that the drawing does not meet."""
     state: bytes = b""
     """What redrawing without the feed needs, as it is written."""
-    background: Background = Background()
+    background: Background = field(default_factory=Background)
+    marks: Marks = field(default_factory=Marks)
+    """What a revision marked on the sheet."""
     """What lies beneath the network."""
 
 
@@ -165,7 +168,8 @@ def completed(
     missed = unmet(wishes, result.labelled)
     for each in missed:
         progress.note(sentence(each))
-    state = state_to_json(state_of(raw, result.timetable, result.labelled, result.drift))
+    kept = state_of(raw, result.timetable, result.labelled, result.drift)
+    state = state_to_json(replace(kept, marks=result.marks))
     edition = replace(
         result.edition,
         adjustments=plain(adjustments),
@@ -192,14 +196,23 @@ def tell_adjusted(found: Adjusted, progress: Progress) -> None:
 
 
 def finish(
-    timetable: Timetable, labelled: LabelledLayout, settings: Settings, progress: Progress
+    timetable: Timetable,
+    labelled: LabelledLayout,
+    settings: Settings,
+    progress: Progress,
+    marks: Marks = Marks(),  # noqa: B008 - it is frozen
 ) -> Result:
-    """Compose the sheet of a labelled layout, make its edition and measure the drift."""
+    """Compose the sheet of a labelled layout, make its edition and measure the drift.
+
+    Closed stations among the `marks` are struck through where there is still room.
+    """
+    shown = with_room(marks, labelled)
     bundled = labelled.bundled
     network = bundled.layout.network
     progress.phase("composing the sheet")
     background = lay_background(labelled, settings.background)
-    drawing = compose(labelled, settings.drawing, background)
+    marked = with_marks(settings, marks).drawing
+    drawing = compose(labelled, marked, background, shown.closed)
     found = drawing_check.faults(
         drawing, network, unnamed=labelled.unplaced, said_as=labelled.abbreviated
     )
@@ -212,6 +225,9 @@ def finish(
         edition_of(labelled, sheet_title(network, settings.drawing), timing, codes),
         settings=settings.model_dump(mode="json", exclude_defaults=True),
     )
+    for text in unshown(marks, shown):
+        progress.note(text)
+        edition = replace(edition, findings=(*edition.findings, text))
     must_be_sound("edition", edition_check.faults(edition))
     drift = measure_edition(edition, settings.drift)
     must_be_sound("drift", drift_check.faults(drift))
@@ -227,6 +243,7 @@ def finish(
         edition,
         drift,
         background=background,
+        marks=marks,
     )
 
 

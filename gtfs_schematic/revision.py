@@ -6,7 +6,7 @@ from collections.abc import Sequence
 from dataclasses import dataclass, field, replace
 
 from gtfs_schematic.clearances import clearances_of
-from gtfs_schematic.config import Settings, settings_of, with_values, with_wishes
+from gtfs_schematic.config import Settings, settings_of, with_marks, with_values, with_wishes
 from gtfs_schematic.drawing.sheet import candidate_frames
 from gtfs_schematic.edition.adjustments import Adjustments, adjustments_of
 from gtfs_schematic.edition.because import because
@@ -16,6 +16,7 @@ from gtfs_schematic.edition.change_pictures import Sheets
 from gtfs_schematic.edition.changes import ChangeSheet, change_sheet, to_csv, to_json
 from gtfs_schematic.edition.folder import Beside
 from gtfs_schematic.edition.identity import Matches
+from gtfs_schematic.edition.marking import marks_after
 from gtfs_schematic.edition.model import Edition
 from gtfs_schematic.edition.succession import succeed
 from gtfs_schematic.feed.model import Timetable
@@ -120,7 +121,8 @@ def revise_network(
     done = succeed(before, told.beside.state, read, adjustments)
     network, wishes = done.adjusted.network, done.adjusted.wishes
     tell_adjusted(done.adjusted, progress)
-    wanted = with_wishes(settings, wishes.by_room())
+    marks = marks_after(before, told.beside.state, done, settings.drawing)
+    wanted = with_marks(with_wishes(settings, wishes.by_room()), marks)
     revised, body_pt = _layout(before, network, wanted, progress)
     if body_pt < settings.drawing.body_size_pt:
         progress.note(f"the key holds all lines at {body_pt:g} points, on the same sheet")
@@ -131,7 +133,7 @@ def revise_network(
     else:
         labels = told.beside.state.drawn.labels if told.beside.state is not None else None
         labelled = labelled_after(revised.layout, wanted, before, labels, progress)
-    result = finish(timetable, labelled, settings, progress)
+    result = finish(timetable, labelled, settings, progress, marks)
     result = completed(result, done.raw, (done.adjustments, wishes), progress)
     result = replace(result, edition=replace(result.edition, previous=told.beside.sha256))
     why = because(revised, network)

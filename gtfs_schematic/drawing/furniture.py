@@ -13,6 +13,7 @@ from gtfs_schematic.drawing.markers import (
     step_free_sign,
     walk_shapes,
 )
+from gtfs_schematic.drawing.marks import closed_sign
 from gtfs_schematic.drawing.model import DrawingSettings, Group, PathShape, TextShape
 from gtfs_schematic.drawing.page import Page, TextBlock
 from gtfs_schematic.drawing.paths import polyline
@@ -136,6 +137,14 @@ class _KeyArtist:
             for i, (text, bold) in enumerate(texts)
         )
 
+    def _alone(self, sign: str, middle: Point) -> tuple[PathShape, ...]:
+        """Draw a sign that stands on no line."""
+        if sign == "closed":
+            return closed_sign(middle, self.look.stop_radius, self.settings)
+        size = 1.1 * self.type.body
+        corner = (middle[0] - size / 2.0, middle[1] - size / 2.0)
+        return step_free_sign(*corner, size, STEP_FREE_COLORS)
+
     def _sign(self, sign: str, piece: tuple[Point, Point]) -> tuple[PathShape, ...]:
         (left, y), (right, _) = piece
         middle = ((left + right) / 2.0, y)
@@ -146,9 +155,8 @@ class _KeyArtist:
         if sign == "one-way":
             head = chevron(middle, (1.0, 0.0), 0.34 * _SAMPLE_WIDTH * body, settings.background)
             return (*full, head)
-        if sign == "step-free":
-            size = 1.1 * body
-            return step_free_sign(middle[0] - size / 2.0, y - size / 2.0, size, STEP_FREE_COLORS)
+        if sign in ("step-free", "closed"):
+            return self._alone(sign, middle)
         if sign == "terminus":
             half = self._stroke((middle, piece[1]), self.plain)
             return (*half, *marker("terminus", (middle,), (0.0, 1.0), self.look))

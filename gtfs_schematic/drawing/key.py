@@ -32,6 +32,7 @@ SIGNS = {
     "night": "Line runs at night only",
     "some-days": "Line does not run every day",
     "step-free": "Step-free according to the feed",
+    "closed": "Closed station",
 }
 """Every sign that a sheet may need, in the order of the key."""
 _MOST_TEXT = 16.0
@@ -124,6 +125,8 @@ def used_signs(network: Network, settings: DrawingSettings) -> tuple[str, ...]:
         used.add("one-way")
     if settings.show_step_free and any(s.boarding == "yes" for s in network.stations):
         used.add("step-free")
+    if settings.closed_sign:
+        used.add("closed")
     return tuple(sign for sign in SIGNS if sign in used)
 
 
@@ -167,7 +170,8 @@ def _line_row(line: Line, network: Network, settings: DrawingSettings, type_: Ty
     if not in_badge and title == line.name:
         title = line_course(line, network)
     often = how_often(line) if settings.show_headways else ""
-    words = sentence((title, SERVICE_NOTES[line.service], often))
+    remark = settings.line_remarks.get(line.id, "")
+    words = sentence((title, remark, SERVICE_NOTES[line.service], often))
     text = wrap(words, _MOST_TEXT * type_.body, type_.body)
     bold = () if in_badge else wrap(line.name, _MOST_TEXT * type_.body, type_.body, bold=True)
     return KeyRow(

@@ -97,6 +97,16 @@ class DrawingSettings(BaseModel):
     """Tell in the key how often each line runs by day on the service date."""
     show_step_free: bool = False
     """Mark step-free stations; off by default, since a feed's flags need a person's check."""
+    mark_new: str = ""
+    """Words at new stations and lines of a revised edition, such as "new" or "from {date}" with
+    its first day; empty: none."""
+    show_closed: str = Field(default="", pattern=r"^(\d{1,4}|\d{4}-\d{2}-\d{2})?$")
+    """How long a revised edition shows closed stations struck through: before a date as
+    YYYY-MM-DD, or for so many days from its first; empty: not at all."""
+    line_remarks: dict[str, str] = Field(default_factory=dict)
+    """Per line id a remark in the key; written by revise."""
+    closed_sign: bool = False
+    """Explain the sign of closed stations in the key; written by revise."""
 
 
 @dataclass(frozen=True, slots=True)

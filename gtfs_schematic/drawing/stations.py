@@ -52,7 +52,14 @@ def station_groups(
             "station",
             tuple(children),
             data={"station": station.id, "kind": station.kind},
-            title=station_title(station, network),
+            title=", ".join(
+                part
+                for part in (
+                    station_title(station, network),
+                    labelled.settings.remarks.get(station.id),
+                )
+                if part
+            ),
         )
 
 

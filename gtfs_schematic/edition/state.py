@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import hashlib
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from functools import cache
 
 from pydantic import TypeAdapter, ValidationError
@@ -17,6 +17,7 @@ from gtfs_schematic.bundles.model import (
     StationSpan,
     Stretch,
 )
+from gtfs_schematic.drawing.marks import Marks
 from gtfs_schematic.drift.model import DriftReport
 from gtfs_schematic.edition.model import Edition
 from gtfs_schematic.errors import EditionError
@@ -59,6 +60,8 @@ class State:
     """Per route id the weekdays on which it runs, sorted."""
     drawn: Drawn
     drift: DriftReport
+    marks: Marks = field(default_factory=Marks)
+    """What a revision marked on the sheet."""
     format: str = FORMAT
     version: int = 1
 

@@ -46,6 +46,8 @@ class LabelSettings(BaseModel):
     """Per station id what its label says instead of the name."""
     rows: dict[str, tuple[str, ...]] = Field(default_factory=dict)
     """Per station id what its label says, row by row."""
+    remarks: dict[str, str] = Field(default_factory=dict)
+    """Per station id words in small type below the name, behind the name in another language."""
 
 
 @dataclass(frozen=True, slots=True)

@@ -96,7 +96,11 @@ def sites_of(bundled: BundledLayout, settings: LabelSettings) -> tuple[Site, ...
             Site(
                 station_id=station.id,
                 name=said,
-                second_name=station.second_name.strip(),
+                second_name=" ".join(
+                    part
+                    for part in (station.second_name.strip(), settings.remarks.get(station.id))
+                    if part
+                ),
                 badges=ends.get(station.id, ()),
                 bold=station.kind != "stop",
                 at=bundled.layout.positions[station.id],
