@@ -48,6 +48,8 @@ class Board:
     labels: NDArray[np.int32]
     """Per node the number of its face; bridges do not part faces here."""
     box: tuple[Floats, Floats]
+    radii: tuple[float, ...]
+    """Per station that of its marker, millimetres."""
     degrees: tuple[Floats, Floats]
     """The network's box on the ground: west and south, east and north."""
 
@@ -65,7 +67,8 @@ def board_of(labelled: LabelledLayout) -> Board:
     for number, piece in enumerate(planes.pieces, start=1):
         lay(lattice, number, piece.sheet, piece.half_mm)
     lattice.cost[:] = _NEAR * np.clip(1.0 - lattice.clear / _AIR_MM, 0.0, 1.0)
-    _close_stations(lattice, labelled, planes)
+    radii = _radii(labelled, planes)
+    close_stations(lattice, planes, radii, 0.0)
     for label in labelled.labels.values():
         if label.outline_mm:
             nodes, inside = _within(lattice, upright(label.outline_mm))
@@ -78,24 +81,35 @@ def board_of(labelled: LabelledLayout) -> Board:
         lattice,
         faces(lattice),
         (low, high),
+        radii,
         (degrees.min(axis=0), degrees.max(axis=0)),
     )
 
 
-def _close_stations(lattice: Lattice, labelled: LabelledLayout, planes: Planes) -> None:
-    """Close the nodes on markers, and make those beside them cost more."""
+def _radii(labelled: LabelledLayout, planes: Planes) -> tuple[float, ...]:
+    """Give the outer radius of every station's marker round its points."""
     settings = labelled.settings
     station = labelled.bundled.layout.network.station
-    for key, points in zip(planes.stations, planes.markers, strict=True):
-        large = station[key].kind in ("interchange", "terminus")
-        radius = settings.interchange_radius_mm if large else settings.marker_radius_mm
+    large = [station[key].kind in ("interchange", "terminus") for key in planes.stations]
+    both = (settings.marker_radius_mm, settings.interchange_radius_mm)
+    return tuple(both[each] for each in large)
+
+
+def close_stations(
+    lattice: Lattice, planes: Planes, radii: tuple[float, ...], half_mm: float
+) -> None:
+    """Close the nodes on markers, and make those beside them cost more.
+
+    `half_mm` is half the width of what will be drawn along the curves.
+    """
+    for points, radius in zip(planes.markers, radii, strict=True):
         body = shapely.LineString(points) if len(points) > 1 else shapely.Point(points[0])
-        reach = radius + _STATION_AIR_MM + _AIR_MM
+        reach = radius + _STATION_AIR_MM + _AIR_MM + half_mm
         nodes, away = _distances(lattice, body, reach)
         away -= radius
         lattice.closed[nodes[away < (_HEART - 1.0) * radius]] = True
-        near = _NEAR * np.clip(1.0 - away / _AIR_MM, 0.0, 1.0)
-        near[away < _STATION_AIR_MM] = _UNDER_MARKER
+        near = _NEAR * np.clip(1.0 - (away - half_mm) / _AIR_MM, 0.0, 1.0)
+        near[away < _STATION_AIR_MM + half_mm] = _UNDER_MARKER
         lattice.cost[nodes] = np.maximum(lattice.cost[nodes], near)
 
 

@@ -18,7 +18,7 @@ import shapely.affinity
 from numpy.typing import NDArray
 from shapely.geometry.base import BaseGeometry
 
-from gtfs_schematic.background.board import Board, board_of
+from gtfs_schematic.background.board import Board, board_of, close_stations
 from gtfs_schematic.background.bridges import add_bridges
 from gtfs_schematic.background.finish import Outline, finished
 from gtfs_schematic.background.legs import Arcs
@@ -32,7 +32,7 @@ from gtfs_schematic.background.model import (
     Source,
 )
 from gtfs_schematic.background.resolve import apart
-from gtfs_schematic.background.route import Curve, Ends, Slots, occupy, route
+from gtfs_schematic.background.route import Curve, Ends, Slots, keep_off, occupy, route
 from gtfs_schematic.background.word import word_of
 from gtfs_schematic.labels.model import LabelledLayout
 
@@ -75,6 +75,7 @@ def carry(labelled: LabelledLayout, source: Source, settings: BackgroundSettings
         features = [feature for feature in source.features if feature.kind == kind]
         if kind != "boundary":
             shapes += _surfaces(board, features, kind, left_out)
+    close_stations(board.lattice, board.planes, board.radii, settings.river_width_mm / 2.0)
     for feature in source.features:
         shapes += _courses(board, feature, shapes, left_out)
     shapes.sort(key=lambda shape: _ORDER.index(shape.kind))
@@ -95,7 +96,7 @@ def _surfaces(
 ) -> Iterator[Shape]:
     """Carry all surfaces of a kind: those that touch become one; none lies over another."""
     lattice = board.lattice
-    before = lattice.crossed.copy(), lattice.closed.copy()
+    before = lattice.crossed.copy(), lattice.closed.copy(), lattice.cost.copy()
     surfaces = [_surface(board, name, part) for name, part in _joined(board, features)]
     small = [_is_small(surface.curves[0]) for surface in surfaces]
     wanted = [
@@ -117,7 +118,7 @@ def _surfaces(
         else:
             reason = TOO_SMALL if small[k] else NO_WAY
             left_out.append(LeftOut(surface.name or f"a surface of {kind}", reason))
-    lattice.crossed[:], lattice.closed[:] = before
+    lattice.crossed[:], lattice.closed[:], lattice.cost[:] = before
 
 
 def _all_routed(
@@ -129,11 +130,11 @@ def _all_routed(
     surface its outlines, in order; a surface of which one finds no way at all is not there.
     """
     lattice = board.lattice
-    before = lattice.crossed.copy(), lattice.closed.copy()
+    before = lattice.crossed.copy(), lattice.closed.copy(), lattice.cost.copy()
     order = sorted(range(len(wanted)), key=lambda i: (-len(wanted[i][1].word), i))
     hopeless: set[int] = set()
     for _ in range(2 * len(order) + 1):
-        lattice.crossed[:], lattice.closed[:] = before
+        lattice.crossed[:], lattice.closed[:], lattice.cost[:] = before
         laid: dict[int, Arcs] = {}
         for at, i in enumerate(order):
             surface, curve = wanted[i]
@@ -147,6 +148,7 @@ def _all_routed(
                     hopeless.add(surface)
                 break
             occupy(board, arcs, closed=True)
+            keep_off(board, arcs)
             laid[i] = arcs
         else:
             break

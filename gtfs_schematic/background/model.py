@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from typing import Literal
 
 import shapely
@@ -98,7 +98,7 @@ class Shape:
 class Background:
     """All that lies beneath the network."""
 
-    settings: BackgroundSettings = BackgroundSettings()
+    settings: BackgroundSettings = field(default_factory=BackgroundSettings)
     shapes: tuple[Shape, ...] = ()
     """In the order in which they are painted: parks, water, boundaries."""
     left_out: tuple[LeftOut, ...] = ()

@@ -14,6 +14,10 @@ _CORNERS_MM = (CORNER_MM, 4.0 * CORNER_MM, math.inf)
 """Fewer and fewer corners of its course that a part has to pass by."""
 
 
+_LONGER, _LONGER_STEPS = 1.5, 30
+"""A part may become so much longer, times and steps: never the long way round something."""
+
+
 def apart(board: Board, curve: Curve, arcs: Arcs) -> Arcs | None:
     """Give a curve that nowhere meets itself; None if there is no room for it.
 
@@ -33,7 +37,7 @@ def apart(board: Board, curve: Curve, arcs: Arcs) -> Arcs | None:
 def _laid_anew(board: Board, curve: Curve, arcs: Arcs, moved: set[int]) -> Arcs | None:
     """Lay parts anew between the same places of crossing, shortest first, round what stands."""
     lattice = board.lattice
-    before = lattice.crossed.copy(), lattice.closed.copy()
+    before = lattice.crossed.copy(), lattice.closed.copy(), lattice.cost.copy()
     laid = list(arcs)
     for k, arc in enumerate(arcs):
         if k not in moved:
@@ -45,11 +49,13 @@ def _laid_anew(board: Board, curve: Curve, arcs: Arcs, moved: set[int]) -> Arcs 
         lattice.closed[arcs[k][[0, -1]]] = False
         for corner_mm, stepwise in itertools.product(_CORNERS_MM, (False, True)):
             again = relay(board, curve, arcs, k, corner_mm, stepwise=stepwise)
-            if again is not None and not _clashes(board, [again]):
+            if again is None or len(again) > _LONGER * len(arcs[k]) + _LONGER_STEPS:
+                continue
+            if not _clashes(board, [again]):
                 laid[k] = again
                 occupy(board, [again], closed=False)
                 break
-    lattice.crossed[:], lattice.closed[:] = before
+    lattice.crossed[:], lattice.closed[:], lattice.cost[:] = before
     return None if _clashes(board, laid) else laid
 
 

@@ -9,6 +9,7 @@ from dataclasses import dataclass
 import numpy as np
 import shapely
 from numpy.typing import NDArray
+from scipy import ndimage
 from shapely.geometry.base import BaseGeometry
 
 from gtfs_schematic.background.board import Board, clamped, nodes_of, numbered, window_of
@@ -30,6 +31,9 @@ _OUT = 0.3
 """Likewise where it leaves the field."""
 _INTO_MM = 2.0
 """So far inside a surface ends what flows into it."""
+BANKS_MM = 3.5
+_BESIDE_BANK = 2.5
+"""Nearer than this to another shore a shore costs more."""
 LEAST_MM = 2.2
 """Radius of the least closed curve."""
 
@@ -321,3 +325,14 @@ def occupy(board: Board, arcs: Arcs, *, closed: bool) -> None:
             rising = dx * dy > 0
             corner = low + (1 if rising else -1)
             lattice.crossed[corner, 3 if rising else 1] = SEVERAL
+
+
+def keep_off(board: Board, arcs: Arcs) -> None:
+    """Let other curves rather not come near to one, so that water shows as water."""
+    lattice = board.lattice
+    nodes = np.concatenate(arcs)
+    window = window_of(lattice, lattice.at(nodes), BANKS_MM)
+    around = nodes_of(lattice, window)
+    free = ~np.isin(around, nodes).reshape(window[3] - window[1] + 1, -1)
+    away = ndimage.distance_transform_edt(free).ravel() * lattice.pitch
+    lattice.cost[around] += _BESIDE_BANK * np.clip(1.0 - away / BANKS_MM, 0.0, 1.0)
