@@ -12,49 +12,35 @@ from __future__ import annotations
 
 import os
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass, field, replace
+from dataclasses import replace
 from pathlib import Path
 
 from gtfs_schematic.background.build import lay_background
-from gtfs_schematic.background.model import Background
 from gtfs_schematic.background.read import read_background
 from gtfs_schematic.bundles import check as bundles_check
 from gtfs_schematic.bundles.build import bundle
-from gtfs_schematic.bundles.model import BundledLayout
 from gtfs_schematic.clearances import clearances_of
 from gtfs_schematic.config import Settings, with_marks, with_wishes
 from gtfs_schematic.drawing import check as drawing_check
 from gtfs_schematic.drawing.compose import compose
-from gtfs_schematic.drawing.listing import to_text
 from gtfs_schematic.drawing.marks import Marks, unshown, with_room
-from gtfs_schematic.drawing.model import Drawing
 from gtfs_schematic.drawing.palette import recolored
-from gtfs_schematic.drawing.pdf import to_pdf
-from gtfs_schematic.drawing.png import to_png
 from gtfs_schematic.drawing.sheet import candidate_frames
-from gtfs_schematic.drawing.svg import to_svg
 from gtfs_schematic.drawing.words import sheet_title
 from gtfs_schematic.drift import check as drift_check
-from gtfs_schematic.drift.limits import Limit, judge, limits_of
 from gtfs_schematic.drift.measure import measure_edition
-from gtfs_schematic.drift.model import DriftReport
-from gtfs_schematic.drift.page import to_html
-from gtfs_schematic.drift.report import to_csv
-from gtfs_schematic.drift.report import to_json as drift_to_json
 from gtfs_schematic.drift.timing import timing_of
 from gtfs_schematic.edition import check as edition_check
 from gtfs_schematic.edition.adjusted import Adjusted, adjusted
 from gtfs_schematic.edition.adjustments import Adjustments, plain
 from gtfs_schematic.edition.make import edition_of, sentence, stop_codes_of
-from gtfs_schematic.edition.model import Edition
-from gtfs_schematic.edition.save import to_json as edition_to_json
 from gtfs_schematic.edition.state import digest, state_of
 from gtfs_schematic.edition.state import to_json as state_to_json
 from gtfs_schematic.edition.unmet import unmet
 from gtfs_schematic.edition.wishes import Wishes
 from gtfs_schematic.errors import must_be_sound
 from gtfs_schematic.feed import check as feed_check
-from gtfs_schematic.feed.model import Finding, Timetable
+from gtfs_schematic.feed.model import Timetable
 from gtfs_schematic.feed.read import read_feed
 from gtfs_schematic.geometry import Point
 from gtfs_schematic.labels import check as labels_check
@@ -69,6 +55,9 @@ from gtfs_schematic.network import check as network_check
 from gtfs_schematic.network.build import build_network
 from gtfs_schematic.network.model import Network
 from gtfs_schematic.progress import Progress, Silent
+from gtfs_schematic.result import Result, files_of
+
+__all__ = ["Result", "clearances_of", "draw", "files_of", "inspect"]
 
 ROUNDS = 3
 """How often the layout may be asked for more room before a larger sheet is tried."""
@@ -81,29 +70,6 @@ LARGER_SHEETS = 1
 """How many larger sheets are tried before names are left without a place."""
 
 StrPath = str | os.PathLike[str]
-
-
-@dataclass(frozen=True, slots=True)
-class Result:
-    """What every stage of a run gave."""
-
-    settings: Settings
-    timetable: Timetable
-    network: Network
-    layout: Layout
-    bundled: BundledLayout
-    labelled: LabelledLayout
-    drawing: Drawing
-    edition: Edition
-    drift: DriftReport
-    unmet: tuple[Finding, ...] = ()
-    """Wishes of a person that the drawing does not meet."""
-    state: bytes = b""
-    """What redrawing without the feed needs, as it is written."""
-    background: Background = field(default_factory=Background)
-    marks: Marks = field(default_factory=Marks)
-    """What a revision marked on the sheet."""
-    """What lies beneath the network."""
 
 
 def draw(
@@ -268,41 +234,6 @@ def inspect(
     network = build_network(timetable, settings.network, progress=progress)
     must_be_sound("network", network_check.faults(network))
     return timetable, recolored(network, settings.drawing)
-
-
-def files_of(result: Result, limits: Sequence[Limit] | None = None) -> dict[str, bytes]:
-    """Give the files of an edition by name: the same result always gives the same bytes.
-
-    Parameters
-    ----------
-    result
-        What was drawn.
-    limits
-        Limits on drift, None for those of the settings; what became of them stands in the
-        drift report.
-    """
-    svg = to_svg(result.drawing)
-    if limits is None:
-        limits = limits_of(result.settings.drift)
-    judged = judge(result.drift, limits)
-    dpi = result.settings.sheet.png_dpi
-    image = {"diagram.png": to_png(result.drawing, dpi=dpi)} if dpi else {}
-    state = {"state.json": result.state} if result.state else {}
-    return (
-        image
-        | state
-        | {
-            "diagram.svg": svg,
-            "diagram.pdf": to_pdf(result.drawing, bleed_mm=result.settings.sheet.bleed_mm),
-            "diagram.txt": to_text(result.network, result.settings.drawing),
-            "edition.json": edition_to_json(result.edition),
-            "drift.json": drift_to_json(result.drift, judged),
-            "drift.csv": to_csv(result.drift),
-            "drift.html": to_html(
-                result.drift, result.edition, title=result.edition.title, limits=judged
-            ),
-        }
-    )
 
 
 def _labelled(
