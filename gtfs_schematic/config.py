@@ -16,6 +16,7 @@ from gtfs_schematic.bundles.model import BundleSettings
 from gtfs_schematic.drawing.marks import Marks
 from gtfs_schematic.drawing.model import DrawingSettings, SheetSettings
 from gtfs_schematic.drift.model import DriftSettings
+from gtfs_schematic.edition.ratchet import RevisionSettings
 from gtfs_schematic.errors import UsageError
 from gtfs_schematic.feed.model import FeedSettings
 from gtfs_schematic.labels.model import LabelSettings
@@ -37,6 +38,7 @@ class Settings(BaseModel):
     drawing: DrawingSettings = DrawingSettings()
     sheet: SheetSettings = SheetSettings()
     drift: DriftSettings = DriftSettings()
+    revision: RevisionSettings = RevisionSettings()
 
 
 def settings_from_toml(data: bytes, name: str) -> Settings:

@@ -8,6 +8,7 @@ from dataclasses import dataclass, field, replace
 from gtfs_schematic.clearances import clearances_of
 from gtfs_schematic.config import Settings, settings_of, with_marks, with_values, with_wishes
 from gtfs_schematic.drawing.sheet import candidate_frames
+from gtfs_schematic.drift.measure import measure_edition
 from gtfs_schematic.edition.adjustments import Adjustments, adjustments_of
 from gtfs_schematic.edition.because import because
 from gtfs_schematic.edition.change_list import to_pdf
@@ -17,7 +18,8 @@ from gtfs_schematic.edition.changes import ChangeSheet, change_sheet, to_csv, to
 from gtfs_schematic.edition.folder import Beside
 from gtfs_schematic.edition.identity import Matches
 from gtfs_schematic.edition.marking import marks_after
-from gtfs_schematic.edition.model import Edition
+from gtfs_schematic.edition.model import Edition, EditionDrift
+from gtfs_schematic.edition.ratchet import drifts_after
 from gtfs_schematic.edition.succession import succeed
 from gtfs_schematic.feed.model import Timetable
 from gtfs_schematic.following import labelled_after
@@ -136,9 +138,11 @@ def revise_network(
     result = finish(timetable, labelled, settings, progress, marks)
     result = completed(result, done.raw, (done.adjustments, wishes), progress)
     result = replace(result, edition=replace(result.edition, previous=told.beside.sha256))
+    anew = revised is None
+    result = replace(result, edition=_with_drifts(before, result, told, anew=anew))
     why = because(revised, network)
     sheet = change_sheet(before, result.edition, done.matches, moved=why)
-    return Revision(result, done.matches, sheet, revised is None)
+    return Revision(result, done.matches, sheet, anew)
 
 
 def files_of_revision(
@@ -155,6 +159,20 @@ def files_of_revision(
     }
 
 
+def _with_drifts(before: Edition, result: Result, told: Told, *, anew: bool) -> Edition:
+    """Give the new edition with its drift after that of the editions before."""
+    if before.drifts:
+        residual = before.drifts[-1].residual
+    elif told.beside.state is not None:
+        residual = told.beside.state.drift.north_up.residual
+    else:
+        residual = measure_edition(before, result.settings.drift).north_up.residual
+    was = EditionDrift(told.beside.sha256, before.feed.service_date, round(residual, 6))
+    now = round(result.drift.north_up.residual, 6)
+    this = EditionDrift("", result.edition.feed.service_date, now)
+    return replace(result.edition, drifts=drifts_after(before, was, this, anew=anew))
+
+
 def _layout(
     before: Edition, network: Network, settings: Settings, progress: Progress
 ) -> tuple[Revised | None, float]:
@@ -169,7 +187,14 @@ def _layout(
     for body_pt, frame in _frames(before, network, settings)[:_MOST_FRAMES]:
         standing = Standing(positions, paths, frame, rotation_deg=before.rotation_deg)
         pins = settings.layout.pins
-        found = revise_layout(network, standing, clearances, pins=pins, progress=progress)
+        found = revise_layout(
+            network,
+            standing,
+            clearances,
+            pins=pins,
+            even=settings.revision.relax,
+            progress=progress,
+        )
         if found is not None and layout_check.drifted_too_far(found.layout, settings.layout):
             progress.note("stations would drift beyond their limits")
             break

@@ -84,12 +84,25 @@ def revise(
         click.echo(files["changes.json"])
     else:
         click.echo("\n".join(describe(revision, out)))
-    return 0
+    return _judged(revision)
+
+
+def _judged(revision: Revision) -> int:
+    """Say if the drift has grown too much, and give the exit code."""
+    from gtfs_schematic.edition.ratchet import advice
+    from gtfs_schematic.errors import LimitExceededError
+
+    result = revision.result
+    told = advice(result.edition.drifts, result.settings.revision)
+    if told:
+        click.echo(f"Limit exceeded: {told}", err=True)
+    return LimitExceededError.exit_code if told else 0
 
 
 def describe(revision: Revision, out: Path) -> list[str]:
     """Write what changed, for people."""
     from gtfs_schematic.edition.change_words import stayed
+    from gtfs_schematic.edition.ratchet import told as grown
 
     sheet, result = revision.sheet, revision.result
     rows = [f"{c.subject} {c.kind}: {c.name} ({c.id})" for c in sheet.large]
@@ -105,6 +118,7 @@ def describe(revision: Revision, out: Path) -> list[str]:
             else [f"Kept in place: {sheet.kept - sheet.moved_on_sheet} of {sheet.kept} stations"]
         ),
         *([stayed(sheet.stability)] if sheet.stability else []),
+        *([drift] if (drift := grown(result.edition.drifts)) else []),
         *(f"Look at this match: {doubt}" for doubt in sheet.doubtful),
         *([f"Names without a place: {', '.join(missing)}"] if missing else ["Names: all placed"]),
         f"Written to {out}",

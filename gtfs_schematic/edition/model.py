@@ -107,6 +107,16 @@ class EditionLine:
 
 
 @dataclass(frozen=True, slots=True)
+class EditionDrift:
+    """How much of the ground an edition loses, as `drift` measures it with north kept up."""
+
+    edition: str
+    """SHA-256 of its `edition.json`; empty for the edition that says this."""
+    service_date: str
+    residual: float
+
+
+@dataclass(frozen=True, slots=True)
 class Edition:
     """Everything that `edition.json` says."""
 
@@ -139,6 +149,8 @@ class Edition:
     and with all its lines."""
     rotation_deg: float = 0.0
     """Counter-clockwise turn of the ground on the sheet: so far left of the top is north."""
+    drifts: tuple[EditionDrift, ...] = ()
+    """Drift of the editions since all was last laid out anew, this one last; empty for a first."""
 
     @property
     def drawn(self) -> tuple[EditionLink, ...]:

@@ -13,6 +13,7 @@ from gtfs_schematic.drift.placed import TimedPattern
 from gtfs_schematic.edition.check import faults
 from gtfs_schematic.edition.model import (
     Edition,
+    EditionDrift,
     EditionFeed,
     EditionJunction,
     EditionLine,
@@ -24,7 +25,8 @@ from gtfs_schematic.errors import EditionError
 
 Row = dict[str, Any]
 _Row = (
-    EditionFeed
+    EditionDrift
+    | EditionFeed
     | EditionStation
     | EditionLine
     | EditionLink
@@ -132,6 +134,12 @@ class _Pattern(_Part):
     departures_s: list[int] = Field(min_length=1)
 
 
+class _Drift(_Part):
+    edition: Annotated[str, Field(pattern=r"^([0-9a-f]{64})?$")]
+    service_date: str
+    residual: float
+
+
 class _LeftOut(_Part):
     kind: str
     id: str
@@ -155,6 +163,7 @@ class _Document(_Part):
     findings: list[str] = []
     previous: Annotated[str, Field(pattern=r"^([0-9a-f]{64})?$")] = ""
     state_sha256: Annotated[str, Field(pattern=r"^([0-9a-f]{64})?$")] = ""
+    drifts: list[_Drift] = []
     settings: dict[str, Any] = {}
     adjustments: dict[str, Any] = {}
 
@@ -183,6 +192,7 @@ def to_json(edition: Edition) -> bytes:
         },
         "previous": edition.previous,
         "state_sha256": edition.state_sha256,
+        "drifts": [_plain(each) for each in edition.drifts],
         "settings": edition.settings,
         "adjustments": edition.adjustments,
     }
@@ -255,6 +265,7 @@ def _edition(document: _Document) -> Edition:
         left_out=tuple((part.kind, part.id, part.reason) for part in document.left_out),
         findings=tuple(document.findings),
         walks=tuple(EditionWalk(**_frozen(part)) for part in document.walks),
+        drifts=tuple(EditionDrift(**_frozen(part)) for part in document.drifts),
         patterns=tuple(TimedPattern(**_frozen(part)) for part in document.patterns),
         junctions=tuple(EditionJunction(**_frozen(part)) for part in document.junctions),
         parts=tuple(EditionLink(**_frozen(part)) for part in document.parts),

@@ -206,7 +206,8 @@ class _Programme:
             weight[i] = _STATION if station in self.wish.home else _NEW
         owner = self.figure.node_edges()
         weight[(owner >= 0) & self.fresh[owner]] = _NEW
-        cost[away] = weight * (1.0 - 0.95 * self.wish.even)
+        # The third power, so that a little relaxing already lets the worst even out.
+        cost[away] = weight * max(0.05, (1.0 - self.wish.even) ** 3)
         cost[short] = np.where(self.fresh, _SHORT, self.wish.even)
         return cost
 
