@@ -42,7 +42,7 @@ class NetworkSettings(BaseModel):
     """Greatest angle between two courses on one way, either way round, degrees."""
     alongside_min_m: float = Field(default=300.0, ge=0.0)
     """Courses must stay together for this long to be one way, metres."""
-    corridors: Corridors = "stations"
+    corridors: Corridors = "shapes"
     """Whether buses and trams that run along one street share its links from where they join to
     where they part ("shapes"), or from station to station only ("stations")."""
     group_lines: LineGrouping = "route"
