@@ -99,6 +99,16 @@ class Town:
         ids = tuple(stops.split()) if isinstance(stops, str) else tuple(stops)
         return self.run(route_id, ids, **told).run(route_id, ids[::-1], **told)
 
+    def buses(
+        self, *lines: tuple[str, Mapping[str, tuple[float, float]], Sequence[tuple[float, float]]]
+    ) -> Town:
+        """Add bus lines, both ways: id, stops with their places, points of the shape."""
+        town = self
+        for line, stops, points in lines:
+            town = town.stops(stops).route(line, mode="bus").shape(line, points)
+            town = town.both(line, list(stops), shape=line)
+        return town
+
     def transfer(self, one: str, other: str, kind: int = 2, time_s: int | None = 180) -> Town:
         """Add a transfer."""
         transfer = Transfer(one, other, kind, time_s)

@@ -12,6 +12,7 @@ import shapely
 
 from gtfs_schematic.feed.model import FeedSettings, Timetable
 from gtfs_schematic.feed.read import read_feed
+from gtfs_schematic.network.between import from_station_to_station
 from gtfs_schematic.network.build import build_network
 from gtfs_schematic.network.check import faults
 from gtfs_schematic.network.ground import Ground, ground_about
@@ -34,10 +35,11 @@ def network(timetable) -> Network:
 
 
 def _ground(network: Network) -> tuple[Ground, dict[str, shapely.Point]]:
-    places = [(s.lon, s.lat) for s in network.stations]
+    nodes = (*network.stations, *network.junctions)
+    places = [(node.lon, node.lat) for node in nodes]
     ground = ground_about(places)
     metres = ground.metres(places)
-    return ground, {s.id: shapely.Point(p) for s, p in zip(network.stations, metres, strict=True)}
+    return ground, {node.id: shapely.Point(p) for node, p in zip(nodes, metres, strict=True)}
 
 
 def _patterns(timetable: Timetable, network: Network) -> dict[str, Counter[tuple[str, ...]]]:
@@ -65,8 +67,33 @@ def _walkable(network: Network, line: Line, at: dict[str, shapely.Point]) -> nx.
     return graph
 
 
+def _shapes(timetable: Timetable, network: Network) -> dict[str, list[shapely.LineString]]:
+    """Give the shapes of every line, in metres."""
+    ground, _ = _ground(network)
+    line_of = {route: line.id for line in network.lines for route in line.route_ids}
+    used = {(line_of[p.route_id], p.shape_id) for p in timetable.patterns if p.route_id in line_of}
+    shapes: dict[str, list[shapely.LineString]] = defaultdict(list)
+    for line, shape in sorted(used, key=str):
+        if shape in timetable.shapes:
+            shapes[line].append(shapely.LineString(ground.metres(timetable.shapes[shape])))
+    return shapes
+
+
+def _street_m(ends: tuple[shapely.Point, shapely.Point], shapes: list[shapely.LineString]) -> float:
+    """Give the least way from end to end along a shape that passes both, else the straight one."""
+    straight = ends[0].distance(ends[1])
+    near = 2.2 * NetworkSettings().alongside_m
+    ways = [
+        abs(shape.project(ends[0]) - shape.project(ends[1]))
+        for shape in shapes
+        if all(shape.distance(end) < near for end in ends)
+    ]
+    return min((way for way in ways if way >= 0.8 * straight), default=straight)
+
+
 def test_every_kept_pattern_can_be_walked_calling_in_order(timetable, network):
     _, at = _ground(network)
+    shapes = _shapes(timetable, network)
     walked = 0
     for line_id, trips in _patterns(timetable, network).items():
         line = network.line[line_id]
@@ -79,35 +106,62 @@ def test_every_kept_pattern_can_be_walked_calling_in_order(timetable, network):
             for a, b in itertools.pairwise(calls):
                 assert line_id in network.station[a].lines
                 length = nx.shortest_path_length(graph, a, b, weight="length")
-                # Twice as far as the crow flies, and a block: bus routes bend round estates.
-                assert length <= 2.0 * at[a].distance(at[b]) + 300.0, (line.name, a, b)
+                # As far as its shape goes, or twice as far as the crow flies, and a block: bus
+                # routes bend round estates.
+                street = 1.1 * _street_m((at[a], at[b]), shapes[line_id])
+                limit = max(street, 2.0 * at[a].distance(at[b])) + 300.0
+                assert length <= limit, (line.name, a, b)
     assert walked >= 0.8 * sum(trips.total() for trips in _patterns(timetable, network).values())
 
 
-def test_links_are_as_long_as_the_streets_to_within_a_fifth(timetable, network):
+def test_links_are_as_long_as_the_streets_to_within_a_tenth(timetable, network):
     """Streets are the union of all shapes, each made as wide as two that count as one street.
 
-    Links are straight from station to station, so shorter where streets bend; they are longer where
-    lines share a street but no station on it.
+    A link is as long as the street between its ends, by the shapes of the lines on it: what is
+    drawn twice, or not at all, shows.
     """
     ground, at = _ground(network)
     width = NetworkSettings().alongside_m
-    used = sorted({p.shape_id for p in timetable.patterns if p.shape_id is not None})
-    shapes = [shapely.LineString(ground.metres(timetable.shapes[shape])) for shape in used]
-    union = shapely.union_all([s.buffer(width / 2.0, cap_style="flat") for s in shapes])
-    links = sum(at[link.start].distance(at[link.end]) for link in network.links)
-    assert links == pytest.approx(union.area / width, rel=0.2)
-    # Without sharing, the same links would be drawn once for every line.
-    each = sum(at[k.start].distance(at[k.end]) * len(k.lines) for k in network.links)
-    assert each > links
+    by_line = _shapes(timetable, network)
+    used = {p.shape_id for p in timetable.patterns if p.shape_id is not None}
+    streets = [
+        shapely.LineString(ground.metres(timetable.shapes[shape])).buffer(
+            width / 2.0, cap_style="flat"
+        )
+        for shape in sorted(used)
+    ]
+    union = shapely.union_all(streets)
+    links = sum(
+        _street_m((at[k.start], at[k.end]), [s for line in k.lines for s in by_line[line]])
+        for k in network.links
+    )
+    assert links == pytest.approx(union.area / width, rel=0.1)
 
 
 @pytest.mark.parametrize("key", ["alongside_m", "alongside_deg", "alongside_min_m"])
 def test_small_changes_of_a_tolerance_change_little(timetable, network, key):
-    links = {(link.start, link.end) for link in network.links}
+    def drawn(network: Network) -> tuple[set[tuple[str, str]], float]:
+        _, at = _ground(network)
+        ways = {(way.start, way.end) for way in from_station_to_station(network)}
+        return ways, sum(at[k.start].distance(at[k.end]) for k in network.links)
+
+    ways, length = drawn(network)
     for factor in (0.9, 1.1):
         settings = NetworkSettings(**{key: factor * getattr(NetworkSettings(), key)})
         other = build_network(timetable, settings)
         assert faults(other) == ()
-        found = {(link.start, link.end) for link in other.links}
-        assert len(links & found) >= 0.95 * len(links | found)
+        found, long = drawn(other)
+        assert len(ways & found) >= 0.95 * len(ways | found)
+        assert long == pytest.approx(length, rel=0.03)
+
+
+def test_junctions_are_of_buses_alone(timetable, network):
+    by_stations = build_network(timetable, NetworkSettings(corridors="stations"))
+    modes = {line.mode for line in network.lines}
+    assert bool(network.junctions) == (modes == {"bus"})
+    if not network.junctions:
+        assert network == by_stations
+    # Whoever called somewhere still does, and every line of a link keeps one.
+    assert [line.itineraries for line in network.lines] == [
+        line.itineraries for line in by_stations.lines
+    ]
