@@ -45,6 +45,8 @@ _STEP_MM = 2.0
 """Points of a curve stand no further apart than this on the sheet."""
 _BEYOND = 0.6
 """Shapes are cut off this far beyond the network, in its sizes."""
+_LEAST_MM = 4.0
+"""Shorter lines are left out."""
 _LEAST_MM2 = 18.0
 """Smaller surfaces that hold no station are left out."""
 _FREE_MM = 2.0
@@ -258,12 +260,15 @@ def _courses(
             continue
         closed = part.is_closed
         curve = _curve(board, part if closed else _run_on(board, part), closed=closed)
-        arcs = _routed(board, curve, {}, _into(part, feature.kind, shapes))
+        small = float(np.hypot(*np.diff(curve.image, axis=0).T).sum()) < _LEAST_MM
+        into = _into(part, feature.kind, shapes)
+        arcs = None if small else _routed(board, curve, {}, into)
         shape = None
         if arcs is not None:
             shape = finished(board, feature.kind, feature.name, part, [Outline(arcs, closed)])
         if shape is None:
-            left_out.append(LeftOut(feature.name or feature.source, NO_WAY))
+            reason = TOO_SMALL if small else NO_WAY
+            left_out.append(LeftOut(feature.name or feature.source, reason))
         else:
             yield shape
 

@@ -9,9 +9,11 @@ from dataclasses import dataclass
 import numpy as np
 import shapely
 from numpy.typing import NDArray
+from shapely.affinity import scale
 from shapely.geometry.base import BaseGeometry
 
 from gtfs_schematic.background.board import Board
+from gtfs_schematic.background.calm import calmed
 from gtfs_schematic.background.legs import Arcs
 from gtfs_schematic.background.model import Kind, Shape
 from gtfs_schematic.bundles.model import Corner
@@ -40,11 +42,14 @@ def finished(
     low, high = board.box
     box = shapely.box(low[0], -high[1], high[0], -low[1])
     surface = ground.geom_type == "Polygon"
+    if any(len(line) < (4 if surface else 2) for line in lines):
+        return None
     whole: BaseGeometry
     if surface:
         whole = shapely.Polygon(lines[0], lines[1:])
         if not whole.is_valid:
             return None
+        whole = scale(calmed(board, scale(whole, 1, -1, origin=(0, 0))), 1, -1, origin=(0, 0))
     else:
         whole = shapely.LineString(lines[0])
     rings = []

@@ -12,7 +12,9 @@ import shapely
 from hypothesis import HealthCheck, given, settings
 from hypothesis import strategies as st
 
+from gtfs_schematic.background.board import board_of
 from gtfs_schematic.background.build import lay_background
+from gtfs_schematic.background.calm import calmed
 from gtfs_schematic.background.carry import carry
 from gtfs_schematic.background.check import faults, without_faulty
 from gtfs_schematic.background.field import Field
@@ -125,6 +127,24 @@ def test_surfaces_that_touch_become_one_and_tiny_ones_are_listed(star, sketch):
     assert "too small" in background.left_out[0].reason
 
 
+def test_slivers_are_taken_off_where_nothing_hangs_on_them(star):
+    board = board_of(star)
+    xs, ys = zip(*star.bundled.layout.positions.values(), strict=True)
+    x, y = min(xs) - 30.0, -min(ys)
+    pond = shapely.box(x, y, x + 12.0, y + 12.0)
+    spike = shapely.box(x + 5.0, y + 12.0, x + 6.0, y + 25.0)
+    slit = shapely.box(x + 9.0, y + 4.0, x + 12.0, y + 4.5)
+    found = calmed(board, pond.union(spike).difference(slit))
+    assert found.symmetric_difference(pond).area < 0.05
+    (link, *_) = star.bundled.layout.paths.values()
+    a, b = link[0], link[1]
+    over = shapely.LineString([(a[0], -a[1]), (b[0], -b[1])]).interpolate(0.5, normalized=True)
+    bridge = shapely.LineString([over, (over.x + 9.0, over.y + 9.0)]).buffer(
+        0.5, cap_style="square"
+    )
+    assert calmed(board, bridge).area == pytest.approx(bridge.area, rel=0.05)
+
+
 def test_a_river_that_ends_in_a_lake_reaches_it(star, sketch):
     layout = star.bundled.layout
     xs, ys = zip(*layout.positions.values(), strict=True)
@@ -133,6 +153,15 @@ def test_a_river_that_ends_in_a_lake_reaches_it(star, sketch):
     river = sketch.river(star, [(x, y + 60.0), (x, y)])
     water = {shape.name: shape.drawn for shape in carried(star, lake, river).shapes}
     assert water["River"].intersects(water["Lake"])
+
+
+def test_a_brook_too_short_to_show_is_listed(star, sketch):
+    layout = star.bundled.layout
+    xs, ys = zip(*layout.positions.values(), strict=True)
+    x, y = (min(xs) + max(xs)) / 2.0, (min(ys) + max(ys)) / 2.0 + 7.0
+    background = carried(star, sketch.river(star, [(x, y), (x + 0.5, y)]))
+    assert background.shapes == ()
+    assert "too small" in background.left_out[0].reason
 
 
 def test_parks_lie_below_water_below_boundaries(star, sketch):
