@@ -17,10 +17,10 @@ from gtfs_schematic.feed.model import Pattern, Route, Stop
 
 _FASTEST_KMH = {"rail": 500.0, "other": 500.0}
 _FASTEST_ELSE_KMH = 150.0
-_FREE_KM = 10.0
+_FREE_KM = 3.0
 _ROUNDING_S = 60
 """Trains reach 500 km/h at most; no street, cable or water vehicle reaches 150 (no source). Times
-are often rounded to minutes, so hops under 10 km are never found."""
+are often rounded to minutes, so hops under 3 km are never found."""
 _ASTRAY_KM = 100.0
 _LEAST_ASTRAY_KM = 20.0
 _SPREADS = 5.0
@@ -110,20 +110,19 @@ def find_leaps(
         return frozenset()
     away = _away(calls)
     astray = _astray(calls, hops, away)
-    share = hops.per_stop(hops.leap, len(stops)) / np.maximum(
-        hops.per_stop(np.ones(len(hops.km)), len(stops)), 1
-    )
+    leaps = hops.per_stop(hops.leap, len(stops))
+    others = hops.per_stop(~hops.leap, len(stops))
     for n in np.flatnonzero(hops.leap).tolist():
         pair = (int(hops.start[n]), int(hops.end[n]))
         if astray.isdisjoint(pair):
-            # Most likely at fault is the one that has most leaps, else the one further off.
-            worse = max(pair, key=lambda number: (share[number], away[number]))
+            # Most likely at fault is the one with most leaps, fewest other hops, or further off.
+            worse = max(pair, key=lambda number: (leaps[number], -others[number], away[number]))
             start, end = (stops[number].id for number in pair)
             notebook.find(
                 "warning",
                 "stops.txt",
                 "two stops in a row lie too far apart for the time between them; "
-                "check their coordinates",
+                "check their coordinates and times",
                 row=rows[stops[worse].id],
                 value=f"{start}, {end}: {hops.km[n]:.0f} km in {hops.seconds[n]} s",
             )

@@ -126,3 +126,13 @@ def test_a_fault_is_found_once_though_stops_are_looked_at_again(read_town, table
     text = table("stops.txt").replace("47.010,8.000", "47.010,80.00").replace("Parvinholm", "")
     found = read_town({"stops.txt": text}).findings
     assert len(found) == len(set(found)) == 2
+
+
+def test_a_stop_some_kilometers_off_is_doubtful_but_stays(read_town, table):
+    """A wrong digit again: what is 7.6 km off can be reached in four minutes, but not 15 km."""
+    timetable = read_town({"stops.txt": table("stops.txt").replace("47.010,8.000", "47.010,8.100")})
+    assert "tams" in {stop.id for stop in timetable.stops}
+    assert {(f.severity, f.row) for f in timetable.findings} == set()
+    timetable = read_town({"stops.txt": table("stops.txt").replace("47.010,8.000", "47.010,8.200")})
+    assert "tams" in {stop.id for stop in timetable.stops}
+    assert {(f.severity, f.row) for f in timetable.findings} == {("warning", 5)}
