@@ -13,25 +13,31 @@ from gtfs_schematic.background.board import Board
 _THIN_MM = 2.8
 """What is thinner than this is a sliver."""
 _SAME_MM = 1e-6
+_TOUCH_MM = 0.05
 
 
 def calmed(board: Board, surface: shapely.Polygon) -> BaseGeometry:
     """Give a surface (millimetres, y up) without thin parts, and without thin gaps.
 
     An opening and a closing of mathematical morphology (Serra 1982), piece by piece: a piece that
-    holds a station, or meets a line, stays as it is, so that crossings and sides stay, too. Corners
-    are mitred, so that all sides keep their directions.
+    holds a station, meets a line, or joins two places of the rest, as a strait does, stays as it
+    is, so that crossings, sides and ways by water or land stay, too. Corners are mitred, so that
+    all sides keep their directions.
     """
     walls = shapely.STRtree([shapely.LineString(piece.sheet) for piece in board.planes.pieces])
 
-    def loose(piece: BaseGeometry) -> bool:
-        return len(walls.query(piece, predicate="intersects")) == 0
+    def loose(piece: BaseGeometry, rest: BaseGeometry) -> bool:
+        if len(walls.query(piece, predicate="intersects")):
+            return False
+        touching = shapely.get_parts(piece.buffer(_TOUCH_MM).intersection(rest))
+        return sum(part.area > 0.0 for part in touching) <= 1
 
     opened = _resized(_resized(surface, -_THIN_MM / 2.0), _THIN_MM / 2.0)
-    thin = _pieces(surface.difference(opened), loose)
+    thin = _pieces(surface.difference(opened), opened, loose)
     left = shapely.difference(surface, shapely.union_all(thin)) if thin else surface
     closed = _resized(_resized(left, _THIN_MM / 2.0), -_THIN_MM / 2.0)
-    gaps = _pieces(closed.difference(left), loose)
+    around = left.envelope.buffer(2.0 * _THIN_MM).difference(closed)
+    gaps = _pieces(closed.difference(left), around, loose)
     whole = shapely.union_all([left, *gaps]) if gaps else left
     return _clean(whole)
 
@@ -40,12 +46,16 @@ def _resized(surface: BaseGeometry, by_mm: float) -> BaseGeometry:
     return surface.buffer(by_mm, join_style="mitre", mitre_limit=3.0)
 
 
-def _pieces(parts: BaseGeometry, loose: Callable[[BaseGeometry], bool]) -> list[BaseGeometry]:
+def _pieces(
+    parts: BaseGeometry,
+    rest: BaseGeometry,
+    loose: Callable[[BaseGeometry, BaseGeometry], bool],
+) -> list[BaseGeometry]:
     """Give the parts that may go, grown by a trace so that nothing of them is left behind."""
     return [
         _resized(part, _SAME_MM)
         for part in shapely.get_parts(parts)
-        if part.geom_type == "Polygon" and part.area > _SAME_MM and loose(part)
+        if part.geom_type == "Polygon" and part.area > _SAME_MM and loose(part, rest)
     ]
 
 

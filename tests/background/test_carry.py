@@ -136,6 +136,9 @@ def test_slivers_are_taken_off_where_nothing_hangs_on_them(star):
     slit = shapely.box(x + 9.0, y + 4.0, x + 12.0, y + 4.5)
     found = calmed(board, pond.union(spike).difference(slit))
     assert found.symmetric_difference(pond).area < 0.05
+    strait = shapely.box(x + 12.0, y + 2.0, x + 18.0, y + 3.0)
+    waters = shapely.union_all([pond, strait, shapely.box(x + 18.0, y, x + 30.0, y + 12.0)])
+    assert calmed(board, waters).symmetric_difference(waters).area < 0.05
     (link, *_) = star.bundled.layout.paths.values()
     a, b = link[0], link[1]
     over = shapely.LineString([(a[0], -a[1]), (b[0], -b[1])]).interpolate(0.5, normalized=True)
