@@ -29,6 +29,8 @@ class Issue:
     edition: Edition | None = None
     diagram: bytes | None = None
     """The edition's diagram as SVG, where it stands beside it."""
+    pdf: bytes = b""
+    """The same as PDF."""
 
 
 def load_issue(
@@ -49,7 +51,9 @@ def load_issue(
         folder = path if path.is_dir() else path.parent
         file = folder / "diagram.svg"
         diagram = file.read_bytes() if file.is_file() else None
-        return Issue(str(path), roster_of_edition(edition), edition, diagram)
+        file = folder / "diagram.pdf"
+        pdf = file.read_bytes() if file.is_file() else b""
+        return Issue(str(path), roster_of_edition(edition), edition, diagram, pdf)
     timetable, network = inspect(path, settings, progress=progress)
     return Issue(str(path), roster_of_network(network, stop_codes_of(timetable, network)))
 
@@ -66,10 +70,12 @@ def files_of_comparison(sheet: ChangeSheet, before: Issue, after: Issue) -> dict
     """Give the files of the change sheet by name, with pictures where both have been drawn."""
     sheets = None
     if before.edition and after.edition and before.diagram and after.diagram:
-        sheets = Sheets(before.edition, before.diagram, after.edition, after.diagram)
+        sheets = Sheets(
+            before.edition, before.diagram, after.edition, after.diagram, before.pdf, after.pdf
+        )
     return {
         "changes.json": to_json(sheet),
         "changes.csv": to_csv(sheet),
         "changes.html": to_html(sheet, sheets),
-        "changes.pdf": to_pdf(sheet),
+        "changes.pdf": to_pdf(sheet, sheets),
     }

@@ -146,16 +146,33 @@ def revise_network(
 
 
 def files_of_revision(
-    revision: Revision, before: Edition, diagram_before: bytes
+    revision: Revision, before: Edition, diagram_before: bytes, pdf_before: bytes = b""
 ) -> dict[str, bytes]:
-    """Give the files of the new edition and of its change sheet by name."""
+    """Give the files of the new edition and of its change sheet by name.
+
+    Parameters
+    ----------
+    revision
+        What was drawn.
+    before
+        The edition before.
+    diagram_before, pdf_before
+        Its diagram as SVG, and as PDF for the pictures of the printed sheet.
+    """
     files = files_of(revision.result)
-    sheets = Sheets(before, diagram_before, revision.result.edition, files["diagram.svg"])
+    sheets = Sheets(
+        before,
+        diagram_before,
+        revision.result.edition,
+        files["diagram.svg"],
+        pdf_before,
+        files["diagram.pdf"],
+    )
     return files | {
         "changes.json": to_json(revision.sheet),
         "changes.csv": to_csv(revision.sheet),
         "changes.html": to_html(revision.sheet, sheets),
-        "changes.pdf": to_pdf(revision.sheet),
+        "changes.pdf": to_pdf(revision.sheet, sheets),
     }
 
 

@@ -78,7 +78,9 @@ def revise(
             before, feeds, settings, beside=beside, adjustments=adjustments, progress=progress
         )  # fmt: skip
         progress.phase("writing files")
-        files = files_of_revision(revision, before, diagram)
+        pdf = folder / "diagram.pdf"
+        printed = pdf.read_bytes() if pdf.is_file() else b""
+        files = files_of_revision(revision, before, diagram, printed)
     write_folder(out, files, overwrite=given["overwrite"])
     if given["as_json"]:
         click.echo(files["changes.json"])

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import io
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 
 import pikepdf
 
@@ -12,6 +12,8 @@ from gtfs_schematic.drawing.model import Drawing, Group, PathShape, TextShape
 from gtfs_schematic.drawing.pdf import POINTS_PER_MM
 from gtfs_schematic.drawing.typeface import cairo
 from gtfs_schematic.drawing.words import run, wrap
+from gtfs_schematic.edition.change_pictures import Sheets
+from gtfs_schematic.edition.change_plates import placed, plates
 from gtfs_schematic.edition.change_words import (
     CAUTION,
     HEADINGS,
@@ -34,8 +36,15 @@ _INDENT = 6.0
 _INK, _PAPER = "#1B1F24", "#FFFFFF"
 
 
-def to_pdf(sheet: ChangeSheet) -> bytes:
-    """Write the list.
+def to_pdf(sheet: ChangeSheet, sheets: Sheets | None = None) -> bytes:
+    """Write the list, and pages of pictures behind it.
+
+    Parameters
+    ----------
+    sheet
+        What differs.
+    sheets
+        Both editions with their diagrams as PDF; None where feeds alone are compared.
 
     Raises
     ------
@@ -48,13 +57,21 @@ def to_pdf(sheet: ChangeSheet) -> bytes:
     surface = module.PDFSurface(buffer, _WIDTH * POINTS_PER_MM, _HEIGHT * POINTS_PER_MM)
     surface.restrict_to_version(module.PDF_VERSION_1_5)
     surface.set_metadata(module.PDF_METADATA_CREATE_DATE, "2000-01-01T00:00:00Z")
-    for page in _pages(sheet, title):
+    area = (_MARGIN, _MARGIN, _WIDTH - 2.0 * _MARGIN, _HEIGHT - 2.2 * _MARGIN)
+    pictures = []
+    if sheets is not None and sheets.before_pdf and sheets.after_pdf:
+        pictures = plates(sheet, sheets, area)
+    lists = _pages(sheet)
+    groups = [*lists, *(plate.shapes for plate in pictures)]
+    for page in _numbered(groups, title):
         context = module.Context(surface)
         context.scale(POINTS_PER_MM, POINTS_PER_MM)
         paint(context, page, tagged=False)
         surface.show_page()
     surface.finish()
     with pikepdf.open(io.BytesIO(buffer.getvalue())) as pdf:
+        if sheets is not None and pictures:
+            placed(pdf, len(lists), pictures, sheets)
         pdf.Root.Lang = pikepdf.String("en")
         for key in ("/CreationDate", "/ModDate", "/Creator"):
             if key in pdf.docinfo:
@@ -66,6 +83,7 @@ def to_pdf(sheet: ChangeSheet) -> bytes:
     return out.getvalue()
 
 
+Shapes = tuple[TextShape | PathShape, ...]
 Row = tuple[str, float, bool, bool]
 """Text, size in millimetres, whether bold, and whether a box to tick stands before it."""
 
@@ -95,7 +113,7 @@ def _rows(sheet: ChangeSheet) -> Iterator[Row]:
     yield CAUTION, _BODY, False, False
 
 
-def _pages(sheet: ChangeSheet, title: str) -> list[Drawing]:
+def _pages(sheet: ChangeSheet) -> list[Shapes]:
     """Set the rows from top to bottom; a row that does not fit begins the next page."""
     pages: list[list[TextShape | PathShape]] = [[]]
     y = _MARGIN
@@ -113,6 +131,11 @@ def _pages(sheet: ChangeSheet, title: str) -> list[Drawing]:
         for line in lines:
             y += size * _LEADING
             pages[-1].append(run(line, (left, y - 0.35 * size), size, _INK, bold=bold))
+    return [tuple(page) for page in pages]
+
+
+def _numbered(pages: Sequence[Shapes], title: str) -> list[Drawing]:
+    """Give the pages as drawings, with their numbers."""
     return [
         Drawing(
             _WIDTH, _HEIGHT, title, "", "en", _PAPER,

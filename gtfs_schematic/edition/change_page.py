@@ -12,6 +12,7 @@ from gtfs_schematic.edition.change_pictures import (
     grouped,
     overlay,
 )
+from gtfs_schematic.edition.change_plates import MOST_PLACES
 from gtfs_schematic.edition.change_words import (
     CAUTION,
     HEADINGS,
@@ -46,8 +47,6 @@ figure svg, .overlay { display: block; width: 100%; height: auto; border: 1px so
 .verdict { border-left: .3rem solid #1b1f24; padding: .2rem .8rem }
 @media print { body { margin: 0; max-width: none } tr, section.place { break-inside: avoid } }
 """
-_MOST_PLACES = 14
-"""A change at more stations than this has no clipping of its own: the overlay shows it."""
 
 
 def to_html(sheet: ChangeSheet, sheets: Sheets | None = None) -> bytes:
@@ -111,7 +110,7 @@ def _pictures(sheet: ChangeSheet, sheets: Sheets) -> Iterator[str]:
     yield "<h2>Both editions over each other</h2>"
     yield overlay(sheets)
     texts = {sentence(change): change.places for change in sheet.large}
-    groups = grouped(texts, _MOST_PLACES)
+    groups = grouped(texts, MOST_PLACES)
     if groups:
         yield "<h2>Where it is to be seen</h2><p>Rings mark the stations that are meant.</p>"
     for things, places in groups:

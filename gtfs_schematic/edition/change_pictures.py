@@ -14,7 +14,7 @@ from gtfs_schematic.geometry import Point
 _AROUND_MM = 24.0
 """What of the surroundings a clipping shows on each side, millimetres of the sheet."""
 _LEAST_MM = 60.0
-_OLD, _NEW = "#B35900", "#0B5CAD"
+OLD, NEW = "#B35900", "#0B5CAD"
 _ROOT = re.compile(rb"<svg\b([^>]*)>(.*)</svg>", re.DOTALL)
 _IDS = re.compile(r"""\s(?:id|aria-labelledby|role|xmlns|width|height|viewBox)="[^"]*\"""")
 
@@ -30,6 +30,9 @@ class Sheets:
     before_svg: bytes
     after: Edition
     after_svg: bytes
+    before_pdf: bytes = b""
+    """The same as PDF, for print; empty: not known."""
+    after_pdf: bytes = b""
 
 
 def definitions(sheets: Sheets) -> str:
@@ -51,7 +54,7 @@ def _group(name: str, svg: bytes) -> str:
 
 def clippings(sheets: Sheets, places: Sequence[str]) -> str:
     """Show the surroundings of stations before and after, side by side, at one scale."""
-    box = _box(sheets, places)
+    box = box_of(sheets, places)
     if box is None:
         return ""
     cells = []
@@ -68,7 +71,7 @@ def clippings(sheets: Sheets, places: Sequence[str]) -> str:
     return f'<div class="pair">{"".join(cells)}</div>'
 
 
-def _box(sheets: Sheets, places: Sequence[str]) -> Box | None:
+def box_of(sheets: Sheets, places: Sequence[str]) -> Box | None:
     """Give what of the sheet to show: all places on both diagrams, and something round them."""
     wanted = set(places)
     points = [
@@ -104,12 +107,12 @@ def overlay(sheets: Sheets) -> str:
     before, after = sheets.before, sheets.after
     width = max(before.width_mm, after.width_mm)
     height = max(before.height_mm, after.height_mm)
-    old, new = _links(before), _links(after)
+    old, new = links_of_edition(before), links_of_edition(after)
     both = [path for path in old if path in new]
     layers = (
         ("#9AA0A6", both),
-        (_OLD, [path for path in old if path not in new]),
-        (_NEW, [path for path in new if path not in old]),
+        (OLD, [path for path in old if path not in new]),
+        (NEW, [path for path in new if path not in old]),
     )
     drawn = "".join(
         f'<g fill="none" stroke="{color}" stroke-width="1.2">{"".join(map(_path, paths))}</g>'
@@ -119,14 +122,14 @@ def overlay(sheets: Sheets) -> str:
         f'<svg class="overlay" viewBox="{_view((0.0, 0.0, width, height))}" role="img" '
         'aria-label="Both editions over each other">'
         f"{drawn}{''.join(_stations(before, after))}</svg>"
-        f'<p><span style="color:{_OLD}">■</span> only before '
-        f'<span style="color:{_NEW}">■</span> only after '
+        f'<p><span style="color:{OLD}">■</span> only before '
+        f'<span style="color:{NEW}">■</span> only after '
         '<span style="color:#9AA0A6">■</span> in both, at the same place. Lines from ring to ring '
         "join the places of one station.</p>"
     )
 
 
-def _links(edition: Edition) -> dict[tuple[Point, ...], None]:
+def links_of_edition(edition: Edition) -> dict[tuple[Point, ...], None]:
     """Give the paths of all links, each in the direction that sorts first; sorted."""
     return dict.fromkeys(sorted(min(k.path_mm, k.path_mm[::-1]) for k in edition.links))
 
@@ -140,12 +143,12 @@ def _stations(before: Edition, after: Edition) -> Iterator[str]:
             yield _dot(a, "#9AA0A6", 0.9)
             continue
         if a is not None:
-            yield _dot(a, _OLD, 1.6)
+            yield _dot(a, OLD, 1.6)
         if b is not None:
-            yield _dot(b, _NEW, 1.6)
+            yield _dot(b, NEW, 1.6)
         if a is not None and b is not None:
             yield (
-                f'<line x1="{a[0]:g}" y1="{a[1]:g}" x2="{b[0]:g}" y2="{b[1]:g}" stroke="{_NEW}" '
+                f'<line x1="{a[0]:g}" y1="{a[1]:g}" x2="{b[0]:g}" y2="{b[1]:g}" stroke="{NEW}" '
                 'stroke-width="0.5" stroke-dasharray="1 1"/>'
             )
 
