@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import itertools
 import math
-from collections.abc import Iterator, Mapping, Sequence
+from collections.abc import Collection, Iterator, Mapping, Sequence
 from dataclasses import replace
 from typing import TYPE_CHECKING
 
@@ -24,6 +24,7 @@ from gtfs_schematic.geometry import Point
 from gtfs_schematic.labels import check as labels_check
 from gtfs_schematic.labels.beside import place_beside
 from gtfs_schematic.labels.model import Label, LabelledLayout
+from gtfs_schematic.labels.place import place_labels
 from gtfs_schematic.layout.keep import Standing
 from gtfs_schematic.layout.model import Clearances, Layout, SheetFrame
 from gtfs_schematic.lazily import lazily
@@ -76,6 +77,7 @@ def replaced(
         {**layout.paths, **layout.walk_paths},
         layout.sheet,
         rotation_deg=layout.rotation_deg,
+        angles=layout.angles,
     )
     mover = _Mover(network, wishes, clearances, progress)
     frames = _frames(layout, (old, network), settings)
@@ -157,6 +159,7 @@ class _Mover:
                 {**layout.paths, **layout.walk_paths},
                 layout.sheet,
                 rotation_deg=layout.rotation_deg,
+                angles=layout.angles,
             )
             found = self._relaid(standing, {station: place}, _NEAR)
             worse = found is None or any(
@@ -283,17 +286,30 @@ def rebundled(standing: LabelledLayout, orders: Mapping[str, Sequence[str]]) -> 
     return replace(standing, bundled=bundled)
 
 
-def relabelled(standing: LabelledLayout, before: Edition, *, badges_anew: bool) -> LabelledLayout:
-    """Place names beside those that stand; a name goes with its station."""
+def relabelled(
+    standing: LabelledLayout, before: Edition, freed: Collection[str], *, badges_anew: bool
+) -> LabelledLayout:
+    """Place names beside those that stand; a name goes with its station.
+
+    Those of the `freed` stations are placed anew. Only where a name would lose its place for it
+    are all names placed again, on their sides if that can be.
+    """
     was = {s.id: (s.x_mm, s.y_mm) for s in before.stations}
     at = standing.bundled.layout.positions
     labels = {
         key: _shifted(label, (at[key][0] - was[key][0], at[key][1] - was[key][1]))
         for key, label in standing.labels.items()
-        if key in at and key in was
+        if key in at and key in was and key not in freed
     }
     badges = None if badges_anew else standing.run_badges
-    labelled = place_beside(standing.bundled, standing.settings, labels, badges)
+    settings = standing.settings
+    labelled = place_beside(standing.bundled, settings, labels, badges)
+    if set(labelled.unplaced) - set(standing.unplaced):
+        sides = {key: label.side for key, label in labels.items()} | settings.sides
+        asked = settings.model_copy(update={"sides": sides})
+        anew = place_labels(standing.bundled, asked)
+        if len(anew.unplaced) < len(labelled.unplaced):
+            labelled = replace(anew, settings=settings)
     must_be_sound("labels", labels_check.faults(labelled))
     return labelled
 

@@ -202,7 +202,8 @@ def _layout(
     paths |= {walk.id: walk.path_mm for walk in before.walks}
     clearances = clearances_of(network, settings.bundles, settings.labels)
     for body_pt, frame in _frames(before, network, settings)[:_MOST_FRAMES]:
-        standing = Standing(positions, paths, frame, rotation_deg=before.rotation_deg)
+        turn, angles = before.rotation_deg, settings.layout.angles
+        standing = Standing(positions, paths, frame, rotation_deg=turn, angles=angles)
         pins = settings.layout.pins
         found = revise_layout(
             network,

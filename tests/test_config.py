@@ -60,7 +60,7 @@ def test_a_byte_order_mark_is_no_fault():
         (b"[labels]\nsize = 9", ["unknown key labels.size in [labels]", "labels.size_pt"]),
         (
             b"[layout]\nzzz = 1",
-            ["unknown key layout.zzz", "known here: directions, "],
+            ["unknown key layout.zzz", "known here: ", "directions, "],
         ),
         (b"[layout]\nfidelity = 2", ["layout.fidelity = 2", "less than or equal to 1"]),
         (b"[layout]\nfidelity = 'a'", ["layout.fidelity = 'a'", "valid number"]),

@@ -71,6 +71,7 @@ def edition_of(
         ),
         parts=parts_of(layout, bundled.orders, _path),
         rotation_deg=layout.rotation_deg,
+        angles=layout.angles,
     )
 
 

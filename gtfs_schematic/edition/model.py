@@ -149,6 +149,8 @@ class Edition:
     and with all its lines."""
     rotation_deg: float = 0.0
     """Counter-clockwise turn of the ground on the sheet: so far left of the top is north."""
+    angles: int = 45
+    """Angle between two neighbouring directions of links, degrees."""
     drifts: tuple[EditionDrift, ...] = ()
     """Drift of the editions since all was last laid out anew, this one last; empty for a first."""
 

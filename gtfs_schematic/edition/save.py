@@ -66,6 +66,7 @@ class _Sheet(_Part):
     width_mm: float = Field(gt=0.0)
     height_mm: float = Field(gt=0.0)
     rotation_deg: float = 0.0
+    angles: int = Field(default=45, gt=0)
 
 
 class _Station(_Part):
@@ -189,6 +190,7 @@ def to_json(edition: Edition) -> bytes:
             "width_mm": edition.width_mm,
             "height_mm": edition.height_mm,
             **({"rotation_deg": edition.rotation_deg} if edition.rotation_deg else {}),
+            **({"angles": edition.angles} if edition.angles != 45 else {}),
         },
         "previous": edition.previous,
         "state_sha256": edition.state_sha256,
@@ -259,6 +261,7 @@ def _edition(document: _Document) -> Edition:
         width_mm=document.sheet.width_mm,
         height_mm=document.sheet.height_mm,
         rotation_deg=document.sheet.rotation_deg,
+        angles=document.sheet.angles,
         stations=tuple(EditionStation(**_frozen(part)) for part in document.stations),
         links=tuple(EditionLink(**_frozen(part)) for part in document.links),
         lines=tuple(EditionLine(**_frozen(part)) for part in document.lines),

@@ -131,6 +131,7 @@ def layout_of(edition: Edition, drawn: Drawn, network: Network) -> Layout:
         {w.id: w.path_mm for w in edition.walks},
         drawn.crossings,
         edition.rotation_deg,
+        edition.angles,
     )
 
 

@@ -14,6 +14,8 @@ from gtfs_schematic.geometry import Point
 from gtfs_schematic.labels.model import Label, LabelledLayout
 from gtfs_schematic.network.model import Station
 
+_ARC_SHARES = tuple(k / 3.0 for k in range(-3, 4))
+"""Points of an arc, in halves of its turn from its middle: chords of 15° where it turns by 90°."""
 TOLERANCE_MM = 0.1
 """What clearances may fall short by: arcs and discs are approximated differently here."""
 _EDGE_MM = 0.01
@@ -169,10 +171,10 @@ def _covered(bundled: BundledLayout, station_id: str) -> tuple[Point, ...]:
 
 
 def _cut_corners(corners: Sequence[Corner]) -> list[Point]:
-    """Give a course with each corner replaced by three points of the arc that rounds it.
+    """Give a course with each corner replaced by points of the arc that rounds it.
 
-    With half the turn t, the arc touches the legs at r tan t from the corner, and its middle is
-    r (1 / cos t - 1) from it, towards the inside.
+    With half the turn t, the arc of radius r has its middle r / cos t from the corner, towards the
+    inside; its points lie s t to either side of the corner as seen from there, -1 ≤ s ≤ 1.
     """
     points = [corners[0].at_mm]
     for before, corner, after in zip(corners, corners[1:], corners[2:], strict=False):
@@ -185,12 +187,17 @@ def _cut_corners(corners: Sequence[Corner]) -> list[Point]:
             points.append(corner.at_mm)
             continue
         touch = min(corner.radius_mm * math.tan(half_turn), legs)
-        inward = touch / math.tan(half_turn) * (1.0 / math.cos(half_turn) - 1.0)
+        radius = touch / math.tan(half_turn)
         inside = math.atan2(math.sin(first) + math.sin(second), math.cos(first) + math.cos(second))
-        points += [
-            (x + touch * math.cos(first), y + touch * math.sin(first)),
-            (x + inward * math.cos(inside), y + inward * math.sin(inside)),
-            (x + touch * math.cos(second), y + touch * math.sin(second)),
-        ]
+        side = math.copysign(1.0, math.sin(second - inside))
+        for share in _ARC_SHARES:
+            inward = radius * (1.0 / math.cos(half_turn) - math.cos(share * half_turn))
+            beside = side * radius * math.sin(share * half_turn)
+            points.append(
+                (
+                    x + inward * math.cos(inside) - beside * math.sin(inside),
+                    y + inward * math.sin(inside) + beside * math.cos(inside),
+                )
+            )
     points.append(corners[-1].at_mm)
     return [point for point, _ in itertools.groupby(points)]

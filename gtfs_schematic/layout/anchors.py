@@ -33,7 +33,7 @@ _TRUE = 0.95
 """Fidelity from which on the ground itself is wanted, wherever it runs."""
 
 
-def anchor_points(graph: PlaneGraph, fidelity: float) -> NDArray[np.float64]:
+def anchor_points(graph: PlaneGraph, fidelity: float, stride: int = 1) -> NDArray[np.float64]:
     """Move the points of a plane graph towards even spacing and straight runs, topology kept.
 
     Parameters
@@ -42,6 +42,8 @@ def anchor_points(graph: PlaneGraph, fidelity: float) -> NDArray[np.float64]:
         Plane graph in local metres.
     fidelity
         1 keeps the ground to scale, 0 gives every link the same length at its true bearing.
+    stride
+        Of the eight directions only every so many-th will be drawn.
 
     Returns
     -------
@@ -59,7 +61,7 @@ def anchor_points(graph: PlaneGraph, fidelity: float) -> NDArray[np.float64]:
     targets = _targets(graph, ground, lengths, vectors, fidelity)
     moved = guarded_move(graph, ground, targets)
     if fidelity < _TRUE:
-        targets, directions = straightened(graph, moved, fidelity)
+        targets, directions = straightened(graph, moved, fidelity, stride)
         moved = guarded_move(graph, moved, targets)
         vectors = directions * np.hypot(vectors[:, 0], vectors[:, 1])[:, None]
     return np.round(spread(moved, graph.segments, vectors, _LEAST_CLEARANCE), 6)

@@ -22,13 +22,18 @@ class Board:
 
     Coordinates are lattice steps, `unit` of them to a station spacing, y north. A vertex keeps
     its eight neighbours free for the ports of its own pieces, so vertices stand at least three
-    steps apart and every port can be reached.
+    steps apart and every port can be reached. Of the eight ports every `stride`-th is used.
     """
 
     def __init__(
-        self, graph: PlaneGraph, anchors: NDArray[np.float64], weights: Weights, unit: int
+        self,
+        graph: PlaneGraph,
+        anchors: NDArray[np.float64],
+        weights: Weights,
+        unit: int,
+        stride: int = 1,
     ) -> None:
-        self.graph, self.weights, self.unit = graph, weights, unit
+        self.graph, self.weights, self.unit, self.stride = graph, weights, unit, stride
         self.n = graph.n_vertices
         self.anchors = anchors - anchors.min(axis=0) + _MARGIN_SPACINGS
         self.place = np.full(self.n, -1, dtype=np.int64)
@@ -36,7 +41,8 @@ class Board:
         self.ports = [-1] * (2 * len(graph.pieces))
         """Port through which each piece end leaves its vertex; -1 while it is not laid."""
         self.bearing_costs = [
-            port_bearing_costs(bearing, weights) for bearing in self._bearings().tolist()
+            np.where(np.arange(8) % stride == 0, port_bearing_costs(bearing, weights), BLOCKED)
+            for bearing in self._bearings().tolist()
         ]
         self.turns: list[list[tuple[int, int, int]]] = [[] for _ in range(2 * len(graph.pieces))]
         for v, a, b, count in graph.through:
@@ -89,6 +95,7 @@ class Board:
             course=round(weights.course * share),
             claim=weights.claim,
             unit=self.unit,
+            stride=self.stride,
         )
 
     # ---- vertices and paths ----------------------------------------------------------------
@@ -153,7 +160,7 @@ class Board:
             gap = (after[0] - before[0] - 1) % 8 + 1
             for port in range(8):
                 offset = (port - before[0]) % 8
-                if not before[1] <= offset <= gap - after[1]:
+                if not before[1] * self.stride <= offset <= gap - after[1] * self.stride:
                     costs[port] = BLOCKED
         for other, lines, _ in self.turns[end]:
             if self.ports[other] >= 0:

@@ -1,7 +1,7 @@
 """The faults of a layout against the guarantees; shares no code with the engine.
 
 1. Every station and link is drawn, and paths end at their stations.
-2. Every segment runs at an exact multiple of 45 degrees.
+2. Every segment runs at an exact multiple of the layout's angle, 45 or 90 degrees.
 3. Links and walks cross where they cross on the ground, and nowhere else.
 4. The cyclic order of links round every station is that of the ground.
 5. Clearances, pins and limits on the drift are kept, and everything lies on the sheet.
@@ -36,7 +36,6 @@ from gtfs_schematic.layout.check_stations import (
 from gtfs_schematic.layout.model import Clearances, Layout, LayoutSettings
 from gtfs_schematic.network.model import Link, Walk
 
-_DIRECTIONS = 8
 _TOUCH_M = 30.0
 """Distance on the ground below which touching and missing are not told apart, metres."""
 _TOLERANCE_MM = 0.15
@@ -67,10 +66,10 @@ def faults(
         return tuple(found)
     edges = _edges(layout)
     ground = _ground(layout)
-    found += _off_angle(edges)
+    found += _off_angle(edges, layout.angles)
     found += _wrong_crossings(layout, edges, ground)
     found += wrong_order(layout, edges, ground, _TOUCH_M)
-    found += shares_needlessly(edges, _DIRECTIONS)
+    found += shares_needlessly(edges, 360 // layout.angles)
     found += _too_close(layout, edges, clearances)
     found += _off_sheet(layout, edges)
     found += _off_pin(layout, pins or {})
@@ -156,7 +155,7 @@ def _missing(layout: Layout) -> list[str]:
     return found
 
 
-def _off_angle(edges: tuple[Edge, ...]) -> list[str]:
+def _off_angle(edges: tuple[Edge, ...], angles: int) -> list[str]:
     found = []
     for edge in edges:
         for (ax, ay), (bx, by) in itertools.pairwise(edge.path):
@@ -164,8 +163,8 @@ def _off_angle(edges: tuple[Edge, ...]) -> list[str]:
             dx, dy = round((bx - ax) * 100), round((by - ay) * 100)
             if (dx, dy) == (0, 0):
                 found.append(f"{edge.id} has a segment without length at ({ax}, {ay}).")
-            elif dx != 0 and dy != 0 and abs(dx) != abs(dy):
-                found.append(f"{edge.id} is off the eight directions at ({ax}, {ay}).")
+            elif dx != 0 and dy != 0 and (abs(dx) != abs(dy) or angles != 45):
+                found.append(f"{edge.id} is off the {360 // angles} directions at ({ax}, {ay}).")
     return found
 
 

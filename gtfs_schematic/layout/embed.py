@@ -11,6 +11,8 @@ from gtfs_schematic.layout.lattice import BLOCKED, FREE, encloses
 
 _MARGINS = (1.0, 3.0, 8.0)
 _CLAIM_STEPS = 0.75
+_MOST_TRIES = 6
+"""How often all is laid anew, in another order, before a finer lattice is tried."""
 _MOST_BARS = 12
 _BEYOND_STEPS = 3.0
 _BAR = np.iinfo(np.int32).max
@@ -29,11 +31,25 @@ def embed(board: Board) -> int | None:
     claims = [_claimed(board, course) for course in courses]
     for nodes in claims:
         board.lattice.claims[nodes] += 1
-    for p in sorted(range(len(board.paths)), key=lambda p: _freedom(board, p)):
-        board.lattice.claims[claims[p]] -= 1
-        if not _insert(board, p, courses[p]):
-            return p
-    return None
+    walled_in: list[int] = []
+    for _ in range(_MOST_TRIES):
+        # What was walled in goes first the next time, the last one before all others.
+        order = sorted(range(len(board.paths)), key=lambda p: _freedom(board, p))
+        order.sort(key=lambda p: -walled_in.index(p) if p in walled_in else 1)
+        laid: list[int] = []
+        for p in order:
+            board.lattice.claims[claims[p]] -= 1
+            laid.append(p)
+            if not _insert(board, p, courses[p]):
+                break
+        else:
+            return None
+        for p in laid:
+            board.lattice.claims[claims[p]] += 1
+            if p != laid[-1]:
+                board.lift(p)
+        walled_in = [p for p in walled_in if p != laid[-1]] + [laid[-1]]
+    return walled_in[-1]
 
 
 def _freedom(board: Board, p: int) -> tuple[float, int, int]:

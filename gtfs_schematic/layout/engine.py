@@ -53,9 +53,6 @@ from gtfs_schematic.network.model import Network
 from gtfs_schematic.progress import Progress, Silent
 
 _SWEEPS = {"quick": 2, "standard": 8, "thorough": 30}
-_PORTS = 8
-_STEP_DEG = 45.0
-"""Directions in which pieces may leave a vertex, and the angle between two of them."""
 _OPENED = 0.25
 """Fidelity of the ground on which directions are chosen: dense places are open there. The knob
 then moves lengths and places alone; bends stay, and whatever it says the drawing can be made."""
@@ -133,11 +130,11 @@ def place(
         raise LayoutError("The network has no links: there is nothing to draw.")
     progress.phase("placing on the ground")
     graph = planarise(network, kept_stations(network, settings))
-    turn = best_turn(graph, settings.fidelity, _STEP_DEG) if settings.north == "best" else 0.0
+    turn = best_turn(graph, settings.fidelity, settings.angles) if settings.north == "best" else 0.0
     graph = turned(graph, turn)
     settings, anchors = _anchors(graph, settings, progress)
     anchors = remembered(graph, anchors, previous or {})
-    graph, anchors = fork(graph, anchors, _PORTS)
+    graph, anchors = fork(graph, anchors, 360 // settings.angles)
     board = _board(graph, anchors, settings, progress, remembers=bool(previous))
     improve(board, _SWEEPS[settings.effort], progress)
     skeleton = skeleton_of(board)
@@ -155,12 +152,12 @@ def _anchors(
 
     The fidelity of the settings rises with them.
     """
-    anchors = anchor_points(graph, _OPENED)
+    anchors = anchor_points(graph, _OPENED, settings.angles // 45)
     placed, wanted = _OPENED, settings.fidelity
     while placed < 1.0 and not anchors_keep(graph, anchors, settings, _ANCHORS_SHARE):
         placed = min(1.0, round(placed + _MORE_FIDELITY, 6))
         wanted = max(wanted, placed)
-        anchors = anchor_points(graph, placed)
+        anchors = anchor_points(graph, placed, settings.angles // 45)
     if wanted > settings.fidelity:
         progress.note(f"for the drift limits the fidelity is {wanted:g} here")
     return settings.model_copy(update={"fidelity": wanted}), anchors
@@ -226,7 +223,8 @@ def fit(
     units = snap(skeleton, skeleton.points, frozenset(pinned), sizes.relative)
     places = on_paper(units, frame, centred=not pinned)
     layout = restore(network, skeleton, places, frame, part_wants(skeleton.graph, sizes))
-    layout = dataclasses.replace(layout, rotation_deg=placement.rotation_deg)
+    angles, turn = placement.settings.angles, placement.rotation_deg
+    layout = dataclasses.replace(layout, rotation_deg=turn, angles=angles)
     return Fitted(layout, dataclasses.replace(sizes, pinned=pinned), skeleton, scale)
 
 
@@ -245,7 +243,7 @@ def _board(
     anchor = plain.previous if remembers else plain.anchor
     weights = Weights(anchor=anchor_price(graph, settings, anchor))
     for unit in _UNITS:
-        board = Board(graph, anchors, weights, unit)
+        board = Board(graph, anchors, weights, unit, settings.angles // 45)
         ask(board, settings)
         failed = embed(board)
         progress.step()

@@ -24,6 +24,8 @@ class Standing:
     """Links from a change within which stations may give way at most; None: all."""
     rotation_deg: float = 0.0
     """Counter-clockwise turn of its ground."""
+    angles: int = 45
+    """Angle between two of its directions, degrees."""
 
 
 def keep(draft: Draft, standing: Standing) -> None:

@@ -33,6 +33,8 @@ class LayoutSettings(BaseModel):
     """Per link id where it is to lead from its start, N up the sheet; a strong wish."""
     straights: Mapping[str, tuple[str, ...]] = Field(default_factory=dict)
     """Per station id the lines that are to pass it straight; a strong wish."""
+    angles: Literal[45, 90] = 45
+    """Angle between two neighbouring directions of links, degrees."""
     north: Literal["up", "best"] = "up"
     """Whether north is up, or the ground is turned so that links lie near the directions."""
     drift_limit_m: float = Field(default=0.0, ge=0.0)
@@ -126,3 +128,5 @@ class Layout:
     crossings: tuple[Crossing, ...]
     rotation_deg: float = 0.0
     """Counter-clockwise turn of the ground on the sheet: so far left of the top is north."""
+    angles: int = 45
+    """Angle between two neighbouring directions, degrees."""

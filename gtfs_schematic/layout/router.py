@@ -36,6 +36,8 @@ class Prices(NamedTuple):
     """Per step onto the course of a piece that is not laid yet."""
     unit: int
     """Lattice steps in a spacing."""
+    stride: int = 1
+    """Of the eight directions only every so many-th is used."""
 
 
 class Trip(NamedTuple):
@@ -197,6 +199,8 @@ def route(  # noqa: C901, PLR0912 - one loop of a search, compiled
         beside = d >= 0 and lattice.guard[y * width + x] == trip.target
         for turn in range(-2, 3) if d >= 0 else range(8):
             e = (d + turn + 8) % 8 if d >= 0 else turn
+            if e % prices.stride != 0:
+                continue
             i, j = x + int(DX[e]), y + int(DY[e])
             if not (trip.low_x <= i <= trip.high_x and trip.low_y <= j <= trip.high_y):
                 continue

@@ -300,9 +300,9 @@ def _collisions(
         if np.abs(loose[v] - place).max() > _MISSED_MM
     ]
     return (
-        "The pins cannot all be kept with every line at a multiple of 45 degrees and all distances "
-        f"kept. In the nearest drawing these are missed: {', '.join(missed)}. Move or drop them, "
-        "or choose a larger sheet."
+        "The pins cannot all be kept with every line in the directions of the diagram and all "
+        f"distances kept. In the nearest drawing these are missed: {', '.join(missed)}. Move or "
+        "drop them, or choose a larger sheet."
     )
 
 
@@ -327,7 +327,8 @@ def _missed_limits(
     pins = ", the pins where they are" if wants.pinned or wants.relative else ""
     return (
         f"{'This drift limit' if len(found) == 1 else 'Together these drift limits'} cannot be "
-        f"kept with every line at a multiple of 45 degrees, all distances kept{pins}: {those}. "
+        "kept with every line in the directions of the diagram, all distances kept"
+        f"{pins}: {those}. "
         "If one of them were higher the others could hold. Raise one, raise the fidelity, allow a "
         "larger sheet, or draw fewer lines."
     )

@@ -30,7 +30,7 @@ _COMPASS = np.arange(8) * (math.pi / 4.0)
 
 
 def straightened(
-    graph: PlaneGraph, points: NDArray[np.float64], fidelity: float
+    graph: PlaneGraph, points: NDArray[np.float64], fidelity: float, stride: int = 1
 ) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
     """Turn every stroke, as a whole, into few straight runs in the eight directions.
 
@@ -45,6 +45,8 @@ def straightened(
         Its points, shape (n, 2), station spacings, y north.
     fidelity
         The closer to 1, the more turns a stroke makes to keep to its true bearings.
+    stride
+        Of the eight directions only every so many-th is used.
 
     Returns
     -------
@@ -65,7 +67,8 @@ def straightened(
     for segments, ahead in _strokes(graph, points):
         start, end = graph.segments[segments].T
         vectors = (points[end] - points[start]) * ahead[:, None]
-        chosen = _COMPASS[_directions(vectors, _lines(graph)[segments], strictness)]
+        lines = _lines(graph)[segments]
+        chosen = _COMPASS[_directions(vectors, lines, strictness, stride)]
         units = np.column_stack([np.cos(chosen), np.sin(chosen)])
         directions[segments] = np.round(units * ahead[:, None], 12)
     return _places(graph, points, directions), directions
@@ -126,13 +129,14 @@ def _lines(graph: PlaneGraph) -> NDArray[np.float64]:
 
 
 def _directions(
-    vectors: NDArray[np.float64], lines: NDArray[np.float64], strictness: float
+    vectors: NDArray[np.float64], lines: NDArray[np.float64], strictness: float, stride: int
 ) -> NDArray[np.int64]:
-    """Choose one of the eight directions for each of the vectors of a stroke."""
+    """Choose one of the eight directions, or every other, for each vector of a stroke."""
     length = np.hypot(vectors[:, 0], vectors[:, 1])
     bearing = np.arctan2(vectors[:, 1], vectors[:, 0])
     off = 1.0 - np.cos(bearing[:, None] - _COMPASS)
     prices = np.round(strictness * (lines * length)[:, None] * off, 9)
+    prices[:, np.arange(8) % stride != 0] = np.inf
     steps = np.abs(np.arange(8)[:, None] - np.arange(8))
     bends = np.array([*_BENDS, np.inf, np.inf])[np.minimum(steps, 8 - steps)]
     least = prices[0]

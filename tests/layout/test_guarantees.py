@@ -155,7 +155,7 @@ def test_the_check_sees_what_is_wrong():
     link = layout.network.links[0]
     start, *_, end = layout.paths[link.id]
     bent = {**layout.paths, link.id: (start, (start[0] + 1.0, start[1] + 0.3), end)}
-    assert any("off the eight" in f for f in faults(_with_paths(layout, bent), CLEARANCES))
+    assert any("off the 8 directions" in f for f in faults(_with_paths(layout, bent), CLEARANCES))
     missing = {k: p for k, p in layout.paths.items() if k != link.id}
     assert any("no path" in f for f in faults(_with_paths(layout, missing), CLEARANCES))
     mirrored = {s: (layout.sheet.width_mm - x, y) for s, (x, y) in layout.positions.items()}
