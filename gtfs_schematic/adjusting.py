@@ -201,8 +201,21 @@ def _labelled(
     ):
         progress.phase("placing names")
         drawn_anew = standing.bundled.stretches != state.drawn.stretches
-        standing = replacing.relabelled(standing, before, badges_anew=drawn_anew)
+        freed = _reworded(rooms[0]["labels"], rooms[1]["labels"])
+        standing = replacing.relabelled(standing, before, freed, badges_anew=drawn_anew)
     return standing
+
+
+def _reworded(
+    old: Mapping[str, Mapping[str, object]], new: Mapping[str, Mapping[str, object]]
+) -> set[str]:
+    """Give the stations about whose labels a person now says something else, or nothing."""
+    return {
+        key
+        for name in old
+        for key in {*old[name], *new[name]}
+        if old[name].get(key) != new[name].get(key)
+    }
 
 
 def _words(network: Network) -> tuple[object, ...]:

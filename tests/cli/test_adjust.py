@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+from dataclasses import replace
 from pathlib import Path
 
 import pytest
@@ -77,11 +78,16 @@ def test_names_will_do_and_a_second_word_joins_the_first(drawn, tmp_path, capsys
     for drop in (["--drop", "short_name"], ["--drop", "all"]):
         assert run(["adjust", str(out), "-q", "--station", "183", *drop]) == 0
     after = load_edition(out)
-    assert (after.adjustments, after.stations, after.links) == (
-        {},
-        edition.stations,
-        edition.links,
-    )
+    assert (after.adjustments, after.links) == ({}, edition.links)
+    assert [replace(s, label_side="") for s in after.stations] == [
+        replace(s, label_side="") for s in edition.stations
+    ]
+    sides = [
+        (a.label_side, b.label_side)
+        for a, b in zip(after.stations, edition.stations, strict=True)
+        if a.label_side != b.label_side
+    ]
+    assert len(sides) <= 3
 
 
 @pytest.mark.parametrize(
