@@ -103,7 +103,7 @@ class FineLattice:
         """Place of a node, millimetres."""
         x = self.left + node % self.width * self.step
         y = self.top + node // self.width * self.step
-        return round(x, 2), round(y, 2)
+        return round(float(x), 2), round(float(y), 2)
 
     def points(self) -> NDArray[np.float64]:
         """Places of all nodes, shape (n, 2), millimetres."""

@@ -17,6 +17,7 @@ from gtfs_schematic.layout.places import point_of
 
 _TOUCH_M = 30.0
 """Distance on the ground below which a crossing and a near miss are not told apart, metres."""
+_END_MM = 0.02
 _THIN_MM = 0.1
 """Distance that is enough for now where others will give way."""
 
@@ -124,6 +125,9 @@ class Obstacles:
             if any(meeting.geom_type != "Point" for meeting in meetings):
                 return None
             lengths = sorted(map(line.project, meetings))
+            if self.shared[k]:
+                # Where the course begins or ends it only meets what ends there, too.
+                lengths = [t for t in lengths if _END_MM < t < line.length - _END_MM]
             owners = self._owners(int(k), lengths, line.length / count)
             if owners is None:
                 return None

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import itertools
+import math
 
 import pytest
 import shapely
@@ -19,6 +20,7 @@ from gtfs_schematic.layout.revise import revise_layout
 from gtfs_schematic.network.model import Network
 
 CLEARANCES = Clearances(1.6, 0.35, 2.6, 3.2, 5.5, {})
+TIGHT = Clearances(4.0, 0.5, 5.0, 3.2, 9.0, {})
 FRAME = SheetFrame(420.0, 297.0, 12.0, 30.0, 408.0, 257.0)
 PLACES = {
     "A": (0.0, 0.0), "B": (1.0, 0.1), "C": (2.0, 0.0), "D": (3.0, 0.2), "E": (4.0, 0.1),
@@ -33,10 +35,13 @@ def old() -> Layout:
     return lay_out(network_of(PLACES, BASE), settings, CLEARANCES, [FRAME])
 
 
-def revised(old: Layout, network: Network) -> Layout:
+def revised(old: Layout, network: Network, *, moving: bool = False) -> Layout:
     paths = {**old.paths, **old.walk_paths}
     found = revise_layout(network, Standing(old.positions, paths, FRAME), CLEARANCES)
     assert found is not None
+    if moving:
+        assert faults(found.layout, CLEARANCES) == ()
+        return found.layout
     assert found.moved == ()
     new = found.layout
     assert faults(new, CLEARANCES) == ()
@@ -77,6 +82,39 @@ def test_a_new_line_crosses_what_the_ground_makes_it_cross(old: Layout):
     assert [(c.first, c.second) for c in new.crossings] == [("A-B", "U-V")] or [
         (c.first, c.second) for c in new.crossings
     ] == [("B-C", "U-V")]
+
+
+def test_a_new_line_crosses_a_link_of_its_own_first_station(old: Layout):
+    places = PLACES | {"X": (0.5, 0.6), "Y": (0.6, -0.8)}
+    new = revised(old, network_of(places, [*BASE, "AXY"]), moving=True)
+    assert [(c.first, c.second) for c in new.crossings] == [("A-B", "X-Y")]
+
+
+def test_what_finds_no_gap_makes_room_in_its_neighbourhood():
+    """Between two lines 9 mm apart there is no room for a third, 4 mm wide, until one gives way."""
+    rows = [[f"{row}{i}" for i in range(8)] for row in "LM"]
+    ground = {key: (float(i), float(y)) for y, row in enumerate(rows) for i, key in enumerate(row)}
+    courses = [*rows, ["L0", "M0"], ["L7", "M7"]]
+    at = {key: (60.0 + 20.0 * x, 150.0 - 9.0 * y) for key, (x, y) in ground.items()}
+    standing = Standing(
+        at,
+        {f"{a}-{b}": (at[a], at[b]) for row in courses for a, b in itertools.pairwise(row)},
+        FRAME,
+    )
+    between = {f"N{i}": (1.5 + i, 0.5) for i in range(5)}
+    network = network_of(ground | between, [*courses, ["L1", *between, "M6"]])
+    found = revise_layout(network, standing, TIGHT)
+    assert found is not None
+    assert faults(found.layout, TIGHT) == ()
+    assert found.moved
+    # Every move is told, and nothing else moved.
+    moved = {m.station_id: m for m in found.moved}
+    for station, place in at.items():
+        far = math.dist(place, found.layout.positions[station])
+        assert (station in moved) == (far > 0.01)
+        if station in moved:
+            assert moved[station].length_mm == pytest.approx(far, abs=0.01)
+            assert moved[station].because in found.layout.paths
 
 
 def test_a_withdrawn_line_leaves_the_rest_where_it_is(old: Layout):
