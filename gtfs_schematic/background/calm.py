@@ -30,7 +30,7 @@ def calmed(board: Board, surface: shapely.Polygon) -> BaseGeometry:
         if len(walls.query(piece, predicate="intersects")):
             return False
         touching = shapely.get_parts(piece.buffer(_TOUCH_MM).intersection(rest))
-        return sum(part.area > 0.0 for part in touching) <= 1
+        return bool(sum(part.area > 0.0 for part in touching) <= 1)
 
     opened = _resized(_resized(surface, -_THIN_MM / 2.0), _THIN_MM / 2.0)
     thin = _pieces(surface.difference(opened), opened, loose)

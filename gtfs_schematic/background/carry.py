@@ -20,7 +20,7 @@ from shapely.geometry.base import BaseGeometry
 
 from gtfs_schematic.background.board import Board, board_of, close_stations
 from gtfs_schematic.background.bridges import add_bridges
-from gtfs_schematic.background.finish import Outline, finished
+from gtfs_schematic.background.finish import NO_WAY, Outline, finished
 from gtfs_schematic.background.legs import Arcs
 from gtfs_schematic.background.model import (
     Background,
@@ -52,7 +52,6 @@ _LEAST_MM2 = 18.0
 _FREE_MM = 2.0
 
 TOO_SMALL = "too small to show"
-NO_WAY = "it finds no course between the lines"
 
 
 def carry(labelled: LabelledLayout, source: Source, settings: BackgroundSettings) -> Background:
@@ -111,15 +110,14 @@ def _surfaces(
     slots = _slots(board, [curve for _, curve in wanted])
     routed = _all_routed(board, wanted, slots)
     for k, surface in enumerate(surfaces):
-        shape = None
+        shape: Shape | str = TOO_SMALL if small[k] else NO_WAY
         if routed.get(k):
             outlines = [Outline(arcs, closed=True) for arcs in routed[k]]
             shape = finished(board, kind, surface.name, surface.ground, outlines)
-        if shape is not None:
+        if isinstance(shape, Shape):
             yield shape
         else:
-            reason = TOO_SMALL if small[k] else NO_WAY
-            left_out.append(LeftOut(surface.name or f"a surface of {kind}", reason))
+            left_out.append(LeftOut(surface.name or f"a surface of {kind}", shape))
     lattice.crossed[:], lattice.closed[:], lattice.cost[:] = before
 
 
@@ -263,14 +261,13 @@ def _courses(
         small = float(np.hypot(*np.diff(curve.image, axis=0).T).sum()) < _LEAST_MM
         into = _into(part, feature.kind, shapes)
         arcs = None if small else _routed(board, curve, {}, into)
-        shape = None
+        shape: Shape | str = TOO_SMALL if small else NO_WAY
         if arcs is not None:
             shape = finished(board, feature.kind, feature.name, part, [Outline(arcs, closed)])
-        if shape is None:
-            reason = TOO_SMALL if small else NO_WAY
-            left_out.append(LeftOut(feature.name or feature.source, reason))
-        else:
+        if isinstance(shape, Shape):
             yield shape
+        else:
+            left_out.append(LeftOut(feature.name or feature.source, shape))
 
 
 def _run_on(board: Board, line: shapely.LineString) -> shapely.LineString:

@@ -26,6 +26,10 @@ _RADII_MM = {1: 6.0, 2: 2.5}
 _ON_EDGE_MM = 1e-6
 
 
+NO_WAY = "it finds no course between the lines"
+OUTSIDE = "it comes to lie outside of the sheet"
+
+
 @dataclass(frozen=True)
 class Outline:
     """A routed curve."""
@@ -36,19 +40,19 @@ class Outline:
 
 def finished(
     board: Board, kind: Kind, name: str, ground: BaseGeometry, outlines: Sequence[Outline]
-) -> Shape | None:
-    """Give the shape on the sheet; None if its outlines cross, or nothing of it is on the field."""
+) -> Shape | str:
+    """Give the shape on the sheet, or why there is none."""
     lines = [_corners(board, outline) for outline in outlines]
     low, high = board.box
     box = shapely.box(low[0], -high[1], high[0], -low[1])
     surface = ground.geom_type == "Polygon"
     if any(len(line) < (4 if surface else 2) for line in lines):
-        return None
+        return NO_WAY
     whole: BaseGeometry
     if surface:
         whole = shapely.Polygon(lines[0], lines[1:])
         if not whole.is_valid:
-            return None
+            return NO_WAY
         whole = scale(calmed(board, scale(whole, 1, -1, origin=(0, 0))), 1, -1, origin=(0, 0))
     else:
         whole = shapely.LineString(lines[0])
@@ -64,7 +68,7 @@ def finished(
         elif part.geom_type == "LineString":
             rings.append(_rounded(list(part.coords), box, closed=False))
     if not rings:
-        return None
+        return OUTSIDE
     return Shape(kind, name, tuple(rings), surface, ground)
 
 
