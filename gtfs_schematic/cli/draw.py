@@ -164,7 +164,8 @@ def _letters(result: Result) -> list[str]:
     """Say which names hold characters that the typeface lacks."""
     from gtfs_schematic.labels.fonts import advice_on, missing_characters
 
-    rows, lacking = [], set()
+    rows: list[str] = []
+    lacking: set[str] = set()
     for station in result.network.stations:
         missing = missing_characters(station.name + station.second_name)
         if missing:
