@@ -28,7 +28,6 @@ _STEP_MM = 0.6
 _MOST_NODES = 60_000
 _OFFSET = (0.137, 0.211)
 """Shift of the lattice in steps, so that hardly anything lies exactly on it."""
-_MARGIN_SPACINGS = 4.0
 _THIN_MM = 0.2
 """Distance from a foreign centre line that even a thread keeps."""
 _LACK = 1500
@@ -74,9 +73,9 @@ class FineLattice:
     """Per step to the east, north-east, north and north-west what it crosses."""
 
     @staticmethod
-    def round_about(errand: Errand, frame: SheetFrame) -> FineLattice:
-        """Cover the errand with some margin, no further than the frame."""
-        wide = _MARGIN_SPACINGS * errand.spacing_mm
+    def round_about(errand: Errand, frame: SheetFrame, margin: float) -> FineLattice:
+        """Cover the errand with a margin of so many spacings, no further than the frame."""
+        wide = margin * errand.spacing_mm
         x, y = np.array([errand.start, errand.end, *errand.expected.coords]).T
         left, right = max(frame.left_mm, x.min() - wide), min(frame.right_mm, x.max() + wide)
         top, bottom = max(frame.top_mm, y.min() - wide), min(frame.bottom_mm, y.max() + wide)

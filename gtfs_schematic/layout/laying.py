@@ -103,13 +103,17 @@ def _threaded(draft: Draft, chain: Chain) -> bool:
 
 
 def _with_port(draft: Draft, chain: Chain, progress: Progress) -> bool:
-    """Lay a chain at whose end no direction is free: edges beside it there are laid anew."""
+    """Lay a chain at whose end no direction is free, or none that leads on.
+
+    Edges beside it there are laid anew: only as many as must, and few where others may help.
+    """
     ends = ((chain.stations[0], chain.edges[0]), (chain.stations[-1], chain.edges[-1]))
     for station, edge in ends:
-        if station not in draft.at or draft.ports(station, edge):
+        if station not in draft.at:
             continue
         beside = draft.beside(station, edge)
-        for lifted in (beside[:1], beside[1:2], *(beside[:k] for k in range(2, len(beside) + 1))):
+        most = 2 if draft.ports(station, edge) else len(beside)
+        for lifted in (beside[:1], beside[1:2], *(beside[:k] for k in range(2, most + 1))):
             trial = draft.copy()
             for other in lifted:
                 del trial.path[other.id]

@@ -35,6 +35,8 @@ _UNSURE = 900
 """Price of a crossing that the ground has or has not."""
 _TURN = 300
 """Price of leaving a station 45 degrees off the best free direction."""
+_MARGINS = (4.0, 14.0)
+"""Spacings round the errand within which a way is looked for, in turn."""
 _ROOT_2 = math.sqrt(2.0)
 
 
@@ -70,8 +72,17 @@ def thread(obstacles: Obstacles, errand: Errand) -> tuple[Point, ...] | None:
     tuple or None
         Corners in millimetres; the first is the start, the last the end if that is fixed.
     """
-    lattice = FineLattice.round_about(errand, obstacles.frame)
-    lattice.mark(obstacles, errand)
+    for margin in _MARGINS:
+        lattice = FineLattice.round_about(errand, obstacles.frame, margin)
+        lattice.mark(obstacles, errand)
+        nodes = _search(*_problem(lattice, obstacles, errand))
+        if len(nodes):
+            return _corners(lattice, nodes, errand)
+    return None
+
+
+def _problem(lattice: FineLattice, obstacles: Obstacles, errand: Errand) -> tuple[_Field, _Trip]:
+    """State the search on a marked lattice."""
     start, target = lattice.node(errand.start), lattice.node(errand.end)
     if errand.arriving is None:
         ending, arriving = lattice.ending(errand), np.zeros(8, dtype=np.int64)
@@ -83,8 +94,7 @@ def thread(obstacles: Obstacles, errand: Errand) -> tuple[Point, ...] | None:
     crossed = np.array([k for k, _ in obstacles.events], dtype=np.int64)
     hop = round(lattice.step / errand.spacing_mm * SPACING)
     field = _Field(lattice.width, hop, lattice.cost, lattice.blocked, lattice.code, crossed)
-    nodes = _search(field, _Trip(start, _turns(errand.leaving), ending, arriving))
-    return _corners(lattice, nodes, errand) if len(nodes) else None
+    return field, _Trip(start, _turns(errand.leaving), ending, arriving)
 
 
 def _turns(directions: tuple[int, ...]) -> NDArray[np.int64]:
