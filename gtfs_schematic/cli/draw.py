@@ -27,7 +27,7 @@ Example:
 _WHERE = "edition.json lists all"
 
 _GUARANTEES = (
-    "Kept, by checks of their own: every segment at a multiple of 45°, no crossing that the "
+    "Kept, by checks of their own: every segment at a multiple of {angles}°, no crossing that the "
     "ground does not have, order of lines round every station, clearances, no name over another "
     "name, a line or a marker"
 )
@@ -129,7 +129,7 @@ def describe(
         *_letters(result),
         *_contrast(result),
         *_background(result),
-        _GUARANTEES,
+        _GUARANTEES.format(angles=result.layout.angles),
         *words.drift(result.drift),
         *words.limits(limits),
         f"Written to {out}:",

@@ -12,6 +12,7 @@ import shapely
 
 from gtfs_schematic.geometry import Point
 from gtfs_schematic.layout.draft import Draft
+from gtfs_schematic.layout.leaving import bearings
 
 _TOUCH_M = 30.0
 """Distance on the ground below which a crossing and a near miss are not told apart, metres."""
@@ -51,15 +52,13 @@ def _turned(draft: Draft) -> Iterator[tuple[str, ...]]:
     """Threes that follow each other round a station otherwise than on the ground."""
     for station in sorted(draft.around):
         ends = []
-        for edge in sorted(draft.around[station], key=lambda e: e.id):
-            if edge.id not in draft.path:
-                continue
-            path = draft.path[edge.id]
-            path = path if edge.start == station else path[::-1]
+        around = sorted(draft.around[station], key=lambda e: e.id)
+        around = [edge for edge in around if edge.id in draft.path]
+        paths = [draft.path[e.id] if e.start == station else draft.path[e.id][::-1] for e in around]
+        for edge, drawn in zip(around, bearings(paths), strict=True):
             there = edge.end if edge.start == station else edge.start
             true, length = _bearing(draft.ground[station], draft.ground[there])
             doubt = math.asin(min(1.0, _TOUCH_M / max(length, 1e-9)))
-            drawn, _ = _bearing((path[0][0], -path[0][1]), (path[1][0], -path[1][1]))
             ends.append((edge.id, true, drawn, doubt))
         for three in itertools.combinations(ends, 3):
             (_, a, p, _), (_, b, q, _), (_, c, r, _) = three

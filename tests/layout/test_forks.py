@@ -19,9 +19,11 @@ from gtfs_schematic.layout.anchors import anchor_points
 from gtfs_schematic.layout.check import faults
 from gtfs_schematic.layout.engine import lay_out
 from gtfs_schematic.layout.forks import fork
+from gtfs_schematic.layout.keep import Standing
 from gtfs_schematic.layout.model import Clearances, Layout, LayoutSettings, SheetFrame
 from gtfs_schematic.layout.planarise import planarise
 from gtfs_schematic.layout.plane import PlaneGraph
+from gtfs_schematic.layout.revise import revise_layout
 from gtfs_schematic.network.model import Network
 from gtfs_schematic.pipeline import labelled_anew
 from gtfs_schematic.progress import Silent
@@ -153,3 +155,22 @@ def test_forks_keep_the_cyclic_order_and_what_lines_pass(seed: int, arms: int, p
         passing = sum(n for w, _, _, n in forked.through if w == v)
         assert passing == sum(len(piece.lines) for piece in others)
     assert np.isfinite(places).all()
+
+
+def test_a_revised_network_keeps_a_hub_as_it_stands():
+    old = star_network(1, 12)
+    layout = lay_out(old, QUICK, CLEARANCES, FRAMES)
+    standing = Standing(layout.positions, {**layout.paths, **layout.walk_paths}, layout.sheet)
+    same = revise_layout(old, standing, CLEARANCES)
+    assert same is not None
+    assert (same.layout.positions, same.layout.paths) == (layout.positions, layout.paths)
+    # One arm gets longer by a station: the hub stays.
+    places = {s.id: (s.lon / 0.009, s.lat / 0.009) for s in old.stations}
+    (x, y), courses = places["A02N2"], [list(line.courses[0]) for line in old.lines]
+    places["A02N3"] = (x * 1.5, y * 1.5)
+    grown = [["A02N3", *course] if course[0] == "A02N2" else course for course in courses]
+    revised = revise_layout(network_of(places, grown), standing, CLEARANCES)
+    assert revised is not None
+    assert faults(revised.layout, CLEARANCES) == ()
+    kept = {key: at for key, at in revised.layout.positions.items() if key != "A02N3"}
+    assert sum(at != layout.positions[key] for key, at in kept.items()) <= 2
