@@ -196,7 +196,10 @@ class _Drawn:
         return push
 
     def _lacking(self, low: Floats, site: Site, near: NDArray[np.int64]) -> Floats:
-        """Give what the segments near by lack in all, per box."""
+        """Give by how much the segments near by would have to give way, per box.
+
+        Those that give way along one axis go together: only the furthest counts.
+        """
         along = self.ends[near] @ _NORMALS.T
         high, facing = along.max(axis=1), np.round(along, 6).argmax(axis=1)
         marker = np.array(site.at) @ _NORMALS.T - high
@@ -207,8 +210,11 @@ class _Drawn:
         octants = np.rint(np.degrees(np.arctan2(rel[..., 1], rel[..., 0])) / 45.0).astype(int) % 8
         fixed = (np.abs(marker) < _LEVEL_MM) & np.isin(octants, self._leaving(site))
         usable = (marker > -_LEVEL_MM)[:, None] & (~fixed[:, None] | (gaps >= need))
-        lack = np.maximum(0.0, need - np.where(usable, gaps, -np.inf)).min(axis=2, initial=np.inf)
-        return np.asarray(lack.sum(axis=0))
+        lack = np.maximum(0.0, need - np.where(usable, gaps, -np.inf))
+        axis, least = lack.argmin(axis=2), lack.min(axis=2, initial=np.inf)
+        most = np.zeros((8, len(low)))
+        np.maximum.at(most, (axis, np.arange(len(low))[None, :]), least)
+        return np.asarray(most.sum(axis=0))
 
     def _lacking_air(self, corners: Floats, site: Site) -> Floats:
         """Give what lacks to the nearest foreign marker, so that the name does not seem its own."""

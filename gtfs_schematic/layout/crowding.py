@@ -24,8 +24,12 @@ from gtfs_schematic.layout.snap import UNITS_PER_MM
 _NORMALS = np.round(STEP / np.hypot(STEP[:, :1], STEP[:, 1:]), 12)
 _REACH_MM = 8.0
 """What is further than this from a name is not in its way."""
-_PRICE = {True: 15.0, False: 40.0}
-"""Price of a millimetre that a name lacks: one that stands already, and one without a place."""
+_ASKED = 80.0
+"""Price of a millimetre that a name without a place lacks."""
+_STANDING = (10.0, 40.0)
+"""The same of one that stands: the more, the fewer are without a place."""
+_MANY = 300.0
+"""Names without a place times the price of one that stands, between these."""
 _BESIDE_MM = 0.01
 _MARKER_MM = 2.0
 _AIR_SHARE = 0.7
@@ -136,9 +140,10 @@ def _boxes(skeleton: Skeleton, names: Sequence[NameRoom], part_wants: Sequence[F
     outlines = [np.array(name.outline_mm) * [1.0, -1.0] for name in known]
     low = np.array([(outline @ _NORMALS.T).min(axis=0) for outline in outlines]).reshape(-1, 8)
     at = np.einsum("bi,bij->bj", shares, skeleton.points[nodes])
-    return _Boxes(
-        nodes, shares, at, outlines, low, np.array([_PRICE[name.stands] for name in known])
-    )
+    lost = sum(not name.stands for name in known)
+    standing = float(np.clip(_MANY / max(lost, 1), *_STANDING))
+    price = np.array([standing if name.stands else _ASKED for name in known])
+    return _Boxes(nodes, shares, at, outlines, low, price)
 
 
 def _stands(
