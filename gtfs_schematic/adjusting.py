@@ -138,6 +138,9 @@ def adjust_edition(
     )
     must_be_sound("edition", edition_check.faults(edition))
     drift = _drift(before, edition, state, settings)
+    if before.drifts:
+        last = replace(before.drifts[-1], residual=round(drift.north_up.residual, 6))
+        edition = replace(edition, drifts=(*before.drifts[:-1], last))
     data = state_to_json(replace(state, drawn=drawn_of(labelled), drift=drift))
     return Redrawn(
         replace(edition, state_sha256=digest(data)), settings, drawing, labelled, drift, data,
