@@ -12,6 +12,7 @@ from gtfs_schematic.errors import FeedError
 from gtfs_schematic.feed.model import LeftOut, Route, Timetable
 from gtfs_schematic.geometry import distance
 from gtfs_schematic.network.alongside import passed_alongside
+from gtfs_schematic.network.between import idle_junctions
 from gtfs_schematic.network.describe import (
     Known,
     Run,
@@ -96,6 +97,11 @@ def build_network(
     progress.phase("Joining stations by links")
     expansion, junctions = _expand(timetable, sites, chosen, settings)
     ways = _ways(chosen, expansion)
+    # Patterns that others show may have been all that joined or parted at a junction.
+    while idle := _idle(ways, junctions):
+        expansion = expansion.without(idle)
+        ways = _ways(chosen, expansion)
+        junctions = tuple(junction for junction in junctions if junction.id not in idle)
     links = links_of({line: [course for _, course in pairs] for line, pairs in ways.items()})
     ends = {end for link in links for end in (link.start, link.end)}
     drawn = ends - {junction.id for junction in junctions}
@@ -122,7 +128,7 @@ def build_network(
         left_out=tuple(
             sorted({*timetable.left_out, *left_out}, key=lambda o: (o.kind, o.id, o.reason))
         ),
-        junctions=tuple(junction for junction in junctions if junction.id in ends),
+        junctions=junctions,
     )
 
 
@@ -220,6 +226,13 @@ def _ways(chosen: _Chosen, expansion: Expansion) -> dict[str, tuple[tuple[Ids, I
         line_id: itineraries_of(callings, expansion.course)
         for line_id, callings in sorted(by_line.items())
     }
+
+
+def _idle(
+    ways: Mapping[str, Sequence[tuple[Ids, Ids]]], junctions: Sequence[Junction]
+) -> frozenset[str]:
+    courses = (course for pairs in ways.values() for _, course in pairs)
+    return idle_junctions(courses, [junction.id for junction in junctions])
 
 
 def _runs(chosen: _Chosen, expansion: Expansion) -> dict[str, list[Run]]:

@@ -12,7 +12,10 @@ from shapely.ops import substring
 from gtfs_schematic.geometry import Point
 from gtfs_schematic.network.links import Expansion, Pair
 from gtfs_schematic.network.patterns import Ids
-from gtfs_schematic.network.tracks import Course, Track
+from gtfs_schematic.network.tracks import Course, Track, length_of
+
+_LEAST_M = 1.0
+"""Stations beside the same point of a street, as far as anyone can tell, divide it nowhere."""
 
 
 def street_hops(
@@ -41,7 +44,7 @@ def street_hops(
                 continue
             rank = (len(way) > 2, -track.calling.trips, n)
             for hop, start, piece in zip(hops, way, _cut(section, way, at), strict=False):
-                if hop not in best or rank < best[hop][0]:
+                if length_of(piece) >= _LEAST_M and (hop not in best or rank < best[hop][0]):
                     best[hop] = (rank, piece if start == hop[0] else piece[::-1])
     return {hop: course for hop, (_, course) in sorted(best.items()) if hop not in barred}
 
@@ -53,7 +56,7 @@ def _cut(section: Course, way: Ids, at: Mapping[str, Point]) -> tuple[Course, ..
     line = shapely.linestrings(section)
     dots = shapely.points([at[station] for station in way[1:-1]])
     cuts = np.concatenate([[0.0], shapely.line_locate_point(line, dots), [line.length]])
-    if (np.diff(cuts) <= 0.0).any():
+    if (np.diff(cuts) < _LEAST_M).any():
         return ()
     return tuple(
         shapely.get_coordinates(substring(line, low, high))

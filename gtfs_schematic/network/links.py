@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import itertools
 from collections import defaultdict
-from collections.abc import Mapping, Sequence
+from collections.abc import Container, Mapping, Sequence
 from dataclasses import dataclass, field
 from typing import TypedDict
 
@@ -59,6 +59,14 @@ class Expansion:
 
     over: dict[Pair, Ids] = field(default_factory=dict)
     """Per pair the whole way from the lesser id to the greater."""
+
+    def without(self, nodes: Container[str]) -> Expansion:
+        """Leave some stations or junctions out of all ways."""
+        over = {
+            pair: tuple(node for node in way if node not in nodes)
+            for pair, way in self.over.items()
+        }
+        return Expansion({pair: way for pair, way in over.items() if len(way) > 2})
 
     def way(self, a: str, b: str) -> Ids:
         """Give all stations from a to b, both included, and those that lie between."""

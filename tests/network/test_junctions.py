@@ -224,3 +224,25 @@ def test_every_line_keeps_to_its_streets_and_calls_in_order(town, lines):
             at = shapely.Point(_GROUND.metres([places[node]])[0])
             # Ends of streets that part lie a snap apart at most.
             assert shapes[line.id].distance(at) < 200.0
+
+
+def test_stops_at_one_point_of_a_shape_are_no_street(town):
+    """Here stops stand beside the same end of a shape, which leads nowhere between them."""
+    b = {"B0": (0, 200), "B1": (0, 100), "B9": (2000, 0)}
+    network = town.buses(A_LINE, ("b", b, [(0, 0), (2000, 0)])).network()
+    assert faults(network) == ()
+    assert network.line["b"].itineraries == (("B0", "B1", "B9"),)
+    c = {"C0": (0, 200), "C1": (0, 150)}
+    network = town.buses(A_LINE, ("c", c, [(0, 0), (0.001, 0)])).network()
+    assert faults(network) == ()
+    assert _course(network, "c") == "C0 C1"
+
+
+def test_a_junction_of_a_pattern_that_another_shows_is_none(town):
+    """The short working leaves the street where the long one does, at no stop of its own."""
+    points = [(0, 0), (3000, 0), (3000, 900)]
+    long = town.buses(("a", {"A0": (0, 0), "A1": (3000, 400), "A9": (3000, 900)}, points))
+    network = long.shape("short", [(0, 0), (3000, 0), (3000, 400)])
+    network = network.both("a", "A0 A1", shape="short").network()
+    assert faults(network) == ()
+    assert network.junctions == ()
