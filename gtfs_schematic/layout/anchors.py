@@ -7,7 +7,7 @@ import scipy.sparse as sp
 from numpy.typing import NDArray
 from scipy.sparse.linalg import spsolve
 
-from gtfs_schematic.layout.guard import free_radii, repulsion
+from gtfs_schematic.layout.guard import free_radii, near_pairs, repulsion
 from gtfs_schematic.layout.plane import PlaneGraph
 from gtfs_schematic.layout.spread import spread
 from gtfs_schematic.layout.strokes import straightened
@@ -17,6 +17,13 @@ _PULL_TO_GROUND = 0.004
 centres open, but enough to hold far parts of the network where they belong."""
 
 _STEPS = 160
+_STILL = 1e-3
+"""Steps of a guarded move, and the longest move, in station spacings, at which it has ended."""
+
+_REACH = 2.0
+_SKIN = 1.0
+"""Distance up to which links are in a point's way, and what is added to find them less often."""
+
 _WANTED_CLEARANCE = 0.9
 """Distance, in station spacings, that a point wants from links that are not its own."""
 
@@ -135,13 +142,20 @@ def guarded_move(
     # Start at the targets' scale, so that the first steps are not all spent on shrinking.
     points = points * (np.ptp(targets, axis=0).max() / max(np.ptp(points, axis=0).max(), 1e-9))
     points = np.round(points + targets.mean(axis=0) - points.mean(axis=0), 9)
+    pairs, moved = near_pairs(points, segments, _REACH + _SKIN), 0.0
     for _ in range(_STEPS):
-        radii = free_radii(points, segments)
+        if moved > _SKIN / 2.0:
+            pairs, moved = near_pairs(points, segments, _REACH + _SKIN), 0.0
+        radii = free_radii(points, segments, pairs, _REACH)
         # Thin gaps shrink ever more slowly, so that many steps do not grind them to nothing.
         radii *= 0.45 * np.minimum(1.0, radii / _THIN)
-        push = repulsion(points, segments, _WANTED_CLEARANCE)
+        push = repulsion(points, segments, pairs, _WANTED_CLEARANCE)
         move = 0.2 * (targets - points) + 0.6 * push
         length = np.hypot(move[:, 0], move[:, 1])
         factor = np.minimum(1.0, radii / np.maximum(length, 1e-12))
         points = np.round(points + move * factor[:, None], 9)
+        longest = float((length * factor).max())
+        moved += longest
+        if longest < _STILL:
+            break
     return points

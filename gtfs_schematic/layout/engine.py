@@ -32,7 +32,7 @@ from gtfs_schematic.layout.fit import (
     pins_in_frame,
 )
 from gtfs_schematic.layout.forks import fork
-from gtfs_schematic.layout.improve import improve
+from gtfs_schematic.layout.improve import improve, tidy
 from gtfs_schematic.layout.model import (
     Clearances,
     Layout,
@@ -52,7 +52,7 @@ from gtfs_schematic.layout.turn import best_turn, turned
 from gtfs_schematic.network.model import Network
 from gtfs_schematic.progress import Progress, Silent
 
-_SWEEPS = {"quick": 2, "standard": 8, "thorough": 30}
+_SWEEPS = {"standard": 8, "thorough": 30}
 _OPENED = 0.25
 """Fidelity of the ground on which directions are chosen: dense places are open there. The knob
 then moves lengths and places alone; bends stay, and whatever it says the drawing can be made."""
@@ -136,7 +136,10 @@ def place(
     anchors = remembered(graph, anchors, previous or {})
     graph, anchors = fork(graph, anchors, 360 // settings.angles)
     board = _board(graph, anchors, settings, progress, remembers=bool(previous))
-    improve(board, _SWEEPS[settings.effort], progress)
+    if settings.effort == "quick":
+        tidy(board, progress)
+    else:
+        improve(board, _SWEEPS[settings.effort], progress)
     skeleton = skeleton_of(board)
     if are_limited(settings):
         # A limit needs a station that the programme of lengths can hold.

@@ -35,6 +35,33 @@ def improve(board: Board, sweeps: int, progress: Progress) -> None:
             break
 
 
+def tidy(board: Board, progress: Progress) -> None:
+    """Do the part of the same work that gains most: once over what bends, then rows into line."""
+    progress.phase("improving", 1)
+    for p in range(len(board.paths)):
+        if _bends(board, p):
+            _reroute(board, p)
+    for v in range(board.n):
+        if any(_bends(board, end // 2, end) for end in board.graph.rotation[v]):
+            for reach in (3, 1):
+                _move(board, [v], _around(max(1, reach * board.unit // 4)))
+    for row in _rows(board):
+        _move(board, row, _aligning(board, row))
+    progress.step()
+
+
+def _bends(board: Board, p: int, end: int | None = None) -> bool:
+    """Whether a piece bends, or its lines do at one of its ends."""
+    path = board.paths[p]
+    if path is None or not board.graph.pieces[p].lines:
+        return False
+    steps = np.diff(board.xy(path), axis=0)
+    return bool((steps != steps[0]).any()) or (
+        end is not None
+        and any(abs(board.ports[end] - board.ports[other]) != 4 for other, _, _ in board.turns[end])
+    )
+
+
 def _reroute(board: Board, p: int) -> int:
     """Give one piece its cheapest path past all others; returns the gain."""
     before = board.cost([p], [])

@@ -10,7 +10,7 @@ from scipy.optimize import linprog
 
 from gtfs_schematic.errors import InternalFaultError
 
-_ROUNDS = 3
+_ROUNDS = 2
 _MOST_REPAIRS = 30
 _POSITION_WEIGHT = 0.02
 
@@ -47,7 +47,7 @@ def spread(
     too near are added until none is left. Each round takes fresh directions from the new drawing.
     """
     for _ in range(_ROUNDS):
-        pairs = _near_pairs(points, segments, 2.5 * clearance)
+        pairs = _near_pairs(points, segments, 1.5 * clearance)
         for _ in range(_MOST_REPAIRS):
             moved = _solve(points, segments, wanted, clearance, pairs)
             fresh = _violated(moved, segments, 0.98 * clearance) - pairs

@@ -64,10 +64,11 @@ def straightened(
     """
     directions = np.zeros((len(graph.segments), 2))
     strictness = _STRICTNESS / max(1.0 - fidelity, 1e-6)
+    counts = _lines(graph)
     for segments, ahead in _strokes(graph, points):
         start, end = graph.segments[segments].T
         vectors = (points[end] - points[start]) * ahead[:, None]
-        lines = _lines(graph)[segments]
+        lines = counts[segments]
         chosen = _COMPASS[_directions(vectors, lines, strictness, stride)]
         units = np.column_stack([np.cos(chosen), np.sin(chosen)])
         directions[segments] = np.round(units * ahead[:, None], 12)
