@@ -21,6 +21,8 @@ Window = tuple[int, int, int, int]
 
 _PITCH_MM = 0.75
 _MOST_NODES = 2_000_000
+_COMMON_MM = 500.0
+"""Side of a square field from which on bends cost more, in proportion."""
 EDGE_MM = 10.0
 """So far beyond the field's edge shapes are carried on, to be cut off there."""
 _HEART = 0.55
@@ -64,6 +66,7 @@ def board_of(labelled: LabelledLayout) -> Board:
     area = float(np.prod(high - low + 2.0 * EDGE_MM))
     pitch = max(_PITCH_MM, (area / _MOST_NODES) ** 0.5)
     lattice = blank(low - EDGE_MM, high + EDGE_MM, pitch)
+    lattice.calm = max(1.0, float(np.prod(high - low)) ** 0.5 / _COMMON_MM)
     for number, piece in enumerate(planes.pieces, start=1):
         lay(lattice, number, piece.sheet, piece.half_mm)
     lattice.cost[:] = _NEAR * np.clip(1.0 - lattice.clear / _AIR_MM, 0.0, 1.0)
@@ -164,9 +167,11 @@ def explore(
     off = np.ones(shape, dtype=np.bool_)
     off[np.clip(steps[:, 1], 0, shape[0] - 1), np.clip(steps[:, 0], 0, shape[1] - 1)] = False
     away = ndimage.distance_transform_edt(off) * lattice.pitch
-    drawn = np.minimum(_AWAY * away**2, _MOST_AWAY).ravel()
+    drawn = np.minimum(_AWAY * (away / lattice.calm) ** 2, _MOST_AWAY).ravel()
     cost = drawn + lattice.cost[nodes_of(lattice, window)]
-    return sweep(lattice, cost.astype(np.float64), window, starts, door, until=until)
+    return sweep(
+        lattice, cost.astype(np.float64), window, starts, door, until=until, calm=board.calm
+    )
 
 
 def clamped(board: Board, points: Floats) -> Floats:

@@ -42,6 +42,8 @@ class Lattice:
     """Per node the distance to the nearest line's edge, millimetres; negative on it."""
     closed: NDArray[np.bool_]
     cost: NDArray[np.float32]
+    calm: float = 1.0
+    """How much more bends cost than on a common sheet: on a larger one steps are larger, too."""
 
     def at(self, nodes: NDArray[np.int64]) -> Floats:
         """Give the places of nodes, millimetres, y up, shape (n, 2)."""

@@ -78,7 +78,7 @@ def search(
     """
     legs: list[_Leg] = []
     for course, out in faces:
-        parts = _parts(course, corner_mm)
+        parts = _parts(course, board.lattice.calm * corner_mm)
         waiting: list[Floats] = []
         for k, part in enumerate(parts):
             whole = np.vstack([*waiting, part])
@@ -102,7 +102,7 @@ def search_stepwise(
     closed = board.lattice.closed
     before = closed.copy()
     legs: list[Ints] = []
-    *parts, rest = _parts(course, corner_mm)
+    *parts, rest = _parts(course, board.lattice.calm * corner_mm)
     for part in parts:
         leg = _by_spot(board, part, starts)
         if leg is None:

@@ -102,7 +102,7 @@ def sweep(
             window,
             starts,
             door,
-            BENDS,
+            lattice.calm * BENDS,
             (ON_LINE_MM, ON_LINE, SLANT),
             ends,
         )
