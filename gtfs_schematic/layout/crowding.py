@@ -113,7 +113,7 @@ def crowding(
     rows = [
         *_against_segments(skeleton, boxes, half_width + clear_mm),
         *_against_names(boxes, clear_mm),
-        *_against_stations(skeleton, boxes, part_wants),
+        *_against_stations(skeleton, boxes, part_wants, clear_mm),
     ]
     nodes = np.array([row[0] for row in rows], dtype=np.int64).reshape(-1, 4)
     shares = np.array([row[1] for row in rows]).reshape(-1, 4)
@@ -212,7 +212,7 @@ def _against_segments(skeleton: Skeleton, boxes: _Boxes, apart: Floats) -> list[
 
 
 def _against_stations(
-    skeleton: Skeleton, boxes: _Boxes, part_wants: Sequence[Floats]
+    skeleton: Skeleton, boxes: _Boxes, part_wants: Sequence[Floats], clear_mm: float
 ) -> list[_Row]:
     """Keep names that lie off their own station from others, so that they do not seem theirs."""
     stands = _stands(skeleton, part_wants)
@@ -226,7 +226,8 @@ def _against_stations(
     rows: list[_Row] = []
     for b, outline in enumerate(boxes.outlines):
         own = float(shapely.distance(shapely.polygons(outline), shapely.Point(0.0, 0.0)))
-        apart = _MARKER_MM + min(_AIR_SHARE * max(0.0, own - _MARKER_MM), _MOST_AIR_MM)
+        air = min(_AIR_SHARE * max(0.0, own - _MARKER_MM), _MOST_AIR_MM)
+        apart = _MARKER_MM + max(clear_mm, air)
         area = shapely.polygons(outline + boxes.at[b])
         for s in sorted(tree.query(area, "dwithin", distance=apart + 2.0).tolist()):
             same = np.abs(places[s] - boxes.at[b]).max() < _BESIDE_MM
