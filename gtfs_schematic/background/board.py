@@ -169,9 +169,7 @@ def explore(
     away = ndimage.distance_transform_edt(off) * lattice.pitch
     drawn = np.minimum(_AWAY * (away / lattice.calm) ** 2, _MOST_AWAY).ravel()
     cost = drawn + lattice.cost[nodes_of(lattice, window)]
-    return sweep(
-        lattice, cost.astype(np.float64), window, starts, door, until=until, calm=board.calm
-    )
+    return sweep(lattice, cost.astype(np.float64), window, starts, door, until=until)
 
 
 def clamped(board: Board, points: Floats) -> Floats:
