@@ -6,6 +6,7 @@ import itertools
 import json
 import math
 import re
+from dataclasses import replace
 from pathlib import Path
 
 import jsonschema
@@ -15,12 +16,14 @@ import shapely
 from shared_streets import write_feed
 
 from gtfs_schematic.bundles.check import faults as bundle_faults
+from gtfs_schematic.cli import inspect
 from gtfs_schematic.config import Settings
 from gtfs_schematic.drawing.listing import to_text
 from gtfs_schematic.drawing.svg import to_svg
 from gtfs_schematic.edition.adjusted import adjusted
 from gtfs_schematic.edition.adjustments import Adjustments
 from gtfs_schematic.edition.save import from_json, to_json
+from gtfs_schematic.network.between import link_towards, part_service_of
 from gtfs_schematic.network.check import faults
 from gtfs_schematic.network.export import to_geojson, to_graphml
 from gtfs_schematic.pipeline import Result, draw
@@ -156,3 +159,26 @@ def test_exports_show_junctions_as_what_they_are(result):
         network.junction
     )
     assert graph.number_of_edges() == len(network.links) + len(network.walks)
+
+
+def test_machines_are_told_links_from_station_to_station(result):
+    network = result.network
+    told = json.loads(inspect.to_json(network))
+    assert told["links"] == len(result.edition.links)
+    assert told["junctions"] == len(network.junctions)
+    for link in result.edition.links:
+        towards = link_towards(network, link.start, link.end)
+        assert link.start in (towards.start, towards.end)
+        assert set(link.lines) <= set(towards.lines)
+
+
+def test_part_service_is_told_from_station_to_station(result):
+    line = result.network.lines[0]
+    whole = [
+        (*sorted(step), "peak") for course in line.courses for step in itertools.pairwise(course)
+    ]
+    told = part_service_of(result.network, replace(line, part_service=tuple(sorted(whole))))
+    assert told == tuple(
+        (k.start, k.end, "peak") for k in result.edition.links if line.id in k.lines
+    )
+    assert part_service_of(result.network, line) == ()

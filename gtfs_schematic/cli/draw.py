@@ -87,6 +87,8 @@ def to_json(
     result: Result, out: Path, files: Mapping[str, bytes], limits: Sequence[LimitResult]
 ) -> bytes:
     """Write what was drawn, for machines."""
+    from gtfs_schematic.network.between import from_station_to_station
+
     network = result.network
     document = {
         "out": str(out),
@@ -95,7 +97,7 @@ def to_json(
         "lines": len(network.lines),
         "stations": len(network.stations),
         "interchange_groups": network.groups,
-        "links": len(network.links),
+        "links": len(from_station_to_station(network)),
         "left_out": len(network.left_out),
         "findings": len(network.findings),
         "names_without_place": list(result.labelled.unplaced),

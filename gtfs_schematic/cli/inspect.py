@@ -80,6 +80,8 @@ def inspect(
 
 def to_json(network: Network) -> bytes:
     """Write what a feed holds, for machines."""
+    from gtfs_schematic.network.between import from_station_to_station, part_service_of
+
     document = {
         "service_date": network.info.service_date,
         "service_reason": network.info.service_reason,
@@ -103,14 +105,15 @@ def to_json(network: Network) -> bytes:
                 "periods": [asdict(period) for period in line.periods],
                 "part_service": [
                     {"from": start, "to": end, "service": service}
-                    for start, end, service in line.part_service
+                    for start, end, service in part_service_of(network, line)
                 ],
             }
             for line in network.lines
         ],
         "stations": len(network.stations),
         "interchange_groups": network.groups,
-        "links": len(network.links),
+        "links": len(from_station_to_station(network)),
+        "junctions": len(network.junctions),
         "left_out": [asdict(item) for item in network.left_out],
         "findings": [asdict(finding) for finding in network.findings],
         "suggestions": advice.suggestions(network),

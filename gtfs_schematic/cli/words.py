@@ -44,9 +44,12 @@ def service_date(info: FeedInfo) -> str:
 
 def size(network: Network) -> str:
     """Say how much a network holds."""
+    from gtfs_schematic.network.between import from_station_to_station
+
+    links = len(from_station_to_station(network))
     return (
         f"{count(len(network.lines), 'line')}, {count(len(network.stations), 'station')} in "
-        f"{count(network.groups, 'interchange group')}, {count(len(network.links), 'link')}, "
+        f"{count(network.groups, 'interchange group')}, {count(links, 'link')}, "
         f"{count(len(network.walks), 'walk')}"
     )
 

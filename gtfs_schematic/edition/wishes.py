@@ -14,6 +14,7 @@ from gtfs_schematic.edition.contradictions import (
 from gtfs_schematic.errors import UsageError
 from gtfs_schematic.geometry import Point
 from gtfs_schematic.labels.model import Side
+from gtfs_schematic.network.between import link_towards
 from gtfs_schematic.network.model import Network
 
 Offset = tuple[str, float | None, float | None]
@@ -137,7 +138,7 @@ class Asked:
         ends = [self._station(key, where) for key in told.between]
         if ends[0] is None or ends[1] is None:
             return
-        link = self._network.link_between.get(frozenset((ends[0], ends[1])))
+        link = link_towards(self._network, ends[0], ends[1])
         if link is None:
             stale.append((where, f"no link joins {told.between[0]} and {told.between[1]}"))
             return

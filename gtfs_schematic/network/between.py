@@ -8,7 +8,7 @@ from collections.abc import Collection, Container, Iterable, Mapping, Sequence
 from dataclasses import dataclass
 
 from gtfs_schematic.network.links import link_id
-from gtfs_schematic.network.model import Network
+from gtfs_schematic.network.model import Line, Link, Network, ServicePattern
 from gtfs_schematic.network.patterns import Ids
 
 _PARTS = 3
@@ -52,6 +52,30 @@ def from_station_to_station(network: Network) -> tuple[Between, ...]:
         for way, ids in lines.items()
     ]
     return tuple(sorted(ways, key=lambda way: (way.id, way.via)))
+
+
+def link_towards(network: Network, start: str, end: str) -> Link | None:
+    """Give the link between two neighbouring stations, or the first on the way over junctions."""
+    link = network.link_between.get(frozenset((start, end)))
+    if link is not None or not network.junctions:
+        return link
+    ways = (w for w in from_station_to_station(network) if {w.start, w.end} == {start, end})
+    way = next(ways, None)
+    return None if way is None else network.link[way.links[0 if way.start == start else -1]]
+
+
+def part_service_of(network: Network, line: Line) -> tuple[tuple[str, str, ServicePattern], ...]:
+    """Give the part service of a line from station to station; see `Line.part_service`."""
+    service = {frozenset((start, end)): part for start, end, part in line.part_service}
+    found: list[tuple[str, str, ServicePattern]] = []
+    for way in from_station_to_station(network) if service else ():
+        steps = map(frozenset, itertools.pairwise((way.start, *way.via, way.end)))
+        parts = {service.get(step) for step in steps}
+        # Where more runs on a part of the way, that is by other patterns of the line.
+        some: list[ServicePattern] = sorted(part for part in parts if part is not None)
+        if some and line.id in way.lines:
+            found.append((way.start, way.end, some[0]))
+    return tuple(found)
 
 
 def cut_at_stations(course: Sequence[str], junctions: Container[str]) -> list[Ids]:
