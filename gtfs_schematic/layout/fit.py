@@ -42,9 +42,9 @@ _BROKEN_SHARE = 0.7
 """Share of its width that a name takes when it may be broken into rows."""
 _WIDEST_ROOM_MM = 25.0
 
-_CORNER = 0.85
-"""Length that two 45-degree corners of one radius take of the segment between them:
-2 tan(22.5°) of that radius."""
+_CORNER = {45: 0.85, 90: 2.0}
+"""By the angle of corners the length that two of one radius take of the segment between them:
+2 tan(22.5°) and 2 tan(45°) of that radius."""
 
 
 @dataclass(frozen=True)
@@ -106,7 +106,8 @@ def wants_of(
     lines = lines[owner]
     half = np.array([clearances.half_width_mm(len(piece.lines)) for piece in graph.pieces])[owner]
     jog = skeleton.jogs
-    shortest: NDArray[np.float64] = np.where(jog, 0.0, _CORNER * (clearances.marker_mm + half))
+    corner = _CORNER[sizes.settings.angles]
+    shortest: NDArray[np.float64] = np.where(jog, 0.0, corner * (clearances.marker_mm + half))
     weight = 1.0 / np.sqrt(np.maximum(spans, 0.3))
     return Wants(
         least=np.round(shortest, 6),

@@ -104,3 +104,11 @@ def test_other_angles_are_refused():
 @given(st.integers(0, 10**6), st.integers(3, 7), st.integers(2, 7), st.integers(3, 10))
 def test_wandering_lines(seed: int, side: int, lines: int, length: int):
     laid(wandering_network(seed, side, lines, length))
+
+
+def test_a_wide_bundle_has_room_for_its_corners():
+    places = {"A": (0, 0), "B": (1, 0.9), "C": (1.2, 2.0), "D": (0.3, 2.2), "E": (0.0, 1.0)}
+    network = network_of(places, ["ABCDE"] * 5 + ["ABC", "CDE"])
+    # The check of the bundles is an error if inner lines are pinched out of a corner.
+    labelled = labelled_anew(network, Settings(layout=RIGHT), {}, Silent())
+    assert labelled.bundled.layout.angles == 90
