@@ -85,7 +85,7 @@ def _on_sheet(
         scale *= grown
         skeleton, points, pairs = settled(skeleton, sizes, scale, box, pairs, grown)
         skeleton = dataclasses.replace(skeleton, points=points)
-    if not sizes.pinned and not sizes.settings.drift_limit_mm:
+    if not (sizes.pinned or sizes.relative or sizes.settings.drift_limit_mm):
         larger = _magnified(points, box, _LOOSEST * spacing / scale)
         points, scale = points * larger, scale * larger
     return dataclasses.replace(skeleton, points=points), frame, scale
