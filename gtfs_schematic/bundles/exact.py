@@ -63,9 +63,13 @@ class ComponentModel:
         """Minimise crossings, keep the best order found, and give a bound at least as good."""
         self.model.add(self.crossings >= bound)
         self.model.minimize(self.crossings)
+        start = {chain: list(order) for chain, order in self.orders.items()}
         solver, found = self._solve(work)
         if not found:
             return bound
+        if self.problem.kept and self._count(start) <= round(solver.objective_value):
+            # As good, and as it stood: the second solve may not get back there.
+            self.orders = start
         self.model.add(self.crossings <= round(solver.objective_value))
         return max(bound, math.ceil(solver.best_objective_bound - 1e-6))
 
@@ -131,6 +135,22 @@ class ComponentModel:
         for p, q in ((first, second), (~first, ~second)):
             self.model.add_bool_or(~p, ~q if twist.same else q, swap)
         return swap
+
+    def _count(self, orders: dict[int, list[int]]) -> int:
+        """Count the crossings of orders of the component's chains."""
+        leans = sum(
+            cost[0] if left_of(orders, pair) else cost[1]
+            for pair, cost in self.problem.leans.items()
+            if pair[0] in orders
+        )
+        return leans + sum(
+            twist.weight
+            * twist.crosses(
+                left_of(orders, (twist.first, twist.a, twist.b)),
+                left_of(orders, (twist.second, twist.a, twist.b)),
+            )
+            for twist in self.twists
+        )
 
     def _exchanged(self) -> cp_model.LinearExpr:
         """Count the pairs of lines that change places with an earlier drawing."""

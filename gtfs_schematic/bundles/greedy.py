@@ -184,3 +184,18 @@ def _reinsert(order: list[int], team: int, gain: Mapping[tuple[int, int], int]) 
         return False
     order[:] = [*rest[:best], team, *rest[best:]]
     return True
+
+
+def as_before(problem: OrderProblem, orders: Orders) -> Orders:
+    """Give orders in which teams stand as in the earlier drawing, where that knew them."""
+    found: Orders = []
+    for index, order in enumerate(orders):
+        wins = dict.fromkeys(order, 0)
+        for i, a in enumerate(order):
+            for b in order[i + 1 :]:
+                low, high = min(a, b), max(a, b)
+                if_left, if_right = problem.kept.get((index, low, high), (0, 0))
+                low_wins = if_left < if_right if if_left != if_right else low == a
+                wins[low if low_wins else high] += 1
+        found.append(sorted(order, key=lambda team: (-wins[team], order.index(team))))
+    return found

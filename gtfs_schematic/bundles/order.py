@@ -10,7 +10,13 @@ from dataclasses import dataclass
 import networkx as nx
 
 from gtfs_schematic.bundles.exact import ComponentModel
-from gtfs_schematic.bundles.greedy import Orders, count_crossings, order_greedily, order_pairs
+from gtfs_schematic.bundles.greedy import (
+    Orders,
+    as_before,
+    count_crossings,
+    order_greedily,
+    order_pairs,
+)
 from gtfs_schematic.bundles.problem import OrderProblem, state_problem
 from gtfs_schematic.layout.model import Layout
 from gtfs_schematic.progress import Progress, Silent
@@ -49,6 +55,10 @@ def order_lines(
     problem = state_problem(layout, wanted, previous)
     bounds, left = order_pairs(problem)
     orders = order_greedily(problem, left)
+    if problem.kept:
+        orders = min(
+            as_before(problem, orders), orders, key=lambda each: count_crossings(problem, each)
+        )
     components = _components(problem)
     progress.phase("ordering lines", len(components))
     proven = problem.fixed
