@@ -17,6 +17,7 @@ from gtfs_schematic.edition.adjustments import adjustments_of
 from gtfs_schematic.edition.folder import Beside
 from gtfs_schematic.edition.identity import match_edition
 from gtfs_schematic.edition.model import Edition
+from gtfs_schematic.edition.ratchet import RevisionSettings, advice
 from gtfs_schematic.edition.state import from_json
 from gtfs_schematic.layout.check import faults
 from gtfs_schematic.revision import Revision, files_of_revision, revise
@@ -56,6 +57,46 @@ def test_an_unchanged_feed_gives_the_same_drawing_and_no_change(before: Edition)
     assert new.links == old.links
     sides = [a.label_side == b.label_side for a, b in zip(new.stations, old.stations, strict=True)]
     assert sum(sides) >= 0.95 * len(sides)
+
+
+@pytest.fixture(scope="module")
+def beside(drawn: pipeline.Result) -> Beside:
+    return Beside(state=from_json(drawn.state, drawn.edition))
+
+
+def test_an_unchanged_feed_gives_the_same_diagram_to_the_byte(drawn, beside: Beside):
+    again = revise(drawn.edition, BEFORE, SETTINGS, beside=beside)
+    assert pipeline.files_of(again.result)["diagram.svg"] == pipeline.files_of(drawn)["diagram.svg"]
+
+
+def test_permuted_ids_give_the_same_diagram(drawn, beside: Beside, tmp_path):
+    shuffled = tmp_path / "shuffled.zip"
+    _shuffle_ids(BEFORE, shuffled)
+    again = revise(drawn.edition, shuffled, SETTINGS, beside=beside)
+    assert again.result.layout.positions == drawn.layout.positions
+    assert again.result.bundled.orders == drawn.bundled.orders
+    assert again.result.labelled.labels == drawn.labelled.labels
+
+
+def test_there_and_back_leaves_what_was_never_gone_in_its_place(drawn, beside: Beside):
+    there = revise(drawn.edition, AFTER, SETTINGS, beside=beside).result
+    kept = Beside(state=from_json(there.state, there.edition))
+    back = revise(there.edition, BEFORE, SETTINGS, beside=kept).result
+    first, last = drawn.edition, back.edition
+    assert set(first.places) == set(last.places)
+    stood = set(first.places) & set(there.edition.places)
+    assert {key: last.places[key] for key in stood} == {key: first.places[key] for key in stood}
+    orders = {k.id: k.lines for k in first.drawn}
+    assert all(orders[k.id] == k.lines for k in last.drawn if k.id in orders)
+
+
+def test_a_limit_on_the_growth_of_drift_is_told(drawn, beside: Beside):
+    tight = SETTINGS.model_copy(update={"revision": RevisionSettings(most_drift_growth=1e-9)})
+    evened = tight.model_copy(update={"revision": RevisionSettings(relax=1.0)})
+    drifts = revise(drawn.edition, AFTER, evened, beside=beside).result.edition.drifts
+    assert [each.service_date for each in drifts] == ["2026-03-02", "2026-06-29"]
+    assert drifts[0].residual == pytest.approx(drawn.drift.north_up.residual, abs=1e-6)
+    assert bool(advice(drifts, tight.revision)) == (drifts[1].residual > drifts[0].residual)
 
 
 def test_what_stands_keeps_its_place(before: Edition, revision: Revision):
