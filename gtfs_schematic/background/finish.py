@@ -58,6 +58,8 @@ def finished(
         whole = shapely.LineString(lines[0])
     rings = []
     for part in shapely.get_parts(shapely.intersection(whole, box)):
+        if part.is_empty:
+            continue
         if part.geom_type == "Polygon":
             # Holes run the other way round, so that every way of filling leaves them out.
             turned = shapely.orient_polygons(part)
