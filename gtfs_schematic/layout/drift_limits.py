@@ -60,7 +60,17 @@ class DriftLimits:
         most = np.minimum(self.limit_m / 1000.0 * scale, self.limit_mm)
         return np.asarray((away @ _NORMALS.T).max(axis=1) + _MARGIN_MM - _INNER * most)
 
-    def written(self, i: int, names: tuple[str | None, ...]) -> str:
+    def said(self, found: tuple[int, ...], names: tuple[str | None, ...], pins: str) -> str:
+        """Say that the limits of some stations collide, by their numbers in `stations`."""
+        those = ", ".join(self._written(i, names) for i in found)
+        return (
+            f"{'This drift limit' if len(found) == 1 else 'Together these drift limits'} cannot be "
+            "kept with every line in the directions of the diagram, all distances kept"
+            f"{pins}: {those}. If one of them were higher the others could hold. Raise one, raise "
+            "the fidelity, allow a larger sheet, or draw fewer lines."
+        )
+
+    def _written(self, i: int, names: tuple[str | None, ...]) -> str:
         """Name a station with its limits."""
         limits = [
             f"{limit:g} {unit}"
@@ -91,7 +101,9 @@ def limits_of(graph: PlaneGraph, settings: LayoutSettings) -> DriftLimits | None
     """Give the limits of a graph all stations of which are vertices; None if there are none."""
     if not are_limited(settings):
         return None
-    stations = np.array([v for v, s in enumerate(graph.station_of) if s and s not in graph.junctions])
+    stations = np.array(
+        [v for v, s in enumerate(graph.station_of) if s and s not in graph.junctions]
+    )
     names = [graph.station_of[v] or "" for v in stations]
     ground = graph.points[stations] / 1000.0
     metres = [settings.drift_limits_m.get(name, settings.drift_limit_m) for name in names]

@@ -106,8 +106,7 @@ def wants_of(
     lines = lines[owner]
     half = np.array([clearances.half_width_mm(len(piece.lines)) for piece in graph.pieces])[owner]
     jog = skeleton.jogs
-    corner = _CORNER[sizes.settings.angles]
-    shortest: NDArray[np.float64] = np.where(jog, 0.0, corner * (clearances.marker_mm + half))
+    shortest: NDArray[np.float64] = np.where(jog, 0.0, _corners(sizes, half))
     weight = 1.0 / np.sqrt(np.maximum(spans, 0.3))
     return Wants(
         least=np.round(shortest, 6),
@@ -137,8 +136,9 @@ def _anchors(
 ) -> NDArray[np.float64]:
     """Lay the anchors over the drawing that is to grow; to scale where there is none yet.
 
-    Only how stations stand to each other is true or not, so the anchors are spread as far as the
-    drawing is on the whole, about the middle of the box, or of the pins.
+    Only how stations stand to each other is true or not, so the middle of the anchors is that
+    of the drawing, or of the pins, and their mean distance from it the drawing's, unless they
+    would take more room than the box has.
     """
     if box is None:
         return np.asarray((sizes.anchors - sizes.anchors.min(axis=0)) * scale_mm)
@@ -146,12 +146,19 @@ def _anchors(
     places = skeleton.points[: len(anchors)]
     middle = places.mean(axis=0)
     spread = np.sqrt(((places - middle) ** 2).sum() / max(float((anchors**2).sum()), 1e-9))
-    laid = anchors * float(spread) * grown
+    most = np.sqrt(np.prod(np.asarray(box) / np.maximum(np.ptp(anchors, axis=0), 1e-3)))
+    laid = anchors * min(float(spread) * grown, float(most)) + middle * grown
     if sizes.pinned:
         laid += np.mean([sizes.pinned[v] - laid[v] for v in sorted(sizes.pinned)], axis=0)
     else:
-        laid += (np.asarray(box) - laid.min(axis=0) - laid.max(axis=0)) / 2.0
+        laid += np.maximum(0.0, -laid.min(axis=0))
+        laid -= np.maximum(0.0, laid.max(axis=0) - np.asarray(box))
     return np.asarray(np.round(laid, 6))
+
+
+def _corners(sizes: Sizes, half: NDArray[np.float64]) -> NDArray[np.float64]:
+    """Least length of a segment between two corners of bundles so wide to each side."""
+    return _CORNER[sizes.settings.angles] * (sizes.clearances.marker_mm + half)
 
 
 def pins_in_frame(

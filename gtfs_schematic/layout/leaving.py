@@ -29,8 +29,8 @@ def bearings(paths: Sequence[Sequence[Point]]) -> list[float]:
     for k, bearing in enumerate(first):
         together = [i for i, other in enumerate(first) if abs(other - bearing) < _APART]
         if len(together) > 1:
-            together.sort(key=cmp_to_key(lambda i, j: _side(ways[i], ways[j])))
-            found[k] = bearing + _APART * (together.index(k) + 1)
+            order = sorted((ways[i] for i in together), key=cmp_to_key(_side))
+            found[k] = bearing + _APART * (order.index(ways[k]) + 1)
     return found
 
 

@@ -91,8 +91,8 @@ def revise_layout(
         return None
     wanted = pins or {}
     for found in _drafts(draft, standing, old, wanted, even):
-        as_it_was = {"rotation_deg": standing.rotation_deg, "angles": standing.angles}
-        layout = replace(found.layout(), **as_it_was)
+        turn, angles = standing.rotation_deg, standing.angles
+        layout = replace(found.layout(), rotation_deg=turn, angles=angles)
         if not check.faults(layout, clearances, wanted):
             return Revised(layout, _moved(found, standing, wanted, _outside(draft)))
     return None

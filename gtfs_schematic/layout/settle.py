@@ -321,17 +321,8 @@ def _missed_limits(
         except LayoutError:
             return None
 
-    names = skeleton.graph.station_of
-    found = colliding(limits, solve)
-    those = ", ".join(limits.written(i, names) for i in found)
     pins = ", the pins where they are" if wants.pinned or wants.relative else ""
-    return (
-        f"{'This drift limit' if len(found) == 1 else 'Together these drift limits'} cannot be "
-        "kept with every line in the directions of the diagram, all distances kept"
-        f"{pins}: {those}. "
-        "If one of them were higher the others could hold. Raise one, raise the fidelity, allow a "
-        "larger sheet, or draw fewer lines."
-    )
+    return limits.said(colliding(limits, solve), skeleton.graph.station_of, pins)
 
 
 def _cost(runs: Runs, columns: Columns, wants: Wants, *, loosened: bool) -> NDArray[np.float64]:
