@@ -136,9 +136,8 @@ def _anchors(
 ) -> NDArray[np.float64]:
     """Lay the anchors over the drawing that is to grow; to scale where there is none yet.
 
-    Only how stations stand to each other is true or not, so the middle of the anchors is that
-    of the drawing, or of the pins, and their mean distance from it the drawing's, unless they
-    would take more room than the box has.
+    Only how stations stand to each other is true or not, so the anchors are spread as far as the
+    drawing is on the whole, about the middle of the box, or of the pins.
     """
     if box is None:
         return np.asarray((sizes.anchors - sizes.anchors.min(axis=0)) * scale_mm)
@@ -146,13 +145,11 @@ def _anchors(
     places = skeleton.points[: len(anchors)]
     middle = places.mean(axis=0)
     spread = np.sqrt(((places - middle) ** 2).sum() / max(float((anchors**2).sum()), 1e-9))
-    most = np.sqrt(np.prod(np.asarray(box) / np.maximum(np.ptp(anchors, axis=0), 1e-3)))
-    laid = anchors * min(float(spread) * grown, float(most)) + middle * grown
+    laid = anchors * float(spread) * grown
     if sizes.pinned:
         laid += np.mean([sizes.pinned[v] - laid[v] for v in sorted(sizes.pinned)], axis=0)
     else:
-        laid += np.maximum(0.0, -laid.min(axis=0))
-        laid -= np.maximum(0.0, laid.max(axis=0) - np.asarray(box))
+        laid += (np.asarray(box) - laid.min(axis=0) - laid.max(axis=0)) / 2.0
     return np.asarray(np.round(laid, 6))
 
 
