@@ -159,7 +159,17 @@ def test_functions_are_short():
 
 
 def test_every_room_has_its_check():
-    rooms = {"feed", "network", "layout", "bundles", "labels", "background", "drawing", "drift", "edition"}
+    rooms = {
+        "feed",
+        "network",
+        "layout",
+        "bundles",
+        "labels",
+        "background",
+        "drawing",
+        "drift",
+        "edition",
+    }
     for room in sorted(rooms):
         module = importlib.import_module(f"gtfs_schematic.{room}.check")
         assert callable(module.faults)

@@ -93,12 +93,7 @@ def wants_of(
     goal[walk] = np.maximum(least[walk], _WALK_SHARE * scale_mm)
     if not tight:
         least = np.maximum(least, _wished_least(graph, sizes))
-    wish = np.array(
-        [
-            sum(p.share * sizes.link_wishes.get(p.owner, 0.0) for p in piece.parts)
-            for piece in graph.pieces
-        ]
-    )
+    wish = _wished(graph, sizes)
     asked = wish > goal
     goal = np.maximum(goal, wish)
     spans = np.array([piece.spans for piece in graph.pieces])
@@ -124,6 +119,14 @@ def wants_of(
         jogs=np.where(jog, 3.0 * lines, 0.0),
         spread=2.0 if tight else 0.0,
         crowding=_crowding(skeleton, sizes, half),
+    )
+
+
+def _wished(graph: PlaneGraph, sizes: Sizes) -> NDArray[np.float64]:
+    """Give the length that later stages wish for each piece, millimetres."""
+    wishes = sizes.link_wishes
+    return np.array(
+        [sum(p.share * wishes.get(p.owner, 0.0) for p in piece.parts) for piece in graph.pieces]
     )
 
 

@@ -1,7 +1,7 @@
 """Fork a vertex with more pieces than directions: neighbouring pieces leave it together.
 
 A stem leads from the vertex to a fork a short way off, where the pieces part. The cyclic order
-stays. METHODS of grid-graph routing know no vertex of more pieces than ports (Bast, Brosi and
+stays. Published grid-graph routing knows no vertex of more pieces than ports (Bast, Brosi and
 Storandt 2020): such vertices must be split.
 """
 

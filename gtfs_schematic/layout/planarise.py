@@ -25,8 +25,8 @@ _JUNCTION_SHARE = 0.6
 def planarise(network: Network, keep: Collection[str] = ()) -> PlaneGraph:
     """Draw the network with straight links on the ground and put vertices where they cross.
 
-    Vertices are the stations and junctions at which corridors or walks end, and the crossings. A corridor
-    that would join two vertices a second time, or a vertex to itself, keeps stations as
+    Vertices are the stations and junctions at which corridors or walks end, and the crossings. A
+    corridor that would join two vertices a second time, or a vertex to itself, keeps stations as
     vertices until the graph is simple where it can be; so do the stations to `keep`.
     """
     ids = [node.id for node in network.nodes]
