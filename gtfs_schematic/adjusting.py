@@ -134,7 +134,11 @@ def adjust_edition(
     edition = replace(
         edition,
         adjustments=plain(adjustments),
-        findings=(*edition.findings, *unshown(state.marks, shown), *map(sentence, missed)),
+        findings=(
+            *edition.findings,
+            *unshown(state.marks, shown, labelled.labels),
+            *map(sentence, missed),
+        ),
     )
     must_be_sound("edition", edition_check.faults(edition))
     drift = _drift(before, edition, state, settings)

@@ -191,7 +191,7 @@ def finish(
         edition_of(labelled, sheet_title(network, settings.drawing), timing, codes),
         settings=settings.model_dump(mode="json", exclude_defaults=True),
     )
-    for text in unshown(marks, shown):
+    for text in unshown(marks, shown, labelled.labels):
         progress.note(text)
         edition = replace(edition, findings=(*edition.findings, text))
     must_be_sound("edition", edition_check.faults(edition))

@@ -101,14 +101,23 @@ def with_room(marks: Marks, labelled: LabelledLayout) -> Marks:
     return replace(marks, closed=tuple(found))
 
 
-def unshown(wanted: Marks, shown: Marks) -> tuple[str, ...]:
-    """Say which closed stations found their place taken."""
+def unshown(wanted: Marks, shown: Marks, labels: Mapping[str, Label]) -> tuple[str, ...]:
+    """Say which closed stations found their place taken, and which names stand without their mark.
+
+    `labels` are the names as they are drawn, by station id.
+    """
     ids = {each.id for each in shown.closed}
-    return tuple(
+    taken = tuple(
         f"note: closed station {each.name} ({each.id}) is not shown: its place is taken"
         for each in wanted.closed
         if each.id not in ids
     )
+    bare = tuple(
+        f"note: station {key}: no room for {text!r} at its name; its title in the SVG says it"
+        for key, text in sorted(wanted.stations.items())
+        if key not in labels or text not in " ".join(row.text for row in labels[key].lines)
+    )
+    return taken + bare
 
 
 def closed_groups(

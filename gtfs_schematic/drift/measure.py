@@ -18,6 +18,7 @@ from gtfs_schematic.drift.lookalikes import Places, false_neighbors, hidden_walk
 from gtfs_schematic.drift.model import DriftReport, DriftSettings, Fit, StationDrift
 from gtfs_schematic.drift.placed import Diagram, PlacedLink, PlacedStation
 from gtfs_schematic.drift.rides import typical_length
+from gtfs_schematic.drift.rounded import rounded
 from gtfs_schematic.drift.summary import summary_of
 from gtfs_schematic.drift.warp import AffineField, local_scales, warp_of
 from gtfs_schematic.errors import EditionError
@@ -46,17 +47,19 @@ def measure_edition(edition: Diagram, settings: DriftSettings | None = None) -> 
     report = measure(edition.stations, edition.links, settings)
     known = [link for link in report.links if link.length_ratio is not None]
     if not known:
-        return report
+        return rounded(report)
     ground, sheet = _places(edition.stations)
     scale = float(np.median([link.drawn_length_mm / link.true_length_m for link in known]))
     places = Places(ground, sheet, scale)
-    return replace(
-        report,
-        typical_link_mm=typical_length(edition.links),
-        false_neighbors=false_neighbors(edition, places, settings),
-        hidden_walks=hidden_walks(edition, places, settings),
-        competing=competing_routes(edition, places, settings),
-        journeys=measure_journeys(edition, settings),
+    return rounded(
+        replace(
+            report,
+            typical_link_mm=typical_length(edition.links),
+            false_neighbors=false_neighbors(edition, places, settings),
+            hidden_walks=hidden_walks(edition, places, settings),
+            competing=competing_routes(edition, places, settings),
+            journeys=measure_journeys(edition, settings),
+        )
     )
 
 

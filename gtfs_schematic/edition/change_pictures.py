@@ -83,10 +83,16 @@ def box_of(sheets: Sheets, places: Sequence[str]) -> Box | None:
     if not points:
         return None
     xs, ys = zip(*points, strict=True)
+    both = (sheets.before, sheets.after)
     spans = []
-    for low, high in ((min(xs), max(xs)), (min(ys), max(ys))):
+    for low, high, most in (
+        (min(xs), max(xs), min(edition.width_mm for edition in both)),
+        (min(ys), max(ys), min(edition.height_mm for edition in both)),
+    ):
         length = max(high - low + 2.0 * _AROUND_MM, _LEAST_MM)
-        spans.append(((low + high - length) / 2.0, length))
+        middle = (low + high - length) / 2.0
+        # At the sheet's edge there is nothing beyond to show.
+        spans.append((max(min(middle, most - length), 0.0), length))
     (left, width), (top, height) = spans
     return left, top, width, height
 

@@ -31,6 +31,7 @@ FILES = (
     "diagram.pdf",
     "diagram.txt",
     EDITION_FILE,
+    STATE_FILE,
     "drift.json",
     "drift.csv",
     "drift.html",
@@ -43,7 +44,6 @@ FILES_IF_WANTED = (
     "changes.pdf",
     "changes.csv",
     "changes.json",
-    STATE_FILE,
 )
 """What it may hold beside, and nothing else."""
 

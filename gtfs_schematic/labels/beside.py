@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+import math
+from collections.abc import Iterable, Mapping, Sequence
+from dataclasses import replace
 
 import numpy as np
 import shapely
@@ -49,7 +51,41 @@ def place_beside(
         is free of lines and markers, and is what a person wants.
     badges
         Names along lines that stand; those that a name comes over go. None: placed anew.
+
+    Returns
+    -------
+    LabelledLayout
+        A name that finds no place with the remark on it stands without, as do names near it.
     """
+    found = _placed(bundled, settings, standing, badges)
+    # A remark may stand in the way of another name, too: the nearest go first.
+    given_up = 0
+    while found.unplaced and given_up < len(settings.remarks):
+        given_up = max(len(set(found.unplaced) & set(settings.remarks)), 2 * given_up, 1)
+        kept = _by_distance(bundled, found.unplaced, settings.remarks)[given_up:]
+        remarks = {key: settings.remarks[key] for key in sorted(kept)}
+        bare = settings.model_copy(update={"remarks": remarks})
+        found = replace(_placed(bundled, bare, standing, badges), settings=settings)
+    return found
+
+
+def _by_distance(bundled: BundledLayout, lost: Sequence[str], stations: Iterable[str]) -> list[str]:
+    """Give stations by their distance from the nearest of those lost, the nearest first."""
+    at = bundled.layout.positions
+    away = {
+        key: round(min(math.dist(at[key], at[other]) for other in lost), 2)
+        for key in stations
+        if key in at
+    }
+    return sorted(away, key=lambda key: (away[key], key))
+
+
+def _placed(
+    bundled: BundledLayout,
+    settings: LabelSettings,
+    standing: Mapping[str, Label],
+    badges: Sequence[RunBadge] | None,
+) -> LabelledLayout:
     sites = sites_of(bundled, settings)
     obstacles = obstacles_of(bundled, settings)
     kept = _still_good(sites, obstacles, settings, standing)

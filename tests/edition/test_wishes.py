@@ -40,15 +40,18 @@ def plain() -> Result:
 
 @pytest.fixture(scope="module")
 def bent(plain: Result) -> tuple[str, str, str, str]:
-    """Give a line, a station of its own, and the neighbors between which it turns there."""
-    return next(
-        (line.id, here, a, b)
-        for line in plain.network.lines
-        for course in line.courses
-        for a, here, b in zip(course, course[1:], course[2:], strict=False)
-        if len(plain.network.station[here].lines) == 1
-        and (way(plain, here, a) - way(plain, here, b)) % 8 != 4
-        and sum(course.count(here) for course in line.courses) == 1
+    """Give a line, a station with few others, and the neighbors between which it turns there."""
+    lines_at = {station.id: len(station.lines) for station in plain.network.stations}
+    return min(
+        (
+            (line.id, here, a, b)
+            for line in plain.network.lines
+            for course in line.courses
+            for a, here, b in zip(course, course[1:], course[2:], strict=False)
+            if (way(plain, here, a) - way(plain, here, b)) % 8 != 4
+            and sum(course.count(here) for course in line.courses) == 1
+        ),
+        key=lambda turn: (lines_at[turn[1]], turn),
     )
 
 

@@ -11,6 +11,7 @@ from gtfs_schematic import pipeline
 from gtfs_schematic.labels.beside import place_beside
 from gtfs_schematic.labels.check import faults
 from gtfs_schematic.labels.model import LabelledLayout, LabelSettings
+from gtfs_schematic.labels.place import place_labels
 
 QUICK = pipeline.Settings.model_validate({"layout": {"effort": "quick"}})
 
@@ -39,7 +40,8 @@ def test_those_without_a_place_find_one_and_the_others_stay(drawn, seed):
 
 @pytest.mark.parametrize("side", ["E", "W", "N", "S", "NE", "SW"])
 def test_a_wished_side_is_given_where_others_can_make_room(drawn, side):
-    met = 0
+    """At least as often as when all names are placed anew, which takes far longer."""
+    met = anew = 0
     keys = sorted(drawn.labels)[::12]
     for key in keys:
         wishes = LabelSettings(sides={key: side})
@@ -47,7 +49,9 @@ def test_a_wished_side_is_given_where_others_can_make_room(drawn, side):
         assert faults(again) == ()
         assert again.unplaced == ()
         met += again.labels[key].side == side
-    assert met >= len(keys) / 2
+        fresh = place_labels(drawn.bundled, wishes)
+        anew += not fresh.unplaced and fresh.labels[key].side == side
+    assert met >= max(anew, 1)
 
 
 def test_what_stands_in_a_line_or_in_another_name_looks_for_a_place(drawn):
