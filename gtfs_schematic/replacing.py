@@ -20,10 +20,11 @@ from gtfs_schematic.edition.model import Edition
 from gtfs_schematic.edition.unmet import unmet_places
 from gtfs_schematic.edition.wishes import WAYS, Wishes, passes_of
 from gtfs_schematic.errors import LayoutError, must_be_sound
+from gtfs_schematic.following import shifted
 from gtfs_schematic.geometry import Point
 from gtfs_schematic.labels import check as labels_check
 from gtfs_schematic.labels.beside import place_beside
-from gtfs_schematic.labels.model import Label, LabelledLayout
+from gtfs_schematic.labels.model import LabelledLayout
 from gtfs_schematic.labels.place import place_labels
 from gtfs_schematic.layout.keep import Standing
 from gtfs_schematic.layout.model import Clearances, Layout, SheetFrame
@@ -297,7 +298,7 @@ def relabelled(
     was = {s.id: (s.x_mm, s.y_mm) for s in before.stations}
     at = standing.bundled.layout.positions
     labels = {
-        key: _shifted(label, (at[key][0] - was[key][0], at[key][1] - was[key][1]))
+        key: shifted(label, (at[key][0] - was[key][0], at[key][1] - was[key][1]))
         for key, label in standing.labels.items()
         if key in at and key in was and key not in freed
     }
@@ -312,26 +313,3 @@ def relabelled(
             labelled = replace(anew, settings=settings)
     must_be_sound("labels", labels_check.faults(labelled))
     return labelled
-
-
-def _shifted(label: Label, by: Point) -> Label:
-    dx, dy = by
-    if dx == 0.0 and dy == 0.0:
-        return label
-
-    def point(at: Point) -> Point:
-        return at[0] + dx, at[1] + dy
-
-    return replace(
-        label,
-        pivot_mm=point(label.pivot_mm),
-        lines=tuple(replace(r, x_mm=r.x_mm + dx, y_mm=r.y_mm + dy) for r in label.lines),
-        outline_mm=tuple(map(point, label.outline_mm)),
-        badges=tuple(
-            replace(
-                b, x_mm=b.x_mm + dx, y_mm=b.y_mm + dy,
-                text_x_mm=b.text_x_mm + dx, text_y_mm=b.text_y_mm + dy,
-            )
-            for b in label.badges
-        ),
-    )  # fmt: skip
