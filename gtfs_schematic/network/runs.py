@@ -11,16 +11,13 @@ from functools import cached_property
 import numpy as np
 import shapely
 from numpy.typing import NDArray
-from scipy.spatial import cKDTree
 
 from gtfs_schematic.geometry import Point
 from gtfs_schematic.network.links import Pair
 from gtfs_schematic.network.model import NetworkSettings
+from gtfs_schematic.network.sharing import Street
 from gtfs_schematic.network.tracks import Course, Track, samples
 
-_TANGENT_M = 15.0
-"""Directions are taken over this length to either side, metres: longer than the steps of samples
-about a corner, shorter than a block."""
 _CORNER = 2.5
 """Two courses that turn off at one corner may point apart for this many times `near_m` before
 they have parted, or after they have met."""
@@ -48,36 +45,14 @@ class Run:
         return line
 
     @cached_property
-    def points(self) -> Course:
-        """Points along the course, close together."""
-        return samples(np.vstack(self.sections))
+    def street(self) -> Street:
+        """The course as points close together, with distances and headings."""
+        return Street(samples(np.vstack(self.sections)))
 
     @cached_property
     def dots(self) -> NDArray[np.object_]:
-        """The same as geometries."""
-        return np.asarray(shapely.points(self.points))
-
-    @cached_property
-    def tree(self) -> cKDTree:
-        """Finds the nearest of `points`."""
-        return cKDTree(self.points)
-
-    @cached_property
-    def along(self) -> NDArray[np.float64]:
-        """Distances of `points` from the start along the course, metres."""
-        steps = np.hypot(*np.diff(self.points, axis=0).T)
-        return np.concatenate([[0.0], np.cumsum(steps)])
-
-    @cached_property
-    def headings(self) -> Course:
-        """Unit vectors along the course at `points`, shape (n, 2)."""
-        along = self.along
-        back, on = (
-            np.column_stack([np.interp(along + shift, along, axis) for axis in self.points.T])
-            for shift in (-_TANGENT_M, _TANGENT_M)
-        )
-        length = np.maximum(np.hypot(*(on - back).T), 1e-9)
-        return np.asarray((on - back) / length[:, None])
+        """The same points as geometries."""
+        return np.asarray(shapely.points(self.street.points))
 
     @cached_property
     def called(self) -> frozenset[str]:
@@ -132,18 +107,18 @@ class Alongside:
             Further places that the stretch about `place` must reach.
         """
         near, along = self._compared(run, other)
-        middle = _nearest(other.points, place)
+        middle = _nearest(other.street.points, place)
         if not near[middle] or not shapely.dwithin(step, other.dots[middle], self.near_m):
             return False
         outside = np.flatnonzero(~near)
         first = int(outside[outside < middle].max(initial=-1)) + 1
         last = int(outside[outside > middle].min(initial=len(near))) - 1
-        steps = np.diff(other.along[first : last + 1])
+        steps = np.diff(other.street.along[first : last + 1])
         parallel = along[first:last] & along[first + 1 : last + 1]
         return bool(
             parallel.any()
             and steps[parallel].sum() >= self.least_m
-            and all(first <= _nearest(other.points, p) <= last for p in also)
+            and all(first <= _nearest(other.street.points, p) <= last for p in also)
         )
 
     def _compared(self, run: Run, other: Run) -> tuple[NDArray[np.bool_], NDArray[np.bool_]]:
@@ -157,8 +132,10 @@ class Alongside:
             near = np.asarray(shapely.dwithin(run.line, other.dots, self.near_m))
             along = np.zeros_like(near)
             if near.any():
-                _, nearest = run.tree.query(other.points[near])
-                cosines = np.abs((run.headings[nearest] * other.headings[near]).sum(axis=1))
+                _, nearest = run.street.tree.query(other.street.points[near])
+                cosines = np.abs(
+                    (run.street.headings[nearest] * other.street.headings[near]).sum(axis=1)
+                )
                 along[near] = cosines >= self.cosine
             self._seen[key] = near & ~self._long(near & ~along, other), along
         return self._seen[key]
@@ -168,7 +145,7 @@ class Alongside:
         kept = np.zeros_like(across)
         edges = np.flatnonzero(np.diff(np.concatenate([[False], across, [False]])))
         for start, stop in zip(edges[::2], edges[1::2], strict=True):
-            length = other.along[stop - 1] - other.along[start]
+            length = other.street.along[stop - 1] - other.street.along[start]
             kept[start:stop] = length > _CORNER * self.near_m
         return kept
 
