@@ -61,10 +61,6 @@ class Notebook:
         """Note that something of the feed is not shown; the first reason given stands."""
         self._left_out.setdefault((kind, self.prefix + ident), reason)
 
-    def left_out_ids(self, kind: str) -> frozenset[str]:
-        """Give the ids, prefix included, of one kind that are left out."""
-        return frozenset(ident for what, ident in self._left_out if what == kind)
-
     @property
     def findings(self) -> tuple[Finding, ...]:
         """All findings, sorted by file, row, field and message."""

@@ -27,7 +27,6 @@ from gtfs_schematic.layout.filling import first_that_holds
 from gtfs_schematic.layout.fit import (
     Sizes,
     link_least,
-    link_wishes,
     part_wants,
     pins_in_frame,
 )
@@ -37,7 +36,6 @@ from gtfs_schematic.layout.model import (
     Clearances,
     Layout,
     LayoutSettings,
-    RoomRequest,
     SheetFrame,
 )
 from gtfs_schematic.layout.objective import Weights
@@ -171,11 +169,10 @@ def fit_sheet(
     clearances: Clearances,
     frames: Sequence[SheetFrame],
     *,
-    requests: tuple[RoomRequest, ...] = (),
     progress: Progress = Silent(),  # noqa: B008 - stateless
 ) -> Layout:
     """Settle a placement on the first sheet that holds it: see `fit`."""
-    return fit(placement, clearances, frames, requests=requests, progress=progress).layout
+    return fit(placement, clearances, frames, progress=progress).layout
 
 
 def fit(
@@ -183,7 +180,6 @@ def fit(
     clearances: Clearances,
     frames: Sequence[SheetFrame],
     *,
-    requests: tuple[RoomRequest, ...] = (),
     progress: Progress = Silent(),  # noqa: B008 - stateless
 ) -> Fitted:
     """Settle a placement on the first sheet that holds it.
@@ -196,8 +192,6 @@ def fit(
         What will be drawn, millimetres.
     frames
         Sheets in rising size.
-    requests
-        Wishes of later stages for longer links, met as far as the sheet allows.
     progress
         Told what is going on.
 
@@ -218,7 +212,6 @@ def fit(
         clearances,
         placement.anchors,
         link_least(network, clearances),
-        link_wishes(network, requests),
         relative=relative_pins(placement.skeleton.graph, placement.settings),
     )
     sizes, (skeleton, frame, scale) = first_that_holds(placement.skeleton, sizes, frames)

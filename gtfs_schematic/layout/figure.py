@@ -4,7 +4,6 @@ from __future__ import annotations
 
 import itertools
 import math
-from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -13,7 +12,7 @@ from numpy.typing import NDArray
 
 from gtfs_schematic.geometry import Point
 from gtfs_schematic.layout.draft import Draft
-from gtfs_schematic.layout.places import place_of, point_of, without_straights
+from gtfs_schematic.layout.places import point_of, without_straights
 from gtfs_schematic.layout.plane import PlaneGraph
 from gtfs_schematic.layout.skeleton import Skeleton
 
@@ -91,12 +90,3 @@ class Figure:
 def _direction(a: Point, b: Point) -> int:
     """Nearest of the eight directions with y north, from places with y down."""
     return round(math.atan2(a[1] - b[1], b[0] - a[0]) / (math.pi / 4)) % 8
-
-
-def is_exact(path: Sequence[Point]) -> bool:
-    """Whether every segment of a path runs exactly in one of the eight directions."""
-    for (ax, ay), (bx, by) in itertools.pairwise(place_of(point) for point in path):
-        dx, dy = abs(bx - ax), abs(by - ay)
-        if dx != dy and dx * dy != 0:
-            return False
-    return True

@@ -34,22 +34,17 @@ _FULL = 1.06
 def first_that_holds(
     skeleton: Skeleton, sizes: Sizes, frames: Sequence[SheetFrame]
 ) -> tuple[Sizes, tuple[Skeleton, SheetFrame, float]]:
-    """Settle with all wishes; without places beside other stations, or without room, if need be.
+    """Settle with places beside other stations; without them if need be.
 
     Gives what was asked in the end, the skeleton with its points in millimetres, the sheet, and
     the length of a station spacing on it.
     """
-    tries = [sizes, dataclasses.replace(sizes, link_wishes={})]
     if sizes.relative:
-        tries += [dataclasses.replace(each, relative=()) for each in tries]
-    for each in tries[:-1]:
         try:
-            return each, _on_sheet(skeleton, each, frames)
-        except (NoRoomError, PinsCollideError, DriftLimitsCollideError) as error:
-            # What is in the way may be a wish; pins that collide without one are an error.
-            if isinstance(error, PinsCollideError) and not each.relative:
-                raise
-    return tries[-1], _on_sheet(skeleton, tries[-1], frames)
+            return sizes, _on_sheet(skeleton, sizes, frames)
+        except (NoRoomError, PinsCollideError, DriftLimitsCollideError):
+            sizes = dataclasses.replace(sizes, relative=())
+    return sizes, _on_sheet(skeleton, sizes, frames)
 
 
 def _on_sheet(

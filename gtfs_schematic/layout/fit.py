@@ -18,10 +18,9 @@ from gtfs_schematic.layout.model import (
     Clearances,
     LayoutSettings,
     NameRoom,
-    RoomRequest,
     SheetFrame,
 )
-from gtfs_schematic.layout.plane import Part, Piece, PlaneGraph
+from gtfs_schematic.layout.plane import Piece, PlaneGraph
 from gtfs_schematic.layout.settle import Wants
 from gtfs_schematic.layout.skeleton import Skeleton
 from gtfs_schematic.network.model import Network
@@ -32,12 +31,6 @@ _WALK_SHARE = 0.75
 _AIR_MM = 0.2
 _NAME_CLEAR_MM = 0.8
 """What names are kept clear of lines and each other."""
-_MOST_WISHED_MM = 14.0
-"""Length up to which a wish binds, millimetres; beyond, it is weighed against the others."""
-
-_WISH_WEIGHT = 3.0
-"""How much more a length counts that a name asked for."""
-
 _BROKEN_SHARE = 0.7
 """Share of its width that a name takes when it may be broken into rows."""
 _WIDEST_ROOM_MM = 25.0
@@ -57,8 +50,6 @@ class Sizes:
     """Anchors of the vertices in station spacings, y north, shape (n, 2)."""
     link_least: Mapping[str, float]
     """Least length of each link and walk, millimetres."""
-    link_wishes: Mapping[str, float]
-    """Length that names want of some links, millimetres."""
     pinned: Mapping[int, Point] = field(default_factory=dict)
     """Per pinned vertex its place, millimetres from the frame's lower left corner, y north."""
     relative: tuple[Relative, ...] = ()
@@ -91,11 +82,6 @@ def wants_of(
     even = 1.0 if tight else 1.0 - 0.95 * fidelity**2
     goal = _spans(skeleton, fidelity) * scale_mm
     goal[walk] = np.maximum(least[walk], _WALK_SHARE * scale_mm)
-    if not tight:
-        least = np.maximum(least, _wished_least(graph, sizes))
-    wish = _wished(graph, sizes)
-    asked = wish > goal
-    goal = np.maximum(goal, wish)
     spans = np.array([piece.spans for piece in graph.pieces])
     owner = skeleton.piece_of
     lines = lines[owner]
@@ -107,7 +93,7 @@ def wants_of(
         least=np.round(shortest, 6),
         piece_least=np.round(least, 6),
         piece_goal=np.round(least if tight else np.maximum(goal, least), 6),
-        piece_weight=np.where(walk, 2.0, np.where(asked, _WISH_WEIGHT, 1.0)) * weight * even,
+        piece_weight=np.where(walk, 2.0, 1.0) * weight * even,
         anchors=_anchors(skeleton, sizes, scale_mm, box, grown),
         anchor_weight=0.02 if tight else 0.05 + 3.0 * fidelity**3,
         half_width=half,
@@ -119,14 +105,6 @@ def wants_of(
         jogs=np.where(jog, 3.0 * lines, 0.0),
         spread=2.0 if tight else 0.0,
         crowding=_crowding(skeleton, sizes, half),
-    )
-
-
-def _wished(graph: PlaneGraph, sizes: Sizes) -> NDArray[np.float64]:
-    """Give the length that later stages wish for each piece, millimetres."""
-    wishes = sizes.link_wishes
-    return np.array(
-        [sum(p.share * wishes.get(p.owner, 0.0) for p in piece.parts) for piece in graph.pieces]
     )
 
 
@@ -222,17 +200,6 @@ def link_least(network: Network, clearances: Clearances) -> dict[str, float]:
     return least
 
 
-def link_wishes(network: Network, requests: tuple[RoomRequest, ...]) -> dict[str, float]:
-    """Give every link at whose end a name wants room the length that was asked for."""
-    asked: dict[str, float] = {}
-    for request in requests:
-        asked[request.station_id] = max(asked.get(request.station_id, 0.0), request.length_mm)
-    wishes = {
-        link.id: max(asked.get(link.start, 0.0), asked.get(link.end, 0.0)) for link in network.links
-    }
-    return {key: length for key, length in wishes.items() if length > 0.0}
-
-
 def _between_ends(graph: PlaneGraph, clearances: Clearances) -> NDArray[np.float64]:
     """Least length of each piece for what stands at its ends: a marker, or another bundle."""
     pitch = clearances.line_width_mm + clearances.line_gap_mm
@@ -260,8 +227,7 @@ def part_wants(graph: PlaneGraph, sizes: Sizes) -> tuple[NDArray[np.float64], ..
     Returns
     -------
     tuple
-        Per piece an array of shape (parts, 3): wanted share, least and wished length in
-        millimetres.
+        Per piece an array of shape (parts, 2): wanted share, and least length in millimetres.
     """
     a, b = graph.segments.T
     true = np.hypot(*(graph.points[a] - graph.points[b]).T)
@@ -272,11 +238,10 @@ def part_wants(graph: PlaneGraph, sizes: Sizes) -> tuple[NDArray[np.float64], ..
         stop = start + len(piece.parts)
         shares = np.array([part.share for part in piece.parts])
         least = _part_leasts(graph, piece, sizes)
-        wish = np.array([part.share * sizes.link_wishes.get(part.owner, 0) for part in piece.parts])
         run = true[start:stop]
         run = run / max(float(run.sum()), 1e-9)
         blend = run**power * (shares / shares.sum()) ** (1.0 - power)
-        wants.append(np.column_stack([blend, least, wish]))
+        wants.append(np.column_stack([blend, least]))
         start = stop
     return tuple(wants)
 
@@ -298,19 +263,6 @@ def _part_leasts(graph: PlaneGraph, piece: Piece, sizes: Sizes) -> NDArray[np.fl
             half = sizes.clearances.half_width_mm(widest)
             least[part] = max(least[part], sizes.clearances.marker_mm + half)
     return least
-
-
-def _wished_least(graph: PlaneGraph, sizes: Sizes) -> NDArray[np.float64]:
-    """Least length of each piece with what names wish, as far as a wish binds; millimetres."""
-    return np.array(
-        [sum(_part_least(part, sizes) for part in piece.parts) for piece in graph.pieces]
-    )
-
-
-def _part_least(part: Part, sizes: Sizes) -> float:
-    """Least length of a part when its piece is shared out; names' wishes go first."""
-    wish = sizes.link_wishes.get(part.owner, 0.0)
-    return part.share * max(sizes.link_least[part.owner], min(wish, _MOST_WISHED_MM))
 
 
 def _spans(skeleton: Skeleton, fidelity: float) -> NDArray[np.float64]:

@@ -82,14 +82,6 @@ class SheetFrame:
 
 
 @dataclass(frozen=True, slots=True)
-class RoomRequest:
-    """A later stage's wish for more room: at least `length_mm` along each link of a station."""
-
-    station_id: str
-    length_mm: float
-
-
-@dataclass(frozen=True, slots=True)
 class NameRoom:
     """Where a name stands or is to stand beside its station: room that should be left free."""
 

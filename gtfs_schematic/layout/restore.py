@@ -38,7 +38,7 @@ def restore(
     frame
         The sheet.
     part_wants
-        Per piece of each part the wanted share, the least and the wished length, millimetres.
+        Per piece of each part the wanted share, and the least length in millimetres.
     """
     graph = skeleton.graph
     at: dict[str, _Place] = {}
@@ -71,8 +71,7 @@ def stops_on(corners: list[_Place], wants: NDArray[np.float64]) -> list[tuple[_P
     """Places of the stations on a piece, each with the number of the segment it stands on."""
     points = np.array(corners, dtype=np.float64)
     ends = np.concatenate([[0.0], np.cumsum(np.hypot(*np.diff(points, axis=0).T))])
-    least, wish = wants[:, 1] * UNITS_PER_MM, wants[:, 2] * UNITS_PER_MM
-    lengths = _share_out(float(ends[-1]), wants[:, 0], least, wish)
+    lengths = _share_out(float(ends[-1]), wants[:, 0], wants[:, 1] * UNITS_PER_MM)
     stops: list[tuple[_Place, int]] = []
     for t, gap in zip(np.cumsum(lengths)[:-1], np.minimum(lengths[:-1], lengths[1:]), strict=True):
         s = _off_bends(float(t), ends, min(_STUB_MM * UNITS_PER_MM, 0.3 * float(gap)))
@@ -86,16 +85,11 @@ def stops_on(corners: list[_Place], wants: NDArray[np.float64]) -> list[tuple[_P
 
 
 def _share_out(
-    total: float,
-    shares: NDArray[np.float64],
-    least: NDArray[np.float64],
-    wish: NDArray[np.float64],
+    total: float, shares: NDArray[np.float64], least: NDArray[np.float64]
 ) -> NDArray[np.float64]:
-    """Share a length out in proportion; first the least lengths, then what is wished."""
+    """Share a length out in proportion, but to each its least length first."""
     if total <= least.sum():
         return np.asarray(least * (total / least.sum()))
-    extra = np.maximum(0.0, wish - least)
-    least = least + extra * min(1.0, (total - least.sum()) / max(extra.sum(), 1e-9))
     if total <= least.sum() * (1.0 + 1e-9):
         return np.asarray(least)
     short = np.zeros(len(shares), dtype=bool)

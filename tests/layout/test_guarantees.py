@@ -15,12 +15,11 @@ from hypothesis import strategies as st
 
 from gtfs_schematic.errors import LayoutError
 from gtfs_schematic.layout.check import faults
-from gtfs_schematic.layout.engine import fit_sheet, lay_out, place
+from gtfs_schematic.layout.engine import lay_out
 from gtfs_schematic.layout.model import (
     Clearances,
     Layout,
     LayoutSettings,
-    RoomRequest,
     SheetFrame,
 )
 from gtfs_schematic.network.model import Network
@@ -99,15 +98,6 @@ def test_a_sheet_too_small_is_refused_with_the_size_needed():
     network = radial_network(1, 8, 2, 9)
     with pytest.raises(LayoutError, match=r"needs at least \d+ × \d+ mm"):
         lay_out(network, QUICK, CLEARANCES, [SheetFrame(60, 60, 5, 5, 55, 55)])
-
-
-def test_a_request_for_room_lengthens_the_links_of_its_station():
-    network = network_of({c: (i, 0.2 * i) for i, c in enumerate("ABCDE")}, ["ABCDE"])
-    placement = place(network, QUICK)
-    layout = fit_sheet(placement, CLEARANCES, FRAMES, requests=(RoomRequest("C", 40.0),))
-    length = {key: shapely.LineString(path).length for key, path in layout.paths.items()}
-    assert min(length["B-C"], length["C-D"]) > 1.5 * max(length["A-B"], length["D-E"])
-    assert min(length.values()) >= CLEARANCES.spacing_mm - 0.02
 
 
 def test_fidelity_brings_the_drawing_nearer_to_the_ground():
