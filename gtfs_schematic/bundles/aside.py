@@ -7,6 +7,7 @@ lines that go on run on straight, and only those jog that make room for another.
 
 from __future__ import annotations
 
+import math
 from collections import defaultdict
 from collections.abc import Mapping
 
@@ -22,6 +23,8 @@ from gtfs_schematic.layout.model import Layout
 
 _MOST_PITCHES = 3.0
 """No bundle is moved further from its link."""
+_CORNER_SHARE = 0.25
+"""Share of a link along which a bundle moved aside may take the corner at its end."""
 _CENTRED = 0.05
 """What a millimetre aside costs beside a millimetre that a line has to jog."""
 _LEAST_MM = 0.01
@@ -47,6 +50,8 @@ def asides(layout: Layout, nodes: Mapping[str, Junction], slots: Slots) -> Mappi
     if not any(abs(row[4]) > _LEAST_MM for row in rows):
         return {}
     rooms = _rooms(layout, slots)
+    for link_id, most in _beside_turns(nodes).items():
+        rooms[link_id] = min(rooms[link_id], most)
     moved = _least_jogs(rows, np.array([rooms[key] for key in links]))
     found = np.round(moved, 4)
     return {key: float(found[i]) for key, i in index.items() if abs(found[i]) > _LEAST_MM}
@@ -78,6 +83,24 @@ def _least_jogs(rows: list[tuple[int, float, int, float, float]], most: np.ndarr
     solved = linprog(cost, A_ub=matrix, b_ub=bound, bounds=limits, method="highs-ds")
     # Centred bundles are always a solution, so this one is there.
     return np.asarray(solved.x[:count])
+
+
+def _beside_turns(nodes: Mapping[str, Junction]) -> dict[str, float]:
+    """Give how far bundles may move that turn at an end, for the sake of the links at the turn.
+
+    At 45 degrees a bundle moved aside takes the corner 1 / sin 45° times as far along the links.
+    """
+    most: dict[str, float] = {}
+    for junction in nodes.values():
+        for way in junction.passes:
+            first, second = junction.leg[way.first], junction.leg[way.second]
+            if is_straight(first, second):
+                continue
+            shortest = min(first.length_mm, second.length_mm)
+            room = _CORNER_SHARE * shortest * math.sin(math.pi / 4.0)
+            for link_id in (way.first, way.second):
+                most[link_id] = min(most.get(link_id, math.inf), room)
+    return most
 
 
 def _rooms(layout: Layout, slots: Slots) -> dict[str, float]:

@@ -210,11 +210,9 @@ def _offset_faults(
 ) -> Iterator[str]:
     pitch = bundled.settings.line_width_mm + bundled.settings.line_gap_mm
     widest: Counter[str] = Counter()
-    aside: dict[str, float] = defaultdict(float)
     for link in bundled.forked.network.links:
         for end in (link.start, link.end):
             widest[end] = max(widest[end], len(link.lines))
-            aside[end] = max(aside[end], abs(bundled.asides.get(link.id, 0.0)))
     for link in bundled.forked.network.links:
         order = bundled.orders[link.id]
         wanted = (np.arange(len(order)) - (len(order) - 1) / 2.0) * pitch
@@ -223,8 +221,6 @@ def _offset_faults(
         # a shorter piece may be all joint, and is not measured.
         room = (widest[link.start] + widest[link.end]) * pitch
         room += 2.0 * bundled.settings.corner_radius_mm
-        # At a turn of 45 degrees a neighbour moved aside takes the corner so far along the link.
-        room += (aside[link.start] + aside[link.end]) / math.sin(math.pi / 4.0)
         for p, q in itertools.pairwise(np.array(bundled.forked.paths[link.id])):
             length = float(np.hypot(*(q - p)))
             if length < room:
