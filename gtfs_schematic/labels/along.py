@@ -10,6 +10,7 @@ from dataclasses import dataclass
 import numpy as np
 import shapely
 
+from gtfs_schematic.bundles.course import tangent_mm
 from gtfs_schematic.bundles.model import BundledLayout, Stretch
 from gtfs_schematic.geometry import Point, distance, unit_vector
 from gtfs_schematic.labels.badges import LONGEST_BADGE
@@ -149,8 +150,9 @@ def _on_straight(stretch: Stretch, length: float, half: float) -> tuple[Point, P
     for i, (a, b) in enumerate(itertools.pairwise(corners)):
         piece = distance(a.at_mm, b.at_mm)
         if length <= piece:
-            start = half + (a.radius_mm if i else 0.0)
-            end = half + (b.radius_mm if i + 2 < len(corners) else 0.0)
+            # No nearer to a bend than its radius, and never on its arc.
+            start = half + max(a.radius_mm, tangent_mm(corners, i))
+            end = half + max(b.radius_mm, tangent_mm(corners, i + 1))
             if not start <= length <= piece - end:
                 return None
             way = unit_vector(a.at_mm, b.at_mm)

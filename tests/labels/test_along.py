@@ -10,7 +10,8 @@ from dataclasses import replace
 import pytest
 import shapely
 
-from gtfs_schematic.bundles.model import BundledLayout, Stretch
+from gtfs_schematic.bundles.course import flatten
+from gtfs_schematic.bundles.model import BundledLayout, Corner, Stretch
 from gtfs_schematic.labels.check import faults
 from gtfs_schematic.labels.model import LabelSettings
 from gtfs_schematic.labels.place import place_labels
@@ -48,6 +49,26 @@ def test_a_long_line_is_named_at_even_distances(straight: Callable[..., BundledL
     assert 3 <= len(xs) <= 4
     assert all(15.0 < gap < 45.0 for gap in gaps)
     assert all(badge.angle_deg == 0.0 for badge in labelled.run_badges)
+
+
+def test_no_name_stands_on_the_arc_of_a_line_that_turns_back(
+    straight: Callable[..., BundledLayout],
+):
+    """An arc that turns by 135 degrees takes 2.4 times its radius of the straights beside it."""
+    bundled = straight(["A"] * 6, (24.0, 0.0), (40.0, 70.0))
+    corners = (
+        Corner((60.0, 150.0), 0.0),
+        Corner((160.0, 150.0), 10.0),
+        Corner((90.0, 80.0), 0.0),
+    )
+    stretch = replace(bundled.stretches[0], corners=corners)
+    bundled = replace(bundled, stretches=(stretch,))
+    for every in (20.0, 25.0, 30.0, 35.0):
+        labelled = place_labels(bundled, LabelSettings(line_names_every_mm=every))
+        course = shapely.LineString(flatten(corners))
+        assert labelled.run_badges
+        for badge in labelled.run_badges:
+            assert course.distance(shapely.Point(badge.at_mm)) < 0.02
 
 
 def test_names_keep_off_the_names_of_stations(named):
